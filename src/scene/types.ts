@@ -1,0 +1,89 @@
+import type { Model } from '../model/types.ts';
+
+/**
+ * One field or density of a scene. Numbers are in the units that formulas see: the parameter's
+ * declared unit, angles in radians; those of inline formulas in kpc, uG, cm^-3 and radians.
+ */
+export interface Component {
+  readonly name: string;
+  readonly model: Model;
+  readonly parameters: Readonly<Record<string, number>>;
+  readonly choices: Readonly<Record<string, string>>;
+}
+
+/** A layer of cosmic-ray electrons: a density model whose `density` is C (cm^-3, per unit gamma^-p). */
+export interface CosmicRayLayer extends Component {
+  /** h(nu) = height (nu/heightAt)^-heightIndex; both or neither. */
+  readonly heightIndex?: number;
+  readonly heightAtHz?: number;
+}
+
+export interface Galaxy {
+  readonly distanceKpc: number;
+  /** Angle between spin and the direction to the observer, 0 to pi. */
+  readonly inclination: number;
+  /** Of the receding half of the major axis, north through east, rad. */
+  readonly positionAngle: number;
+  readonly volume: { readonly radiusKpc: number; readonly heightKpc: number };
+  /** Degrees, ICRS. */
+  readonly centre?: { readonly raDeg: number; readonly decDeg: number };
+}
+
+export interface UnresolvedTurbulence {
+  /** rms of one component, uG. */
+  readonly rmsUG: number;
+  /** Size of a cell along the ray, kpc. */
+  readonly cellKpc: number;
+  /** Name of a component or density whose value, divided by its strength, scales the rms. */
+  readonly follows?: string;
+}
+
+export interface Band {
+  readonly name: string;
+  /** Given as from/to/channels (or at + width); widthHz 0 is monochromatic. */
+  readonly channels: readonly { readonly frequencyHz: number; readonly widthHz: number }[];
+  /** Centre of the whole band; undefined for a list of separate frequencies. */
+  readonly centreHz?: number;
+}
+
+export interface Beam {
+  /** FWHM, arcsec. */
+  readonly majorArcsec: number;
+  readonly minorArcsec: number;
+  /** Of the major axis, north through east, rad. */
+  readonly angle: number;
+}
+
+export interface ImageSpec {
+  readonly nx: number;
+  readonly ny: number;
+  readonly pixelArcsec: number;
+}
+
+export interface Observation {
+  readonly image: ImageSpec;
+  readonly bands: readonly Band[];
+  readonly beam?: Beam;
+  /** rms per channel, Jy/beam (Jy/sr without a beam); undefined: no noise. */
+  readonly noise?: number;
+  /** rad m^-2, 0 where there is none. */
+  readonly foregroundDepth: number;
+}
+
+export interface Numerics {
+  readonly tolerance: number;
+  readonly seed: number;
+  readonly bits: 32 | 64;
+}
+
+/** A checked scene: every value present, in range, in the units its name says. */
+export interface Scene {
+  readonly title: string;
+  readonly galaxy: Galaxy;
+  readonly field: readonly Component[];
+  readonly thermalElectrons: readonly Component[];
+  readonly cosmicRays: { readonly index: number; readonly layers: readonly CosmicRayLayer[] };
+  readonly turbulence: { readonly unresolved?: UnresolvedTurbulence };
+  readonly observation: Observation;
+  readonly numerics: Numerics;
+}
