@@ -16,6 +16,8 @@ export interface ModelParameter {
   readonly group?: string;
   /** Only whole numbers are allowed. */
   readonly whole?: boolean;
+  /** Zero is not allowed, though it lies in the range. */
+  readonly nonZero?: boolean;
 }
 
 /** A word chosen in the scene, such as a parity: inside formulas the number of the option. */

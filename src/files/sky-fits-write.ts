@@ -1,0 +1,100 @@
+import type { Beam } from '../scene/types.ts';
+import type { SkyGrid, StokesCube } from '../sky/types.ts';
+import { asciiText } from './fits-card-write.ts';
+import { frequencyAxis } from './frequency-axis.ts';
+import type { Provenance } from './fits-scene.ts';
+import { sceneTable } from './fits-scene.ts';
+import type { Card, TableHdu } from './fits-types.ts';
+import { makeImage, writeFits } from './fits-write.ts';
+import type { MapSky, ThirdAxis } from './sky-header.ts';
+import { beamCards, conventionCards, coordinateCards, DEPTH_AXIS, skyOfGrid } from './sky-header.ts';
+
+/** What every map or cube says of itself. */
+interface Quantity {
+  /** Such as `RM`, `P`, `chi`, `P error`. */
+  readonly quantity: string;
+  /** BUNIT; empty for a pure number. */
+  readonly unit: string;
+  /** A scene's grid, or the sky of a user's own map. */
+  readonly sky: SkyGrid | MapSky;
+  readonly beam?: Beam;
+  readonly band?: string;
+  /** Further comments for the header, plain sentences. */
+  readonly comments?: readonly string[];
+}
+
+/** A two-dimensional map, values [row * nx + column], NaN blank. */
+export interface MapQuantity extends Quantity {
+  readonly values: Float64Array;
+  /** The frequency at which it holds, where it holds at one. */
+  readonly frequencyHz?: number;
+}
+
+/** A cube over Faraday depth, values [depth * ny * nx + row * nx + column], NaN blank. */
+export interface DepthCube extends Quantity {
+  readonly values: Float64Array;
+  readonly firstDepthRadM2: number;
+  readonly depthStepRadM2: number;
+  readonly depthCount: number;
+  /** The wavelength squared at which the angles of the spectrum hold, m^2. */
+  readonly referenceLambdaM2?: number;
+}
+
+/**
+ * The FITS file of one Stokes parameter of one band: a cube (RA, Dec, frequency) in the primary
+ * unit, the channels' table where they are not evenly spaced, and the scene.
+ */
+export function stokesFits(cube: StokesCube, stokes: 'I' | 'Q' | 'U', provenance: Provenance, bits: 32 | 64): Uint8Array {
+  const { axis, table } = frequencyAxis(cube.channels, cube.noise);
+  const described = { quantity: stokes, unit: cube.unit, sky: cube.grid, beam: cube.beam, band: cube.band };
+  return skyFits({ ...described, values: cube[stokes], third: axis, cards: [], tables: table ? [table] : [] }, provenance, bits);
+}
+
+/** The FITS file of a two-dimensional map, with the scene it was made from. */
+export function mapFits(map: MapQuantity, provenance: Provenance, bits: 32 | 64): Uint8Array {
+  const cards: Card[] =
+    map.frequencyHz === undefined ? [] : [{ keyword: 'FREQ', value: map.frequencyHz, comment: '[Hz] at which this map holds' }];
+  return skyFits({ ...map, cards, tables: [] }, provenance, bits);
+}
+
+/** The FITS file of a cube with a linear axis of Faraday depth (free-form CTYPE `FDEP`), with its scene. */
+export function depthCubeFits(cube: DepthCube, provenance: Provenance, bits: 32 | 64): Uint8Array {
+  const third: ThirdAxis = {
+    ctype: DEPTH_AXIS,
+    cunit: 'rad/m2',
+    crpix: 1,
+    crval: cube.firstDepthRadM2,
+    cdelt: cube.depthStepRadM2,
+    length: cube.depthCount,
+  };
+  const cards: Card[] =
+    cube.referenceLambdaM2 === undefined
+      ? []
+      : [{ keyword: 'LAMSQ0', value: cube.referenceLambdaM2, comment: '[m2] wavelength squared of the angles' }];
+  return skyFits({ ...cube, third, cards, tables: [] }, provenance, bits);
+}
+
+interface SkyFits extends Quantity {
+  readonly values: Float64Array;
+  readonly third?: ThirdAxis;
+  readonly cards: readonly Card[];
+  readonly tables: readonly TableHdu[];
+}
+
+function skyFits(image: SkyFits, provenance: Provenance, bits: 32 | 64): Uint8Array {
+  const sky = 'wcs' in image.sky ? image.sky : skyOfGrid(image.sky);
+  const shape = [sky.nx, sky.ny, ...(image.third ? [image.third.length] : [])];
+  const cards: Card[] = [
+    { keyword: 'QUANTITY', value: asciiText(image.quantity), comment: 'what the pixels hold' },
+    ...(image.unit === '' ? [] : [{ keyword: 'BUNIT', value: asciiText(image.unit) }]),
+    ...(image.band === undefined ? [] : [{ keyword: 'BAND', value: asciiText(image.band), comment: 'name in the scene' }]),
+    ...coordinateCards(sky.wcs, image.third),
+    ...image.cards,
+    ...beamCards(image.beam),
+    ...conventionCards(),
+    ...(image.comments ?? []).map((comment) => ({ keyword: 'COMMENT', comment: asciiText(comment) })),
+    { keyword: 'COMMENT', comment: 'The scene that this was made from is in the table SCENE.' },
+  ];
+  const primary = makeImage(shape, image.values, bits === 32 ? -32 : -64, cards);
+  return writeFits([primary, ...image.tables, sceneTable(provenance)]);
+}

@@ -1,0 +1,89 @@
+import { buildFormula, type Scope } from '../formula/build.ts';
+import type { Graph, NodeId } from '../formula/graph.ts';
+import {
+  cartesianFromCylindrical,
+  coordinatesOf,
+  curlCartesian,
+  curlCylindrical,
+  eulerField,
+  type Vector,
+} from '../formula/vector-calculus.ts';
+import type { Model } from './types.ts';
+
+/** A model with names for its parameters' run-time values and its choices made. */
+export interface ModelUse {
+  readonly model: Model;
+  /** Graph node of each parameter. */
+  readonly parameters: ReadonlyMap<string, NodeId>;
+  /** The option chosen for each choice. */
+  readonly choices: Readonly<Record<string, string>>;
+}
+
+/** The field of a model, uG, as Cartesian components in the galaxy frame. */
+export function buildField(graph: Graph, use: ModelUse): Vector {
+  const c = coordinatesOf(graph);
+  const scope = scopeOf(graph, use);
+  const { potential, euler, field } = use.model.formulas;
+  const zero = graph.constant(0);
+  const part = (formulas: Readonly<Record<string, string>>, key: string): NodeId =>
+    key in formulas ? buildFormula(graph, formulas[key], scope) : zero;
+  let total: Vector = [zero, zero, zero];
+  const add = (b: Vector): void => {
+    total = [graph.add(total[0], b[0]), graph.add(total[1], b[1]), graph.add(total[2], b[2])];
+  };
+  if (potential) {
+    if (isCartesian(potential)) add(curlCartesian(graph, c, [part(potential, 'x'), part(potential, 'y'), part(potential, 'z')]));
+    else add(curlCylindrical(graph, c, [part(potential, 'r'), part(potential, 'phi'), part(potential, 'z')]));
+  }
+  if (euler) add(eulerField(graph, c, buildFormula(graph, euler.a, scope), buildFormula(graph, euler.b, scope)));
+  if (field) {
+    if (isCartesian(field)) add([part(field, 'x'), part(field, 'y'), part(field, 'z')]);
+    else add(cartesianFromCylindrical(graph, c, [part(field, 'r'), part(field, 'phi'), part(field, 'z')]));
+  }
+  return total;
+}
+
+/** The density of a model, cm^-3. */
+export function buildDensity(graph: Graph, use: ModelUse): NodeId {
+  const { density } = use.model.formulas;
+  if (density === undefined) throw new Error(`model ${use.model.name} has no density`);
+  return buildFormula(graph, density, scopeOf(graph, use));
+}
+
+/** Surfaces where the model jumps or has a kink, as nodes of parameters alone. */
+export function buildEdges(graph: Graph, use: ModelUse): { readonly z: readonly NodeId[]; readonly r: readonly NodeId[] } {
+  const scope = scopeOf(graph, use);
+  const { z = [], r = [] } = use.model.edges;
+  return { z: z.map((text) => buildFormula(graph, text, scope)), r: r.map((text) => buildFormula(graph, text, scope)) };
+}
+
+/**
+ * True where a field is divergence-free by the way it is given: by potentials, and at most an
+ * azimuthal part of an axisymmetric model beside them. What users give directly is measured.
+ */
+export function isSolenoidalByConstruction(model: Model): boolean {
+  const { field } = model.formulas;
+  if (!field) return true;
+  const scope = new Set(model.parameters.map((parameter) => parameter.name));
+  const constant = Object.values(field).every((text) => scope.has(text.trim()) || Number.isFinite(Number(text)));
+  if (isCartesian(field)) return constant;
+  const mentionsAzimuth = /\b(phi|x|y)\b/;
+  const texts = [field.phi ?? '', ...Object.values(model.define)];
+  return Object.keys(field).every((key) => key === 'phi') && !texts.some((text) => mentionsAzimuth.test(text));
+}
+
+function isCartesian(components: Readonly<Record<string, string>>): boolean {
+  return 'x' in components || 'y' in components;
+}
+
+/** Coordinates, then options and choices, then parameters, then the model's own definitions. */
+function scopeOf(graph: Graph, { model, parameters, choices }: ModelUse): Scope {
+  const scope = new Map<string, NodeId>(Object.entries(coordinatesOf(graph)));
+  for (const choice of model.choices) {
+    for (const [option, value] of Object.entries(choice.options)) scope.set(option, graph.constant(value));
+  }
+  for (const choice of model.choices) scope.set(choice.name, graph.constant(choice.options[choices[choice.name]]));
+  for (const [name, node] of parameters) scope.set(name, node);
+  for (const [name, text] of Object.entries(model.define)) scope.set(name, buildFormula(graph, text, scope));
+  return scope;
+}

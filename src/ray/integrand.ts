@@ -1,0 +1,128 @@
+import { compileJavaScript, type Kernel } from '../formula/javascript.ts';
+import { Graph, type NodeId } from '../formula/graph.ts';
+import { lowerGraph, type Program } from '../formula/lower.ts';
+import { coordinateSubstitution } from '../formula/vector-calculus.ts';
+import type { Table } from '../math/table.ts';
+import type { Scene } from '../scene/types.ts';
+import { riceTables } from './rice.ts';
+import { parameterValues, SceneGraph, smallestFieldSquared } from './scene-graph.ts';
+import { faradayDepthPerKpc } from './synchrotron.ts';
+
+/**
+ * A scene made into one function of a point. Outputs of `program`, in order: dφ/ds (rad m^-2 per
+ * kpc), dΣ/ds (rad² m^-4 per kpc), then the moments ⟨B^q⟩, ⟨B^q cos2θ⟩ and ⟨B^q sin2θ⟩ (uG^q, θ
+ * from the receding half of the major axis towards the minor axis, of the electric vector), then
+ * C (cm^-3) of each emission group. Lanes are x, y, z (kpc, galaxy frame).
+ */
+export interface Integrand {
+  readonly program: Program;
+  readonly kernel: Kernel;
+  /** Which frequencies share a C: one group for all where no layer depends on frequency. */
+  readonly groupOf: readonly number[];
+  readonly groups: number;
+  readonly hasDispersion: boolean;
+  /** Run-time values for a scene of the same structure: parameters of `program`, tables, edges. */
+  inputs(scene: Scene): IntegrandInputs;
+}
+
+export interface IntegrandInputs {
+  readonly parameters: Float64Array;
+  readonly tables: readonly Table[];
+  /** Heights and radii (kpc) where rays must break their panels, beside the plane and the axis. */
+  readonly edges: { readonly zKpc: readonly number[]; readonly rKpc: readonly number[] };
+}
+
+/** Fixed places of the outputs; C of the first emission group stands at `firstGroup`. */
+export const output = { faraday: 0, dispersion: 1, total: 2, cosine: 3, sine: 4, firstGroup: 5 } as const;
+
+/** A frequency at which to follow rays, and the centre of the channel it belongs to, Hz. */
+export interface SpectralPoint {
+  readonly frequencyHz: number;
+  /** Decides the height of layers that depend on frequency. */
+  readonly centreHz: number;
+}
+
+/**
+ * Compiles a scene for a list of frequencies. Parameters stay run-time inputs: a scene that
+ * differs only in numbers needs new `inputs`, not a new integrand.
+ */
+export function compileIntegrand(scene: Scene, spectrum: readonly SpectralPoint[]): Integrand {
+  const graph = new Graph();
+  const fields = new SceneGraph(graph, scene);
+  const [bx, by, bz] = fields.totalField();
+  const electrons = fields.electronDensity();
+
+  // Turn the field into the observer's frame: along k̂ and along the two axes of the sky.
+  const [sinI, cosI] = [graph.parameter('sinI'), graph.parameter('cosI')];
+  const along = graph.subtract(graph.multiply(bz, cosI), graph.multiply(by, sinI));
+  const minor = graph.add(graph.multiply(by, cosI), graph.multiply(bz, sinI));
+  const faraday = graph.multiply(graph.constant(faradayDepthPerKpc), electrons, along);
+
+  const rms = fields.unresolvedRms();
+  const dispersion = rms === undefined ? graph.constant(0) : fields.dispersion(electrons, rms);
+  const moments = fieldMoments(graph, bx, minor, rms);
+  const groupOf = emissionGroups(scene, spectrum);
+  const groups = Math.max(...groupOf) + 1;
+  const normalisations = Array.from({ length: groups }, (_, group) => fields.cosmicRays(group));
+
+  const program = lowerGraph(graph, [faraday, dispersion, ...moments, ...normalisations], ['x', 'y', 'z'], coordinateSubstitution(graph));
+  const groupFrequencies = Array.from({ length: groups }, (_, group) => spectrum[groupOf.indexOf(group)].centreHz);
+  return {
+    program,
+    kernel: compileJavaScript(program),
+    groupOf,
+    groups,
+    hasDispersion: rms !== undefined,
+    inputs: (values) => integrandInputs(program, values, groupFrequencies),
+  };
+}
+
+/** ⟨B^q⟩, ⟨B^q cos2θ⟩, ⟨B^q sin2θ⟩ for the electric vector, which is perpendicular to the field. */
+function fieldMoments(graph: Graph, major: NodeId, minor: NodeId, rms: NodeId | undefined): readonly [NodeId, NodeId, NodeId] {
+  const squared = graph.add(graph.power(major, 2), graph.power(minor, 2));
+  const halfPower = graph.parameter('halfPower');
+  const twist = graph.multiply(graph.constant(-2), major, minor);
+  const difference = graph.subtract(graph.power(minor, 2), graph.power(major, 2));
+  const random = rms === undefined ? graph.constant(0) : graph.multiply(graph.constant(2), graph.power(rms, 2));
+  const size = graph.add(squared, random, graph.constant(smallestFieldSquared));
+  const power = graph.binary('pow', size, graph.subtract(halfPower, graph.constant(1)));
+  if (rms === undefined) return [graph.multiply(power, size), graph.multiply(power, difference), graph.multiply(power, twist)];
+  const share = graph.divide(squared, size);
+  const aligned = graph.multiply(power, graph.table('riceAligned', 0, share));
+  return [
+    graph.multiply(power, size, graph.table('riceTotal', 0, share)),
+    graph.multiply(aligned, difference),
+    graph.multiply(aligned, twist),
+  ];
+}
+
+function emissionGroups(scene: Scene, spectrum: readonly SpectralPoint[]): readonly number[] {
+  const depends = scene.cosmicRays.layers.some((layer) => layer.heightIndex !== undefined);
+  if (!depends) return spectrum.map(() => 0);
+  const distinct = [...new Set(spectrum.map((point) => point.centreHz))];
+  return spectrum.map((point) => distinct.indexOf(point.centreHz));
+}
+
+function integrandInputs(program: Program, scene: Scene, groupFrequenciesHz: readonly number[]): IntegrandInputs {
+  const values = parameterValues(scene, groupFrequenciesHz);
+  const parameters = Float64Array.from(program.parameters, (name) => {
+    const value = values.get(name);
+    if (value === undefined) throw new Error(`parameter ${name} has no value`);
+    return value;
+  });
+  const rice = riceTables(scene.cosmicRays.index);
+  const tables = program.tables.map((name) => (name === 'riceTotal' ? rice.total : rice.aligned));
+  return { parameters, tables, edges: edgeValues(scene, values) };
+}
+
+/** Evaluates the declared edges, which depend on parameters alone. */
+function edgeValues(scene: Scene, values: ReadonlyMap<string, number>): IntegrandInputs['edges'] {
+  const graph = new Graph();
+  const { z, r } = new SceneGraph(graph, scene).edges();
+  if (z.length + r.length === 0) return { zKpc: [], rKpc: [] };
+  const program = lowerGraph(graph, [...z, ...r], []);
+  const out = program.outputs.map(() => new Float64Array(1));
+  compileJavaScript(program).evaluate(1, Float64Array.from(program.parameters, (name) => values.get(name) ?? NaN), [], out, []);
+  const numbers = out.map(([value]) => value);
+  return { zKpc: numbers.slice(0, z.length), rKpc: numbers.slice(z.length) };
+}

@@ -1,0 +1,147 @@
+import type { Graph, NodeId } from '../formula/graph.ts';
+import type { Vector } from '../formula/vector-calculus.ts';
+import { buildDensity, buildEdges, buildField, type ModelUse } from '../model/build-model.ts';
+import type { Component, CosmicRayLayer, Scene } from '../scene/types.ts';
+import { InputError } from '../units/input-error.ts';
+import { faradayDepthPerKpc } from './synchrotron.ts';
+
+/** Keeps powers of squared fields finite where the field vanishes, uG². */
+export const smallestFieldSquared = 1e-30;
+
+/** One use of a model in a scene: the path its run-time parameters are known by. */
+export interface PlacedComponent {
+  readonly path: string;
+  readonly component: Component;
+}
+
+/** Every field and density of a scene with a path of its own, in the order of the scene. */
+export function placedComponents(scene: Scene): {
+  readonly field: readonly PlacedComponent[];
+  readonly thermalElectrons: readonly PlacedComponent[];
+  readonly cosmicRays: readonly PlacedComponent[];
+} {
+  const place = (section: string, list: readonly Component[]): PlacedComponent[] =>
+    list.map((component) => ({ path: `${section}/${component.name}`, component }));
+  return {
+    field: place('field', scene.field),
+    thermalElectrons: place('thermalElectrons', scene.thermalElectrons),
+    cosmicRays: place('cosmicRays', scene.cosmicRays.layers),
+  };
+}
+
+/** The parts of a scene as nodes of one graph, each component built once. */
+export class SceneGraph {
+  private readonly fieldsByName = new Map<string, Vector>();
+
+  constructor(
+    private readonly graph: Graph,
+    private readonly scene: Scene,
+  ) {}
+
+  totalField(): Vector {
+    const parts = placedComponents(this.scene).field.map((placed) => {
+      const field = buildField(this.graph, this.use(placed));
+      this.fieldsByName.set(placed.component.name, field);
+      return field;
+    });
+    const sum = (axis: 0 | 1 | 2): NodeId => this.graph.add(...parts.map((part) => part[axis]));
+    return [sum(0), sum(1), sum(2)];
+  }
+
+  electronDensity(): NodeId {
+    return this.graph.add(...placedComponents(this.scene).thermalElectrons.map((placed) => buildDensity(this.graph, this.use(placed))));
+  }
+
+  /** C of the cosmic-ray electrons at the frequencies of an emission group. */
+  cosmicRays(group: number): NodeId {
+    const layers = placedComponents(this.scene).cosmicRays.map((placed) => {
+      const layer = placed.component as CosmicRayLayer;
+      if (layer.heightIndex === undefined) return buildDensity(this.graph, this.use(placed));
+      const use = this.use(placed);
+      const parameters = new Map(use.parameters);
+      parameters.set('height', this.graph.parameter(`${placed.path}/height@${group}`));
+      return buildDensity(this.graph, { ...use, parameters });
+    });
+    return this.graph.add(...layers);
+  }
+
+  /** rms of one component of the unresolved field, uG, or undefined where there is none. */
+  unresolvedRms(): NodeId | undefined {
+    const { unresolved } = this.scene.turbulence;
+    if (!unresolved) return undefined;
+    const rms = this.graph.parameter('turbulence/rms');
+    return unresolved.follows === undefined ? rms : this.graph.multiply(rms, this.profileOf(unresolved.follows));
+  }
+
+  /** A named component's value over its strength, or a density's over its amplitude. */
+  private profileOf(name: string): NodeId {
+    const { field, thermalElectrons, cosmicRays } = placedComponents(this.scene);
+    const fieldPart = field.find((placed) => placed.component.name === name);
+    if (fieldPart) {
+      const [x, y, z] = this.fieldsByName.get(name) ?? buildField(this.graph, this.use(fieldPart));
+      const size = this.graph.power(this.graph.add(...[x, y, z].map((part) => this.graph.power(part, 2)), this.graph.constant(smallestFieldSquared)), 0.5);
+      return this.graph.divide(size, this.graph.unary('abs', this.amplitude(fieldPart, 'strength')));
+    }
+    const density = [...thermalElectrons, ...cosmicRays].find((placed) => placed.component.name === name);
+    if (!density) throw new InputError(`turbulence.unresolved.follows: no component or density is named "${name}"`);
+    return this.graph.divide(buildDensity(this.graph, this.use(density)), this.amplitude(density, 'density'));
+  }
+
+  private amplitude(placed: PlacedComponent, name: string): NodeId {
+    if (!(name in placed.component.parameters)) {
+      throw new InputError(`turbulence.unresolved.follows: "${placed.component.name}" has no parameter ${name} to be measured by; name a component that has one`);
+    }
+    return this.graph.parameter(`${placed.path}/${name}`);
+  }
+
+  /** dΣ/ds of unresolved turbulence: K² n_e² σ_∥² d (Burn 1966; Sokoloff et al. 1998), per kpc. */
+  dispersion(electrons: NodeId, rms: NodeId): NodeId {
+    const cell = this.graph.parameter('turbulence/cell');
+    return this.graph.multiply(this.graph.constant(faradayDepthPerKpc ** 2), this.graph.power(electrons, 2), this.graph.power(rms, 2), cell);
+  }
+
+  use({ path, component }: PlacedComponent): ModelUse {
+    const parameters = new Map(Object.keys(component.parameters).map((name) => [name, this.graph.parameter(`${path}/${name}`)]));
+    return { model: component.model, parameters, choices: component.choices };
+  }
+
+  /** Edges declared by every component, as nodes of parameters alone. */
+  edges(): { readonly z: readonly NodeId[]; readonly r: readonly NodeId[] } {
+    const { field, thermalElectrons, cosmicRays } = placedComponents(this.scene);
+    const all = [...field, ...thermalElectrons, ...cosmicRays].map((placed) => buildEdges(this.graph, this.use(placed)));
+    return { z: all.flatMap((edges) => edges.z), r: all.flatMap((edges) => edges.r) };
+  }
+}
+
+/** Values of every run-time parameter by name, in the units formulas see. */
+export function parameterValues(scene: Scene, groupFrequenciesHz: readonly number[]): ReadonlyMap<string, number> {
+  const values = new Map<string, number>();
+  const { field, thermalElectrons, cosmicRays } = placedComponents(scene);
+  for (const { path, component } of [...field, ...thermalElectrons, ...cosmicRays]) {
+    for (const [name, value] of Object.entries(component.parameters)) values.set(`${path}/${name}`, value);
+  }
+  for (const { path, component } of cosmicRays) {
+    const layer = component as CosmicRayLayer;
+    if (layer.heightIndex === undefined || layer.heightAtHz === undefined) continue;
+    for (const [group, frequency] of groupFrequenciesHz.entries()) {
+      values.set(`${path}/height@${group}`, layer.parameters.height * Math.pow(frequency / layer.heightAtHz, -layer.heightIndex));
+    }
+  }
+  const [sinI, cosI] = exactSineCosine(scene.galaxy.inclination);
+  values.set('sinI', sinI).set('cosI', cosI);
+  values.set('halfPower', (scene.cosmicRays.index + 1) / 4);
+  values.set('turbulence/rms', scene.turbulence.unresolved?.rmsUG ?? 0);
+  values.set('turbulence/cell', scene.turbulence.unresolved?.cellKpc ?? 0);
+  return values;
+}
+
+/** sin and cos of an angle, exact at whole multiples of a right angle. */
+export function exactSineCosine(angle: number): readonly [number, number] {
+  const quarter = angle / (Math.PI / 2);
+  const nearest = Math.round(quarter);
+  if (Math.abs(quarter - nearest) < 1e-14) {
+    const [sine, cosine] = [[0, 1], [1, 0], [0, -1], [-1, 0]][((nearest % 4) + 4) % 4];
+    return [sine, cosine];
+  }
+  return [Math.sin(angle), Math.cos(angle)];
+}

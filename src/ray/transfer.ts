@@ -1,0 +1,268 @@
+import { findBreaks, type RayGeometry } from './path.ts';
+import { output, type Integrand, type IntegrandInputs } from './integrand.ts';
+import { panelNodes, panelRule } from './panel.ts';
+
+/** How exact a ray must be: absolute limits per frequency, in units of ∫ C ⟨B^q⟩ ds. */
+export interface Accuracy {
+  readonly tolerance: number;
+  /** Scale of I: the largest of the map, per frequency. */
+  readonly scaleI: Float64Array;
+  /** Scale of Q and U: the larger of the largest |P| and 1e-3 of the largest I, per frequency. */
+  readonly scaleP: Float64Array;
+}
+
+/** What one ray brings, per frequency, in units of C B^q kpc before the spectral factor. */
+export interface RaySums {
+  readonly total: Float64Array;
+  readonly cosine: Float64Array;
+  readonly sine: Float64Array;
+  readonly heightCosine: Float64Array;
+  readonly heightSine: Float64Array;
+  readonly emitted: Float64Array;
+  /** Estimated error over its scale, per frequency tested. */
+  readonly error: Float64Array;
+  faradayDepth: number;
+  samples: number;
+}
+
+/** A new, empty set of sums for `count` frequencies. */
+export function makeRaySums(count: number): RaySums {
+  const array = (): Float64Array => new Float64Array(count);
+  return {
+    total: array(),
+    cosine: array(),
+    sine: array(),
+    heightCosine: array(),
+    heightSine: array(),
+    emitted: array(),
+    error: array(),
+    faradayDepth: 0,
+    samples: 0,
+  };
+}
+
+const n = panelNodes;
+const deepestSplit = 48;
+const mostBreaks = 128;
+/** Part of the tolerance that one panel may use: errors of several panels add up. */
+const panelShare = 0.25;
+
+/**
+ * Follows single rays through an integrand from the observer's end: panels of Gauss–Legendre
+ * nodes, bisected where the tail of the Legendre coefficients of the rotated emission, of the
+ * Faraday depth or of the unpolarized emission says so (physics.md section 3). One instance
+ * follows one ray at a time and allocates nothing while it does.
+ */
+export class RayTracer {
+  private readonly x = new Float64Array(n);
+  private readonly y = new Float64Array(n);
+  private readonly z = new Float64Array(n);
+  private readonly lanes = [this.x, this.y, this.z];
+  private readonly out: Float64Array[];
+  private readonly phi = new Float64Array(n);
+  private readonly sigma = new Float64Array(n);
+  private readonly real = new Float64Array(n);
+  private readonly imaginary = new Float64Array(n);
+  private readonly breaks = new Float64Array(mostBreaks);
+  private readonly stack = new Float64Array(3 * (deepestSplit + 2));
+  /** Frequencies whose integrands decide on bisection: the longest and the shortest wavelength. */
+  private readonly tested: readonly number[];
+  private nearPhi = 0;
+  private nearSigma = 0;
+
+  constructor(
+    private readonly integrand: Integrand,
+    private readonly inputs: IntegrandInputs,
+    private readonly geometry: RayGeometry,
+    private readonly wavelengthM2: Float64Array,
+    private readonly accuracy: Accuracy,
+  ) {
+    this.out = integrand.program.outputs.map(() => new Float64Array(n));
+    this.tested = testedFrequencies(wavelengthM2);
+  }
+
+  /** Integrates the ray at offsets (major, minor) from the galaxy's centre, kpc. */
+  follow(majorKpc: number, minorKpc: number, sums: RaySums): void {
+    clear(sums);
+    const count = findBreaks(this.geometry, majorKpc, minorKpc, this.breaks);
+    this.nearPhi = 0;
+    this.nearSigma = 0;
+    for (let k = count - 1; k > 0; k--) this.interval(this.breaks[k - 1], this.breaks[k], majorKpc, minorKpc, sums);
+    sums.faradayDepth = this.nearPhi;
+  }
+
+  /** Integrates between two breaks, nearest panel first, bisecting where needed. */
+  private interval(from: number, to: number, major: number, minor: number, sums: RaySums): void {
+    const { stack } = this;
+    let top = 0;
+    stack[0] = from;
+    stack[1] = to;
+    stack[2] = 0;
+    while (top >= 0) {
+      const [a, b, depth] = [stack[3 * top], stack[3 * top + 1], stack[3 * top + 2]];
+      this.sample(a, b, major, minor);
+      sums.samples += n;
+      if (depth >= deepestSplit || this.isResolved(0.5 * (b - a), sums)) {
+        this.accept(0.5 * (b - a), sums);
+        top--;
+        continue;
+      }
+      const middle = 0.5 * (a + b);
+      stack[3 * top + 1] = middle;
+      stack[3 * top + 2] = depth + 1;
+      top++;
+      stack[3 * top] = middle;
+      stack[3 * top + 1] = b;
+      stack[3 * top + 2] = depth + 1;
+    }
+  }
+
+  /** Evaluates the integrand at the nodes of [a, b], and φ and Σ from the observer to each node. */
+  private sample(a: number, b: number, major: number, minor: number): void {
+    const { sinI, cosI } = this.geometry;
+    const { x, y, z, phi, sigma, out } = this;
+    const half = 0.5 * (b - a);
+    const centre = 0.5 * (a + b);
+    for (let i = 0; i < n; i++) {
+      const s = centre + half * panelRule.nodes[i];
+      x[i] = major;
+      y[i] = minor * cosI - s * sinI;
+      z[i] = minor * sinI + s * cosI;
+    }
+    this.integrand.kernel.evaluate(n, this.inputs.parameters, this.lanes, out, this.inputs.tables);
+    const faraday = out[output.faraday];
+    const dispersion = out[output.dispersion];
+    const { toNearEnd } = panelRule;
+    for (let i = 0; i < n; i++) {
+      let depth = 0;
+      let variance = 0;
+      for (let j = 0; j < n; j++) {
+        depth += toNearEnd[i * n + j] * faraday[j];
+        variance += toNearEnd[i * n + j] * dispersion[j];
+      }
+      phi[i] = this.nearPhi + half * depth;
+      sigma[i] = this.nearSigma + half * variance;
+    }
+  }
+
+  /** Whether the panel's estimated errors are within the share of the tolerance a panel may use. */
+  private isResolved(half: number, sums: RaySums): boolean {
+    const { tolerance, scaleI, scaleP } = this.accuracy;
+    const limit = tolerance * panelShare;
+    const faraday = this.out[output.faraday];
+    const tailPhi = tail(faraday);
+    const errorPhi = 2 * half * quadratureError(tailPhi, largest(faraday));
+    for (const k of this.tested) {
+      const turn = 2 * this.wavelengthM2[k];
+      const total = this.rotate(k);
+      const tailTotal = tail(total);
+      const errorI = (2 * half * quadratureError(tailTotal, largest(total))) / scaleI[k];
+      const tailP = Math.hypot(tail(this.real), tail(this.imaginary));
+      const sizeP = Math.max(largest(this.real), largest(this.imaginary));
+      // Depth errors at the nodes beat with the emission; at the far end they turn all that lies behind.
+      const coupled = tailP * turn * half * tailPhi * 0.1;
+      const behind = turn * errorPhi * scaleI[k];
+      const errorP = (2 * half * (quadratureError(tailP, sizeP) + coupled) + behind) / scaleP[k];
+      const error = Math.max(errorI, errorP);
+      if (error > limit) return false;
+      this.pending[k] = error;
+    }
+    for (const k of this.tested) sums.error[k] += this.pending[k];
+    return true;
+  }
+
+  private readonly pending = new Float64Array(1024);
+
+  /** Writes the rotated, damped polarized emission of a frequency; returns the unpolarized one. */
+  private rotate(k: number): Float64Array {
+    const { out, phi, sigma, real, imaginary, emission } = this;
+    const square = this.wavelengthM2[k];
+    const density = out[output.firstGroup + this.integrand.groupOf[k]];
+    const [total, cosine, sine] = [out[output.total], out[output.cosine], out[output.sine]];
+    const damps = this.integrand.hasDispersion;
+    for (let i = 0; i < n; i++) {
+      const angle = 2 * square * phi[i];
+      const size = damps ? density[i] * Math.exp(-2 * square * square * sigma[i]) : density[i];
+      const [c, s] = [Math.cos(angle) * size, Math.sin(angle) * size];
+      real[i] = c * cosine[i] - s * sine[i];
+      imaginary[i] = s * cosine[i] + c * sine[i];
+      emission[i] = density[i] * total[i];
+    }
+    return emission;
+  }
+
+  private readonly emission = new Float64Array(n);
+
+  /** Adds the panel's share to the sums of every frequency and moves on behind it. */
+  private accept(half: number, sums: RaySums): void {
+    const { real, imaginary, z, out } = this;
+    const { weights } = panelRule;
+    const [cosine, sine] = [out[output.cosine], out[output.sine]];
+    for (let k = 0; k < this.wavelengthM2.length; k++) {
+      const total = this.rotate(k);
+      const density = out[output.firstGroup + this.integrand.groupOf[k]];
+      let [sumI, sumQ, sumU, sumZQ, sumZU, emitted] = [0, 0, 0, 0, 0, 0];
+      for (let i = 0; i < n; i++) {
+        const w = weights[i];
+        sumI += w * total[i];
+        sumQ += w * real[i];
+        sumU += w * imaginary[i];
+        sumZQ += w * z[i] * real[i];
+        sumZU += w * z[i] * imaginary[i];
+        emitted += w * density[i] * Math.sqrt(cosine[i] * cosine[i] + sine[i] * sine[i]);
+      }
+      sums.total[k] += half * sumI;
+      sums.cosine[k] += half * sumQ;
+      sums.sine[k] += half * sumU;
+      sums.heightCosine[k] += half * sumZQ;
+      sums.heightSine[k] += half * sumZU;
+      sums.emitted[k] += half * emitted;
+    }
+    let [depth, variance] = [0, 0];
+    for (let i = 0; i < n; i++) {
+      depth += weights[i] * out[output.faraday][i];
+      variance += weights[i] * out[output.dispersion][i];
+    }
+    this.nearPhi += half * depth;
+    this.nearSigma += half * variance;
+  }
+}
+
+/** Size of the last two Legendre coefficients. */
+function tail(values: Float64Array): number {
+  let [a, b] = [0, 0];
+  for (let i = 0; i < n; i++) {
+    a += panelRule.lastButOne[i] * values[i];
+    b += panelRule.last[i] * values[i];
+  }
+  return Math.abs(a) + Math.abs(b);
+}
+
+function largest(values: Float64Array): number {
+  let size = 0;
+  for (let i = 0; i < n; i++) size = Math.max(size, Math.abs(values[i]));
+  return size;
+}
+
+/**
+ * Error of the mean over a panel from the tail of its coefficients: coefficients that fall
+ * geometrically to t·size at degree 7 leave about t²·size for a rule exact to degree 15.
+ */
+function quadratureError(tailSize: number, size: number): number {
+  return size > 0 ? (tailSize * tailSize) / size : 0;
+}
+
+function testedFrequencies(wavelengthM2: Float64Array): readonly number[] {
+  let [longest, shortest] = [0, 0];
+  for (let k = 1; k < wavelengthM2.length; k++) {
+    if (wavelengthM2[k] > wavelengthM2[longest]) longest = k;
+    if (wavelengthM2[k] < wavelengthM2[shortest]) shortest = k;
+  }
+  return longest === shortest ? [longest] : [longest, shortest];
+}
+
+function clear(sums: RaySums): void {
+  for (const array of [sums.total, sums.cosine, sums.sine, sums.heightCosine, sums.heightSine, sums.emitted, sums.error]) array.fill(0);
+  sums.faradayDepth = 0;
+  sums.samples = 0;
+}
