@@ -60,12 +60,11 @@ function stepMatrix(cards: readonly Card[], axes: readonly Axis[], place: FitsPl
   const cdelt = axes.map(({ number }) => findNumber(cards, `CDELT${number}`, place));
   const rotated = rotation(cards, axes, cdelt, place);
   if (rotated && pc.size > 0) throw fitsError(place, 'both CROTA and PCi_j are given; allowed: one of them');
-  // An axis that CD leaves out has step 0 by the letter; with one pixel its CDELT or 1 does no harm.
-  const diagonal = (i: number): number => cdelt[i - 1] ?? (cd.size > 0 ? 0 : 1);
   const step = (i: number, j: number): number => {
+    // Beside CD, CDELT means nothing, and what CD leaves out is 0 (Greisen & Calabretta 2002, section 2.1.2).
     if (cd.size > 0) return cd.get(`${i}_${j}`) ?? 0;
     const turn = pc.size > 0 ? pc.get(`${i}_${j}`) : rotated?.(i, j);
-    return diagonal(i) * (turn ?? (i === j ? 1 : 0));
+    return (cdelt[i - 1] ?? 1) * (turn ?? (i === j ? 1 : 0));
   };
 
   for (const { number: i, ctype: a } of axes) {
@@ -101,13 +100,14 @@ function rotation(
 ): ((i: number, j: number) => number | undefined) | undefined {
   const longitude = axes.find(({ ctype }) => /^RA(-|$)/.test(ctype))?.number;
   const latitude = axes.find(({ ctype }) => /^DEC(-|$)/.test(ctype))?.number;
-  let angle = 0;
-  for (const { number } of axes) {
-    const crota = findNumber(cards, `CROTA${number}`, place) ?? 0;
-    if (crota === 0) continue;
-    if (number !== latitude) throw fitsError(place, `CROTA${number} = ${crota}; a rotation is allowed on the Dec axis alone`);
-    angle = (crota * Math.PI) / 180;
-  }
+  const angles = axes.map(({ number }) => findNumber(cards, `CROTA${number}`, place) ?? 0);
+  const onLatitude = latitude === undefined ? 0 : angles[latitude - 1];
+  angles.forEach((crota, i) => {
+    // Old files repeat the same rotation on both axes of the sky.
+    if (crota === 0 || i + 1 === latitude || (i + 1 === longitude && crota === onLatitude)) return;
+    throw fitsError(place, `CROTA${i + 1} = ${crota}; a rotation is allowed on the Dec axis alone`);
+  });
+  const angle = (onLatitude * Math.PI) / 180;
   if (angle === 0 || longitude === undefined || latitude === undefined) return undefined;
   const ratio = (cdelt[latitude - 1] ?? 1) / (cdelt[longitude - 1] ?? 1);
   return (i, j) => {

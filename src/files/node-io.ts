@@ -1,0 +1,81 @@
+import { randomUUID } from 'node:crypto';
+import { closeSync, fsyncSync, mkdirSync, openSync, readdirSync, readFileSync, renameSync, rmSync, writeSync } from 'node:fs';
+import { basename, dirname, join } from 'node:path';
+import { InputError, nearestHint } from '../units/input-error.ts';
+
+/** The bytes of a file. Throws InputError where it is missing (with the nearest name beside it) or cannot be read. */
+export function readBytes(path: string): Uint8Array {
+  try {
+    const buffer = readFileSync(path);
+    return new Uint8Array(buffer.buffer, buffer.byteOffset, buffer.byteLength);
+  } catch (error) {
+    throw new InputError(readReason(error, path), { file: path });
+  }
+}
+
+/** The text of a UTF-8 file. Throws InputError where it cannot be read or is no UTF-8. */
+export function readText(path: string): string {
+  const bytes = readBytes(path);
+  try {
+    return new TextDecoder('utf-8', { fatal: true }).decode(bytes);
+  } catch {
+    throw new InputError('the file is no UTF-8 text', { file: path });
+  }
+}
+
+/**
+ * Write a file whole or not at all: beside its place, then renamed into it; folders are made.
+ * Throws InputError where the place cannot be written (missing rights, a folder of that name) and
+ * the system's own error where the disk fails.
+ */
+export function writeWhole(path: string, content: Uint8Array | string): void {
+  const bytes = typeof content === 'string' ? new TextEncoder().encode(content) : content;
+  const beside = join(dirname(path), `.${basename(path)}.${randomUUID()}.part`);
+  try {
+    mkdirSync(dirname(path), { recursive: true });
+    const file = openSync(beside, 'wx');
+    try {
+      for (let offset = 0; offset < bytes.length; ) offset += writeSync(file, bytes, offset);
+      fsyncSync(file);
+    } finally {
+      closeSync(file);
+    }
+    renameSync(beside, path);
+  } catch (error) {
+    rmSync(beside, { force: true });
+    const reason = WRITE_REASONS[codeOf(error)];
+    if (reason === undefined) throw error;
+    throw new InputError(`cannot write the file: ${reason}`, { file: path });
+  }
+}
+
+const WRITE_REASONS: Readonly<Record<string, string>> = {
+  EACCES: 'no right to write there',
+  EPERM: 'no right to write there',
+  EROFS: 'the disk is read-only',
+  EISDIR: 'a folder has that name',
+  ENOTDIR: 'a part of its path is a file, not a folder',
+  EEXIST: 'a part of its path is a file, not a folder',
+  ENAMETOOLONG: 'its name is too long',
+};
+
+function readReason(error: unknown, path: string): string {
+  const code = codeOf(error);
+  if (code === 'ENOENT') return `there is no such file${nearestHint(basename(path), neighbours(path))}`;
+  if (code === 'EISDIR') return 'this is a folder, not a file';
+  if (code === 'EACCES' || code === 'EPERM') return 'no right to read the file';
+  if (code === 'ENOTDIR') return 'a part of its path is a file, not a folder';
+  return `the file cannot be read: ${error instanceof Error ? error.message : String(error)}`;
+}
+
+function neighbours(path: string): string[] {
+  try {
+    return readdirSync(dirname(path));
+  } catch {
+    return [];
+  }
+}
+
+function codeOf(error: unknown): string {
+  return error instanceof Error && 'code' in error ? String(error.code) : '';
+}
