@@ -19,7 +19,7 @@ export function makeTable(f: (u: number) => number, pieces = 32, degree = 11, or
     });
     first.set(powersFromValues(values), piece * count);
   }
-  const coefficients = [first];
+  const coefficients: Float64Array[] = [first];
   for (let order = 1; order < orders; order++) coefficients.push(slopes(coefficients[order - 1], pieces, count));
   return { pieces, degree, coefficients };
 }

@@ -63,6 +63,8 @@ export class RayTracer {
   private readonly sigma = new Float64Array(n);
   private readonly real = new Float64Array(n);
   private readonly imaginary = new Float64Array(n);
+  private readonly emission = new Float64Array(n);
+  private readonly pending: Float64Array;
   private readonly breaks = new Float64Array(mostBreaks);
   private readonly stack = new Float64Array(3 * (deepestSplit + 2));
   /** Frequencies whose integrands decide on bisection: the longest and the shortest wavelength. */
@@ -79,6 +81,7 @@ export class RayTracer {
   ) {
     this.out = integrand.program.outputs.map(() => new Float64Array(n));
     this.tested = testedFrequencies(wavelengthM2);
+    this.pending = new Float64Array(wavelengthM2.length);
   }
 
   /** Integrates the ray at offsets (major, minor) from the galaxy's centre, kpc. */
@@ -171,8 +174,6 @@ export class RayTracer {
     return true;
   }
 
-  private readonly pending = new Float64Array(1024);
-
   /** Writes the rotated, damped polarized emission of a frequency; returns the unpolarized one. */
   private rotate(k: number): Float64Array {
     const { out, phi, sigma, real, imaginary, emission } = this;
@@ -190,8 +191,6 @@ export class RayTracer {
     }
     return emission;
   }
-
-  private readonly emission = new Float64Array(n);
 
   /** Adds the panel's share to the sums of every frequency and moves on behind it. */
   private accept(half: number, sums: RaySums): void {

@@ -1,0 +1,155 @@
+import type { Scene } from '../scene/types.ts';
+import { compileIntegrand, type Integrand, type SpectralPoint } from './integrand.ts';
+import type { RayGeometry } from './path.ts';
+import { exactSineCosine } from './scene-graph.ts';
+import { brightnessPerKpc, intrinsicPolarization, wavelengthSquared } from './synchrotron.ts';
+import { makeRaySums, RayTracer, type Accuracy, type RaySums } from './transfer.ts';
+import type { RayBundle, RayResult } from './types.ts';
+
+/**
+ * A scene ready to be looked at in a list of frequencies. `structure` may be reused for scenes
+ * that differ in numbers only.
+ */
+export interface RayEngine {
+  readonly integrand: Integrand;
+  readonly spectrum: readonly SpectralPoint[];
+}
+
+/** Compiles a scene for a spectrum. */
+export function makeRayEngine(scene: Scene, spectrum: readonly SpectralPoint[]): RayEngine {
+  return { integrand: compileIntegrand(scene, spectrum), spectrum };
+}
+
+/** Rays followed to set the scale that `tolerance` is relative to. */
+const scaleRays = 192;
+
+/** Largest I and the scale of Q and U per frequency over a few of a bundle's rays, raw units. */
+export type MapScale = Pick<Accuracy, 'scaleI' | 'scaleP'>;
+
+/**
+ * Finds the scale of `tolerance` (physics.md section 3) from evenly picked rays of a bundle: the
+ * same for any split of the bundle, and never larger than the scale of the whole map.
+ */
+export function findMapScale(engine: RayEngine, scene: Scene, bundle: RayBundle): MapScale {
+  const picked = pickRays(bundle.northKpc.length);
+  const count = engine.spectrum.length;
+  const coarse = { tolerance: Infinity, scaleI: new Float64Array(count).fill(1), scaleP: new Float64Array(count).fill(1) };
+  const guess = new Float64Array(count);
+  followAll(engine, scene, bundle, picked, coarse, (_, sums) => keepLargest(guess, sums.total));
+  const dark = guess.every((value) => value === 0);
+  if (dark) return coarse;
+  const intrinsic = intrinsicPolarization(scene.cosmicRays.index);
+  const loose = { tolerance: 1e-2, scaleI: guess, scaleP: guess.map((value) => (1e-3 * value) / intrinsic) };
+  const scaleI = new Float64Array(count);
+  const largestP = new Float64Array(count);
+  followAll(engine, scene, bundle, picked, loose, (_, sums) => {
+    keepLargest(scaleI, sums.total);
+    for (let k = 0; k < count; k++) largestP[k] = Math.max(largestP[k], Math.hypot(sums.cosine[k], sums.sine[k]));
+  });
+  const scaleP = largestP.map((value, k) => Math.max(value, (1e-3 * scaleI[k]) / intrinsic));
+  return { scaleI, scaleP };
+}
+
+/** Follows the rays `from` ≤ index < `to` of a bundle to the scene's tolerance. */
+export function traceRays(engine: RayEngine, scene: Scene, bundle: RayBundle, scale: MapScale, from = 0, to = bundle.northKpc.length): RayResult {
+  const rays = to - from;
+  const result = makeResult(engine.spectrum.length, rays);
+  const toJansky = spectralFactors(engine, scene);
+  const intrinsic = intrinsicPolarization(scene.cosmicRays.index);
+  const turn = 2 * scene.galaxy.positionAngle;
+  const [sine, cosine] = [Math.sin(turn), Math.cos(turn)];
+  const accuracy = { tolerance: scene.numerics.tolerance, ...scale };
+  const indices = Array.from({ length: rays }, (_, k) => from + k);
+  let samples = 0;
+  followAll(engine, scene, bundle, indices, accuracy, (index, sums) => {
+    const ray = index - from;
+    for (let k = 0; k < engine.spectrum.length; k++) {
+      const at = k * rays + ray;
+      const polarized = toJansky[k] * intrinsic;
+      result.I[at] = toJansky[k] * sums.total[k];
+      // From the frame of the major axis to that of north.
+      result.Q[at] = polarized * (cosine * sums.cosine[k] - sine * sums.sine[k]);
+      result.U[at] = polarized * (sine * sums.cosine[k] + cosine * sums.sine[k]);
+      result.heightQ[at] = polarized * (cosine * sums.heightCosine[k] - sine * sums.heightSine[k]);
+      result.heightU[at] = polarized * (sine * sums.heightCosine[k] + cosine * sums.heightSine[k]);
+      result.emittedP[at] = polarized * sums.emitted[k];
+      result.error[k] = Math.max(result.error[k], sums.error[k]);
+    }
+    result.faradayDepth[ray] = sums.faradayDepth;
+    samples += sums.samples;
+    refuseNaN(sums, bundle, index);
+  });
+  return { ...result, samples };
+}
+
+/** How a scene's galaxy is turned and bounded, with the edges its components declare. */
+export function rayGeometry(scene: Scene, edges: RayGeometry['edges']): RayGeometry {
+  const [sinI, cosI] = exactSineCosine(scene.galaxy.inclination);
+  const { radiusKpc, heightKpc } = scene.galaxy.volume;
+  return { sinI, cosI, radiusKpc, heightKpc, edges };
+}
+
+function followAll(
+  engine: RayEngine,
+  scene: Scene,
+  bundle: RayBundle,
+  indices: readonly number[],
+  accuracy: Accuracy,
+  take: (index: number, sums: RaySums) => void,
+): void {
+  const inputs = engine.integrand.inputs(scene);
+  const wavelengthM2 = Float64Array.from(engine.spectrum, (point) => wavelengthSquared(point.frequencyHz));
+  const tracer = new RayTracer(engine.integrand, inputs, rayGeometry(scene, inputs.edges), wavelengthM2, accuracy);
+  const [sinPA, cosPA] = exactSineCosine(scene.galaxy.positionAngle);
+  const sums = makeRaySums(wavelengthM2.length);
+  for (const index of indices) {
+    const [north, east] = [bundle.northKpc[index], bundle.eastKpc[index]];
+    tracer.follow(north * cosPA + east * sinPA, east * cosPA - north * sinPA, sums);
+    take(index, sums);
+  }
+}
+
+/** Indices spread evenly over a bundle by the golden ratio, each once. */
+function pickRays(count: number): readonly number[] {
+  if (count <= scaleRays) return Array.from({ length: count }, (_, k) => k);
+  const golden = (Math.sqrt(5) - 1) / 2;
+  const picked = new Set<number>([Math.floor(count / 2)]);
+  for (let k = 0; picked.size < scaleRays; k++) picked.add(Math.floor(((k * golden) % 1) * count));
+  return [...picked].sort((a, b) => a - b);
+}
+
+function spectralFactors(engine: RayEngine, scene: Scene): Float64Array {
+  return Float64Array.from(engine.spectrum, (point) => brightnessPerKpc(scene.cosmicRays.index, point.frequencyHz));
+}
+
+function makeResult(frequencies: number, rays: number): Omit<RayResult, 'samples'> {
+  const cube = (): Float64Array => new Float64Array(frequencies * rays);
+  return {
+    I: cube(),
+    Q: cube(),
+    U: cube(),
+    heightQ: cube(),
+    heightU: cube(),
+    emittedP: cube(),
+    faradayDepth: new Float64Array(rays),
+    error: new Float64Array(frequencies),
+  };
+}
+
+function keepLargest(largest: Float64Array, values: Float64Array): void {
+  for (let k = 0; k < largest.length; k++) largest[k] = Math.max(largest[k], values[k]);
+}
+
+/** Stops the run where a ray has come back as no number, naming the ray. */
+function refuseNaN(sums: RaySums, bundle: RayBundle, index: number): void {
+  const sum = sums.total[0] + sums.cosine[0] + sums.sine[0] + sums.faradayDepth;
+  if (Number.isFinite(sum)) return;
+  const [north, east] = [bundle.northKpc[index], bundle.eastKpc[index]];
+  const part = Number.isFinite(sums.faradayDepth) ? 'the emission' : 'the Faraday depth';
+  throw new NotANumberError(`${part} of the ray at north ${north.toPrecision(6)} kpc, east ${east.toPrecision(6)} kpc is not a number`);
+}
+
+/** A formula of the scene gave something that is no finite number along a ray. */
+export class NotANumberError extends Error {
+  override name = 'NotANumberError';
+}
