@@ -78,7 +78,7 @@ export function fitRotationMeasure(
   return {
     rm: best.slope,
     rmError: spectrum.noisy ? best.slopeError : 0,
-    chi0: best.intercept - Math.PI * Math.floor(best.intercept / Math.PI),
+    chi0: ((best.intercept % Math.PI) + Math.PI) % Math.PI,
     chi0Error: spectrum.noisy ? best.interceptError : 0,
     chi2: spectrum.noisy ? best.chi2 : NaN,
     degreesOfFreedom: spectrum.chi.length - 2,

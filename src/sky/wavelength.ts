@@ -1,13 +1,12 @@
+import { speedOfLight } from '../units/constants.ts';
 import type { Channel } from './types.ts';
-
-const speedOfLight = 299_792_458;
 
 /** Wavelength squared at a frequency, m^2. */
 export function lambda2M2(frequencyHz: number): number {
-  return (speedOfLight / frequencyHz) ** 2;
+  return (speedOfLight.value / frequencyHz) ** 2;
 }
 
 /** Mean wavelength squared over a channel, m^2: that of c^2/nu^2 over its band of frequencies. */
 export function channelLambda2M2({ frequencyHz, widthHz }: Channel): number {
-  return speedOfLight ** 2 / (frequencyHz ** 2 - widthHz ** 2 / 4);
+  return speedOfLight.value ** 2 / (frequencyHz ** 2 - widthHz ** 2 / 4);
 }
