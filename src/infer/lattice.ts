@@ -1,5 +1,5 @@
 import type { Beam } from '../scene/types.ts';
-import { beamAreaArcsec2, beamAxes, pixelAreaArcsec2 } from './pixel-axes.ts';
+import { beamAxes, beamPixels } from './pixel-axes.ts';
 import type { BeamAxes, PixelAxes } from './pixel-axes.ts';
 
 /** Radius of a window, in FWHM: it is cut where it has fallen to 0.0008. */
@@ -21,9 +21,9 @@ export interface Lattice {
   /** Position in the beam's principal axes, FWHM. */
   readonly xi: Float64Array;
   readonly eta: Float64Array;
-  /** Offsets on the sky. */
-  readonly northArcsec: Float64Array;
-  readonly eastArcsec: Float64Array;
+  /** Its place in the map, from 0, not whole. */
+  readonly column: Float64Array;
+  readonly row: Float64Array;
   /** Window of point a: entries start[a] to start[a + 1] of `pixel` and `weight`, which sum to 1. */
   readonly start: Int32Array;
   readonly pixel: Int32Array;
@@ -39,24 +39,24 @@ export interface Lattice {
  */
 export function makeLattice(axes: PixelAxes, beam: Beam, unmasked: Uint8Array): Lattice {
   const toBeam = beamAxes(axes, beam);
-  const pixelsPerBeam = beamAreaArcsec2(beam) / pixelAreaArcsec2(axes);
+  const pixelsPerBeam = beamPixels(axes, beam);
   const beams = unmasked.reduce((sum, value) => sum + value, 0) / pixelsPerBeam;
   let best: Lattice | undefined;
   for (const phase of [[0, 0], [0.5, 0], [0, 0.5], [0.5, 0.5]]) {
-    const lattice = latticeAt(axes, beam, toBeam, unmasked, phase[0], phase[1], pixelsPerBeam, beams);
+    const lattice = latticeAt(axes, toBeam, unmasked, phase[0], phase[1], pixelsPerBeam, beams);
     if (!best || Math.abs(lattice.count - beams) < Math.abs(best.count - beams)) best = lattice;
   }
   return best!;
 }
 
 function latticeAt(
-  axes: PixelAxes, beam: Beam, toBeam: BeamAxes, unmasked: Uint8Array,
+  axes: PixelAxes, toBeam: BeamAxes, unmasked: Uint8Array,
   phaseXi: number, phaseEta: number, pixelsPerBeam: number, beams: number,
 ): Lattice {
   const { nx, ny } = axes;
   const { xi: x, eta: e } = toBeam;
-  const centre = (c: readonly [number, number, number]): number => c[0] + (c[1] * (nx - 1) + c[2] * (ny - 1)) / 2;
-  const half = (c: readonly [number, number, number]): number => (Math.abs(c[1]) * nx + Math.abs(c[2]) * ny) / 2;
+  const centre = (c: readonly [number, number]): number => (c[0] * (nx - 1) + c[1] * (ny - 1)) / 2;
+  const half = (c: readonly [number, number]): number => (Math.abs(c[0]) * nx + Math.abs(c[1]) * ny) / 2;
   const reachXi = Math.ceil(half(x) / latticeSpacing) + 1;
   const reachEta = Math.ceil(half(e) / latticeSpacing) + 1;
   // The slow index runs over the longer side, which keeps the band of the covariance narrow.
@@ -93,18 +93,15 @@ function latticeAt(
       start.push(pixel.length);
     }
   }
-  const cos = Math.cos(beam.angle);
-  const sin = Math.sin(beam.angle);
-  const along = points.xi.map((xi) => xi * beam.majorArcsec);
-  const across = points.eta.map((eta) => eta * beam.minorArcsec);
+  const determinant = x[0] * e[1] - x[1] * e[0];
   return {
     count: points.slow.length,
     slow: Int32Array.from(points.slow),
     fast: Int32Array.from(points.fast),
     xi: Float64Array.from(points.xi),
     eta: Float64Array.from(points.eta),
-    northArcsec: Float64Array.from(along, (value, k) => value * cos - across[k] * sin),
-    eastArcsec: Float64Array.from(along, (value, k) => value * sin + across[k] * cos),
+    column: Float64Array.from(points.xi, (xi, k) => (xi * e[1] - points.eta[k] * x[1]) / determinant),
+    row: Float64Array.from(points.xi, (xi, k) => (points.eta[k] * x[0] - xi * e[0]) / determinant),
     start: Int32Array.from(start),
     pixel: Int32Array.from(pixel),
     weight: Float64Array.from(weight),
@@ -116,19 +113,19 @@ function latticeAt(
 function windowVisitor(axes: PixelAxes, toBeam: BeamAxes) {
   const { nx, ny } = axes;
   const { xi: x, eta: e } = toBeam;
-  const determinant = x[1] * e[2] - x[2] * e[1];
+  const determinant = x[0] * e[1] - x[1] * e[0];
   // Half sides, in pixels, of the box around the window's ellipse.
-  const reachColumn = (windowRadius * Math.hypot(x[2], e[2])) / Math.abs(determinant);
-  const reachRow = (windowRadius * Math.hypot(x[1], e[1])) / Math.abs(determinant);
+  const reachColumn = (windowRadius * Math.hypot(x[1], e[1])) / Math.abs(determinant);
+  const reachRow = (windowRadius * Math.hypot(x[0], e[0])) / Math.abs(determinant);
   return (xi: number, eta: number, each: (index: number, value: number) => void): void => {
-    const column = ((xi - x[0]) * e[2] - (eta - e[0]) * x[2]) / determinant;
-    const row = ((eta - e[0]) * x[1] - (xi - x[0]) * e[1]) / determinant;
+    const column = (xi * e[1] - eta * x[1]) / determinant;
+    const row = (eta * x[0] - xi * e[0]) / determinant;
     const lastRow = Math.min(ny - 1, Math.floor(row + reachRow));
     const lastColumn = Math.min(nx - 1, Math.floor(column + reachColumn));
     for (let j = Math.max(0, Math.ceil(row - reachRow)); j <= lastRow; j++) {
       for (let i = Math.max(0, Math.ceil(column - reachColumn)); i <= lastColumn; i++) {
-        const dXi = x[0] + x[1] * i + x[2] * j - xi;
-        const dEta = e[0] + e[1] * i + e[2] * j - eta;
+        const dXi = x[0] * i + x[1] * j - xi;
+        const dEta = e[0] * i + e[1] * j - eta;
         const square = dXi * dXi + dEta * dEta;
         if (square <= windowRadius ** 2) each(j * nx + i, Math.exp(-4 * Math.LN2 * square));
       }

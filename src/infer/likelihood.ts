@@ -4,7 +4,7 @@ import type { BandedMatrix } from './banded-cholesky.ts';
 import { makeLattice, windowMeans } from './lattice.ts';
 import type { Lattice } from './lattice.ts';
 import { windowCovariance } from './noise-covariance.ts';
-import { beamAreaArcsec2, beamAxes, pixelAreaArcsec2 } from './pixel-axes.ts';
+import { beamAxes, beamPixels, sameBeam } from './pixel-axes.ts';
 import type { PixelAxes } from './pixel-axes.ts';
 import type { DataPlane, DataSet } from './types.ts';
 import { InputError } from '../units/input-error.ts';
@@ -13,9 +13,9 @@ import { InputError } from '../units/input-error.ts';
 export interface ResidualPlace {
   /** Index into the data set's planes. */
   readonly plane: number;
-  /** Offsets on the sky from the grid's reference pixel. */
-  readonly northArcsec: number;
-  readonly eastArcsec: number;
+  /** Where in the map, from 1 as in FITS, not whole. */
+  readonly pixelX: number;
+  readonly pixelY: number;
 }
 
 /** A Gaussian likelihood of a data set: ln L = logNormalisation - chi2/2, chi2 = |residuals|^2. */
@@ -46,7 +46,7 @@ export function makeLikelihood(data: DataSet): Likelihood {
     return preparePlane(whitener, plane);
   });
   const places = planes.flatMap(({ whitener }, plane) =>
-    Array.from(whitener.northArcsec, (northArcsec, k) => ({ plane, northArcsec, eastArcsec: whitener.eastArcsec[k] })),
+    Array.from(whitener.column, (column, k) => ({ plane, pixelX: column + 1, pixelY: whitener.row[k] + 1 })),
   );
   const residuals = (model: readonly Float64Array[]): Float64Array => {
     if (model.length !== planes.length) {
@@ -87,8 +87,8 @@ interface Whitener {
   readonly correlation: Beam | undefined;
   readonly unmasked: Uint8Array;
   readonly beams: number;
-  readonly northArcsec: Float64Array;
-  readonly eastArcsec: Float64Array;
+  readonly column: Float64Array;
+  readonly row: Float64Array;
   /** Without them every unmasked pixel counts by itself. */
   readonly lattice?: Lattice;
   readonly factor?: BandedMatrix;
@@ -112,35 +112,29 @@ function unmaskedPixels(plane: DataPlane): Uint8Array {
 }
 
 function findWhitener(known: readonly Whitener[], plane: DataPlane, unmasked: Uint8Array): Whitener | undefined {
-  const a = plane.correlation;
-  return known.find(({ correlation: b, unmasked: other }) => {
-    const sameBeam =
-      a === b ||
-      (a && b && a.majorArcsec === b.majorArcsec && a.minorArcsec === b.minorArcsec && a.angle === b.angle);
-    return sameBeam && other.every((value, p) => value === unmasked[p]);
-  });
+  return known.find(
+    (other) => sameBeam(other.correlation, plane.correlation) && other.unmasked.every((value, p) => value === unmasked[p]),
+  );
 }
 
 function makeWhitener(axes: PixelAxes, plane: DataPlane, unmasked: Uint8Array): Whitener {
   const { correlation } = plane;
-  if (correlation && beamAreaArcsec2(correlation) > pixelAreaArcsec2(axes)) {
+  if (correlation && beamPixels(axes, correlation) > 1) {
     const lattice = makeLattice(axes, correlation, unmasked);
     if (lattice.count === 0) throw new InputError('the unmasked part of a map is smaller than one beam');
     const factor = windowCovariance(lattice, beamAxes(axes, correlation), axes.nx);
     factorBanded(factor);
-    const { beams, northArcsec, eastArcsec } = lattice;
-    return { correlation, unmasked, beams, northArcsec, eastArcsec, lattice, factor };
+    const { beams, column, row } = lattice;
+    return { correlation, unmasked, beams, column, row, lattice, factor };
   }
   const pixels = Array.from(unmasked.keys()).filter((p) => unmasked[p] === 1);
   if (pixels.length === 0) throw new InputError('every pixel of a map is blank or masked');
-  const offset = (c: readonly [number, number, number]): Float64Array =>
-    Float64Array.from(pixels, (p) => c[0] + c[1] * (p % axes.nx) + c[2] * Math.floor(p / axes.nx));
   return {
     correlation,
     unmasked,
     beams: pixels.length,
-    northArcsec: offset(axes.northArcsec),
-    eastArcsec: offset(axes.eastArcsec),
+    column: Float64Array.from(pixels, (p) => p % axes.nx),
+    row: Float64Array.from(pixels, (p) => Math.floor(p / axes.nx)),
   };
 }
 

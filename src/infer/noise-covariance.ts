@@ -87,8 +87,8 @@ function sourceShares(lattice: Lattice, axes: BeamAxes, nx: number): SourceShare
     for (let k = start[a]; k < start[a + 1]; k++) {
       const column = pixel[k] % nx;
       const row = (pixel[k] - column) / nx;
-      const nearI = fillTaps(alongXi, (x[0] + x[1] * column + x[2] * row) / sourceSpacing, reach);
-      const nearJ = fillTaps(alongEta, (e[0] + e[1] * column + e[2] * row) / sourceSpacing, reach);
+      const nearI = fillTaps(alongXi, (x[0] * column + x[1] * row) / sourceSpacing, reach);
+      const nearJ = fillTaps(alongEta, (e[0] * column + e[1] * row) / sourceSpacing, reach);
       const share = weight[k] * amplitude;
       for (let i = 0; i < taps; i++) {
         const factor = share * alongXi[i];

@@ -1,56 +1,46 @@
 import type { Beam } from '../scene/types.ts';
-import type { SkyGrid } from '../sky/types.ts';
+import { pixelAreaSr } from '../sky/wcs.ts';
+import type { CelestialWcs } from '../sky/wcs-types.ts';
 
-/** Where the pixels of a map lie: offsets on the sky, arcsec, linear in column and row (both from 0). */
+const arcsecPerDegree = 3600;
+const arcsecPerRadian = 648_000 / Math.PI;
+
+/** Which sky each pixel of a map shows, and how many there are. */
 export interface PixelAxes {
+  readonly wcs: CelestialWcs;
   readonly nx: number;
   readonly ny: number;
-  /** [of column 0 and row 0, per column, per row] */
-  readonly northArcsec: readonly [number, number, number];
-  readonly eastArcsec: readonly [number, number, number];
 }
 
-/** The axes of a sky grid: offsets from its reference pixel, row 0 south, column 0 east. */
-export function pixelAxes(grid: SkyGrid): PixelAxes {
-  const { nx, ny, pixelArcsec, crpixX, crpixY } = grid;
-  return {
-    nx,
-    ny,
-    northArcsec: [(1 - crpixY) * pixelArcsec, 0, pixelArcsec],
-    eastArcsec: [(crpixX - 1) * pixelArcsec, -pixelArcsec, 0],
-  };
-}
-
-/** Area of a pixel, arcsec^2. */
-export function pixelAreaArcsec2(axes: PixelAxes): number {
-  const [, northColumn, northRow] = axes.northArcsec;
-  const [, eastColumn, eastRow] = axes.eastArcsec;
-  return Math.abs(northColumn * eastRow - northRow * eastColumn);
-}
-
-/** Solid angle of a Gaussian beam, arcsec^2: pi/(4 ln 2) major minor. */
-export function beamAreaArcsec2(beam: Beam): number {
-  return (Math.PI / (4 * Math.LN2)) * beam.majorArcsec * beam.minorArcsec;
+/** Solid angle of a Gaussian beam in pixels: pi/(4 ln 2) major minor / pixel area. */
+export function beamPixels({ wcs }: PixelAxes, { majorArcsec, minorArcsec }: Beam): number {
+  return ((Math.PI / (4 * Math.LN2)) * majorArcsec * minorArcsec) / (pixelAreaSr(wcs) * arcsecPerRadian ** 2);
 }
 
 /**
- * Linear map from (column, row) to the principal axes of a beam, each in units of its FWHM, so that
- * the beam is exp(-4 ln 2 (xi^2 + eta^2)): xi = xi[0] + xi[1] column + xi[2] row, eta likewise.
+ * Linear map from (column, row), both from 0, to the principal axes of a beam, each in units of its
+ * FWHM, so that the beam is exp(-4 ln 2 (xi^2 + eta^2)): xi = xi[0] column + xi[1] row, eta likewise.
  */
 export interface BeamAxes {
-  readonly xi: readonly [number, number, number];
-  readonly eta: readonly [number, number, number];
+  readonly xi: readonly [number, number];
+  readonly eta: readonly [number, number];
 }
 
 /** The beam's principal axes on a grid; the major axis at `angle` from north through east. */
-export function beamAxes(axes: PixelAxes, beam: Beam): BeamAxes {
+export function beamAxes({ wcs }: PixelAxes, beam: Beam): BeamAxes {
   const cos = Math.cos(beam.angle);
   const sin = Math.sin(beam.angle);
+  const [eastColumn, eastRow, northColumn, northRow] = wcs.cd.map((degrees) => degrees * arcsecPerDegree);
   const along = (north: number, east: number): number => (north * cos + east * sin) / beam.majorArcsec;
   const across = (north: number, east: number): number => (east * cos - north * sin) / beam.minorArcsec;
-  const { northArcsec: n, eastArcsec: e } = axes;
   return {
-    xi: [along(n[0], e[0]), along(n[1], e[1]), along(n[2], e[2])],
-    eta: [across(n[0], e[0]), across(n[1], e[1]), across(n[2], e[2])],
+    xi: [along(northColumn, eastColumn), along(northRow, eastRow)],
+    eta: [across(northColumn, eastColumn), across(northRow, eastRow)],
   };
+}
+
+/** True where two beams, or their absence, are the same. */
+export function sameBeam(a: Beam | undefined, b: Beam | undefined): boolean {
+  if (!a || !b) return a === b;
+  return a.majorArcsec === b.majorArcsec && a.minorArcsec === b.minorArcsec && a.angle === b.angle;
 }

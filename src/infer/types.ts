@@ -26,9 +26,8 @@ export interface DataBand {
 }
 
 /** All maps that hypotheses are compared with, on one grid. */
-export interface DataSet<Grid = unknown> {
-  /** The grid the model is to be computed on: whatever record the reader of the maps made. */
-  readonly grid: Grid;
+export interface DataSet {
+  /** The grid that the model is brought to. */
   readonly axes: PixelAxes;
   readonly unit: BrightnessUnit;
   readonly bands: readonly DataBand[];
