@@ -55,7 +55,7 @@ export function findBreaks(geometry: RayGeometry, majorKpc: number, minorKpc: nu
 }
 
 /** Heights, as shares of the volume's, at which first panels end. */
-const gradedShares = [0.06, 0.2, 0.5];
+const gradedShares = [0.1, 0.4];
 
 /** Where a ray enters and leaves the volume, far end first; undefined where it misses. */
 function volumeSpan({ sinI, cosI, radiusKpc, heightKpc }: RayGeometry, majorKpc: number, minorKpc: number): [number, number] | undefined {

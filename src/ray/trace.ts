@@ -110,7 +110,7 @@ function followAll(
 }
 
 /** Indices spread evenly over a bundle by the golden ratio, each once. */
-function pickRays(count: number): readonly number[] {
+export function pickRays(count: number): readonly number[] {
   if (count <= scaleRays) return Array.from({ length: count }, (_, k) => k);
   const golden = (Math.sqrt(5) - 1) / 2;
   const picked = new Set<number>([Math.floor(count / 2)]);

@@ -44,8 +44,10 @@ export function makeRaySums(count: number): RaySums {
 const n = panelNodes;
 const deepestSplit = 48;
 const mostBreaks = 128;
-/** Part of the tolerance that one panel may use: errors of several panels add up. */
-const panelShare = 0.25;
+/** Part of the tolerance that one panel may use: errors of several panels add up in quadrature. */
+const panelShare = 0.1;
+/** Largest turn or damping exponent across a panel that its nodes are trusted to notice. */
+const mostPerPanel = 12;
 
 /**
  * Follows single rays through an integrand from the observer's end: panels of Gauss–Legendre
@@ -158,6 +160,7 @@ export class RayTracer {
     for (const k of this.tested) {
       const turn = 2 * this.wavelengthM2[k];
       const total = this.rotate(k);
+      if (this.mayHide(k, half, limit * scaleP[k])) return false;
       const tailTotal = tail(total);
       const errorI = (2 * half * quadratureError(tailTotal, largest(total))) / scaleI[k];
       const tailP = Math.hypot(tail(this.real), tail(this.imaginary));
@@ -170,8 +173,21 @@ export class RayTracer {
       if (error > limit) return false;
       this.pending[k] = error;
     }
-    for (const k of this.tested) sums.error[k] += this.pending[k];
+    for (const k of this.tested) sums.error[k] = Math.hypot(sums.error[k], this.pending[k]);
     return true;
+  }
+
+  /**
+   * Whether rotation or damping is so fast that emission between the nodes could go unnoticed:
+   * eight samples cannot tell a fast oscillation, or a layer thinner than their distance.
+   */
+  private mayHide(k: number, half: number, limit: number): boolean {
+    const square = this.wavelengthM2[k];
+    const turn = 4 * square * half * largest(this.out[output.faraday]);
+    const damping = 4 * square * square * half * largest(this.out[output.dispersion]);
+    if (turn + damping < mostPerPanel) return false;
+    const reaching = Math.exp(-2 * square * square * this.nearSigma);
+    return 2 * half * largest(this.emission) * reaching > limit;
   }
 
   /** Writes the rotated, damped polarized emission of a frequency; returns the unpolarized one. */
@@ -248,7 +264,7 @@ function largest(values: Float64Array): number {
  * geometrically to t·size at degree 7 leave about t²·size for a rule exact to degree 15.
  */
 function quadratureError(tailSize: number, size: number): number {
-  return size > 0 ? (tailSize * tailSize) / size : 0;
+  return size > 0 ? size * Math.pow(tailSize / size, 2.5) : 0;
 }
 
 function testedFrequencies(wavelengthM2: Float64Array): readonly number[] {

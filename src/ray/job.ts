@@ -1,0 +1,110 @@
+import type { Scene } from '../scene/types.ts';
+import type { SpectralPoint } from './integrand.ts';
+import { findMapScale, makeRayEngine, traceRays, type RayEngine } from './trace.ts';
+import type { RayBundle, RayResult } from './types.ts';
+
+/** A scene to be followed along a bundle of rays at a list of frequencies. */
+export interface RayJob {
+  readonly scene: Scene;
+  readonly spectrum: readonly SpectralPoint[];
+  readonly bundle: RayBundle;
+}
+
+/** How a long job is watched and stopped. */
+export interface Watch {
+  /** Rays done and rays in all. */
+  readonly onProgress?: (done: number, total: number) => void;
+  readonly signal?: AbortSignal;
+}
+
+/** Whoever follows rays: this thread, or a pool of workers. The result does not depend on which. */
+export type RayBackend = (job: RayJob, watch?: Watch) => Promise<RayResult>;
+
+/** Rays followed in one call: the unit of work, the same wherever it runs. */
+export const tileRays = 256;
+
+/** [from, to) of every tile of a bundle, in order. */
+export function tilesOf(rays: number): readonly (readonly [number, number])[] {
+  return Array.from({ length: Math.ceil(rays / tileRays) }, (_, k) => [k * tileRays, Math.min((k + 1) * tileRays, rays)] as const);
+}
+
+/** Keeps the engine of the last few structures of scenes, so that new numbers need no compilation. */
+export class EngineCache {
+  private readonly engines = new Map<string, RayEngine>();
+
+  /** The engine of a scene, compiled where none of the same structure is kept. */
+  get(scene: Scene, spectrum: readonly SpectralPoint[]): RayEngine {
+    const key = structureKey(scene, spectrum);
+    let engine = this.engines.get(key);
+    if (!engine) {
+      engine = makeRayEngine(scene, spectrum);
+      if (this.engines.size >= 16) this.engines.delete([...this.engines.keys()][0]);
+      this.engines.set(key, engine);
+    }
+    return engine;
+  }
+}
+
+/** Two scenes of equal key differ in numbers only. */
+function structureKey(scene: Scene, spectrum: readonly SpectralPoint[]): string {
+  const components = [...scene.field, ...scene.thermalElectrons, ...scene.cosmicRays.layers];
+  return JSON.stringify([
+    components.map((component) => [
+      component.name,
+      component.model,
+      component.choices,
+      Object.keys(component.parameters),
+      'heightIndex' in component && component.heightIndex !== undefined,
+    ]),
+    scene.field.length,
+    scene.thermalElectrons.length,
+    scene.turbulence.unresolved ? (scene.turbulence.unresolved.follows ?? true) : false,
+    spectrum,
+  ]);
+}
+
+/** Joins the results of tiles, given in order, to that of the whole bundle. */
+export function joinTiles(tiles: readonly RayResult[], frequencies: number): RayResult {
+  const rays = tiles.reduce((sum, tile) => sum + tile.faradayDepth.length, 0);
+  const join = (pick: (tile: RayResult) => Float64Array, planes: number): Float64Array => {
+    const whole = new Float64Array(planes * rays);
+    let start = 0;
+    for (const tile of tiles) {
+      const part = pick(tile);
+      const length = part.length / planes;
+      for (let plane = 0; plane < planes; plane++) whole.set(part.subarray(plane * length, (plane + 1) * length), plane * rays + start);
+      start += length;
+    }
+    return whole;
+  };
+  const error = new Float64Array(frequencies);
+  for (const tile of tiles) for (let k = 0; k < frequencies; k++) error[k] = Math.max(error[k], tile.error[k]);
+  return {
+    I: join((tile) => tile.I, frequencies),
+    Q: join((tile) => tile.Q, frequencies),
+    U: join((tile) => tile.U, frequencies),
+    heightQ: join((tile) => tile.heightQ, frequencies),
+    heightU: join((tile) => tile.heightU, frequencies),
+    emittedP: join((tile) => tile.emittedP, frequencies),
+    faradayDepth: join((tile) => tile.faradayDepth, 1),
+    error,
+    samples: tiles.reduce((sum, tile) => sum + tile.samples, 0),
+  };
+}
+
+/** A backend that follows all rays in this thread. */
+export function localBackend(cache = new EngineCache()): RayBackend {
+  return async ({ scene, spectrum, bundle }, watch = {}) => {
+    const engine = cache.get(scene, spectrum);
+    const scale = findMapScale(engine, scene, bundle);
+    const rays = bundle.northKpc.length;
+    const tiles: RayResult[] = [];
+    for (const [from, to] of tilesOf(rays)) {
+      watch.signal?.throwIfAborted();
+      tiles.push(traceRays(engine, scene, bundle, scale, from, to));
+      watch.onProgress?.(to, rays);
+    }
+    return joinTiles(tiles, spectrum.length);
+  };
+}
+

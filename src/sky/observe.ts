@@ -1,0 +1,117 @@
+import type { RayBackend, Watch } from '../ray/job.ts';
+import type { RayResult } from '../ray/types.ts';
+import type { Scene } from '../scene/types.ts';
+import { applyBeam, beamMargin } from './beam.ts';
+import { turnByForeground } from './foreground.ts';
+import { cropCube, cropPlanes, gridFromScene, gridOffsetsKpc, growGrid } from './grid.ts';
+import { refuseTooLarge } from './memory.ts';
+import { addNoise } from './noise.ts';
+import { planSpectrum, type BandPlan, type SpectralPlan } from './spectral-plan.ts';
+import type { SkyGrid, StokesCube } from './types.ts';
+
+/** Heights of origin (kpc) of one band: [frequency][row * nx + column], NaN where there is no origin. */
+export interface OriginHeights {
+  readonly band: string;
+  readonly frequenciesHz: readonly number[];
+  readonly heightKpc: Float64Array;
+}
+
+/** A scene as a telescope sees it, with how exact the rays were. */
+export interface ObservedSky {
+  readonly grid: SkyGrid;
+  readonly cubes: readonly StokesCube[];
+  /** Total Faraday depth of each pixel's ray, foreground included, rad m^-2. */
+  readonly faradayDepth: Float64Array;
+  readonly origins: readonly OriginHeights[];
+  /** Largest estimated error on the scale that `tolerance` bounds. */
+  readonly errorReached: number;
+  readonly rays: number;
+  readonly samplesPerRay: number;
+}
+
+/** |P| below this part of what was emitted has no height of origin (physics.md section 5). */
+const smallestShare = 1e-2;
+
+/**
+ * Rays → foreground screen → channel averages → beam → noise, in that order (physics.md section
+ * 5), for every band of a scene. Throws InputError where the image would not fit into memory.
+ */
+export async function observe(scene: Scene, backend: RayBackend, watch: Watch = {}): Promise<ObservedSky> {
+  const grid = gridFromScene(scene);
+  const { beam, bands } = scene.observation;
+  const margin = beamMargin(beam, grid);
+  const wide = growGrid(grid, margin);
+  const channels = bands.reduce((sum, band) => sum + band.channels.length, 0);
+  const size = { nx: grid.nx, ny: grid.ny, margin, channels };
+  refuseTooLarge({ ...size, frequencies: channels });
+  const bundle = gridOffsetsKpc(wide);
+  const plan = planSpectrum(scene, bundle, bands);
+  refuseTooLarge({ ...size, frequencies: plan.spectrum.length });
+  const rays = await backend({ scene, spectrum: plan.spectrum, bundle }, watch);
+  turnScreen(scene, plan, rays);
+  const cubes = plan.bands.map((band) => {
+    const sharp = bandCube(band, rays, wide);
+    const seen = cropCube(beam ? applyBeam(sharp, beam) : sharp, margin);
+    return scene.observation.noise ? addNoise(seen, scene.observation.noise, scene.numerics.seed) : seen;
+  });
+  const depth = rays.faradayDepth.map((value) => value + scene.observation.foregroundDepth);
+  const cropped = (planes: Float64Array): Float64Array => cropPlanes(planes, wide.nx, wide.ny, margin);
+  return {
+    grid,
+    cubes,
+    faradayDepth: cropped(depth),
+    origins: plan.bands.map((band) => originHeights(band, rays, cropped)),
+    errorReached: rays.error.reduce((a, b) => Math.max(a, b), 0),
+    rays: bundle.northKpc.length,
+    samplesPerRay: rays.samples / bundle.northKpc.length,
+  };
+}
+
+/** Turns Q and U of every frequency by the foreground's depth, before any average. */
+function turnScreen(scene: Scene, plan: SpectralPlan, rays: RayResult): void {
+  const depth = scene.observation.foregroundDepth;
+  if (depth === 0) return;
+  const frequenciesHz = plan.spectrum.map((point) => point.frequencyHz);
+  turnByForeground(rays.Q, rays.U, frequenciesHz, depth);
+  turnByForeground(rays.heightQ, rays.heightU, frequenciesHz, depth);
+}
+
+/** The channels of a band as means over their frequencies, Jy/sr, before beam and noise. */
+export function bandCube(plan: BandPlan, rays: RayResult, grid: SkyGrid): StokesCube {
+  const pixels = grid.nx * grid.ny;
+  const mean = (planes: Float64Array): Float64Array => {
+    const cube = new Float64Array(plan.channels.length * pixels);
+    plan.channels.forEach(({ points, weights }, channel) => {
+      points.forEach((point, k) => {
+        for (let pixel = 0; pixel < pixels; pixel++) cube[channel * pixels + pixel] += weights[k] * planes[point * pixels + pixel];
+      });
+    });
+    return cube;
+  };
+  return {
+    band: plan.band.name,
+    grid,
+    channels: plan.channels.map(({ channel }) => channel),
+    I: mean(rays.I),
+    Q: mean(rays.Q),
+    U: mean(rays.U),
+    unit: 'Jy/sr',
+    noise: new Float64Array(plan.channels.length),
+  };
+}
+
+/** ∫z w ds / ∫w ds of each ray, w its net share of what is seen (physics.md section 5, own definition). */
+function originHeights(plan: BandPlan, rays: RayResult, crop: (planes: Float64Array) => Float64Array): OriginHeights {
+  const pixels = rays.faradayDepth.length;
+  const heights = new Float64Array(plan.origins.length * pixels);
+  plan.origins.forEach(({ point }, k) => {
+    for (let pixel = 0; pixel < pixels; pixel++) {
+      const at = point * pixels + pixel;
+      const [q, u] = [rays.Q[at], rays.U[at]];
+      const square = q * q + u * u;
+      const seen = square > 0 && Math.sqrt(square) >= smallestShare * rays.emittedP[at];
+      heights[k * pixels + pixel] = seen ? (rays.heightQ[at] * q + rays.heightU[at] * u) / square : NaN;
+    }
+  });
+  return { band: plan.band.name, frequenciesHz: plan.origins.map((origin) => origin.frequencyHz), heightKpc: crop(heights) };
+}

@@ -1,0 +1,56 @@
+import { findLargestDepth } from '../ray/depth.ts';
+import type { SpectralPoint } from '../ray/integrand.ts';
+import type { RayBundle } from '../ray/types.ts';
+import type { Band, Scene } from '../scene/types.ts';
+import { channelNodes } from './bandwidth.ts';
+import type { Channel } from './types.ts';
+
+/** Which of the frequencies followed make up a channel, and with what weights. */
+export interface ChannelPlan {
+  readonly channel: Channel;
+  /** Indices into the spectrum. */
+  readonly points: readonly number[];
+  readonly weights: Float64Array;
+}
+
+export interface BandPlan {
+  readonly band: Band;
+  readonly channels: readonly ChannelPlan[];
+  /** Points at which heights of origin are taken: the band's centre, or each of its frequencies. */
+  readonly origins: readonly { readonly frequencyHz: number; readonly point: number }[];
+}
+
+/** The frequencies at which rays are followed so that every channel is a mean to tolerance. */
+export interface SpectralPlan {
+  readonly spectrum: readonly SpectralPoint[];
+  readonly bands: readonly BandPlan[];
+}
+
+/** Plans the frequencies of a scene's bands; wide channels get as many as their depths ask for. */
+export function planSpectrum(scene: Scene, bundle: RayBundle, bands: readonly Band[]): SpectralPlan {
+  const wide = bands.some((band) => band.channels.some((channel) => channel.widthHz > 0));
+  const foreground = Math.abs(scene.observation.foregroundDepth);
+  const largestDepth = wide ? findLargestDepth(scene, bundle) + foreground : 0;
+  const spectrum: SpectralPoint[] = [];
+  const known = new Map<string, number>();
+  const point = (frequencyHz: number, centreHz: number): number => {
+    const key = `${frequencyHz}/${centreHz}`;
+    let index = known.get(key);
+    if (index === undefined) {
+      index = spectrum.push({ frequencyHz, centreHz }) - 1;
+      known.set(key, index);
+    }
+    return index;
+  };
+  const plans = bands.map((band): BandPlan => {
+    const channels = band.channels.map((channel): ChannelPlan => {
+      const nodes = channelNodes(channel, largestDepth, scene.numerics.tolerance);
+      const points = Array.from(nodes.frequenciesHz, (frequency) => point(frequency, channel.frequencyHz));
+      return { channel, points, weights: nodes.weights };
+    });
+    const centres = band.centreHz !== undefined ? [band.centreHz] : band.channels.map((channel) => channel.frequencyHz);
+    const origins = centres.map((frequencyHz) => ({ frequencyHz, point: point(frequencyHz, frequencyHz) }));
+    return { band, channels, origins };
+  });
+  return { spectrum, bands: plans };
+}
