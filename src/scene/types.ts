@@ -58,6 +58,8 @@ export interface ImageSpec {
   readonly nx: number;
   readonly ny: number;
   readonly pixelArcsec: number;
+  /** Where the scene gives the pixel in kpc: it stays so when the distance is varied. */
+  readonly pixelKpc?: number;
 }
 
 export interface Observation {

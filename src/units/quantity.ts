@@ -9,6 +9,7 @@ export interface Quantity {
   readonly unit: string;
 }
 
+const LONGEST = 200;
 const NUMBER = /^([+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?)\s*(.*)$/su;
 
 /**
@@ -82,6 +83,7 @@ export function wanted(unit: string): string {
 }
 
 function splitQuantity(text: string, targetUnit: string | undefined): { value: number; unitText: string } {
+  if (text.length > LONGEST) throw new InputError(`a text of ${text.length} characters is no quantity`);
   const trimmed = text.trim();
   const match = NUMBER.exec(trimmed);
   if (!match) {

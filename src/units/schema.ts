@@ -2,8 +2,9 @@ import { z } from 'zod';
 import { InputError, nearestHint } from './input-error.ts';
 import { describeLimits, findLimitProblem } from './limits.ts';
 import type { Limits } from './limits.ts';
-import { describeUnit, parseQuantity, wanted } from './quantity.ts';
+import { canonicalQuantity, describeUnit, parseQuantity, wanted } from './quantity.ts';
 import { quoteValue } from './quote.ts';
+import { parseUnit, sameDimensions } from './unit.ts';
 
 // The page forbids generated code; zod must not even try.
 z.config({ jitless: true });
@@ -27,6 +28,8 @@ export function keys<Shape extends z.ZodRawShape>(shape: Shape, later: readonly 
 /** The message about a key that does not exist, or not yet. */
 export function unknownKey(key: string, allowed: readonly string[], later: readonly string[] = []): string {
   if (later.includes(key)) return `"${key}" is not available in this version`;
+  // In {a: b, c} the comma ends the text b: a common slip in prose.
+  if (/\s/.test(key)) return `unknown key ${quoteValue(key)}: a text with a comma inside { } needs quotes`;
   return `unknown key ${quoteValue(key)}${nearestHint(key.slice(0, 60), allowed)}; allowed are ${allowed.join(', ')}`;
 }
 
@@ -120,4 +123,33 @@ function orIssue<T>(context: z.core.$RefinementCtx, input: unknown, compute: () 
     context.issues.push({ code: 'custom', message: error.reason, input });
     return z.NEVER;
   }
+}
+
+/** Limits together with the unit that a checked number comes out in. */
+export interface LimitedUnit {
+  readonly limits: Limits;
+  readonly internalUnit: string;
+}
+
+/**
+ * Text that may be a quantity of one of several dimensions, such as a pixel in arcsec or in kpc:
+ * a number in the `internalUnit` of the dimension it has, and that unit.
+ */
+export function quantityOfEither(kinds: readonly LimitedUnit[]): z.ZodType<{ readonly value: number; readonly unit: string }> {
+  const what = kinds.map(({ limits }) => `${describeUnit(limits.unit)} such as "2 ${limits.unit}"`).join(' or ');
+  return z
+    .string({
+      error: ({ input }) => (input === undefined ? `is missing: ${what} is wanted` : `${quoteValue(input)} is given where ${what} is wanted`),
+    })
+    .meta({ description: what })
+    .transform((text, context) =>
+      orIssue(context, text, () => {
+        const given = canonicalQuantity(text).unit;
+        const kind = kinds.find(({ limits }) => sameDimensions(parseUnit(given), parseUnit(limits.unit)));
+        if (!kind) throw new InputError(`${quoteValue(text)} is ${describeUnit(given)}: ${what} is wanted`);
+        const problem = findLimitProblem(parseQuantity(text, kind.limits.unit), kind.limits, quoteValue(text));
+        if (problem) throw new InputError(problem);
+        return { value: parseQuantity(text, kind.internalUnit), unit: kind.internalUnit };
+      }),
+    );
 }

@@ -17,7 +17,7 @@ export interface YamlInput {
   readonly flags: Map<unknown, string>;
 }
 
-const MAX_TEXT = 1_000_000;
+const MAX_TEXT = 200_000;
 const MAX_ALIASES = 100;
 const MAX_DEPTH = 40;
 

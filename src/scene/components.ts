@@ -1,0 +1,53 @@
+import { z } from 'zod';
+import { getModel } from '../model/library.ts';
+import { fillValues, valuesShape } from '../model/parameters.ts';
+import type { Model } from '../model/types.ts';
+import { InputError } from '../units/input-error.ts';
+import { keys, nameText } from '../units/schema.ts';
+import { checkYaml, placeAt } from '../units/yaml-input.ts';
+import type { YamlInput, YamlPath } from '../units/yaml-input.ts';
+import { readInlineComponent } from './inline-model.ts';
+import { laterKeys, placed, readHeightLaw } from './section.ts';
+import type { Section } from './section.ts';
+import type { CosmicRayLayer } from './types.ts';
+
+/** Models of the format that this version cannot compute. */
+const laterModels = ['mean-field', 'simulation-cube', 'turbulence'];
+
+/** The keys of a component of a library model in a section. */
+export function componentSchema(model: Model, section: Section) {
+  return keys(
+    { model: z.literal(model.name), name: nameText().optional(), ...valuesShape(model, section.rename), ...section.extra },
+    laterKeys,
+  );
+}
+
+/**
+ * The checked components of a section: known models, all parameters in range, names unique. Throws
+ * InputError with its place.
+ */
+export function readComponents(input: YamlInput, section: Section, models: readonly string[]): CosmicRayLayer[] {
+  const components = models.map((model, index) => {
+    const path = [...section.path, index];
+    return model === 'formula' ? readInlineComponent(input, section, path) : readLibraryComponent(input, section, path, model);
+  });
+  components.forEach(({ name }, index) => {
+    if (components.findIndex((other) => other.name === name) === index) return;
+    throw new InputError(
+      `two components of ${section.title} are named "${name}": give one of them another "name"`,
+      placeAt(input, [...section.path, index]),
+    );
+  });
+  return components;
+}
+
+function readLibraryComponent(input: YamlInput, section: Section, path: YamlPath, modelName: string): CosmicRayLayer {
+  const model = placed(input, [...path, 'model'], () => {
+    if (laterModels.includes(modelName)) throw new InputError(`the model "${modelName}" is not available in this version`);
+    return getModel(modelName, section.kind);
+  });
+  const given: Readonly<Record<string, unknown>> = checkYaml(input, componentSchema(model, section), path);
+  const values = placed(input, path, () => fillValues(model, given, section.rename));
+  const name = typeof given.name === 'string' ? given.name : modelName;
+  return { name, model, ...values, ...readHeightLaw(input, path, model, given) };
+}

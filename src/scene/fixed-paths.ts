@@ -1,0 +1,130 @@
+import { InputError } from '../units/input-error.ts';
+import { sceneLimits } from './limits.ts';
+import type { SceneLimit } from './limits.ts';
+import { arcsecOf } from './observation.ts';
+import type { Beam, Galaxy, Observation, Scene, UnresolvedTurbulence } from './types.ts';
+
+/** What a path of a scene reads and writes; `SceneLimit` says in which unit and range. */
+export interface PathEntry extends SceneLimit {
+  readonly path: string;
+  /** The number in `internalUnit`; undefined where the scene has no such thing. */
+  read(scene: Scene): number | undefined;
+  write(scene: Scene, value: number): Scene;
+}
+
+/** The numbers of a scene that belong to no component. */
+export const fixedPaths: readonly PathEntry[] = [
+  {
+    path: 'galaxy.distance',
+    ...sceneLimits.distance,
+    read: ({ galaxy }) => galaxy.distanceKpc,
+    write: withDistance,
+  },
+  galaxyPath('inclination', sceneLimits.inclination, ({ inclination }) => inclination, (old, inclination) => ({ ...old, inclination })),
+  galaxyPath('positionAngle', sceneLimits.positionAngle, ({ positionAngle }) => positionAngle, (old, positionAngle) => ({ ...old, positionAngle })),
+  galaxyPath('volume.radius', sceneLimits.volumeRadius, ({ volume }) => volume.radiusKpc, (old, radiusKpc) => ({ ...old, volume: { ...old.volume, radiusKpc } })),
+  galaxyPath('volume.height', sceneLimits.volumeHeight, ({ volume }) => volume.heightKpc, (old, heightKpc) => ({ ...old, volume: { ...old.volume, heightKpc } })),
+  {
+    path: 'cosmicRays.index',
+    ...sceneLimits.index,
+    read: ({ cosmicRays }) => cosmicRays.index,
+    write: (scene, index) => ({ ...scene, cosmicRays: { ...scene.cosmicRays, index } }),
+  },
+  turbulencePath('rms', sceneLimits.rms, ({ rmsUG }) => rmsUG, (old, rmsUG) => ({ ...old, rmsUG })),
+  turbulencePath('cell', sceneLimits.cell, ({ cellKpc }) => cellKpc, (old, cellKpc) => ({ ...old, cellKpc })),
+  observationPath('foreground.depth', sceneLimits.foregroundDepth, ({ foregroundDepth }) => foregroundDepth, (old, foregroundDepth) => ({ ...old, foregroundDepth })),
+  noisePath('Jy/beam', sceneLimits.noiseBeam),
+  noisePath('Jy/sr', sceneLimits.noiseSteradian),
+  beamPath('major', sceneLimits.beamMajor, ({ majorArcsec }) => majorArcsec, (old, majorArcsec) => ({ ...old, majorArcsec })),
+  beamPath('minor', sceneLimits.beamMinor, ({ minorArcsec }) => minorArcsec, (old, minorArcsec) => ({ ...old, minorArcsec })),
+  beamPath('angle', sceneLimits.beamAngle, ({ angle }) => angle, (old, angle) => ({ ...old, angle })),
+  {
+    path: 'numerics.tolerance',
+    ...sceneLimits.tolerance,
+    read: ({ numerics }) => numerics.tolerance,
+    write: (scene, tolerance) => ({ ...scene, numerics: { ...scene.numerics, tolerance } }),
+  },
+  {
+    path: 'numerics.seed',
+    ...sceneLimits.seed,
+    read: ({ numerics }) => numerics.seed,
+    write: (scene, seed) => ({ ...scene, numerics: { ...scene.numerics, seed } }),
+  },
+];
+
+/** A pixel given in kpc keeps its size in the galaxy; one in arcsec keeps its size on the sky. */
+function withDistance(scene: Scene, distanceKpc: number): Scene {
+  const { image } = scene.observation;
+  const pixelArcsec = image.pixelKpc === undefined ? image.pixelArcsec : arcsecOf(image.pixelKpc, distanceKpc);
+  return {
+    ...scene,
+    galaxy: { ...scene.galaxy, distanceKpc },
+    observation: { ...scene.observation, image: { ...image, pixelArcsec } },
+  };
+}
+
+function galaxyPath(key: string, limit: SceneLimit, read: (old: Galaxy) => number, write: (old: Galaxy, value: number) => Galaxy): PathEntry {
+  return {
+    path: `galaxy.${key}`,
+    ...limit,
+    read: ({ galaxy }) => read(galaxy),
+    write: (scene, value) => ({ ...scene, galaxy: write(scene.galaxy, value) }),
+  };
+}
+
+function observationPath(
+  key: string,
+  limit: SceneLimit,
+  read: (old: Observation) => number | undefined,
+  write: (old: Observation, value: number) => Observation,
+): PathEntry {
+  return {
+    path: `observation.${key}`,
+    ...limit,
+    read: ({ observation }) => read(observation),
+    write: (scene, value) => ({ ...scene, observation: write(scene.observation, value) }),
+  };
+}
+
+/** Noise is per beam where there is a beam, so that only one of the two paths exists in a scene. */
+function noisePath(unit: 'Jy/beam' | 'Jy/sr', limit: SceneLimit): PathEntry {
+  const applies = ({ beam }: Observation): boolean => (beam !== undefined) === (unit === 'Jy/beam');
+  return observationPath(
+    'noise',
+    limit,
+    (old) => (applies(old) ? old.noise : undefined),
+    (old, noise) => ({ ...old, noise }),
+  );
+}
+
+function beamPath(key: string, limit: SceneLimit, read: (old: Beam) => number, write: (old: Beam, value: number) => Beam): PathEntry {
+  return observationPath(
+    `beam.${key}`,
+    limit,
+    ({ beam }) => beam && read(beam),
+    (old, value) => {
+      const beam = old.beam && write(old.beam, value);
+      if (beam && beam.minorArcsec > beam.majorArcsec) {
+        throw new InputError(`observation.beam.${key}: the minor axis, ${beam.minorArcsec} arcsec, would be larger than the major axis, ${beam.majorArcsec} arcsec`);
+      }
+      return { ...old, ...(beam && { beam }) };
+    },
+  );
+}
+
+function turbulencePath(
+  key: string,
+  limit: SceneLimit,
+  read: (old: UnresolvedTurbulence) => number,
+  write: (old: UnresolvedTurbulence, value: number) => UnresolvedTurbulence,
+): PathEntry {
+  return {
+    path: `turbulence.unresolved.${key}`,
+    ...limit,
+    read: ({ turbulence }) => turbulence.unresolved && read(turbulence.unresolved),
+    write: (scene, value) => {
+      const old = scene.turbulence.unresolved;
+      return old ? { ...scene, turbulence: { ...scene.turbulence, unresolved: write(old, value) } } : scene;
+    },
+  };
+}

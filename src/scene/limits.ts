@@ -1,0 +1,52 @@
+import type { Limits } from '../units/limits.ts';
+import { quantity } from '../units/schema.ts';
+
+/** A quantity of a scene that is not a model's parameter. */
+export interface SceneLimit {
+  readonly limits: Limits;
+  /** Unit of the number in `Scene`. */
+  readonly internalUnit: string;
+  readonly meaning: string;
+}
+
+function limit(unit: string, min: number, max: number, internalUnit: string, meaning: string, more: Partial<Limits> = {}): SceneLimit {
+  return { limits: { unit, min, max, ...more }, internalUnit, meaning };
+}
+
+const above = { above: true };
+const whole = { whole: true };
+
+/** Every quantity of a scene beside the models' parameters: units, ranges, meanings. */
+export const sceneLimits = {
+  distance: limit('Mpc', 0.001, 100000, 'kpc', 'distance of the galaxy'),
+  inclination: limit('deg', 0, 180, 'rad', 'angle between the spin and the direction to the observer'),
+  positionAngle: limit('deg', -360, 360, 'rad', 'of the receding half of the major axis, north through east'),
+  volumeRadius: limit('kpc', 0, 1000, 'kpc', 'radius of the cylinder that is computed', above),
+  volumeHeight: limit('kpc', 0, 1000, 'kpc', 'half height of the cylinder that is computed', above),
+  ra: limit('deg', 0, 360, 'deg', 'right ascension of the centre, ICRS'),
+  dec: limit('deg', -90, 90, 'deg', 'declination of the centre, ICRS'),
+  index: limit('', 1, 5, '', 'p of the electron spectrum gamma^-p', above),
+  heightIndex: limit('', -3, 3, '', 'height falls as frequency^-heightIndex'),
+  heightAt: limit('GHz', 0.001, 1000, 'Hz', 'frequency at which height is given'),
+  rms: limit('uG', 0, 10000, 'uG', 'rms of one component of the unresolved field'),
+  cell: limit('kpc', 0, 100, 'kpc', 'size of a turbulent cell along the ray', above),
+  pixels: limit('', 1, 16384, '', 'pixels along one side', whole),
+  pixelArcsec: limit('arcsec', 0, 36000, 'arcsec', 'side of a pixel', above),
+  pixelKpc: limit('kpc', 0, 1000, 'kpc', 'side of a pixel at the distance of the galaxy', above),
+  frequency: limit('GHz', 0.001, 1000, 'Hz', 'frequency'),
+  width: limit('GHz', 0, 1000, 'Hz', 'width of a channel', above),
+  channels: limit('', 1, 65536, '', 'number of channels', whole),
+  beamMajor: limit('arcsec', 0, 36000, 'arcsec', 'FWHM of the beam along its major axis', above),
+  beamMinor: limit('arcsec', 0, 36000, 'arcsec', 'FWHM of the beam along its minor axis', above),
+  beamAngle: limit('deg', -360, 360, 'rad', 'of the major axis of the beam, north through east'),
+  noiseBeam: limit('Jy/beam', 0, 1e9, 'Jy/beam', 'rms of the noise of a channel'),
+  noiseSteradian: limit('Jy/sr', 0, 1e20, 'Jy/sr', 'rms of the noise of a channel'),
+  foregroundDepth: limit('rad/m^2', -1e6, 1e6, 'rad/m^2', 'Faraday depth of the foreground'),
+  tolerance: limit('', 1e-12, 0.1, '', 'largest error relative to the map, see physics.md section 3'),
+  seed: limit('', 0, Number.MAX_SAFE_INTEGER, '', 'seed of everything random', whole),
+} as const satisfies Readonly<Record<string, SceneLimit>>;
+
+/** The schema of one of these quantities: text with a unit in, a number in its internal unit out. */
+export function limited({ limits, internalUnit, meaning }: SceneLimit): ReturnType<typeof quantity> {
+  return quantity(limits, internalUnit, meaning);
+}

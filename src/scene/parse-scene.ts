@@ -1,0 +1,88 @@
+import { InputError, nearestHint } from '../units/input-error.ts';
+import { checkVersion, checkYaml, placeAt, readYaml } from '../units/yaml-input.ts';
+import type { YamlInput } from '../units/yaml-input.ts';
+import { readComponents } from './components.ts';
+import { readObservation } from './observation.ts';
+import { applyOverrides } from './overrides.ts';
+import type { Override } from './overrides.ts';
+import { looseComponent, sceneSchema } from './scene-schema.ts';
+import type { SceneFile } from './scene-schema.ts';
+import { sections } from './section.ts';
+import type { Component, Galaxy, Scene, UnresolvedTurbulence } from './types.ts';
+
+/** The newest version of the scene format, and the only one so far. */
+export const SCENE_VERSION = 1;
+
+const fileSchema = sceneSchema({ field: looseComponent, density: looseComponent, layer: looseComponent });
+
+/**
+ * Scene text (YAML 1.2) → checked scene. `overrides` (from `--set`) change the text's values before
+ * they are checked. Throws InputError with file:line:column, or the flag, for the first thing wrong.
+ */
+export function parseScene(text: string, fileName: string, overrides: readonly Override[] = []): Scene {
+  const input = readYaml(text, fileName);
+  checkVersion(input, 'gyrelight', SCENE_VERSION);
+  applyOverrides(input, overrides);
+  checkVersion(input, 'gyrelight', SCENE_VERSION);
+  const file = checkYaml(input, fileSchema);
+  const modelsOf = (items: readonly { readonly model: string }[]): string[] => items.map(({ model }) => model);
+  const galaxy = readGalaxy(file.galaxy);
+  const components = {
+    field: readComponents(input, sections.field, modelsOf(file.field)),
+    thermalElectrons: readComponents(input, sections.thermalElectrons, modelsOf(file.thermalElectrons)),
+    layers: readComponents(input, sections.cosmicRays, modelsOf(file.cosmicRays.layers)),
+  };
+  return {
+    title: file.title,
+    galaxy,
+    field: components.field,
+    thermalElectrons: components.thermalElectrons,
+    cosmicRays: { index: file.cosmicRays.index, layers: components.layers },
+    turbulence: readTurbulence(input, file.turbulence, Object.values(components).flat()),
+    observation: readObservation(input, file.observation, galaxy.distanceKpc),
+    numerics: file.numerics,
+  };
+}
+
+/** The scene's text with the overrides written into it, for keeping beside results. */
+export function sceneText(text: string, fileName: string, overrides: readonly Override[]): string {
+  if (overrides.length === 0) return text;
+  const input = readYaml(text, fileName);
+  applyOverrides(input, overrides);
+  return input.document.toString({ lineWidth: 0 });
+}
+
+function readGalaxy({ distance, inclination, positionAngle, volume, centre }: SceneFile['galaxy']): Galaxy {
+  return {
+    distanceKpc: distance,
+    inclination,
+    positionAngle,
+    volume: { radiusKpc: volume.radius, heightKpc: volume.height },
+    ...(centre && { centre: { raDeg: centre.ra, decDeg: centre.dec } }),
+  };
+}
+
+function readTurbulence(
+  input: YamlInput,
+  { unresolved }: SceneFile['turbulence'],
+  components: readonly Component[],
+): { readonly unresolved?: UnresolvedTurbulence } {
+  if (!unresolved) return {};
+  const { rms, cell, follows } = unresolved;
+  if (follows !== undefined) checkFollows(input, follows, components);
+  return { unresolved: { rmsUG: rms, cellKpc: cell, ...(follows !== undefined && { follows }) } };
+}
+
+/** `follows` names one component, and one whose amplitude is known so that it can be divided out. */
+function checkFollows(input: YamlInput, follows: string, components: readonly Component[]): void {
+  const fail = (reason: string): never => {
+    throw new InputError(`turbulence.unresolved.follows: ${reason}`, placeAt(input, ['turbulence', 'unresolved', 'follows']));
+  };
+  const names = components.map(({ name }) => name);
+  const found = components.filter(({ name }) => name === follows);
+  if (found.length === 0) fail(`nothing is named "${follows}"${nearestHint(follows, names)}; there are ${names.join(', ')}`);
+  if (found.length > 1) fail(`"${follows}" fits ${found.length} components: give them different names`);
+  const amplitude = ['strength', 'density'].find((name) => Object.hasOwn(found[0].parameters, name));
+  if (amplitude === undefined) fail(`"${follows}" has neither "strength" nor "density" to divide by`);
+  else if (found[0].parameters[amplitude] === 0) fail(`the ${amplitude} of "${follows}" is 0 and cannot be divided by`);
+}

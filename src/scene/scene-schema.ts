@@ -1,0 +1,106 @@
+import { z } from 'zod';
+import { quoteValue } from '../units/quote.ts';
+import { keys, listOf, nameText, quantityOfEither, words } from '../units/schema.ts';
+import { limited, sceneLimits } from './limits.ts';
+
+/** Most components in a section, and most bands. */
+const MAX_ITEMS = 100;
+/** Most separate frequencies in one band. */
+const MAX_FREQUENCIES = 10000;
+
+const galaxy = keys({
+  distance: limited(sceneLimits.distance),
+  inclination: limited(sceneLimits.inclination),
+  positionAngle: limited(sceneLimits.positionAngle),
+  volume: keys({ radius: limited(sceneLimits.volumeRadius), height: limited(sceneLimits.volumeHeight) }),
+  centre: keys({ ra: limited(sceneLimits.ra), dec: limited(sceneLimits.dec) }).optional(),
+});
+
+const turbulence = keys(
+  {
+    unresolved: keys({
+      rms: limited(sceneLimits.rms),
+      cell: limited(sceneLimits.cell),
+      follows: nameText().optional(),
+    }).optional(),
+  },
+  ['resolved', 'ordered'],
+);
+
+const pixelCount = limited(sceneLimits.pixels);
+
+const band = keys({
+  name: nameText(),
+  from: limited(sceneLimits.frequency).optional(),
+  to: limited(sceneLimits.frequency).optional(),
+  channels: limited(sceneLimits.channels).optional(),
+  at: listOf(limited(sceneLimits.frequency), 'frequencies', 1, MAX_FREQUENCIES).optional(),
+  width: limited(sceneLimits.width).optional(),
+});
+
+const observation = keys(
+  {
+    image: keys({
+      pixels: z.union([pixelCount, z.tuple([pixelCount, pixelCount])], {
+        error: ({ input }) =>
+          input === undefined
+            ? 'is missing: a number of pixels n, or [nx, ny], is wanted'
+            : `${quoteValue(input)} is given where a number of pixels n, or [nx, ny], is wanted`,
+      }),
+      pixel: quantityOfEither([sceneLimits.pixelArcsec, sceneLimits.pixelKpc]),
+    }),
+    bands: listOf(band, 'bands', 1, MAX_ITEMS),
+    beam: keys({
+      major: limited(sceneLimits.beamMajor),
+      minor: limited(sceneLimits.beamMinor),
+      angle: limited(sceneLimits.beamAngle),
+    }).optional(),
+    noise: quantityOfEither([sceneLimits.noiseBeam, sceneLimits.noiseSteradian]).optional(),
+    foreground: keys({ depth: limited(sceneLimits.foregroundDepth) }, ['gradient', 'random']).optional(),
+  },
+  ['shortSpacings'],
+);
+
+const numerics = keys({
+  tolerance: limited(sceneLimits.tolerance).default(1e-4),
+  seed: limited(sceneLimits.seed).default(1),
+  bits: z
+    .union([z.literal(32), z.literal(64)], { error: ({ input }) => `${quoteValue(input)} is not allowed: bits is 32 or 64` })
+    .default(32),
+});
+
+/**
+ * The scene file, with schemas for an item of each list of components: loose ones where the
+ * components are checked afterwards against their models, exact ones for the JSON Schema.
+ */
+export function sceneSchema<Item extends z.ZodType>(items: { readonly field: Item; readonly density: Item; readonly layer: Item }) {
+  return keys(
+    {
+      gyrelight: z.literal(1),
+      title: z.string({ error: ({ input }) => `${quoteValue(input)} is given where a text is wanted` }).max(500, { error: 'has more than 500 characters' }).default(''),
+      galaxy,
+      field: listOf(items.field, 'components', 0, MAX_ITEMS).default([]),
+      thermalElectrons: listOf(items.density, 'components', 0, MAX_ITEMS).default([]),
+      cosmicRays: keys({ index: limited(sceneLimits.index), layers: listOf(items.layer, 'layers', 1, MAX_ITEMS) }, [
+        'equipartition',
+        'scaleTo',
+      ]),
+      turbulence: turbulence.default({}),
+      observation,
+      numerics: numerics.default({ tolerance: 1e-4, seed: 1, bits: 32 }),
+    },
+    ['freeFree', 'dust'],
+  );
+}
+
+/** A component before its model is looked up. */
+export const looseComponent = z.looseObject(
+  { model: words('the name of a model') },
+  {
+    error: ({ input }) =>
+      `${quoteValue(input)} is given where a component is wanted, such as {model: uniform, x: 1 uG, y: 0 uG, z: 0 uG}`,
+  },
+);
+
+/** What `sceneSchema` with loose components makes of a scene file. */
+export type SceneFile = z.output<ReturnType<typeof sceneSchema<typeof looseComponent>>>;
