@@ -68,7 +68,8 @@ export function beamReach({ xx, yy }: PixelBeam): { x: number; y: number } {
 
 /**
  * The beam's transfer function on the frequencies of a transform of width x height samples,
- * exp(-2 pi^2 f^T C f), 1 at zero frequency.
+ * exp(-2 pi^2 f^T C f), 1 at zero frequency. At the Nyquist frequencies, which stand for both signs,
+ * the mean over the signs: the filter is even, so that real planes stay real.
  */
 export function beamTransfer({ xx, xy, yy }: PixelBeam, width: number, height: number): Float64Array {
   const transfer = new Float64Array(width * height);
@@ -76,7 +77,10 @@ export function beamTransfer({ xx, xy, yy }: PixelBeam, width: number, height: n
     const fy = frequencyOf(row, height);
     for (let column = 0; column < width; column++, k++) {
       const fx = frequencyOf(column, width);
-      transfer[k] = Math.exp(-2 * Math.PI ** 2 * (xx * fx * fx + 2 * xy * fx * fy + yy * fy * fy));
+      const nyquist = column === width / 2 || row === height / 2;
+      const axes = 2 * Math.PI ** 2 * (xx * fx * fx + yy * fy * fy);
+      const turn = 4 * Math.PI ** 2 * xy * fx * fy;
+      transfer[k] = nyquist ? (Math.exp(-axes - turn) + Math.exp(turn - axes)) / 2 : Math.exp(-axes - turn);
     }
   }
   return transfer;

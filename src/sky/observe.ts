@@ -50,7 +50,14 @@ export async function observe(scene: Scene, backend: RayBackend, watch: Watch = 
   const rays = await backend({ scene, spectrum: plan.spectrum, bundle }, watch);
   turnScreen(scene, plan, rays);
   const cubes = plan.bands.map((band) => {
-    const sharp = bandCube(band, rays, wide);
+    const sharp: StokesCube = {
+      ...bandCube(band, rays, wide.nx * wide.ny),
+      band: band.band.name,
+      grid: wide,
+      channels: band.channels.map(({ channel }) => channel),
+      unit: 'Jy/sr',
+      noise: new Float64Array(band.channels.length),
+    };
     const seen = cropCube(beam ? applyBeam(sharp, beam) : sharp, margin);
     return scene.observation.noise ? addNoise(seen, scene.observation.noise, scene.numerics.seed) : seen;
   });
@@ -76,9 +83,8 @@ function turnScreen(scene: Scene, plan: SpectralPlan, rays: RayResult): void {
   turnByForeground(rays.heightQ, rays.heightU, frequenciesHz, depth);
 }
 
-/** The channels of a band as means over their frequencies, Jy/sr, before beam and noise. */
-export function bandCube(plan: BandPlan, rays: RayResult, grid: SkyGrid): StokesCube {
-  const pixels = grid.nx * grid.ny;
+/** The channels of a band, [channel * pixels + pixel], as means over their frequencies, Jy/sr. */
+export function bandCube(plan: BandPlan, rays: RayResult, pixels: number): Pick<StokesCube, 'I' | 'Q' | 'U'> {
   const mean = (planes: Float64Array): Float64Array => {
     const cube = new Float64Array(plan.channels.length * pixels);
     plan.channels.forEach(({ points, weights }, channel) => {
@@ -88,16 +94,7 @@ export function bandCube(plan: BandPlan, rays: RayResult, grid: SkyGrid): Stokes
     });
     return cube;
   };
-  return {
-    band: plan.band.name,
-    grid,
-    channels: plan.channels.map(({ channel }) => channel),
-    I: mean(rays.I),
-    Q: mean(rays.Q),
-    U: mean(rays.U),
-    unit: 'Jy/sr',
-    noise: new Float64Array(plan.channels.length),
-  };
+  return { I: mean(rays.I), Q: mean(rays.Q), U: mean(rays.U) };
 }
 
 /** ∫z w ds / ∫w ds of each ray, w its net share of what is seen (physics.md section 5, own definition). */

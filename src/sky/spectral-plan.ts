@@ -26,11 +26,23 @@ export interface SpectralPlan {
   readonly bands: readonly BandPlan[];
 }
 
+export interface PlanOptions {
+  /** How much larger than the scene's own the depths may be that channels must be averaged for. */
+  readonly depthReserve?: number;
+  /** Whether heights of origin are wanted. */
+  readonly origins?: boolean;
+}
+
 /** Plans the frequencies of a scene's bands; wide channels get as many as their depths ask for. */
-export function planSpectrum(scene: Scene, bundle: RayBundle, bands: readonly Band[]): SpectralPlan {
+export function planSpectrum(
+  scene: Scene,
+  bundle: RayBundle,
+  bands: readonly Band[],
+  { depthReserve = 1, origins: withOrigins = true }: PlanOptions = {},
+): SpectralPlan {
   const wide = bands.some((band) => band.channels.some((channel) => channel.widthHz > 0));
   const foreground = Math.abs(scene.observation.foregroundDepth);
-  const largestDepth = wide ? findLargestDepth(scene, bundle) + foreground : 0;
+  const largestDepth = wide ? depthReserve * (findLargestDepth(scene, bundle) + foreground) : 0;
   const spectrum: SpectralPoint[] = [];
   const known = new Map<string, number>();
   const point = (frequencyHz: number, centreHz: number): number => {
@@ -49,7 +61,7 @@ export function planSpectrum(scene: Scene, bundle: RayBundle, bands: readonly Ba
       return { channel, points, weights: nodes.weights };
     });
     const centres = band.centreHz !== undefined ? [band.centreHz] : band.channels.map((channel) => channel.frequencyHz);
-    const origins = centres.map((frequencyHz) => ({ frequencyHz, point: point(frequencyHz, frequencyHz) }));
+    const origins = withOrigins ? centres.map((frequencyHz) => ({ frequencyHz, point: point(frequencyHz, frequencyHz) })) : [];
     return { band, channels, origins };
   });
   return { spectrum, bands: plans };
