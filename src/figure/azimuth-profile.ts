@@ -47,6 +47,15 @@ const QUARTERS: readonly Tick[] = [
   { value: 360, label: '360°' },
 ];
 
+/** The same where there is no room for every word. */
+const QUARTERS_NARROW: readonly Tick[] = QUARTERS.map(({ value, label }) => ({
+  value,
+  label: value % 180 === 0 ? label : label.split('\n')[0],
+}));
+
+/** Narrowest drawing that has room for the words at every quarter, px. */
+const ROOM_FOR_WORDS = 300;
+
 /** A profile round a ring against galaxy azimuth, 0 to 360 deg; signed quantities do not start at 0. */
 export function azimuthProfile(profile: AzimuthProfile, options: AzimuthProfileOptions = {}): Drawing {
   const { width = 420, height = 220, legend = true, theme = lightTheme } = options;
@@ -61,7 +70,7 @@ export function azimuthProfile(profile: AzimuthProfile, options: AzimuthProfileO
   ];
   return linePlot({
     series,
-    x: { label: '', domain: [0, 360], ticks: QUARTERS },
+    x: { label: '', domain: [0, 360], ticks: width < ROOM_FOR_WORDS ? QUARTERS_NARROW : QUARTERS },
     y: { label: profile.quantity, unit: profile.unit, domain: profile.domain, fromZero: true },
     width,
     height,

@@ -43,6 +43,11 @@ export function colourBar(scale: ColourScale, label: string, length: number, upr
   return { width: length + 2 * side, height: THICKNESS + TICK + 28, body: moved(bar + marks.join('') + title, side, 0) };
 }
 
+/** What a bar says beside its ticks: the unit, or nothing where the ticks carry it. */
+export function barLabel(scale: ColourScale): string {
+  return scale.kind === 'angle' ? '' : scale.shownUnit;
+}
+
 /** Ticks in shown units; angles at quarters of the half turn. */
 function barTicks(scale: ColourScale, count: number): readonly Tick[] {
   const [low, high] = scale.limits.map((limit) => limit * scale.factor);

@@ -7,17 +7,20 @@ export interface ColourScale {
   readonly kind: ColourKind;
   /** Values at the ends of the colours, in the maps' unit. */
   readonly limits: readonly [number, number];
-  /** Values outside the limits exist below or above; they take the colour of the end. */
+  /** Values lie outside the limits, below or above, by more than a fiftieth of the range; they take the colour of the end. */
   readonly beyond: readonly [boolean, boolean];
   /** From the maps' unit to the shown one. */
   readonly factor: number;
   readonly shownUnit: string;
 }
 
+/** A largest value so many times the 99.5 % point is not let set the scale (own choice). */
+const WILD = 1.5;
+
 /**
  * The scale shared by maps of one kind and unit. Intensities run from 0 (or the lowest value, where all
- * are above half the largest) to the largest; signed quantities symmetrically to the 99.5 % point of
- * |value|, so that a few noisy pixels do not wash out the rest; angles over half a turn.
+ * are above half the largest) to the largest; signed quantities symmetrically to the largest |value|, or
+ * to its 99.5 % point where a few noisy pixels far above would wash out the rest; angles over half a turn.
  * `limits` overrides. Throws RangeError where the maps differ in unit or kind, or there is none.
  */
 export function sharedColourScale(maps: readonly PanelMap[], limits?: readonly [number, number]): ColourScale {
@@ -33,7 +36,9 @@ export function sharedColourScale(maps: readonly PanelMap[], limits?: readonly [
   const { factor, unit } = shownUnit(Math.max(Math.abs(chosen[0]), Math.abs(chosen[1])), first.unit);
   const lowest = values[0] ?? chosen[0];
   const highest = values.at(-1) ?? chosen[1];
-  const beyond: readonly [boolean, boolean] = first.kind === 'angle' ? [false, false] : [lowest < chosen[0], highest > chosen[1]];
+  const room = (chosen[1] - chosen[0]) / 50;
+  const beyond: readonly [boolean, boolean] =
+    first.kind === 'angle' ? [false, false] : [lowest < chosen[0] - room, highest > chosen[1] + room];
   return { kind: first.kind, limits: chosen, beyond, factor, shownUnit: unit };
 }
 
@@ -50,7 +55,9 @@ function automaticLimits(map: PanelMap, sorted: readonly number[]): readonly [nu
   if (map.kind === 'angle') return [0, map.unit === 'rad' ? Math.PI : 180];
   if (map.kind === 'signed') {
     const sizes = sorted.map(Math.abs).sort((a, b) => a - b);
-    const top = sizes[Math.ceil(0.995 * (sizes.length - 1))] || sizes.at(-1) || 1;
+    const largest = sizes.at(-1) || 1;
+    const usual = sizes[Math.ceil(0.995 * (sizes.length - 1))] || largest;
+    const top = largest > WILD * usual ? usual : largest;
     return [-top, top];
   }
   const [low, high] = [sorted[0] ?? 0, sorted.at(-1) ?? 1];

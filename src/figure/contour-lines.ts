@@ -36,7 +36,7 @@ export function drawContours(map: PanelMap, layer: ContourLayer, place: MapPlace
   const stroke = { d: path, fill: 'none', 'stroke-linejoin': 'round' };
   return (
     element('path', { class: 'casing', ...stroke, stroke: ink.casing, 'stroke-width': 1.6, 'stroke-opacity': 0.35 }) +
-    element('path', { class: 'contour', ...stroke, stroke: ink.line, 'stroke-width': 0.7 })
+    element('path', { class: 'contour', ...stroke, stroke: ink.line, 'stroke-width': 0.7, 'stroke-opacity': 0.85 })
   );
 }
 

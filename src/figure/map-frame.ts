@@ -13,7 +13,7 @@ import type { PanelMap } from './panel-map.ts';
 import { clipped, element, polyline, textElement } from './svg.ts';
 import type { Drawing } from './svg.ts';
 import { overlayInk } from './theme.ts';
-import type { Theme } from './theme.ts';
+import type { OverlayInk, Theme } from './theme.ts';
 import { tidyTicks } from './ticks.ts';
 
 /** Unit of the offsets along the axes; `none` draws a bare frame. */
@@ -51,8 +51,8 @@ export function mapFrame(map: PanelMap, options: MapFrameOptions): Drawing {
     options.contours ? drawContours(map, options.contours, place, ink) : '',
     options.orientation ? drawOrientation(map, options.orientation, place, ink) : '',
     ...(options.rings ?? []).map((ring) => drawRing(map, ring, place, ink)),
-    map.beam ? drawBeam(map.beam, place, ink) : '',
-    drawScaleBar(map, place, ink),
+    map.beam ? drawBeam(map.beam, place, cornerInk(map, 'left', theme)) : '',
+    drawScaleBar(map, place, cornerInk(map, 'right', theme)),
   ].join('');
   const frame = element('rect', { width: place.width, height: place.height, fill: 'none', stroke: theme.soft, 'stroke-width': 0.8 });
   return {
@@ -60,6 +60,19 @@ export function mapFrame(map: PanelMap, options: MapFrameOptions): Drawing {
     height: place.height,
     body: clipped(inside, place.width, place.height) + frame + offsetTicks(map, place, options),
   };
+}
+
+/** Ink of a mark in a lower corner: the page's where the map is blank there. */
+function cornerInk(map: PanelMap, side: 'left' | 'right', theme: Theme): OverlayInk {
+  const [columns, rows] = [Math.ceil(map.nx / 4), Math.ceil(map.ny / 8)];
+  const start = side === 'left' ? 0 : map.nx - columns;
+  let blank = 0;
+  for (let row = 0; row < rows; row++) {
+    for (let column = start; column < start + columns; column++) {
+      if (!Number.isFinite(map.values[row * map.nx + column])) blank++;
+    }
+  }
+  return 2 * blank > columns * rows ? { line: theme.ink, casing: theme.gap } : overlayInk(map.kind);
 }
 
 /** Ticks of the offsets; east grows to the left. */

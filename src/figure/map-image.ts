@@ -6,7 +6,7 @@ import { indexedPng, pngDataUri } from './png-image.ts';
 import { element, polyline } from './svg.ts';
 
 /** Distance between hatch lines, px. */
-const HATCH_STEP = 5;
+const HATCH_STEP = 6;
 
 /**
  * The map as an embedded image over `width` x `height` px, one image pixel a map pixel, north up and
@@ -45,5 +45,5 @@ export function hatching(width: number, height: number, colour: string): string 
       [Math.max(0, sum - height), Math.min(sum, height)],
     ]);
   }
-  return element('path', { class: 'hatch', d: path, stroke: colour, 'stroke-width': 0.8, fill: 'none' });
+  return element('path', { class: 'hatch', d: path, stroke: colour, 'stroke-width': 0.8, 'stroke-opacity': 0.55, fill: 'none' });
 }

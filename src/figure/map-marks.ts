@@ -58,18 +58,18 @@ export function drawScaleBar(map: PanelMap, place: MapPlace, ink: OverlayInk): s
   if (!map.pixelKpc) return '';
   const pxPerKpc = (place.pxPerArcsec * map.pixelArcsec) / map.pixelKpc;
   const lengthKpc = roundLength(place.width / 4 / pxPerKpc);
-  const label = lengthKpc < 1 ? `${numberText(lengthKpc * 1000)} pc` : `${numberText(lengthKpc)} kpc`;
+  const label = lengthKpc < 1 ? `${numberText(lengthKpc * 1000, 1)} pc` : `${numberText(lengthKpc, 1)} kpc`;
   const length = lengthKpc * pxPerKpc;
   const right = place.width - INSET;
   const middle = Math.min(right - length / 2, right - textWidth(label, 10) / 2);
   const y = place.height - INSET;
   const path = polyline([[middle - length / 2, y], [middle + length / 2, y]]);
   return (
-    element('path', { class: 'casing', d: path, stroke: ink.casing, 'stroke-width': 3.4, 'stroke-opacity': 0.6 }) +
+    element('path', { class: 'casing', d: path, stroke: ink.casing, 'stroke-width': 3.6, 'stroke-opacity': 0.85 }) +
     element('path', { class: 'scale-bar', d: path, stroke: ink.line, 'stroke-width': 1.6 }) +
     textElement(middle, y - 5, label, {
       'text-anchor': 'middle', 'font-size': 10, fill: ink.line,
-      stroke: ink.casing, 'stroke-width': 2.2, 'stroke-opacity': 0.6, 'stroke-linejoin': 'round', 'paint-order': 'stroke',
+      stroke: ink.casing, 'stroke-width': 2.8, 'stroke-opacity': 0.85, 'stroke-linejoin': 'round', 'paint-order': 'stroke',
     })
   );
 }

@@ -1,4 +1,4 @@
-import { colourBar } from './colour-bar.ts';
+import { barLabel, colourBar } from './colour-bar.ts';
 import { sharedColourScale } from './colour-scale.ts';
 import type { ColourScale } from './colour-scale.ts';
 import { mapFrame } from './map-frame.ts';
@@ -27,7 +27,7 @@ export function mapPanel(map: PanelMap, options: MapPanelOptions = {}): Drawing 
   const left = axes === 'none' ? 10 : 58;
   const top = 30;
   const bottom = axes === 'none' ? 12 : 38;
-  const bar = colourBar(scale, scale.shownUnit, frame.height - 26, true, theme);
+  const bar = colourBar(scale, barLabel(scale), frame.height - 26, true, theme);
   const titleWidth = left + textWidth(map.title, 13);
   const unit = axes === 'kpc' ? 'kpc' : 'arcsec';
   const soft = { fill: theme.soft, 'text-anchor': 'middle' };

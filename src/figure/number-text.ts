@@ -87,7 +87,7 @@ function assemble(shown: string, tail: string, exponent: number, unit: string): 
   if (exponent !== 0) return joinUnit(`(${shown}${tail})×10${superscript(String(exponent))}`, unit);
   const mark = unitText(unit);
   if (/^[°″%]$/.test(mark)) {
-    return tail.startsWith(' ±') ? `${shown}${mark}${tail}${mark}` : `${shown}${tail}${mark}`;
+    return `${shown}${tail}`.replace(/\d(?= |$)/g, `$&${mark}`);
   }
   return joinUnit(`${shown}${tail}`, unit);
 }

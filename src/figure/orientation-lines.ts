@@ -66,7 +66,7 @@ export function orientationLines(map: PanelMap, layer: OrientationLayer): readon
 /** The lines drawn: short strokes with a thin casing, never arrows, none shorter than 1.5 px. */
 export function drawOrientation(map: PanelMap, layer: OrientationLayer, place: MapPlace, ink: OverlayInk): string {
   const lines = orientationLines(map, layer);
-  const full = layer.fullStrength ?? Math.max(...lines.map((line) => line.strength));
+  const full = layer.fullStrength ?? lines.reduce((most, line) => Math.max(most, line.strength), 0);
   const longest = lineSpacing(map, layer) * map.pixelArcsec * place.pxPerArcsec;
   let path = '';
   for (const line of lines) {

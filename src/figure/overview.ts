@@ -1,11 +1,11 @@
 import { azimuthProfile } from './azimuth-profile.ts';
 import type { AzimuthProfile } from './azimuth-profile.ts';
-import { colourBar } from './colour-bar.ts';
+import { barLabel, colourBar } from './colour-bar.ts';
 import { sharedColourScale } from './colour-scale.ts';
 import { mapFrame } from './map-frame.ts';
 import type { MapLayers } from './map-frame.ts';
 import type { PanelMap } from './panel-map.ts';
-import { moved, svgDocument, textElement, textWidth } from './svg.ts';
+import { fixed, moved, svgDocument, textElement, textWidth } from './svg.ts';
 import type { Drawing } from './svg.ts';
 import { lightTheme } from './theme.ts';
 import type { Theme } from './theme.ts';
@@ -37,7 +37,7 @@ export interface Overview {
 const BOX = 190;
 const LEFT = 56;
 const GAP = 16;
-const BAR_ROOM = 78;
+const BAR_ROOM = 64;
 const PROFILE_WIDTH = 380;
 
 /** The whole overview as one SVG file; the same input gives the same bytes. */
@@ -64,10 +64,11 @@ export function overviewDrawing(overview: Overview, theme: Theme): Drawing {
   }
   y += 10;
   if (columns > 1) {
-    y += 16;
+    y += 14;
     overview.columns.slice(0, columns).forEach((name, k) => {
       body += textElement(LEFT + k * (BOX + GAP) + BOX / 2, y, name, { 'font-size': 12, 'font-weight': 600, 'text-anchor': 'middle' });
     });
+    y += 6;
   }
   for (const [k, row] of overview.rows.entries()) {
     const drawn = drawRow(row, mapsWidth, k === overview.rows.length - 1, theme);
@@ -103,10 +104,10 @@ function drawRow(row: OverviewRow, mapsWidth: number, last: boolean, theme: Them
       body += moved(frame.body, left, top);
       if (last) body += textElement(left + frame.width / 2, top + frame.height + 29, 'offset east (arcsec)', { 'font-size': 10, fill: theme.soft, 'text-anchor': 'middle' });
     });
-    const bar = colourBar(scale, scale.shownUnit, BOX - 32, true, theme);
+    const bar = colourBar(scale, barLabel(scale), BOX - 32, true, theme);
     body += moved(bar.body, LEFT + row.maps.length * (BOX + GAP), top);
     body += textElement(0, 0, 'offset north (arcsec)', {
-      'font-size': 10, fill: theme.soft, 'text-anchor': 'middle', transform: `translate(14,${top + BOX / 2}) rotate(-90)`,
+      'font-size': 10, fill: theme.soft, 'text-anchor': 'middle', transform: `translate(${fixed(first * (BOX + GAP) + 14)},${fixed(top + BOX / 2)}) rotate(-90)`,
     });
   }
   if (row.profile) {

@@ -1,13 +1,7 @@
 import { zlibSync } from 'fflate';
+import { crc32 } from '../files/crc32.ts';
 
 const SIGNATURE = [137, 80, 78, 71, 13, 10, 26, 10];
-
-/** CRC of PNG chunks (ISO 3309; PNG specification, annex D). */
-const CRC_TABLE = Uint32Array.from({ length: 256 }, (_, n) => {
-  let c = n;
-  for (let k = 0; k < 8; k++) c = c & 1 ? 0xedb88320 ^ (c >>> 1) : c >>> 1;
-  return c;
-});
 
 /**
  * A PNG with a palette, 8 bits a pixel. `indices` from the top row down, left to right; `palette`
@@ -43,20 +37,15 @@ export function pngDataUri(png: Uint8Array): string {
   return `data:image/png;base64,${btoa(binary)}`;
 }
 
+/** Length, type, data and CRC-32 of a chunk (PNG specification, section 5.3). */
 function chunk(type: string, data: Uint8Array): Uint8Array {
   const bytes = new Uint8Array(12 + data.length);
   const view = new DataView(bytes.buffer);
   view.setUint32(0, data.length);
   for (let k = 0; k < 4; k++) bytes[4 + k] = type.charCodeAt(k);
   bytes.set(data, 8);
-  view.setUint32(8 + data.length, crc(bytes.subarray(4, 8 + data.length)));
+  view.setUint32(8 + data.length, crc32(bytes.subarray(4, 8 + data.length)));
   return bytes;
-}
-
-function crc(bytes: Uint8Array): number {
-  let c = 0xffffffff;
-  for (const byte of bytes) c = CRC_TABLE[(c ^ byte) & 255] ^ (c >>> 8);
-  return (c ^ 0xffffffff) >>> 0;
 }
 
 function concatenate(parts: readonly Uint8Array[]): Uint8Array {

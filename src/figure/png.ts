@@ -22,6 +22,7 @@ export async function pngFromSvg(svg: string, tools: PngTools, zoom = 2): Promis
   await ready;
   const renderer = new Resvg(svg, {
     fitTo: { mode: 'zoom', value: zoom },
+    imageRendering: 1,
     font: { fontBuffers: [...tools.fonts], defaultFontFamily: 'DejaVu Sans', sansSerifFamily: 'DejaVu Sans' },
   });
   try {

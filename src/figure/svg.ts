@@ -17,7 +17,6 @@ const ENTITIES: Readonly<Record<string, string>> = {
 
 /** Exactly what XML 1.0 forbids: control characters and halves of surrogate pairs. */
 const FORBIDDEN =
-  // eslint-disable-next-line no-control-regex -- they are the point
   /[\u0000-\u0008\u000b\u000c\u000e-\u001f\ufffe\uffff]|[\ud800-\udbff](?![\udc00-\udfff])|(?<![\ud800-\udbff])[\udc00-\udfff]/g;
 
 /** Text made safe for XML and HTML, elements and quoted attributes; characters that XML 1.0 forbids become U+FFFD. */

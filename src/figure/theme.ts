@@ -37,7 +37,7 @@ export const AMBER = '#c47f00';
  * Colours of hypotheses after ink, teal and amber: found by search for the largest CIELAB distance
  * between any two of the seven under normal, protan and deutan vision (Machado et al. 2009).
  */
-const MORE_COLOURS = ['#6655cc', '#cc3333', '#6688bb', '#00aa66'];
+const MORE_COLOURS = ['#6655cc', '#cc3333', '#6688bb', '#00a361'];
 
 /** How the curve of one hypothesis is drawn; dash and marker tell it apart without colour. */
 export interface HypothesisStyle {
