@@ -142,7 +142,7 @@ function ecsvUnits(comments: readonly string[], file: string): Record<string, st
   let header: unknown;
   try {
     // Tags for what only other readers know are not errors here.
-    header = parseYaml(yaml.join('\n'), { logLevel: 'silent' });
+    header = parseYaml(yaml.join('\n'), { logLevel: 'error' });
   } catch (error) {
     throw new InputError(`the ECSV header is no YAML: ${error instanceof Error ? error.message : String(error)}`, { file });
   }

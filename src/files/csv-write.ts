@@ -44,7 +44,6 @@ function ecsvHeader(columns: readonly CsvColumn[], meta: Readonly<Record<string,
     '# datatype:',
     ...items,
     ...(metaItems.length > 0 ? ['# meta: !!omap', ...metaItems] : []),
-    '# schema: astropy-2.0',
   ];
 }
 

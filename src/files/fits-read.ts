@@ -85,6 +85,7 @@ function readUnit(bytes: Uint8Array, start: number, file: string, index: number)
   if (shape.length !== 2) throw fitsError(place, `NAXIS = ${shape.length}; a binary table has 2 axes`);
   if (bitpix !== 8) throw fitsError(place, `BITPIX = ${bitpix}; a binary table has 8`);
   const [rowBytes, rowCount] = shape;
+  if (rowBytes === 0 && rowCount > 0) throw fitsError(place, `NAXIS1 = 0, NAXIS2 = ${rowCount}: rows without bytes`);
   const columns = tableColumns(allCards, rowBytes, place);
   return { hdu: { ...common, kind: 'table', columns, rowBytes, rowCount, rows: data.subarray(0, count) }, end };
 }

@@ -20,16 +20,14 @@ export interface Provenance {
 
 /** The SCENE table of an output file: the scene line by line, version, seed and SHA-256 of the text. */
 export function sceneTable(provenance: Provenance): TableHdu {
-  const comments = [
-    'The scene from which this file was made, one line a row: it can be made again from',
-    'this table alone. \\\\ is a backslash, \\uXXXX a UTF-16 code unit in hexadecimal,',
-    'and a row that ends in a single \\ goes on in the next.',
-  ];
+  const comment =
+    'The scene from which this file was made, one line a row: it can be made again from this table alone. ' +
+    '\\\\ is a backslash, \\uXXXX a UTF-16 code unit in hexadecimal, and a row that ends in a single \\ goes on in the next.';
   const cards: Card[] = [
     { keyword: 'CREATOR', value: `gyrelight ${asciiText(provenance.version)}`, comment: 'program and version' },
     { keyword: 'SEED', value: provenance.seed, comment: 'of all random streams' },
     { keyword: 'SHA256', value: sha256OfText(provenance.sceneText) },
-    ...comments.map((comment) => ({ keyword: 'COMMENT', comment })),
+    { keyword: 'COMMENT', comment },
   ];
   return makeTable(TABLE_NAME, [{ name: COLUMN_NAME, texts: escapeLines(provenance.sceneText) }], cards);
 }

@@ -108,6 +108,7 @@ function tableLayout(hdu: TableHdu): Card[] {
 
 function headerBytes(cards: readonly Card[]): Uint8Array {
   const lines = cards.map(cardLines);
+  // The standard does without this card; checkers of older habits warn where it is missing.
   if (lines.some((card, i) => card.length > 1 && typeof cards[i].value === 'string')) {
     lines.push(cardLines({ keyword: 'LONGSTRN', value: 'OGIP 1.0', comment: 'long strings use CONTINUE' }));
   }

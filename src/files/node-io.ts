@@ -31,9 +31,11 @@ export function readText(path: string): string {
 export function writeWhole(path: string, content: Uint8Array | string): void {
   const bytes = typeof content === 'string' ? new TextEncoder().encode(content) : content;
   const beside = join(dirname(path), `.${basename(path)}.${randomUUID()}.part`);
+  let isBegun = false;
   try {
     mkdirSync(dirname(path), { recursive: true });
     const file = openSync(beside, 'wx');
+    isBegun = true;
     try {
       for (let offset = 0; offset < bytes.length; ) offset += writeSync(file, bytes, offset);
       fsyncSync(file);
@@ -42,7 +44,7 @@ export function writeWhole(path: string, content: Uint8Array | string): void {
     }
     renameSync(beside, path);
   } catch (error) {
-    rmSync(beside, { force: true });
+    if (isBegun) rmSync(beside, { force: true });
     const reason = WRITE_REASONS[codeOf(error)];
     if (reason === undefined) throw error;
     throw new InputError(`cannot write the file: ${reason}`, { file: path });
