@@ -51,7 +51,7 @@ export function barLabel(scale: ColourScale): string {
 /** Ticks in shown units; angles at quarters of the half turn. */
 function barTicks(scale: ColourScale, count: number): readonly Tick[] {
   const [low, high] = scale.limits.map((limit) => limit * scale.factor);
-  if (scale.kind !== 'angle') return tidyTicks(low, high, Math.max(2, Math.round(count)));
+  if (scale.kind !== 'angle') return tidyTicks(low, high, Math.max(3, Math.round(count)));
   return [0, 1, 2, 3, 4].map((quarter) => {
     const value = low + ((high - low) * quarter) / 4;
     return { value, label: `${Math.round(value)}°` };

@@ -35,7 +35,7 @@ export function mapPanel(map: PanelMap, options: MapPanelOptions = {}): Drawing 
     axes === 'none'
       ? ''
       : textElement(left + frame.width / 2, top + frame.height + 31, `offset east (${unit})`, soft) +
-        textElement(0, 0, `offset north (${unit})`, { ...soft, transform: `translate(14,${(top + frame.height / 2).toFixed(1)}) rotate(-90)` });
+        textElement(0, 0, northTitle(frame.height, unit), { ...soft, transform: `translate(14,${(top + frame.height / 2).toFixed(1)}) rotate(-90)` });
   return {
     width: Math.max(left + frame.width + 16 + bar.width + 10, titleWidth + 10),
     height: top + frame.height + bottom,
@@ -45,6 +45,11 @@ export function mapPanel(map: PanelMap, options: MapPanelOptions = {}): Drawing 
       moved(bar.body, left + frame.width + 16, top) +
       axisTitles,
   };
+}
+
+/** Title of the upright axis, shorter beside a low map. */
+export function northTitle(height: number, unit: string): string {
+  return height < 130 ? `north (${unit})` : `offset north (${unit})`;
 }
 
 /** `mapPanel` as a whole SVG file. */

@@ -53,7 +53,7 @@ export function methodsText(use: MethodsUse): MethodsText {
     use.equipartition && 'Cosmic-ray electrons follow from equipartition of energy with the field (Beck & Krause 2005).',
     use.turbulence && 'Turbulence below the resolution adds to the emission and disperses Faraday depth along each sightline (Burn 1966; Sokoloff et al. 1998).',
     use.freeFree && 'Thermal gas absorbs and emits (Mezger & Henderson 1967).',
-    `Along a sightline the integral is accurate to ${use.tolerance} of each channel’s largest intensity.`,
+    `At every channel I is integrated to ${use.tolerance} of its largest value, Q and U to ${use.tolerance} of the largest polarized intensity (or of a thousandth of I, where that is more).`,
     use.beam && 'Q and U were averaged over each channel and smoothed by the beam separately, before polarized intensities and angles were taken.',
     use.noise && 'Seeded Gaussian noise correlated like the beam was added.',
     use.debiased && 'Polarized intensities are corrected for the bias of noise (Wardle & Kronberg 1974).',

@@ -4,6 +4,7 @@ import { barLabel, colourBar } from './colour-bar.ts';
 import { sharedColourScale } from './colour-scale.ts';
 import { mapFrame } from './map-frame.ts';
 import type { MapLayers } from './map-frame.ts';
+import { northTitle } from './map-panel.ts';
 import type { PanelMap } from './panel-map.ts';
 import { fixed, moved, svgDocument, textElement, textWidth } from './svg.ts';
 import type { Drawing } from './svg.ts';
@@ -35,6 +36,8 @@ export interface Overview {
 }
 
 const BOX = 190;
+/** Least height of a row: a colour bar with ticks. */
+const LOWEST = 92;
 const LEFT = 56;
 const GAP = 16;
 const BAR_ROOM = 64;
@@ -94,7 +97,8 @@ function drawRow(row: OverviewRow, mapsWidth: number, last: boolean, theme: Them
     const scale = sharedColourScale(views.map((view) => view.map));
     const first = row.maps.findIndex((view) => view !== undefined);
     const heights = views.map((view) => (BOX * view.map.ny) / Math.max(view.map.nx, view.map.ny));
-    tallest = Math.max(tallest, ...heights);
+    const [firstHeight] = heights;
+    tallest = Math.max(tallest, LOWEST, ...heights);
     row.maps.forEach((view, k) => {
       if (!view) return;
       const frame = mapFrame(view.map, {
@@ -104,10 +108,10 @@ function drawRow(row: OverviewRow, mapsWidth: number, last: boolean, theme: Them
       body += moved(frame.body, left, top);
       if (last) body += textElement(left + frame.width / 2, top + frame.height + 29, 'offset east (arcsec)', { 'font-size': 10, fill: theme.soft, 'text-anchor': 'middle' });
     });
-    const bar = colourBar(scale, barLabel(scale), BOX - 32, true, theme);
+    const bar = colourBar(scale, barLabel(scale), tallest - 32, true, theme);
     body += moved(bar.body, LEFT + row.maps.length * (BOX + GAP), top);
-    body += textElement(0, 0, 'offset north (arcsec)', {
-      'font-size': 10, fill: theme.soft, 'text-anchor': 'middle', transform: `translate(${fixed(first * (BOX + GAP) + 14)},${fixed(top + BOX / 2)}) rotate(-90)`,
+    body += textElement(0, 0, northTitle(firstHeight, 'arcsec'), {
+      'font-size': 10, fill: theme.soft, 'text-anchor': 'middle', transform: `translate(${fixed(first * (BOX + GAP) + 14)},${fixed(top + firstHeight / 2)}) rotate(-90)`,
     });
   }
   if (row.profile) {

@@ -77,6 +77,6 @@ tbody th{font-weight:500}
 .line-up tbody th{min-width:136px;width:136px}
 .line-up thead th{color:var(--ink);vertical-align:bottom}
 .line-up svg{display:block}
-.line-up th svg{margin:6px 0 0 -12px}
+.line-up th svg{margin-top:6px}
 td ul{margin:0;padding-left:14px}
 `;

@@ -84,8 +84,6 @@ export interface DocumentOptions {
   readonly ink: string;
   /** Ground; undefined leaves it to what lies under the picture. */
   readonly paper?: string;
-  /** Width over which the picture is spread where it stands in a page; its own size otherwise. */
-  readonly fluid?: boolean;
 }
 
 /** The whole SVG text of a drawing, 11 px base type. */
@@ -99,7 +97,6 @@ export function svgDocument(drawing: Drawing, options: DocumentOptions): string 
       xmlns: 'http://www.w3.org/2000/svg',
       role: 'img',
       'aria-label': options.title,
-      ...(options.fluid ? { style: `width:100%;max-width:${fixed(width)}px;height:auto` } : {}),
       width,
       height,
       viewBox: `0 0 ${fixed(width)} ${fixed(height)}`,

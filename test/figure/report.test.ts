@@ -41,6 +41,17 @@ describe('overview', () => {
     expect(svg).toContain('DejaVu Sans');
   });
 
+  it('gives low maps rows as high as their colour bar', () => {
+    const low = { ...p, values: new Float64Array(97 * 7).fill(1e-4), ny: 7 };
+    const row = { label: 'a', maps: [{ map: low }] };
+    const [one, two] = [[row], [row, row]].map((rows) => overviewSvg({ title: 't', columns: ['model'], rows }));
+    const height = (svg: string): number => Number(/ height="([\d.]+)"/.exec(svg)?.[1]);
+    const bars = [...two.matchAll(/<image[^>]*width="9" height="([\d.]+)"/g)].map((m) => Number(m[1]));
+    expect(bars.length).toBe(2);
+    expect(height(two) - height(one)).toBeGreaterThan(bars[0] + 24);
+    expect(two).toContain('>north (arcsec)<');
+  });
+
   it('refuses a row of maps in different units', () => {
     expect(() => overviewSvg({ ...overview, rows: [{ label: 'x', maps: [{ map: p }, { map: rm }] }] })).toThrow(/cannot share/);
   });
