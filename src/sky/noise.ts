@@ -35,7 +35,7 @@ export function addNoise(cube: StokesCube, rms: number, seed: number): StokesCub
  * Without a beam the numbers themselves, in pixel order.
  */
 export function noiseMaker(nx: number, ny: number, beam?: PixelBeam): (gaussian: () => number) => Float64Array {
-  if (!beam) return (gaussian) => Float64Array.from({ length: nx * ny }, gaussian);
+  if (!beam) return (gaussian) => drawPlane(nx * ny, gaussian);
   const reach = beamReach(beam);
   const width = goodSize(Math.max(nx + reach.x, 2 * reach.x));
   const height = goodSize(Math.max(ny + reach.y, 2 * reach.y));
@@ -44,7 +44,7 @@ export function noiseMaker(nx: number, ny: number, beam?: PixelBeam): (gaussian:
     const image: ComplexImage = {
       width,
       height,
-      real: Float64Array.from({ length: width * height }, gaussian),
+      real: drawPlane(width * height, gaussian),
       imaginary: new Float64Array(width * height),
     };
     transformImage(image, 'forward');
@@ -56,6 +56,12 @@ export function noiseMaker(nx: number, ny: number, beam?: PixelBeam): (gaussian:
     }
     return noise;
   };
+}
+
+function drawPlane(length: number, gaussian: () => number): Float64Array {
+  const plane = new Float64Array(length);
+  for (let k = 0; k < length; k++) plane[k] = gaussian();
+  return plane;
 }
 
 /**

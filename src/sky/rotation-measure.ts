@@ -23,8 +23,11 @@ export interface DepthSearch {
   readonly depths: Float64Array;
 }
 
-/** Coarse depths per turn between the two ends of the lambda^2 range: pi/0.5, so that no peak is missed. */
-const depthStep = 0.5;
+/**
+ * Step of the coarse depths over 1/(range of lambda^2). A peak that falls midway between two of them
+ * keeps cos(0.375) = 0.93 of its height at worst, more than the share below: none is missed.
+ */
+const depthStep = 0.75;
 /** Depths whose coherence is this share of the best are all fitted. */
 const candidateShare = 0.9;
 /** The n of n pi settle in two or three rounds. */
@@ -134,13 +137,17 @@ function candidateDepths(depths: Float64Array, { lambda2, chi, weights }: AngleS
       x = turned;
     }
   }
-  const coherence = re.map((value, j) => Math.hypot(value, im[j]));
-  const threshold = candidateShare * coherence.reduce((a, b) => Math.max(a, b));
+  // Squares of the coherence compare as well, without a root for each depth.
+  let largest = 0;
+  for (let j = 0; j < depths.length; j++) {
+    re[j] = re[j] * re[j] + im[j] * im[j];
+    if (re[j] > largest) largest = re[j];
+  }
   const candidates: number[] = [];
-  coherence.forEach((value, j) => {
-    const isPeak = !(coherence[j - 1] > value) && !(coherence[j + 1] > value);
-    if (isPeak && value >= threshold) candidates.push(depths[j]);
-  });
+  for (let j = 0; j < depths.length; j++) {
+    if (re[j] < candidateShare ** 2 * largest) continue;
+    if (!(re[j - 1] > re[j]) && !(re[j + 1] > re[j])) candidates.push(depths[j]);
+  }
   return candidates;
 }
 
