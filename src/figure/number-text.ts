@@ -18,12 +18,13 @@ export function fixedText(value: number, decimals: number): string {
   return /^-[0.]+$/.test(text) ? text.slice(1) : text.replace('-', MINUS);
 }
 
-/** A unit of our files as it is shown: `rad m^-2` → rad m⁻², `uG` → µG, `deg` → °, `arcsec` → ″. */
+/** A unit of our files as it is shown: `rad m^-2` → rad m⁻², `rad/m2` → rad/m², `uG` → µG, `deg` → °, `arcsec` → ″. */
 export function unitText(unit: string): string {
   if (unit === '1') return '';
   return unit
     .replace(/\*\*|\^/g, '^')
     .replace(/\^\{?(-?[\d.]+)\}?/g, (_, power: string) => superscript(power))
+    .replace(/\b([cm]?m|k?pc|s)(-?\d)\b/g, (_, base: string, power: string) => base + superscript(power))
     .replace(/\bu(?=(G|Jy|K|m)\b)/g, 'µ')
     .replace(/\bdeg\b/g, '°')
     .replace(/\barcsec\b/g, '″');

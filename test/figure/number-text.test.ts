@@ -44,8 +44,8 @@ describe('numbers and units', () => {
   });
 
   it('shows units as printed', () => {
-    expect(['rad m^-2', 'rad/m^2', 'uG', 'uJy/beam', 'cm^-3', 'deg', 'arcsec', '1', 'GHz', 'uG kpc'].map(unitText)).toEqual([
-      'rad m⁻²', 'rad/m²', 'µG', 'µJy/beam', 'cm⁻³', '°', '″', '', 'GHz', 'µG kpc',
+    expect(['rad m^-2', 'rad/m^2', 'rad/m2', 'cm-3', 'uG', 'uJy/beam', 'cm^-3', 'deg', 'arcsec', '1', 'GHz', 'uG kpc'].map(unitText)).toEqual([
+      'rad m⁻²', 'rad/m²', 'rad/m²', 'cm⁻³', 'µG', 'µJy/beam', 'cm⁻³', '°', '″', '', 'GHz', 'µG kpc',
     ]);
     expect(joinUnit('5', 'kpc')).toBe('5 kpc');
   });
