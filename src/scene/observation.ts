@@ -43,12 +43,16 @@ function readImage(input: YamlInput, { pixels, pixel }: ObservationFile['image']
   return { nx, ny, pixelArcsec, ...(inKpc && { pixelKpc: pixel.value }) };
 }
 
+/** A circular beam may leave its angle out. */
 function readBeam(input: YamlInput, { major, minor, angle }: NonNullable<ObservationFile['beam']>): Beam {
   if (minor > major) {
     const [small, large] = [formatQuantity(major, 'arcsec'), formatQuantity(minor, 'arcsec')];
     throw new InputError(`the minor axis of the beam, ${large}, is larger than its major axis, ${small}`, placeAt(input, [...TOP, 'beam', 'minor']));
   }
-  return { majorArcsec: major, minorArcsec: minor, angle };
+  if (angle === undefined && minor < major) {
+    throw new InputError('observation.beam.angle is missing: an elliptical beam needs it', placeAt(input, [...TOP, 'beam']));
+  }
+  return { majorArcsec: major, minorArcsec: minor, angle: angle ?? 0 };
 }
 
 function readNoise(input: YamlInput, noise: ObservationFile['noise'], beam: Beam | undefined): number | undefined {

@@ -1,8 +1,8 @@
-import { isMap, isSeq, isScalar, Pair, parseDocument, Scalar, visit, YAMLMap } from 'yaml';
+import { isMap, isSeq, isScalar, Pair, Scalar, visit, YAMLMap } from 'yaml';
 import type { Node } from 'yaml';
 import { InputError, nearestHint } from '../units/input-error.ts';
 import { quoteValue } from '../units/quote.ts';
-import { plainValue } from '../units/yaml-input.ts';
+import { plainValue, readYaml } from '../units/yaml-input.ts';
 import type { YamlInput } from '../units/yaml-input.ts';
 
 /** A value that takes the place of one in the file before the file is checked. */
@@ -45,7 +45,7 @@ function applyOverride(input: YamlInput, { path, value, flag }: Override): void 
   };
   const keys = path.split('.').map((key) => key.trim());
   if (keys.some((key) => key === '')) fail(`"${path}" is no path: names joined by single dots are wanted, such as galaxy.inclination`);
-  const node = readValue(value, fail);
+  const node = readValue(value, flag);
   let holder: unknown = input.document.contents;
   keys.forEach((key, depth) => {
     const last = depth === keys.length - 1;
@@ -91,17 +91,20 @@ function itemNamed(items: readonly unknown[], key: string, soFar: string, fail: 
   return fail(`${soFar} has nothing named ${quoteValue(key)}${nearestHint(key.slice(0, 60), known)}; it has ${known.join(', ') || 'no items'}`);
 }
 
-function readValue(text: string, fail: (reason: string) => never): Node {
-  const document = parseDocument(text, { prettyErrors: false, logLevel: 'error' });
-  const [problem] = [...document.errors, ...document.warnings];
-  if (problem) return fail(`${quoteValue(text)} is not valid YAML: ${problem.message}`);
-  const node = document.contents;
-  if (node === null || (isScalar(node) && node.value === null)) return fail('there is no value after =');
-  let problematic = false;
-  visit(node, {
-    Alias: () => void (problematic = true),
-    Pair: (_, pair) => void (problematic ||= !isScalar(pair.key) || typeof pair.key.value !== 'string'),
-  });
-  if (problematic) return fail(`${quoteValue(text)} is not allowed: plain values, lists and keys only`);
+function readValue(text: string, flag: string): Node {
+  const input = placed(flag, () => readYaml(text, ''));
+  const node = input.document.contents;
+  if (node === null || (isScalar(node) && node.value === null)) throw new InputError('there is no value after =', { flag });
+  placed(flag, () => plainValue(input));
+  visit(node, { Alias: () => { throw new InputError(`${quoteValue(text)} is not allowed: aliases have no use here`, { flag }); } });
   return node;
+}
+
+/** Errors of a flag's value are placed at the flag. */
+function placed<T>(flag: string, compute: () => T): T {
+  try {
+    return compute();
+  } catch (error) {
+    throw error instanceof InputError ? new InputError(error.reason, { flag }) : error;
+  }
 }

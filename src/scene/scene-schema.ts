@@ -53,7 +53,7 @@ const observation = keys(
     beam: keys({
       major: limited(sceneLimits.beamMajor),
       minor: limited(sceneLimits.beamMinor),
-      angle: limited(sceneLimits.beamAngle),
+      angle: limited(sceneLimits.beamAngle).optional(),
     }).optional(),
     noise: quantityOfEither([sceneLimits.noiseBeam, sceneLimits.noiseSteradian]).optional(),
     foreground: keys({ depth: limited(sceneLimits.foregroundDepth) }, ['gradient', 'random']).optional(),

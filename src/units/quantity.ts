@@ -1,5 +1,4 @@
-import { InputError, nearestHint } from './input-error.ts';
-import { baseUnits } from './base-units.ts';
+import { InputError } from './input-error.ts';
 import type { Unit } from './unit.ts';
 import { canonicalUnitText, convertUnit, parseUnit, sameDimensions } from './unit.ts';
 
@@ -27,8 +26,7 @@ export function parseQuantity(text: string, targetUnit: string): number {
   if (unitText === '') throw new InputError(`"${text}" has no unit: ${wanted(targetUnit)}`);
   const unit = parseUnit(unitText);
   if (!sameDimensions(unit, target)) {
-    const near = nearestHint(unitText, dimensionUnits(targetUnit));
-    throw new InputError(`"${text}" is ${describeUnit(unitText)}: ${wanted(targetUnit)}${near}`);
+    throw new InputError(`"${text}" is ${describeUnit(unitText)}: ${wanted(targetUnit)}`);
   }
   return finite(convertUnit(value, unit, target), text);
 }
@@ -101,12 +99,6 @@ function finite(value: number, text: string): number {
 
 function dimensionKey(unit: Unit): string {
   return [...unit.dimensions].map(([dimension, power]) => `${dimension}${power}`).sort().join(' ');
-}
-
-/** The single unit words that measure the same as `unit`. */
-function dimensionUnits(unit: string): string[] {
-  const target = parseUnit(unit);
-  return [...baseUnits.keys()].filter((word) => sameDimensions(parseUnit(word), target));
 }
 
 const dimensionNames: ReadonlyMap<string, string> = new Map(

@@ -1,9 +1,10 @@
-import { isAlias, isMap, isScalar, isSeq, LineCounter, parseDocument, visit, YAMLParseError } from 'yaml';
+import { isAlias, isMap, isScalar, isSeq, LineCounter, visit, YAMLParseError } from 'yaml';
 import type { Document, Node, Pair } from 'yaml';
 import type { z } from 'zod';
 import { InputError } from './input-error.ts';
 import type { Place } from './input-error.ts';
 import { quoteValue } from './quote.ts';
+import { composeYaml } from './yaml-text.ts';
 
 /** Keys and list indices from the top of a document to a value. */
 export type YamlPath = readonly (string | number)[];
@@ -17,21 +18,16 @@ export interface YamlInput {
   readonly flags: Map<unknown, string>;
 }
 
-const MAX_TEXT = 200_000;
 const MAX_ALIASES = 100;
 const MAX_DEPTH = 40;
 
 /**
- * Reads YAML 1.2 text. Throws InputError with file:line:column where the text is no YAML, holds
- * several documents, repeats a key, or has a key that is not a plain word.
+ * Reads YAML 1.2 text. Throws InputError with file:line:column where the text is no YAML, too long
+ * or too deep, holds several documents, repeats a key, or has a key that is not a plain word.
  */
 export function readYaml(text: string, fileName: string): YamlInput {
-  if (text.length > MAX_TEXT) {
-    throw new InputError(`the file has ${text.length} characters; at most ${MAX_TEXT} are allowed`, { file: fileName });
-  }
   const lines = new LineCounter();
-  const options = { lineCounter: lines, prettyErrors: false, logLevel: 'error', version: '1.2' } as const;
-  const document = withoutCrash(fileName, () => parseDocument(text, options));
+  const document = composeYaml(text, fileName, lines);
   const input: YamlInput = { fileName, document, lines, flags: new Map() };
   const [problem] = [...document.errors, ...document.warnings];
   if (problem) {
@@ -41,14 +37,12 @@ export function readYaml(text: string, fileName: string): YamlInput {
     const reason = isDuplicate ? `the key "${word}" is given twice` : `not valid YAML: ${problem.message}`;
     throw new InputError(reason, placeOfOffset(input, from));
   }
-  withoutCrash(fileName, () =>
-    visit(document, {
-      Pair: (_, pair) => {
-        if (isScalar(pair.key) && typeof pair.key.value === 'string') return;
-        throw new InputError('a key must be a plain word', placeOfNode(input, pair.key));
-      },
-    }),
-  );
+  visit(document, {
+    Pair: (_, pair) => {
+      if (isScalar(pair.key) && typeof pair.key.value === 'string') return;
+      throw new InputError('a key must be a plain word', placeOfNode(input, pair.key));
+    },
+  });
   return input;
 }
 
@@ -57,7 +51,7 @@ export function readYaml(text: string, fileName: string): YamlInput {
  * nested too deeply.
  */
 export function plainValue(input: YamlInput): unknown {
-  const value: unknown = withoutCrash(input.fileName, () => input.document.toJS({ maxAliasCount: MAX_ALIASES }));
+  const value = expand(input);
   refuseDeep(value, MAX_DEPTH, input.fileName);
   return value;
 }
@@ -183,14 +177,11 @@ function refuseDeep(value: unknown, left: number, file: string): void {
   for (const child of Object.values(value)) refuseDeep(child, left - 1, file);
 }
 
-/** The YAML reader throws errors of its own on hostile text (alias bombs, bottomless nesting). */
-function withoutCrash<T>(file: string, compute: () => T): T {
+/** The document as values; the YAML reader throws errors of its own at alias bombs. */
+function expand({ document, fileName }: YamlInput): unknown {
   try {
-    return compute();
+    return document.toJS({ maxAliasCount: MAX_ALIASES });
   } catch (error) {
-    if (error instanceof InputError) throw error;
-    const deep = error instanceof RangeError;
-    const reason = deep ? 'values are nested too deeply' : `not valid YAML: ${(error as Error).message}`;
-    throw new InputError(reason, { file });
+    throw new InputError(`not valid YAML: ${(error as Error).message}`, { file: fileName });
   }
 }
