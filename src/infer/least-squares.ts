@@ -52,7 +52,7 @@ export interface LeastSquaresResult {
  * Least squares within bounds: Levenberg-Marquardt (Marquardt 1963) with Moré's (1978) scaling by
  * column norms, Nielsen's (1999) damping by the gain ratio, and an active set: a parameter that
  * would cross its bound is put on it and the step of the others solved again. Throws where the
- * start is out of bounds or its residuals are not finite, and the signal's reason when aborted.
+ * start is out of bounds, its residuals or any derivatives are not finite, and the signal's reason when aborted.
  */
 export async function leastSquares(
   residuals: ResidualFunction, start: Float64Array, options: LeastSquaresOptions = {},
@@ -111,7 +111,8 @@ export async function leastSquares(
         damping *= growth;
         growth *= 2;
       }
-      if (small) reason = 'step';
+      // Beyond any damping there is no step left to try.
+      if (small || damping > 1e200) reason = 'step';
       else if (flat) reason = 'chi2';
     }
     iterations++;
@@ -157,6 +158,8 @@ interface Linearised {
 function linearise(columns: Float64Array[], r: Float64Array): Linearised {
   const norms = Float64Array.from(columns, (column) => Math.sqrt(chiSquared(column)));
   const gradient = Float64Array.from(columns, (column) => column.reduce((sum, value, k) => sum + value * r[k], 0));
+  const bad = norms.findIndex((norm) => !Number.isFinite(norm));
+  if (bad >= 0) throw new Error(`The derivatives of parameter ${bad + 1} are not finite.`);
   return { norms, gradient, triangle: triangulate(columns, Float64Array.from(r)) };
 }
 

@@ -41,7 +41,7 @@ export function sameGrid(map: ReadMap, { wcs, nx, ny }: PixelAxes): boolean {
 
 /** The unit of a map's values and the brightness unit it is brought to. Throws InputError where it has none. */
 export function mapUnit(map: ReadMap, { unit, place }: DataEntry): { text: string; brightness: BrightnessUnit } {
-  const text = unit?.text ?? map.unit;
+  const text = unit?.text ?? knownSpelling(map.unit);
   if (text === undefined || text === '') {
     throw new InputError(`${map.file} does not say its unit; add \`unit: Jy/beam\` (or what it is) to its data entry`, place);
   }
@@ -54,6 +54,12 @@ export function mapUnit(map: ReadMap, { unit, place }: DataEntry): { text: strin
     }
   }
   throw new InputError(`${map.file} is in ${text}; allowed: Jy/beam and Jy/sr with their prefixes`, unit?.place ?? place);
+}
+
+/** Old headers write JY/BEAM; with a prefix capitals would be ambiguous (milli or mega) and are refused. */
+function knownSpelling(unit: string | undefined): string | undefined {
+  if (unit !== undefined && /^jy\/beam$/i.test(unit)) return 'Jy/beam';
+  return unit !== undefined && /^jy\/sr$/i.test(unit) ? 'Jy/sr' : unit;
 }
 
 /** The channels of a map: its header's, or the entry's frequency. Throws InputError where neither says. */

@@ -2,6 +2,7 @@ import { describe, expect, it } from 'vitest';
 import { leastSquares } from '../../src/infer/least-squares.ts';
 import type { LeastSquaresOptions } from '../../src/infer/least-squares.ts';
 import { randomStream } from '../../src/math/random.ts';
+import { needPython, pythonJson } from '../support/tools.ts';
 import { strdProblems } from '../reference/infer/strd.ts';
 
 const f64 = (...values: number[]): Float64Array => Float64Array.from(values);
@@ -82,6 +83,40 @@ describe('leastSquares within bounds', () => {
   });
 });
 
+describe('leastSquares against scipy.optimize.least_squares', () => {
+  it('finds the same bounded minima of a decaying wave', async (context) => {
+    needPython(context, 'numpy', 'scipy');
+    const t = Array.from({ length: 40 }, (_, k) => k / 4);
+    const random = randomStream(9, 'waves');
+    const problems = Array.from({ length: 12 }, () => {
+      const truth = [2 + random.uniform(), 0.2 + 0.2 * random.uniform(), 1.5 + 0.2 * random.uniform(), random.gaussian() / 4];
+      const y = t.map((x) => truth[0] * Math.exp(-truth[1] * x) * Math.cos(truth[2] * x + truth[3]) + 0.1 * random.gaussian());
+      return { y, lower: [0, 0.25, 1, -0.2], upper: [2.5, 1, 2, 0.2], start: [1, 0.5, 1.6, 0.1] };
+    });
+    const code = `import json, sys
+import numpy as np
+from scipy.optimize import least_squares
+d = json.load(sys.stdin); t = np.array(d['t']); out = []
+for p in d['problems']:
+    f = lambda v: v[0]*np.exp(-v[1]*t)*np.cos(v[2]*t+v[3]) - np.array(p['y'])
+    r = least_squares(f, p['start'], bounds=(p['lower'], p['upper']), jac='3-point', xtol=1e-14, ftol=1e-14, gtol=1e-12)
+    out.append({'x': list(r.x), 'chi2': 2*r.cost})
+print(json.dumps(out))`;
+    const expected = pythonJson(code, [], JSON.stringify({ t, problems })) as { x: number[]; chi2: number }[];
+    let bound = 0;
+    for (const [k, { y, lower, upper, start }] of problems.entries()) {
+      const residuals = async (v: Float64Array): Promise<Float64Array> =>
+        f64(...t.map((x, i) => v[0] * Math.exp(-v[1] * x) * Math.cos(v[2] * x + v[3]) - y[i]));
+      const result = await leastSquares(residuals, f64(...start), { lower: f64(...lower), upper: f64(...upper), central: true, tolerance: 1e-13 });
+      // scipy's interior method stops about 1e-7 short of a bound.
+      expect(relative(result.chi2, expected[k].chi2)).toBeLessThan(1e-6);
+      expected[k].x.forEach((value, j) => expect(Math.abs(result.values[j] - value)).toBeLessThan(1e-5));
+      bound += result.atBound.filter((side) => side !== false).length;
+    }
+    expect(bound).toBeGreaterThan(3);
+  });
+});
+
 describe('leastSquares as a job', () => {
   const run = (options: LeastSquaresOptions) => leastSquares(rosenbrock, f64(-1.2, 1), options);
 
@@ -126,6 +161,19 @@ describe('leastSquares as a job', () => {
     // sqrt of a negative number beyond x = 0; the minimum is at x = 0.01.
     const result = await leastSquares(async (v) => f64(Math.sqrt(v[0]) - 0.1), f64(4));
     expect(Math.abs(result.values[0] - 0.01)).toBeLessThan(1e-6);
+  });
+
+  it('ends at a minimum that is 0 at 0, and where a parameter has no effect', async () => {
+    const result = await leastSquares(async (v) => f64(v[0] ** 3, v[0]), f64(1, 0));
+    expect(result.converged).toBe(true);
+    expect(Math.abs(result.values[0])).toBeLessThan(1e-8);
+    expect(result.values[1]).toBe(0);
+    expect(result.covariance).toBeUndefined();
+    expect((await leastSquares(async () => f64(1, 2), f64(0))).converged).toBe(true);
+  });
+
+  it('stops where derivatives are not finite', async () => {
+    await expect(leastSquares(async (v) => f64(v[0] === 1 ? 1 : NaN), f64(1))).rejects.toThrow('derivatives of parameter 1');
   });
 
   it('refuses a start that is out of bounds or not finite', async () => {

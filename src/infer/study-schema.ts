@@ -1,0 +1,81 @@
+import { z } from 'zod';
+import { limited, sceneLimits } from '../scene/limits.ts';
+import { quoteValue } from '../units/quote.ts';
+import { keys, listOf, oneOf, plainNumber, quantity, words } from '../units/schema.ts';
+
+/** Most data entries, files in one, hypotheses and free parameters. */
+const MAX_ENTRIES = 100;
+const MAX_FILES = 100_000;
+const MAX_HYPOTHESES = 100;
+
+/** What the format knows and this version does not compute, and what to do instead. */
+const laterQuantities: ReadonlyMap<unknown, string> = new Map([
+  ['P', 'P is not compared in this version; give Q and U, which hold the same light with Gaussian noise'],
+  ['chi', 'chi is not compared in this version; give Q and U, which hold the same angles with Gaussian noise'],
+  ['RM', 'RM is not compared in this version; give Q and U of the bands it was made from'],
+]);
+const laterMethods: ReadonlyMap<unknown, string> = new Map([
+  ['walkers', 'walkers are not available in this version; use least-squares, which gives errors and correlations at the best fit'],
+  ['nested', 'nested sampling is not available in this version; use least-squares, which ranks by BIC'],
+]);
+
+const stokes = z.enum(['I', 'Q', 'U'], {
+  error: ({ input }) =>
+    input === undefined ? 'is missing: I, Q or U is wanted' : (laterQuantities.get(input) ?? `${quoteValue(input)} is not allowed: quantity is one of I, Q, U`),
+});
+
+const method = z.enum(['least-squares'], {
+  error: ({ input }) => laterMethods.get(input) ?? `${quoteValue(input)} is not allowed: method is least-squares`,
+});
+
+const dataEntry = keys({
+  quantity: stokes,
+  file: words('the name of a FITS file').optional(),
+  files: listOf(words('the name of a FITS file'), 'files, one per channel', 1, MAX_FILES).optional(),
+  noise: words('an rms such as 20 uJy/beam').optional(),
+  noiseMap: words('the name of a FITS file').optional(),
+  frequency: limited(sceneLimits.frequency).optional(),
+  width: limited(sceneLimits.width).optional(),
+  beam: keys({
+    major: limited(sceneLimits.beamMajor),
+    minor: limited(sceneLimits.beamMinor),
+    angle: limited(sceneLimits.beamAngle),
+  }).optional(),
+  mask: words('the name of a FITS file').optional(),
+  zeroLevel: words('a brightness such as 10 uJy/beam').optional(),
+  unit: words('a unit such as Jy/beam').optional(),
+  convention: oneOf(['IAU', 'U-reversed'], 'convention').optional(),
+  angleOf: oneOf(['E', 'B'], 'angleOf').optional(),
+  correlation: quantity({ unit: 'arcsec', min: 0, max: 36000 }, 'arcsec', 'FWHM of the autocorrelation of the noise; 0: independent pixels').optional(),
+});
+
+/** Kinds of data that the format knows and this version does not read, and what to do instead. */
+export const laterData: ReadonlyMap<string, string> = new Map([
+  ['sources', '`sources` (rotation measures of background sources) are not compared in this version; give Q and U maps'],
+  ['sectors', '`sectors` (tables of profiles) are not compared in this version; give the Q and U maps they were made from'],
+]);
+
+/** A text with its unit, or a bare number where there is none. */
+const value = z.union([z.string(), z.number()]);
+const pair = z.tuple([value, value]);
+const prior = z.union([pair, z.strictObject({ normal: pair }), z.strictObject({ logUniform: pair })], {
+  error: ({ input }) => `${quoteValue(input)} is given where [low, high], {normal: [mean, sigma]} or {logUniform: [low, high]} is wanted`,
+});
+
+const hypothesis = keys({
+  name: words('a name'),
+  scene: words('the name of a scene file'),
+  free: z
+    .record(z.string(), prior, { error: ({ input }) => `${quoteValue(input)} is given where paths with ranges are wanted, such as {galaxy.inclination: [30 deg, 45 deg]}` })
+    .default({}),
+});
+
+/** The study file: see architecture.md, "Files". */
+export const studySchema = keys({
+  'gyrelight-study': z.literal(1),
+  title: z.string({ error: ({ input }) => `${quoteValue(input)} is given where a text is wanted` }).default(''),
+  data: listOf(dataEntry, 'data entries', 1, MAX_ENTRIES),
+  hypotheses: listOf(hypothesis, 'hypotheses', 1, MAX_HYPOTHESES),
+  method: method.default('least-squares'),
+  seed: plainNumber({ unit: '', min: 0, max: Number.MAX_SAFE_INTEGER, whole: true }).default(1),
+});

@@ -1,0 +1,96 @@
+import { InputError } from '../units/input-error.ts';
+import { checkVersion, checkYaml, childOf, placeAt, readYaml } from '../units/yaml-input.ts';
+import type { YamlInput, YamlPath } from '../units/yaml-input.ts';
+import type { z } from 'zod';
+import { laterData, studySchema } from './study-schema.ts';
+import type { DataEntry, FreeText, Hypothesis, PlacedText, Study } from './study-types.ts';
+
+type StudyFile = z.output<typeof studySchema>;
+type FileEntry = StudyFile['data'][number];
+type FileHypothesis = StudyFile['hypotheses'][number];
+
+/**
+ * Reads a study: data, hypotheses with their free parameters, method. Values whose unit depends on
+ * the maps or the scene stay text with their place. Throws InputError with file:line:column.
+ */
+export function parseStudy(text: string, fileName: string): Study {
+  const input = readYaml(text, fileName);
+  checkVersion(input, 'gyrelight-study', 1);
+  refuseLaterData(input);
+  const file = checkYaml(input, studySchema);
+  const hypotheses = file.hypotheses.map((hypothesis, k) => readHypothesis(input, hypothesis, k));
+  hypotheses.forEach(({ name }, k) => {
+    if (hypotheses.findIndex((other) => other.name === name) === k) return;
+    throw new InputError(`two hypotheses are named "${name}"`, placeAt(input, ['hypotheses', k, 'name']));
+  });
+  return {
+    title: file.title,
+    data: file.data.map((entry, k) => readEntry(input, entry, k)),
+    hypotheses,
+    method: file.method,
+    seed: file.seed,
+  };
+}
+
+/** Says what to use instead of kinds of data that this version does not read. */
+function refuseLaterData(input: YamlInput): void {
+  const { document } = input;
+  const data = childOf(document, document.contents, 'data');
+  for (let k = 0, entry: unknown; (entry = childOf(document, data, k)) !== undefined; k++) {
+    for (const [key, reason] of laterData) {
+      if (childOf(document, entry, key) !== undefined) throw new InputError(reason, placeAt(input, ['data', k], key));
+    }
+  }
+}
+
+function readEntry(input: YamlInput, entry: FileEntry, index: number): DataEntry {
+  const path: YamlPath = ['data', index];
+  const refuse = (reason: string, key?: keyof FileEntry): never => {
+    throw new InputError(reason, placeAt(input, key === undefined ? path : [...path, key]));
+  };
+  const placed = (key: 'noise' | 'zeroLevel' | 'unit'): PlacedText | undefined => {
+    const given = entry[key];
+    return given === undefined ? undefined : { text: given, place: placeAt(input, [...path, key]) };
+  };
+  const { quantity, file, files, beam, noise, noiseMap, convention, angleOf } = entry;
+  if ((file === undefined) === (files === undefined)) refuse('a data entry needs `file`, or `files` with one per channel, and not both');
+  if (noise !== undefined && noiseMap !== undefined) refuse('`noise` and `noiseMap` are both given; one is wanted', 'noiseMap');
+  if (noise === undefined && noiseMap === undefined) {
+    refuse('no noise is stated; add `noise: 20 uJy/beam` (or what it is), or `noiseMap: FILE`');
+  }
+  if (quantity === 'I' && convention !== undefined) refuse('`convention` means nothing for I; it belongs to Q and U', 'convention');
+  if (quantity === 'I' && angleOf !== undefined) refuse('`angleOf` means nothing for I; it belongs to Q and U', 'angleOf');
+  if (beam && beam.minor > beam.major) refuse(`the beam's minor axis (${beam.minor} arcsec) is longer than its major (${beam.major} arcsec)`, 'beam');
+  return {
+    quantity,
+    files: files ?? [file!],
+    noise: placed('noise'),
+    noiseMap,
+    frequencyHz: entry.frequency,
+    widthHz: entry.width,
+    beam: beam && { majorArcsec: beam.major, minorArcsec: beam.minor, angle: beam.angle },
+    mask: entry.mask,
+    zeroLevel: placed('zeroLevel'),
+    unit: placed('unit'),
+    convention,
+    angleOf,
+    correlationArcsec: entry.correlation,
+    place: placeAt(input, path),
+  };
+}
+
+function readHypothesis(input: YamlInput, { name, scene, free }: FileHypothesis, index: number): Hypothesis {
+  const path: YamlPath = ['hypotheses', index];
+  return {
+    name,
+    scene,
+    free: Object.entries(free).map(([parameter, prior]): FreeText => {
+      const kind = Array.isArray(prior) ? 'uniform' : 'normal' in prior ? 'normal' : 'logUniform';
+      const pair = Array.isArray(prior) ? prior : 'normal' in prior ? prior.normal : prior.logUniform;
+      const at: YamlPath = [...path, 'free', parameter, ...(kind === 'uniform' ? [] : [kind])];
+      const placed = (k: 0 | 1): PlacedText => ({ text: String(pair[k]), place: placeAt(input, [...at, k]) });
+      return { path: parameter, kind, values: [placed(0), placed(1)], place: placeAt(input, [...path, 'free'], parameter) };
+    }),
+    place: placeAt(input, path),
+  };
+}

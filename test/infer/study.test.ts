@@ -1,0 +1,123 @@
+import { describe, expect, it } from 'vitest';
+import { resolveFree } from '../../src/infer/free-parameters.ts';
+import type { PathFacts } from '../../src/infer/free-parameters.ts';
+import { parseStudy } from '../../src/infer/study.ts';
+
+const sample = `gyrelight-study: 1
+title: Which halo?
+data:
+  - {quantity: Q, file: q.fits, noise: 20 uJy/beam}
+  - quantity: U
+    files: [u1.fits, u2.fits]
+    noiseMap: rms.fits
+    frequency: 1.4 GHz
+    width: 20 MHz
+    beam: {major: 15 arcsec, minor: 12 arcsec, angle: 30 deg}
+    mask: m.fits
+    zeroLevel: 5 uJy/beam
+    convention: U-reversed
+    angleOf: B
+    correlation: 20 arcsec
+hypotheses:
+  - name: cored quadrupole
+    scene: quadrupole.scene.yaml
+    free:
+      field.halo.strength: [0 uG, 6 uG]
+      galaxy.inclination: {normal: [40 deg, 2 deg]}
+      field.halo.core: {logUniform: [100 pc, 3 kpc]}
+      cosmicRays.index: [2.2, 3]
+  - {name: nothing free, scene: other.scene.yaml}
+method: least-squares
+`;
+
+/** The sample with one text in place of another, which must be there. */
+function changed(from: string, to: string): string {
+  expect(sample).toContain(from);
+  return sample.replace(from, to);
+}
+
+const parse = (text: string) => parseStudy(text, 'a.study.yaml');
+
+describe('parseStudy', () => {
+  it('reads every key', () => {
+    const study = parse(sample);
+    expect(study.data[0]).toMatchObject({ quantity: 'Q', files: ['q.fits'], noise: { text: '20 uJy/beam' } });
+    expect(study.data[0].convention).toBeUndefined();
+    expect(study.data[1]).toMatchObject({
+      quantity: 'U', files: ['u1.fits', 'u2.fits'], noiseMap: 'rms.fits', frequencyHz: 1.4e9, widthHz: 2e7, mask: 'm.fits',
+      zeroLevel: { text: '5 uJy/beam', place: { file: 'a.study.yaml', line: 12, column: 16 } },
+      convention: 'U-reversed', angleOf: 'B', correlationArcsec: 20,
+    });
+    expect(study.data[1].beam).toEqual({ majorArcsec: 15, minorArcsec: 12, angle: Math.PI / 6 });
+    expect(study.hypotheses[0].free.map(({ path, kind, values }) => [path, kind, ...values.map(({ text }) => text)])).toEqual([
+      ['field.halo.strength', 'uniform', '0 uG', '6 uG'],
+      ['galaxy.inclination', 'normal', '40 deg', '2 deg'],
+      ['field.halo.core', 'logUniform', '100 pc', '3 kpc'],
+      ['cosmicRays.index', 'uniform', '2.2', '3'],
+    ]);
+    expect(study.hypotheses[1].free).toEqual([]);
+    expect(study).toMatchObject({ title: 'Which halo?', method: 'least-squares', seed: 1 });
+  });
+
+  const wrong: [string, string, string, RegExp][] = [
+    ['a misspelt key', 'noise: 20 uJy/beam', 'noize: 20 uJy/beam', /^a\.study\.yaml:4:\d+: .*unknown key "noize" \(did you mean "noise"\?\)/],
+    ['walkers', 'method: least-squares', 'method: walkers', /:25:9: method: walkers are not available in this version; use least-squares/],
+    ['nested sampling', 'method: least-squares', 'method: nested', /nested sampling is not available in this version; use least-squares/],
+    ['an unknown method', 'method: least-squares', 'method: guess', /"guess" is not allowed: method is least-squares/],
+    ['chi', 'quantity: Q', 'quantity: chi', /:4:\d+: .*chi is not compared in this version; give Q and U/],
+    ['P', 'quantity: Q', 'quantity: P', /P is not compared in this version; give Q and U/],
+    ['RM', 'quantity: Q', 'quantity: RM', /RM is not compared in this version; give Q and U/],
+    ['sources', '{quantity: Q, file: q.fits,', '{quantity: RM, sources: s.csv,', /:4:20: .*`sources` .* not compared in this version; give Q and U/],
+    ['sectors', '{quantity: Q, file: q.fits,', '{quantity: Q, sectors: s.csv,', /`sectors` .* not compared in this version; give the Q and U/],
+    ['an unknown quantity', 'quantity: Q', 'quantity: V', /"V" is not allowed: quantity is one of I, Q, U/],
+    ['no file', 'file: q.fits, ', '', /:4:5: a data entry needs `file`, or `files`/],
+    ['no noise', ', noise: 20 uJy/beam', '', /:4:5: no noise is stated; add `noise: /],
+    ['two noises', 'noise: 20 uJy/beam', 'noise: 20 uJy/beam, noiseMap: r.fits', /both given/],
+    ['a unit that is none of a frequency', '1.4 GHz', '1.4 kpc', /:8:16: .*"1.4 kpc" is a length/],
+    ['a convention of the trade', 'U-reversed', 'COSMO', /:13:17: .*"COSMO" is not allowed: convention is one of IAU, U-reversed/],
+    ['a beam on its head', 'minor: 12 arcsec', 'minor: 16 arcsec', /:10:\d+: the beam's minor axis \(16 arcsec\) is longer/],
+    ['signs of I', 'quantity: U', 'quantity: I', /:13:\d+: `convention` means nothing for I/],
+    ['a prior of another kind', '{normal: [40 deg, 2 deg]}', '{gauss: [40 deg, 2 deg]}', /:21:\d+: .*\[low, high\], \{normal: \[mean, sigma\]\}/],
+    ['a range of three', '[0 uG, 6 uG]', '[0 uG, 6 uG, 7 uG]', /:20:\d+: .*\[low, high\]/],
+    ['a name twice', 'name: nothing free', 'name: cored quadrupole', /:24:\d+: two hypotheses are named "cored quadrupole"/],
+    ['another kind of file', 'gyrelight-study: 1', 'gyrelight: 1', /"gyrelight-study: 1" is missing; this file says "gyrelight"/],
+    ['no hypotheses', sample.slice(sample.indexOf('hypotheses:'), sample.indexOf('method')), '', /hypotheses is missing/],
+  ];
+  for (const [what, from, to, message] of wrong) {
+    it(`refuses ${what}`, () => {
+      expect(() => parse(changed(from, to))).toThrow(message);
+      expect(() => parse(changed(from, to))).toThrow(/^a\.study\.yaml:\d+:\d+: /);
+    });
+  }
+});
+
+describe('resolveFree', () => {
+  const facts: Record<string, PathFacts> = {
+    'field.halo.strength': { unit: 'uG', range: [-100, 100], value: 2 },
+    'galaxy.inclination': { unit: 'deg', range: [0, 180], value: 40 },
+    'field.halo.core': { unit: 'kpc', range: [0, 50], value: 2 },
+    'cosmicRays.index': { unit: '', range: [1, 5], value: 2.8 },
+  };
+  const resolve = (text: string) => resolveFree(parse(text).hypotheses[0].free, (path) => facts[path]);
+
+  it('reads priors in the units of their paths', () => {
+    expect(resolve(sample)).toEqual([
+      { path: 'field.halo.strength', unit: 'uG', prior: { kind: 'uniform', low: 0, high: 6 }, allowed: [-100, 100], start: 2 },
+      { path: 'galaxy.inclination', unit: 'deg', prior: { kind: 'normal', mean: 40, sigma: 2 }, allowed: [0, 180], start: 40 },
+      { path: 'field.halo.core', unit: 'kpc', prior: { kind: 'logUniform', low: 0.1, high: 3 }, allowed: [0, 50], start: 2 },
+      { path: 'cosmicRays.index', unit: '', prior: { kind: 'uniform', low: 2.2, high: 3 }, allowed: [1, 5], start: 2.8 },
+    ]);
+  });
+
+  const wrong: [string, string, string, RegExp][] = [
+    ['a wrong unit', '0 uG', '0 kpc', /:20:29: "0 kpc" is a length/],
+    ['a missing unit', '6 uG', '6', /:20:35: "6" has no unit/],
+    ['a value the scene does not allow', '[2.2, 3]', '[2.2, 7]', /:23:31: cosmicRays.index: 7 is outside what is allowed, 1 to 5/],
+    ['an empty range', '[0 uG, 6 uG]', '[6 uG, 0 uG]', /:20:29: .*from 6 uG to 0 uG is empty/],
+    ['a sigma of 0', '2 deg]', '0 deg]', /:21:45: .*sigma of 0 deg is given; allowed: above 0/],
+    ['logUniform from 0', '100 pc', '0 pc', /:22:\d+: .*logUniform from 0 pc; allowed: above 0/],
+  ];
+  for (const [what, from, to, message] of wrong) {
+    it(`refuses ${what}`, () => expect(() => resolve(changed(from, to))).toThrow(message));
+  }
+});
