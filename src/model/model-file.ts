@@ -3,7 +3,7 @@ import { describeLimits, findLimitProblem } from '../units/limits.ts';
 import { formatQuantity } from '../units/quantity.ts';
 import { keys } from '../units/schema.ts';
 import { parseUnit } from '../units/unit.ts';
-import { checkYaml, placeAt, readYaml } from '../units/yaml-input.ts';
+import { checkYaml, placeAt, plainValue, readYaml } from '../units/yaml-input.ts';
 import type { YamlInput, YamlPath } from '../units/yaml-input.ts';
 import { findFormulaProblem } from './formula-keys.ts';
 import { modelSchema, reservedNames } from './model-schema.ts';
@@ -16,7 +16,9 @@ import type { Model, ModelChoice, ModelParameter } from './types.ts';
  */
 export function parseModelFile(text: string, fileName: string): Model {
   const input = readYaml(text, fileName);
-  const { potential, euler, field, density, choices, ...rest } = checkYaml(input, modelSchema);
+  const whole = plainValue(input);
+  const asList = typeof whole === 'object' && whole !== null && 'parameters' in whole && Array.isArray(whole.parameters);
+  const { potential, euler, field, density, choices, ...rest } = checkYaml(input, modelSchema(asList));
   const model: Model = {
     ...rest,
     choices: Object.entries(choices).map(([name, choice]) => ({ name, ...choice })),
@@ -31,8 +33,9 @@ export function parseModelFile(text: string, fileName: string): Model {
   if (base !== undefined && base !== model.name) {
     fail(input, ['name'], `the model "${model.name}" must be in a file of its name, not ${base}.yaml`);
   }
-  checkNames(input, model);
-  model.parameters.forEach((parameter, index) => checkParameter(input, parameter, index));
+  const pathOf = (name: string): YamlPath => ['parameters', asList ? model.parameters.findIndex((one) => one.name === name) : name];
+  checkNames(input, model, pathOf);
+  for (const parameter of model.parameters) checkParameter(input, parameter, pathOf(parameter.name));
   for (const choice of model.choices) checkChoice(input, choice);
   const problem = findFormulaProblem(model.kind, model.formulas);
   if (problem) fail(input, problem.path, problem.reason);
@@ -45,14 +48,14 @@ function fail(input: YamlInput, path: YamlPath, reason: string): never {
 }
 
 /** Every name of a model means one thing. */
-function checkNames(input: YamlInput, model: Model): void {
+function checkNames(input: YamlInput, model: Model, pathOf: (parameter: string) => YamlPath): void {
   const taken = new Map<string, string>(reservedNames.map((name) => [name, 'a word of formulas or scenes']));
   const take = (name: string, what: string, path: YamlPath): void => {
     const other = taken.get(name);
     if (other) fail(input, path, `the name "${name}" of ${what} is already that of ${other}`);
     taken.set(name, what);
   };
-  model.parameters.forEach(({ name }, index) => take(name, 'a parameter', parameterPath(input, name, index)));
+  for (const { name } of model.parameters) take(name, 'a parameter', pathOf(name));
   for (const { name } of model.choices) take(name, 'a choice', ['choices', name]);
   const options = new Map<string, number>();
   for (const choice of model.choices) {
@@ -66,16 +69,8 @@ function checkNames(input: YamlInput, model: Model): void {
   for (const name of Object.keys(model.define)) take(name, 'a definition', ['define', name]);
 }
 
-function parameterPath(input: YamlInput, name: string, index: number): YamlPath {
-  const asMap = placeAt(input, ['parameters', name]);
-  const parent = placeAt(input, ['parameters']);
-  const found = asMap.line !== parent.line || asMap.column !== parent.column;
-  return ['parameters', found ? name : index];
-}
-
-function checkParameter(input: YamlInput, parameter: ModelParameter, index: number): void {
+function checkParameter(input: YamlInput, parameter: ModelParameter, path: YamlPath): void {
   const { name, unit, range } = parameter;
-  const path = parameterPath(input, name, index);
   try {
     parseUnit(unit);
   } catch (error) {

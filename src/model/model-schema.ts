@@ -17,6 +17,14 @@ const word = z.string().regex(identifier, {
   error: ({ input }) => `${quoteValue(input)} is no name: a letter, then letters and digits are wanted, 40 at most`,
 });
 
+/** Messages of a map: what is wrong with a key, or that there is no map. */
+function issueAtKey(what: string) {
+  return (issue: z.core.$ZodRawIssue): string => {
+    if (issue.code === 'invalid_key') return (issue.issues as readonly { readonly message: string }[])[0].message;
+    return issue.input === undefined ? `is missing: ${what}` : `${quoteValue(issue.input)} is given where ${what}`;
+  };
+}
+
 /** Text of a formula; a bare number is one too. */
 export const formulaText = z
   .union([words('a formula'), number], {
@@ -26,12 +34,7 @@ export const formulaText = z
   .transform(String);
 
 /** Formulas by name: definitions, or components of a vector. */
-export const formulasByName = z.record(word, formulaText, {
-  error: (issue) =>
-    issue.code === 'invalid_key'
-      ? issue.issues[0].message
-      : `${quoteValue(issue.input)} is given where named formulas are wanted`,
-});
+export const formulasByName = z.record(word, formulaText, { error: issueAtKey('named formulas are wanted') });
 
 export const eulerFormulas = keys({ a: formulaText, b: formulaText });
 
@@ -45,15 +48,16 @@ const parameter = {
   nonZero: z.boolean({ error: 'true or false is wanted' }).optional(),
 };
 
-/** Parameters as a map by name, or as a list of groups with `name`; always a list afterwards. */
-const parameters = z
-  .union([z.record(word, keys(parameter)), listOf(keys({ name: word, ...parameter }), 'parameters', 0, 100)], {
-    error: 'parameters are wanted as a map by name or as a list',
-  })
-  .transform((given) => (Array.isArray(given) ? given : Object.entries(given).map(([name, rest]) => ({ name, ...rest }))));
+/** Parameters as a list of groups with `name`, or as a map by name; always a list afterwards. */
+function parameters(asList: boolean) {
+  if (asList) return listOf(keys({ name: word, ...parameter }), 'parameters', 0, 100);
+  return z
+    .record(word, keys(parameter), { error: issueAtKey('parameters by name, or a list of them, are wanted') })
+    .transform((given) => Object.entries(given).map(([name, rest]) => ({ name, ...rest })));
+}
 
 const choice = keys({
-  options: z.record(word, number),
+  options: z.record(word, number, { error: issueAtKey('options with their numbers are wanted') }),
   default: word.optional(),
   meaning: words('the meaning'),
 });
@@ -69,24 +73,26 @@ const check = keys({
 });
 
 /** The shape of a model file; what holds between its parts is checked in `model-file.ts`. */
-export const modelSchema = keys({
-  name: words('a name').regex(/^[a-z][a-z0-9-]{0,59}$/, {
-    error: ({ input }) => `${quoteValue(input)} is no model name: small letters, digits and - are wanted, as in the file's name`,
-  }),
-  kind: oneOf(['field', 'density'], 'kind'),
-  title: words('a title'),
-  meaning: words('the meaning'),
-  source: words('the published source, or that it is an own definition,'),
-  parameters,
-  choices: z.record(word, choice).default({}),
-  define: formulasByName.default({}),
-  potential: formulasByName.optional(),
-  euler: eulerFormulas.optional(),
-  field: formulasByName.optional(),
-  density: formulaText.optional(),
-  edges: keys({
-    z: listOf(formulaText, 'heights', 0, 20).optional(),
-    r: listOf(formulaText, 'radii', 0, 20).optional(),
-  }).default({}),
-  checks: listOf(check, 'checks', 2, 1000),
-});
+export function modelSchema(parametersAsList: boolean) {
+  return keys({
+    name: words('a name').regex(/^[a-z][a-z0-9-]{0,59}$/, {
+      error: ({ input }) => `${quoteValue(input)} is no model name: small letters, digits and - are wanted, as in the file's name`,
+    }),
+    kind: oneOf(['field', 'density'], 'kind'),
+    title: words('a title'),
+    meaning: words('the meaning'),
+    source: words('the published source, or that it is an own definition,'),
+    parameters: parameters(parametersAsList),
+    choices: z.record(word, choice, { error: issueAtKey('choices by name are wanted') }).default({}),
+    define: formulasByName.default({}),
+    potential: formulasByName.optional(),
+    euler: eulerFormulas.optional(),
+    field: formulasByName.optional(),
+    density: formulaText.optional(),
+    edges: keys({
+      z: listOf(formulaText, 'heights', 0, 20).optional(),
+      r: listOf(formulaText, 'radii', 0, 20).optional(),
+    }).default({}),
+    checks: listOf(check, 'checks', 2, 1000),
+  });
+}

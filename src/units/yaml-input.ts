@@ -69,8 +69,10 @@ export function checkYaml<T>(input: YamlInput, schema: z.ZodType<T>, path: YamlP
   const full: YamlPath = [...path, ...issue.path.map((key) => (typeof key === 'number' ? key : String(key)))];
   const where = describePath(whole, full);
   const joint = where === '' ? '' : issue.message.startsWith('is ') ? ' ' : ': ';
-  const key = issue.code === 'unrecognized_keys' ? issue.keys[0] : undefined;
-  throw new InputError(`${where}${joint}${issue.message}`, placeAt(input, full, key));
+  const reason = `${where}${joint}${issue.message}`;
+  if (issue.code === 'unrecognized_keys') throw new InputError(reason, placeAt(input, full, issue.keys[0]));
+  if (issue.code === 'invalid_key') throw new InputError(reason, placeAt(input, full.slice(0, -1), String(full.at(-1))));
+  throw new InputError(reason, placeAt(input, full));
 }
 
 /**
