@@ -3,7 +3,7 @@ import type { BrightnessUnit, Channel } from '../sky/types.ts';
 import { InputError } from '../units/input-error.ts';
 import { convertQuantity, parseQuantity } from '../units/quantity.ts';
 import { maskText, noiseText, signText, zeroLevelText } from './assumptions.ts';
-import { mapBeam, mapChannels, mapUnit, noiseCorrelation, sameGrid } from './map-facts.ts';
+import { mapBeam, mapChannels, mapUnit, noiseCorrelation, sameGrid, stokesPlanes } from './map-facts.ts';
 import type { ReadMap } from './map-facts.ts';
 import { sameBeam } from './pixel-axes.ts';
 import type { PixelAxes } from './pixel-axes.ts';
@@ -27,97 +27,110 @@ export interface LoadedEntry {
  */
 export function makeDataSet(loaded: readonly LoadedEntry[]): DataSet {
   if (loaded.length === 0 || loaded[0].maps.length === 0) throw new InputError('a study needs data');
-  const { wcs, nx, ny } = loaded[0].maps[0];
-  const axes: PixelAxes = { wcs, nx, ny };
+  const first = loaded[0].maps[0];
+  const axes: PixelAxes = { wcs: first.wcs, nx: first.nx, ny: first.ny };
+  const unit = mapUnit(first, loaded[0].entry).brightness;
   const assumptions: string[] = [];
   const bands: DataBand[] = [];
   const planes: DataPlane[] = [];
-  const units = new Set<BrightnessUnit>();
   for (const item of loaded) {
-    for (const [index, map] of item.maps.entries()) {
-      checkMap(map, item, axes, loaded[0].maps[0].file);
-      const unit = mapUnit(map, item.entry);
-      units.add(unit.brightness);
-      if (units.size > 1) {
-        throw new InputError(`${map.file} is in ${unit.text}, other maps in ${[...units][0]}; bring all to one unit`, item.entry.place);
-      }
-      const channels = mapChannels(map, item.entry, assumptions);
-      const beam = mapBeam(map, item.entry, unit.brightness, assumptions);
-      const correlation = noiseCorrelation(item.entry, beam, axes, map.file, assumptions);
-      const scale = convertQuantity(1, unit.text, unit.brightness);
-      const prepared = preparePlanes(item, index, scale, unit.brightness, assumptions);
-      const band = findBand(bands, channels, beam);
-      prepared.forEach(({ values, noise }, channel) =>
-        planes.push({ quantity: item.entry.quantity, band, channel, values, noise, correlation }),
-      );
+    const { quantity } = item.entry;
+    refuseOtherGrids(item, axes, first.file);
+    const found = item.maps.flatMap((map) => readPlanes(item, map, axes, unit, assumptions));
+    for (const group of sameBeams(found)) {
+      const band = findBand(bands, group.map(({ channel }) => channel), group[0].beam);
+      group.forEach(({ values, noise, correlation }, channel) => planes.push({ quantity, band, channel, values, noise, correlation }));
     }
   }
   refuseTwice(planes, bands);
-  return { axes, unit: [...units][0], bands: named(bands), planes, assumptions: [...new Set(assumptions)] };
+  return { axes, unit, bands: named(bands), planes, assumptions: [...new Set(assumptions)] };
 }
 
-function checkMap(map: ReadMap, { entry, noiseMap, mask }: LoadedEntry, axes: PixelAxes, first: string): void {
-  for (const other of [map, noiseMap, mask]) {
-    if (other && !sameGrid(other, axes)) {
-      throw new InputError(`${other.file} is on another grid than ${first}; bring all maps of a study to one grid`, entry.place);
+/** A plane of data before it has a band. */
+interface FoundPlane extends Pick<DataPlane, 'values' | 'noise' | 'correlation'> {
+  readonly channel: Channel;
+  readonly beam?: Beam;
+}
+
+function refuseOtherGrids({ entry, maps, noiseMap, mask }: LoadedEntry, axes: PixelAxes, first: string): void {
+  for (const map of [...maps, noiseMap, mask]) {
+    if (map && !sameGrid(map, axes)) {
+      throw new InputError(`${map.file} is on another grid than ${first}; bring all maps of a study to one grid`, entry.place);
     }
   }
-  if (map.quantity !== undefined && map.quantity !== entry.quantity) {
-    throw new InputError(`${map.file} holds Stokes ${map.quantity} by its header, not ${entry.quantity}`, entry.place);
-  }
 }
 
-/** Values and noise of the planes of one map, in `unit`, with IAU signs. */
-function preparePlanes(
-  item: LoadedEntry, index: number, scale: number, unit: BrightnessUnit, assumptions: string[],
-): { values: Float64Array; noise: number | Float64Array }[] {
-  const { entry, maps, mask } = item;
-  const map = maps[index];
-  const area = map.nx * map.ny;
+/** The planes of one map in `unit`, with IAU signs. */
+function readPlanes(item: LoadedEntry, map: ReadMap, axes: PixelAxes, unit: BrightnessUnit, assumptions: string[]): FoundPlane[] {
+  const { entry, mask } = item;
+  const stated = mapUnit(map, entry);
+  if (stated.brightness !== unit) {
+    throw new InputError(`${map.file} is in ${stated.text}, other maps in ${unit}; bring all to one unit`, entry.place);
+  }
+  const all = stokesPlanes(map, entry);
+  const area = axes.nx * axes.ny;
+  const count = all.length / area;
+  const channels = mapChannels(map, entry, count, assumptions);
+  const beam = mapBeam(map, entry, unit, assumptions);
+  const correlation = noiseCorrelation(entry, beam, axes, map.file, assumptions);
+  const scale = convertQuantity(1, stated.text, unit);
   const zero = entry.zeroLevel ? placedQuantity(entry.zeroLevel, unit) : 0;
-  const sign = signOf(entry);
-  assumptions.push(...signText(map.file, entry), ...zeroLevelText(map.file, entry), ...noiseText(map.file, entry));
-  const count = map.values.length / area;
-  if (!Number.isInteger(count)) throw new Error(`${map.file} holds ${map.values.length} values, no whole number of ${map.nx} x ${map.ny} planes.`);
+  const convention = entry.convention ?? map.convention;
+  const sign = signOf({ ...entry, convention });
+  assumptions.push(...(map.notes ?? []).map((note) => `${map.file}: ${note}`));
+  assumptions.push(...signText(map, entry), ...zeroLevelText(map.file, entry), ...noiseText(map.file, entry));
   let blank = 0;
-  const planes = Array.from({ length: count }, (_, channel) => {
-    const values = map.values.slice(channel * area, (channel + 1) * area).map((value, p) => {
-      const hidden = mask !== undefined && !(Math.abs(mask.values[p]) > 0);
-      if (hidden) return NaN;
+  const planes = channels.map((channel, k) => {
+    const values = all.slice(k * area, (k + 1) * area).map((value, p) => {
+      if (mask !== undefined && !(Math.abs(mask.values[p]) > 0)) return NaN;
       if (!Number.isFinite(value)) blank++;
       return sign * (value * scale - zero);
     });
-    return { values, noise: planeNoise(item, channel, count, unit) };
+    return { values, noise: planeNoise(item, map, k, count, unit), correlation, channel, beam };
   });
-  assumptions.push(...maskText(map.file, blank, map.values.length));
+  assumptions.push(...maskText(map.file, blank, all.length));
   return planes;
 }
 
 /** U changes sign where it is reversed, Q and U where angles are those of B (90 deg from E). */
-function signOf({ quantity, convention, angleOf }: DataEntry): 1 | -1 {
+function signOf({ quantity, convention, angleOf }: Pick<DataEntry, 'quantity' | 'convention' | 'angleOf'>): 1 | -1 {
   const reversed = quantity === 'U' && convention === 'U-reversed';
   const turned = quantity !== 'I' && angleOf === 'B';
   return reversed !== turned ? -1 : 1;
 }
 
-function planeNoise({ entry, noiseMap, maps }: LoadedEntry, channel: number, count: number, unit: BrightnessUnit): number | Float64Array {
+/** Noise of one plane: as the study says, else the noise map's, else the header's. */
+function planeNoise({ entry, noiseMap }: LoadedEntry, map: ReadMap, channel: number, count: number, unit: BrightnessUnit): number | Float64Array {
   if (entry.noise) {
     const rms = placedQuantity(entry.noise, unit);
     if (!(rms > 0)) throw new InputError(`a noise of ${entry.noise.text} is given; allowed: above 0`, entry.noise.place);
     return rms;
   }
   if (!noiseMap) {
-    throw new InputError(`no noise is stated for ${maps[0].file}; add \`noise: 20 uJy/beam\` or \`noiseMap: FILE\` to its data entry`, entry.place);
+    const rms = map.noise?.[channel] ?? 0;
+    if (rms > 0) return rms * convertQuantity(1, mapUnit(map, entry).text, unit);
+    throw new InputError(`no noise is stated for ${map.file}; add \`noise: 20 uJy/beam\` or \`noiseMap: FILE\` to its data entry`, entry.place);
   }
-  const text = mapUnit(noiseMap, entry).text;
   const area = noiseMap.nx * noiseMap.ny;
   const planes = noiseMap.values.length / area;
   if (planes !== 1 && planes !== count) {
     throw new InputError(`${noiseMap.file} holds ${planes} planes; allowed: 1, or ${count} as the data`, entry.place);
   }
   const from = planes === 1 ? 0 : channel * area;
-  const scale = convertQuantity(1, text, unit);
+  const ownUnit = noiseMap.unit === '' ? entry : { ...entry, unit: undefined };
+  const scale = convertQuantity(1, mapUnit(noiseMap, ownUnit).text, unit);
   return noiseMap.values.slice(from, from + area).map((value) => value * scale);
+}
+
+/** Planes with the same beam together, in order. */
+function sameBeams(planes: readonly FoundPlane[]): FoundPlane[][] {
+  const groups: FoundPlane[][] = [];
+  for (const plane of planes) {
+    const group = groups.find(([first]) => sameBeam(first.beam, plane.beam));
+    if (group) group.push(plane);
+    else groups.push([plane]);
+  }
+  return groups;
 }
 
 function placedQuantity({ text, place }: PlacedText, unit: BrightnessUnit): number {

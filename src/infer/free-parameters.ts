@@ -1,32 +1,41 @@
+import { scenePath } from '../scene/paths.ts';
+import type { ScenePath } from '../scene/paths.ts';
+import type { Scene } from '../scene/types.ts';
 import { InputError } from '../units/input-error.ts';
-import { formatQuantity, parseQuantity } from '../units/quantity.ts';
+import { parseQuantity } from '../units/quantity.ts';
 import type { FreeParameter, Prior } from './prior.ts';
 import type { FreeText, PlacedText } from './study-types.ts';
 
-/** What a scene says of one of its paths, in `unit`. */
-export interface PathFacts {
-  readonly unit: string;
-  readonly range: readonly [number, number];
-  readonly value: number;
-}
-
 /**
- * The free parameters of a hypothesis with their priors, in the units of their paths. `facts` looks
- * a path up in the scene and throws InputError where there is none. Throws InputError, placed in the
- * study, for wrong units, empty or disallowed ranges.
+ * The free parameters of a hypothesis with their priors, in the units of their paths. Throws
+ * InputError, placed in the study, for unknown paths, wrong units, empty or disallowed ranges.
  */
-export function resolveFree(free: readonly FreeText[], facts: (path: string) => PathFacts): FreeParameter[] {
+export function resolveFree(free: readonly FreeText[], scene: Scene): FreeParameter[] {
   return free.map((text) => {
-    const { unit, range, value } = placed(text.place, () => facts(text.path));
+    const target = placed(text.place, () => scenePath(scene, text.path));
+    const { path, unit, shownUnit, whole } = target;
+    if (whole) throw new InputError(`${path} takes whole numbers only; a fit needs a parameter that can change a little`, text.place);
     const [first, second] = text.values.map((part) => placed(part.place, () => parseQuantity(part.text, unit)));
     const prior = makePrior(text, first, second);
-    for (const [k, bound] of text.kind === 'normal' ? [[0, first] as const] : [[0, first] as const, [1, second] as const]) {
-      if (bound >= range[0] && bound <= range[1]) continue;
-      const allowed = `${formatQuantity(range[0], unit)} to ${formatQuantity(range[1], unit)}`;
-      throw new InputError(`${text.path}: ${text.values[k].text} is outside what is allowed, ${allowed}`, text.values[k].place);
-    }
-    return { path: text.path, unit, prior, allowed: range, start: value };
+    placed(text.values[0].place, () => target.set(scene, first));
+    if (text.kind !== 'normal') placed(text.values[1].place, () => target.set(scene, second));
+    return { path, unit, shownUnit, prior, allowed: allowedRange(target, scene, prior), start: target.get() };
   });
+}
+
+/** The path's range; an end that is itself not allowed is moved inwards by a millionth of the prior's width. */
+function allowedRange(target: ScenePath, scene: Scene, prior: Prior): [number, number] {
+  const width = prior.kind === 'normal' ? prior.sigma : prior.high - prior.low;
+  const inside = (end: number, step: number): number => {
+    try {
+      target.set(scene, end);
+      return end;
+    } catch (error) {
+      if (error instanceof InputError) return end + step;
+      throw error;
+    }
+  };
+  return [inside(target.range[0], 1e-6 * width), inside(target.range[1], -1e-6 * width)];
 }
 
 function makePrior({ path, kind, values }: FreeText, first: number, second: number): Prior {

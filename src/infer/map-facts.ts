@@ -8,19 +8,44 @@ import { beamPixels } from './pixel-axes.ts';
 import type { PixelAxes } from './pixel-axes.ts';
 import type { DataEntry } from './study-types.ts';
 
-/** A map or cube that a reader of files made; whatever is undefined its header does not say. */
+/** An image or cube as a reader of files gives it; whatever is undefined or empty its header does not say. */
 export interface ReadMap {
   readonly file: string;
   readonly wcs: CelestialWcs;
   readonly nx: number;
   readonly ny: number;
-  /** [channel * ny * nx + row * nx + column], row 0 first in the file. */
-  readonly values: Float64Array;
-  /** One per plane of `values`; undefined where the header lacks frequencies. */
-  readonly channels?: readonly { readonly frequencyHz: number; readonly widthHz?: number }[];
-  readonly unit?: string;
-  readonly beam?: Beam;
+  /** Names of the Stokes planes; empty where the file does not tell (one plane then). */
+  readonly stokes: readonly string[];
+  /** What the map shows, where it is no Stokes parameter. */
   readonly quantity?: string;
+  readonly channels?: readonly Channel[];
+  /** Along a Faraday-depth axis. */
+  readonly depthsRadM2?: readonly number[];
+  /** [((stokes * channels + channel) * ny + row) * nx + column]. */
+  readonly values: Float64Array;
+  readonly unit: string;
+  readonly beam?: Beam;
+  /** rms per channel in `unit`. */
+  readonly noise?: readonly number[];
+  readonly convention?: 'IAU' | 'U-reversed';
+  /** What the reader assumed, for the user. */
+  readonly notes?: readonly string[];
+}
+
+/** The planes of one Stokes parameter, [channel * ny * nx + row * nx + column]. Throws InputError where a map has none. */
+export function stokesPlanes(map: ReadMap, { quantity, place }: DataEntry): Float64Array {
+  const { stokes, values, depthsRadM2 } = map;
+  const held = depthsRadM2 ? 'a Faraday spectrum' : stokes.length > 0 ? `Stokes ${stokes.join(', ')}` : map.quantity;
+  if (held !== undefined && (depthsRadM2 || (stokes.length > 0 ? !stokes.includes(quantity) : map.quantity !== quantity))) {
+    throw new InputError(`${map.file} holds ${held} by its header, not ${quantity}`, place);
+  }
+  const count = Math.max(1, stokes.length);
+  const size = values.length / count;
+  if (!Number.isInteger(size / (map.nx * map.ny))) {
+    throw new Error(`${map.file} holds ${values.length} values, no whole number of ${count} x ${map.nx} x ${map.ny} planes.`);
+  }
+  const from = Math.max(0, stokes.indexOf(quantity)) * size;
+  return values.subarray(from, from + size);
 }
 
 /** Same size and, to a hundredth of a pixel at the corners, the same sky. */
@@ -42,7 +67,7 @@ export function sameGrid(map: ReadMap, { wcs, nx, ny }: PixelAxes): boolean {
 /** The unit of a map's values and the brightness unit it is brought to. Throws InputError where it has none. */
 export function mapUnit(map: ReadMap, { unit, place }: DataEntry): { text: string; brightness: BrightnessUnit } {
   const text = unit?.text ?? knownSpelling(map.unit);
-  if (text === undefined || text === '') {
+  if (text === '') {
     throw new InputError(`${map.file} does not say its unit; add \`unit: Jy/beam\` (or what it is) to its data entry`, place);
   }
   for (const brightness of ['Jy/beam', 'Jy/sr'] as const) {
@@ -57,31 +82,28 @@ export function mapUnit(map: ReadMap, { unit, place }: DataEntry): { text: strin
 }
 
 /** Old headers write JY/BEAM; with a prefix capitals would be ambiguous (milli or mega) and are refused. */
-function knownSpelling(unit: string | undefined): string | undefined {
-  if (unit !== undefined && /^jy\/beam$/i.test(unit)) return 'Jy/beam';
-  return unit !== undefined && /^jy\/sr$/i.test(unit) ? 'Jy/sr' : unit;
+function knownSpelling(unit: string): string {
+  if (/^jy\/beam$/i.test(unit)) return 'Jy/beam';
+  return /^jy\/sr$/i.test(unit) ? 'Jy/sr' : unit;
 }
 
-/** The channels of a map: its header's, or the entry's frequency. Throws InputError where neither says. */
-export function mapChannels(map: ReadMap, entry: DataEntry, assumptions: string[]): Channel[] {
-  const count = map.values.length / (map.nx * map.ny);
-  const stated = map.channels ?? (count === 1 && entry.frequencyHz !== undefined ? [{ frequencyHz: entry.frequencyHz }] : undefined);
-  if (!stated) {
-    throw new InputError(
-      count === 1
-        ? `${map.file} does not say its frequency; add \`frequency: 1.4 GHz\` (or what it is) to its data entry`
-        : `${map.file} holds ${count} planes without frequencies; give one file per channel under \`files\`, each with a FREQ axis`,
-      entry.place,
-    );
+/** The channels of `count` planes: their header's, or the entry's frequency. Throws InputError where neither says. */
+export function mapChannels(map: ReadMap, entry: DataEntry, count: number, assumptions: string[]): readonly Channel[] {
+  const { file, channels } = map;
+  const { frequencyHz, widthHz, place } = entry;
+  if (channels) {
+    const differs = frequencyHz !== undefined && (count > 1 || Math.abs(channels[0].frequencyHz / frequencyHz - 1) > 1e-6);
+    if (differs) throw new InputError(`\`frequency\` contradicts the header of ${file} (${channels[0].frequencyHz} Hz); leave it out`, place);
+    return channels.map((channel) => ({ frequencyHz: channel.frequencyHz, widthHz: widthHz ?? channel.widthHz }));
   }
-  if (map.channels && entry.frequencyHz !== undefined && (count > 1 || Math.abs(map.channels[0].frequencyHz / entry.frequencyHz - 1) > 1e-6)) {
-    throw new InputError(`\`frequency\` contradicts the header of ${map.file} (${map.channels[0].frequencyHz} Hz); leave it out`, entry.place);
+  if (count > 1) {
+    throw new InputError(`${file} holds ${count} planes without frequencies; give one file per channel under \`files\`, each with its FREQ axis`, place);
   }
-  return stated.map((channel) => {
-    const widthHz = entry.widthHz ?? ('widthHz' in channel ? channel.widthHz : undefined);
-    if (widthHz === undefined) assumptions.push(`${map.file}: no channel width is stated (\`width\`); assumed so narrow that nothing turns within it.`);
-    return { frequencyHz: channel.frequencyHz, widthHz: widthHz ?? 0 };
-  });
+  if (frequencyHz === undefined) {
+    throw new InputError(`${file} does not say its frequency; add \`frequency: 1.4 GHz\` (or what it is) to its data entry`, place);
+  }
+  if (widthHz === undefined) assumptions.push(`${file}: no channel width is stated (\`width\`); assumed so narrow that nothing turns within it.`);
+  return [{ frequencyHz, widthHz: widthHz ?? 0 }];
 }
 
 /** The beam of a map: the entry's, else its header's. Throws InputError where Jy/beam comes without one. */
@@ -102,7 +124,9 @@ export function mapBeam(map: ReadMap, entry: DataEntry, unit: BrightnessUnit, as
 }
 
 /** Shape of the noise's autocorrelation: as the entry says, else the beam's; undefined: independent pixels. */
-export function noiseCorrelation(entry: DataEntry, beam: Beam | undefined, axes: PixelAxes, file: string, assumptions: string[]): Beam | undefined {
+export function noiseCorrelation(
+  entry: DataEntry, beam: Beam | undefined, axes: PixelAxes, file: string, assumptions: string[],
+): Beam | undefined {
   const length = entry.correlationArcsec;
   if (length === 0) return undefined;
   const shape = length === undefined ? beam : { majorArcsec: length, minorArcsec: length, angle: 0 };

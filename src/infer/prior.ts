@@ -9,8 +9,9 @@ export type Prior =
 /** A parameter that a fit may change. */
 export interface FreeParameter {
   readonly path: string;
-  /** Unit text of its values; angles as the path says them. */
+  /** Unit of its values (angles rad), and the one in files and on screen. */
   readonly unit: string;
+  readonly shownUnit: string;
   readonly prior: Prior;
   /** Values that the scene allows, inclusive. */
   readonly allowed: readonly [number, number];

@@ -13,7 +13,7 @@ export interface DataEntry {
   readonly quantity: StokesQuantity;
   /** One file, or one per channel; as written, relative to the study. */
   readonly files: readonly string[];
-  /** rms with its unit, or the file of a map of it. */
+  /** rms with its unit, or the file of a map of it; neither: as the maps' headers say. */
   readonly noise?: PlacedText;
   readonly noiseMap?: string;
   readonly frequencyHz?: number;

@@ -55,12 +55,11 @@ function readEntry(input: YamlInput, entry: FileEntry, index: number): DataEntry
   const { quantity, file, files, beam, noise, noiseMap, convention, angleOf } = entry;
   if ((file === undefined) === (files === undefined)) refuse('a data entry needs `file`, or `files` with one per channel, and not both');
   if (noise !== undefined && noiseMap !== undefined) refuse('`noise` and `noiseMap` are both given; one is wanted', 'noiseMap');
-  if (noise === undefined && noiseMap === undefined) {
-    refuse('no noise is stated; add `noise: 20 uJy/beam` (or what it is), or `noiseMap: FILE`');
-  }
   if (quantity === 'I' && convention !== undefined) refuse('`convention` means nothing for I; it belongs to Q and U', 'convention');
   if (quantity === 'I' && angleOf !== undefined) refuse('`angleOf` means nothing for I; it belongs to Q and U', 'angleOf');
-  if (beam && beam.minor > beam.major) refuse(`the beam's minor axis (${beam.minor} arcsec) is longer than its major (${beam.major} arcsec)`, 'beam');
+  if (beam && beam.minor > beam.major) {
+    refuse(`the beam's minor axis (${beam.minor} arcsec) is longer than its major (${beam.major} arcsec)`, 'beam');
+  }
   return {
     quantity,
     files: files ?? [file!],

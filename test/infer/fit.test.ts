@@ -14,7 +14,7 @@ const axes = testAxes(26, 24);
 const area = axes.nx * axes.ny;
 
 const free = (path: string, prior: Prior, start: number): FreeParameter => ({
-  path, unit: '', prior, start, allowed: [-1000, 1000],
+  path, unit: '', shownUnit: '', prior, start, allowed: [-1000, 1000],
 });
 
 /** A Gaussian ring sector in Q and U: amplitude, width (pixels) and angle (rad) of polarization. */

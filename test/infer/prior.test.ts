@@ -3,7 +3,7 @@ import { priorResiduals, scaledBounds, scaledFromValue, slopeFromScaled, spreadS
 import type { FreeParameter, Prior } from '../../src/infer/prior.ts';
 
 const parameter = (prior: Prior, allowed: [number, number] = [-Infinity, Infinity]): FreeParameter => ({
-  path: `field.a.${prior.kind}`, unit: 'uG', prior, allowed, start: 1,
+  path: `field.a.${prior.kind}`, unit: 'uG', shownUnit: 'uG', prior, allowed, start: 1,
 });
 const uniform = parameter({ kind: 'uniform', low: -2, high: 6 });
 const logUniform = parameter({ kind: 'logUniform', low: 0.1, high: 10 });

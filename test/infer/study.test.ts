@@ -1,7 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import { resolveFree } from '../../src/infer/free-parameters.ts';
-import type { PathFacts } from '../../src/infer/free-parameters.ts';
 import { parseStudy } from '../../src/infer/study.ts';
+import { parseScene } from '../../src/scene/parse-scene.ts';
 
 const sample = `gyrelight-study: 1
 title: Which halo?
@@ -71,7 +71,6 @@ describe('parseStudy', () => {
     ['sectors', '{quantity: Q, file: q.fits,', '{quantity: Q, sectors: s.csv,', /`sectors` .* not compared in this version; give the Q and U/],
     ['an unknown quantity', 'quantity: Q', 'quantity: V', /"V" is not allowed: quantity is one of I, Q, U/],
     ['no file', 'file: q.fits, ', '', /:4:5: a data entry needs `file`, or `files`/],
-    ['no noise', ', noise: 20 uJy/beam', '', /:4:5: no noise is stated; add `noise: /],
     ['two noises', 'noise: 20 uJy/beam', 'noise: 20 uJy/beam, noiseMap: r.fits', /both given/],
     ['a unit that is none of a frequency', '1.4 GHz', '1.4 kpc', /:8:16: .*"1.4 kpc" is a length/],
     ['a convention of the trade', 'U-reversed', 'COSMO', /:13:17: .*"COSMO" is not allowed: convention is one of IAU, U-reversed/],
@@ -92,30 +91,50 @@ describe('parseStudy', () => {
 });
 
 describe('resolveFree', () => {
-  const facts: Record<string, PathFacts> = {
-    'field.halo.strength': { unit: 'uG', range: [-100, 100], value: 2 },
-    'galaxy.inclination': { unit: 'deg', range: [0, 180], value: 40 },
-    'field.halo.core': { unit: 'kpc', range: [0, 50], value: 2 },
-    'cosmicRays.index': { unit: '', range: [1, 5], value: 2.8 },
-  };
-  const resolve = (text: string) => resolveFree(parse(text).hypotheses[0].free, (path) => facts[path]);
+  const scene = parseScene(
+    `gyrelight: 1
+galaxy: {distance: 10 Mpc, inclination: 40 deg, positionAngle: 25 deg, volume: {radius: 15 kpc, height: 6 kpc}}
+field: [{model: quadrupole-halo, name: halo, strength: 2 uG, core: 2 kpc, reference: 5 kpc}, {model: spiral-mode, name: arms, mode: 2, strength: 1 uG, pitch: -20 deg, radius: 8 kpc, innerRadius: 1 kpc, height: 1 kpc, reference: 5 kpc, phase: 0 deg}]
+cosmicRays: {index: 2.8, layers: [{model: slab, normalisation: 1e-5 cm^-3, halfThickness: 1 kpc}]}
+observation: {image: {pixels: 9, pixel: 4 arcsec}, bands: [{name: L, at: [1.4 GHz]}]}
+`,
+    'a.scene.yaml',
+  );
+  const resolve = (text: string) => resolveFree(parse(text).hypotheses[0].free, scene);
 
   it('reads priors in the units of their paths', () => {
-    expect(resolve(sample)).toEqual([
-      { path: 'field.halo.strength', unit: 'uG', prior: { kind: 'uniform', low: 0, high: 6 }, allowed: [-100, 100], start: 2 },
-      { path: 'galaxy.inclination', unit: 'deg', prior: { kind: 'normal', mean: 40, sigma: 2 }, allowed: [0, 180], start: 40 },
-      { path: 'field.halo.core', unit: 'kpc', prior: { kind: 'logUniform', low: 0.1, high: 3 }, allowed: [0, 50], start: 2 },
-      { path: 'cosmicRays.index', unit: '', prior: { kind: 'uniform', low: 2.2, high: 3 }, allowed: [1, 5], start: 2.8 },
+    const resolved = resolve(sample);
+    expect(resolved.map(({ path, unit, shownUnit }) => [path, unit, shownUnit])).toEqual([
+      ['field.halo.strength', 'uG', 'uG'], ['galaxy.inclination', 'rad', 'deg'], ['field.halo.core', 'kpc', 'kpc'], ['cosmicRays.index', '', ''],
     ]);
+    const degree = Math.PI / 180;
+    expect(resolved.map(({ prior }) => prior)).toEqual([
+      { kind: 'uniform', low: 0, high: 6 },
+      { kind: 'normal', mean: 40 * degree, sigma: 2 * degree },
+      { kind: 'logUniform', low: 0.1, high: 3 },
+      { kind: 'uniform', low: 2.2, high: 3 },
+    ]);
+    expect(resolved.map(({ start }) => start)).toEqual([2, 40 * degree, 2, 2.8]);
+    expect(resolved[1].allowed).toEqual([0, Math.PI]);
+  });
+
+  it('keeps fits off ends that are not allowed themselves', () => {
+    // p is above 1, 5 is allowed.
+    const normal = resolve(changed('[2.2, 3]', '{normal: [2, 0.5]}'))[3];
+    expect(normal.allowed[0]).toBe(1 + 5e-7);
+    expect(normal.allowed[1]).toBe(5);
   });
 
   const wrong: [string, string, string, RegExp][] = [
+    ['a path that is not there', 'field.halo.strength', 'field.halo.strenght', /^a\.study\.yaml:20:7: unknown path "field.halo.strenght" \(did you mean "field.halo.strength"/],
     ['a wrong unit', '0 uG', '0 kpc', /:20:29: "0 kpc" is a length/],
     ['a missing unit', '6 uG', '6', /:20:35: "6" has no unit/],
-    ['a value the scene does not allow', '[2.2, 3]', '[2.2, 7]', /:23:31: cosmicRays.index: 7 is outside what is allowed, 1 to 5/],
+    ['a value the scene does not allow', '[2.2, 3]', '[2.2, 7]', /:23:31: cosmicRays.index: .*at most 5/],
+    ['an end the scene does not allow', '[2.2, 3]', '[1, 3]', /:23:26: cosmicRays.index: .*more than 1/],
     ['an empty range', '[0 uG, 6 uG]', '[6 uG, 0 uG]', /:20:29: .*from 6 uG to 0 uG is empty/],
     ['a sigma of 0', '2 deg]', '0 deg]', /:21:45: .*sigma of 0 deg is given; allowed: above 0/],
     ['logUniform from 0', '100 pc', '0 pc', /:22:\d+: .*logUniform from 0 pc; allowed: above 0/],
+    ['whole numbers', 'cosmicRays.index: [2.2, 3]', 'field.arms.mode: [1, 3]', /:23:7: field.arms.mode takes whole numbers only/],
   ];
   for (const [what, from, to, message] of wrong) {
     it(`refuses ${what}`, () => expect(() => resolve(changed(from, to))).toThrow(message));
