@@ -1,5 +1,5 @@
 import type { Beam } from '../scene/types.ts';
-import type { SkyGrid, StokesCube } from '../sky/types.ts';
+import type { Channel, SkyGrid, StokesCube } from '../sky/types.ts';
 import { asciiText } from './fits-card-write.ts';
 import { frequencyAxis } from './frequency-axis.ts';
 import type { Provenance } from './fits-scene.ts';
@@ -23,11 +23,13 @@ interface Quantity {
   readonly comments?: readonly string[];
 }
 
-/** A two-dimensional map, values [row * nx + column], NaN blank. */
+/** A map, values [row * nx + column], NaN blank. */
 export interface MapQuantity extends Quantity {
   readonly values: Float64Array;
   /** The frequency at which it holds, where it holds at one. */
   readonly frequencyHz?: number;
+  /** Given where `values` has one map per channel, [channel * ny * nx + row * nx + column]. */
+  readonly channels?: readonly Channel[];
 }
 
 /** A cube over Faraday depth, values [depth * ny * nx + row * nx + column], NaN blank. */
@@ -50,8 +52,12 @@ export function stokesFits(cube: StokesCube, stokes: 'I' | 'Q' | 'U', provenance
   return skyFits({ ...described, values: cube[stokes], third: axis, cards: [], tables: table ? [table] : [] }, provenance, bits);
 }
 
-/** The FITS file of a two-dimensional map, with the scene it was made from. */
+/** The FITS file of a map, or of one map per channel, with the scene it was made from. */
 export function mapFits(map: MapQuantity, provenance: Provenance, bits: 32 | 64): Uint8Array {
+  if (map.channels !== undefined) {
+    const { axis, table } = frequencyAxis(map.channels, new Float64Array(map.channels.length));
+    return skyFits({ ...map, third: axis, cards: [], tables: table ? [table] : [] }, provenance, bits);
+  }
   const cards: Card[] =
     map.frequencyHz === undefined ? [] : [{ keyword: 'FREQ', value: map.frequencyHz, comment: '[Hz] at which this map holds' }];
   return skyFits({ ...map, cards, tables: [] }, provenance, bits);

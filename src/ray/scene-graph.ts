@@ -65,6 +65,11 @@ export class SceneGraph {
     return this.graph.add(...layers);
   }
 
+  /** C with layers that depend on frequency at their reference frequency. */
+  cosmicRaysAtReference(): NodeId {
+    return this.graph.add(...placedComponents(this.scene).cosmicRays.map((placed) => buildDensity(this.graph, this.use(placed))));
+  }
+
   /** rms of one component of the unresolved field, uG, or undefined where there is none. */
   unresolvedRms(): NodeId | undefined {
     const { unresolved } = this.scene.turbulence;

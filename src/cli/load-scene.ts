@@ -1,0 +1,20 @@
+import { readText } from '../files/node-io.ts';
+import type { Provenance } from '../files/fits-scene.ts';
+import { parseScene, sceneText } from '../scene/parse-scene.ts';
+import type { Override } from '../scene/overrides.ts';
+import type { Scene } from '../scene/types.ts';
+import { version } from './version.ts';
+
+/** A checked scene with the text and seed that outputs carry. */
+export interface LoadedScene {
+  readonly scene: Scene;
+  readonly provenance: Provenance;
+}
+
+/** Reads and checks a scene file. Throws InputError with file:line:column, or the flag. */
+export function loadScene(path: string, overrides: readonly Override[]): LoadedScene {
+  const text = readText(path);
+  const scene = parseScene(text, path, overrides);
+  const provenance = { sceneText: sceneText(text, path, overrides), version, seed: scene.numerics.seed };
+  return { scene, provenance };
+}

@@ -1,0 +1,29 @@
+import { join } from 'node:path';
+import { writeWhole } from '../files/node-io.ts';
+
+/** Files of one run: gathered first, written together once everything has been computed. */
+export class OutputFolder {
+  private readonly files = new Map<string, Uint8Array | string>();
+
+  constructor(readonly path: string) {}
+
+  /** Keeps a file for writing; `name` may have folders in it. */
+  add(name: string, content: Uint8Array | string): void {
+    this.files.set(name, content);
+  }
+
+  get names(): readonly string[] {
+    return [...this.files.keys()];
+  }
+
+  /** Writes every file, each whole or not at all; folders are made as needed. */
+  write(): void {
+    for (const [name, content] of this.files) writeWhole(join(this.path, name), content);
+  }
+}
+
+/** A name fit for a file or folder: lower-case words joined by hyphens. */
+export function slug(name: string): string {
+  const plain = name.normalize('NFKD').toLowerCase().replace(/[^a-z0-9]+/g, '-').replace(/^-+|-+$/g, '');
+  return plain === '' ? 'unnamed' : plain;
+}

@@ -1,0 +1,104 @@
+import { availableParallelism } from 'node:os';
+import { Option, type Command } from 'commander';
+import type { Override } from '../scene/overrides.ts';
+import { startNodePool } from '../run/node-pool.ts';
+import type { RayPool } from '../run/ray-pool.ts';
+import { InputError } from '../units/input-error.ts';
+import { makeProgress, type Progress } from './progress.ts';
+
+/** The flags that commands share, as commander gives them. */
+export interface CommonFlags {
+  readonly out: string;
+  readonly set: readonly string[];
+  readonly seed?: number;
+  readonly workers?: number;
+  readonly engine: string;
+  readonly json?: boolean;
+  readonly quiet?: boolean;
+}
+
+/** Stopped by the user (Ctrl-C). */
+export class Cancelled extends Error {}
+
+const mostWorkers = 256;
+
+/** Adds the common flags to a command that computes and writes files. */
+export function addCommonFlags(command: Command): Command {
+  return addSceneFlags(command)
+    .option('--out <dir>', 'folder for the results, made where missing', 'out')
+    .option('--workers <n>', 'threads (default: one per core)', wholeNumber('--workers', 1, mostWorkers))
+    .addOption(new Option('--engine <engine>', 'where to compute').choices(['local', 'slurm']).default('local'))
+    .option('--json', 'a machine-readable summary on stdout')
+    .option('--quiet', 'no progress and no words, errors only');
+}
+
+/** Adds the flags that change a scene before it is checked. */
+export function addSceneFlags(command: Command): Command {
+  return command
+    .option('--set <path=value>', 'change a value of the scene, such as field.halo.strength="3 uG" (repeatable)', collect, [])
+    .option('--seed <n>', 'seed of all random streams, in place of the scene’s', wholeNumber('--seed', 0, Number.MAX_SAFE_INTEGER));
+}
+
+/** `--set` and `--seed` as overrides of a scene's text. */
+export function overridesOf({ set, seed }: Pick<CommonFlags, 'set' | 'seed'>): readonly Override[] {
+  const overrides = set.map((text): Override => {
+    const equals = text.indexOf('=');
+    const flag = `--set ${text}`;
+    if (equals < 1) throw new InputError('expected path=value, such as galaxy.inclination="40 deg"', { flag });
+    return { path: text.slice(0, equals).trim(), value: text.slice(equals + 1).trim(), flag };
+  });
+  if (seed !== undefined) overrides.push({ path: 'numerics.seed', value: String(seed), flag: `--seed ${seed}` });
+  return overrides;
+}
+
+/** What a running command works with: threads, a line of progress, and the user's Ctrl-C. */
+export interface RunContext {
+  readonly pool: RayPool;
+  readonly progress: Progress;
+  readonly signal: AbortSignal;
+}
+
+/**
+ * Runs a computation with a pool of threads, which is closed whatever happens; Ctrl-C aborts it
+ * and becomes Cancelled. Refuses engines that this version does not have.
+ */
+export async function withRunContext<T>(flags: CommonFlags, work: (context: RunContext) => Promise<T>): Promise<T> {
+  if (flags.engine !== 'local') {
+    throw new InputError('not available in this version for this command; allowed is local', { flag: `--engine ${flags.engine}` });
+  }
+  const controller = new AbortController();
+  const stop = (): void => controller.abort(new Cancelled());
+  process.once('SIGINT', stop);
+  process.once('SIGTERM', stop);
+  const progress = makeProgress(process.stderr, flags.quiet ?? false);
+  const pool = startNodePool(flags.workers ?? availableParallelism());
+  try {
+    return await work({ pool, progress, signal: controller.signal });
+  } finally {
+    progress.close();
+    await pool.close();
+    process.off('SIGINT', stop);
+    process.off('SIGTERM', stop);
+  }
+}
+
+/** Words for the user, on stderr; silent where --quiet or --json asks for it. */
+export function sayWords(flags: Pick<CommonFlags, 'quiet' | 'json'>, ...lines: readonly string[]): void {
+  if (flags.quiet) return;
+  const stream = flags.json ? process.stderr : process.stdout;
+  for (const line of lines) stream.write(`${line}\n`);
+}
+
+function collect(value: string, previous: readonly string[]): readonly string[] {
+  return [...previous, value];
+}
+
+function wholeNumber(flag: string, least: number, most: number): (text: string) => number {
+  return (text) => {
+    const value = Number(text);
+    if (!/^\d+$/.test(text) || value < least || value > most) {
+      throw new InputError(`expected a whole number from ${least} to ${most}`, { flag: `${flag} ${text}` });
+    }
+    return value;
+  };
+}
