@@ -1,0 +1,88 @@
+import { vector as v, type Vector } from './code.ts';
+import { exponential } from './coefficients.ts';
+import type { FunctionWriter } from './function.ts';
+import { polynomial } from './polynomial.ts';
+
+/** Adding it leaves a number below 2^51 rounded to a whole one, in the lowest bits. */
+export const roundingShift = 6755399441055744;
+const log2e = 1.4426950408889634;
+const ln2High = 0.6931471803691238;
+const ln2Low = 1.9082149292705877e-10;
+/** Within these bounds e^x is a number of full precision. */
+const [lowest, highest] = [-708.39, 709.782712893384];
+
+/** x = k ln2 + r: e^r - 1 - r²-and-up in one number, and k in the lowest bits of another. */
+function reduce(w: FunctionWriter, x: Vector): { readonly less: Vector; readonly shifted: Vector } {
+  const shifted = w.let(v.add(v.multiply(x, w.constant(log2e)), w.constant(roundingShift)));
+  const k = w.let(v.subtract(shifted, w.constant(roundingShift)));
+  const r = w.let(v.subtract(v.subtract(x, v.multiply(k, w.constant(ln2High))), v.multiply(k, w.constant(ln2Low))));
+  const less = w.let(v.add(r, v.multiply(v.multiply(r, r), polynomial(w, r, exponential))));
+  return { less, shifted: w.let(v.shiftLeft(shifted, 52)) };
+}
+
+/** e^x; 0 below the smallest number of full precision. */
+export function exp(w: FunctionWriter, x: Vector): Vector {
+  const { less, shifted } = reduce(w, x);
+  const value = v.addBits(v.add(w.constant(1), less), shifted);
+  const isPlain = v.and(v.greaterOrEqual(x, w.constant(lowest)), v.lessOrEqual(x, w.constant(highest)));
+  return w.let(v.select(isPlain, value, beyond(w, x)));
+}
+
+/** Infinity for large, 0 for small x, NaN for none. */
+function beyond(w: FunctionWriter, x: Vector): Vector {
+  return v.multiply(v.greater(x, w.constant(0)), w.constant(1e308));
+}
+
+/** e^x - 1, exact relative to itself also near 0. */
+export function expm1(w: FunctionWriter, x: Vector): Vector {
+  const { less, shifted } = reduce(w, x);
+  const scale = w.let(v.addBits(w.constant(1), shifted));
+  const near = v.add(v.multiply(scale, less), v.subtract(scale, w.constant(1)));
+  const far = v.addBits(v.add(w.constant(1), less), shifted);
+  const positive = v.select(v.lessOrEqual(x, w.constant(highest)), v.select(v.less(x, w.constant(600)), near, far), beyond(w, x));
+  return w.let(v.select(v.less(x, w.constant(-600)), w.constant(-1), positive));
+}
+
+/** e^-|u| - 1 and e^-|u|, both exact relative to themselves: what hyperbolic functions are made of. */
+export interface Decay {
+  readonly sign: Vector;
+  readonly less: Vector;
+  readonly value: Vector;
+  /** 1 / (1 + e^-2|u|) */
+  readonly share: Vector;
+}
+
+export function decay(w: FunctionWriter, u: Vector): Decay {
+  const size = v.greater(v.negate(v.abs(u)), w.constant(lowest));
+  const { less, shifted } = reduce(w, w.let(size));
+  const scale = w.let(v.addBits(w.constant(1), shifted));
+  const part = w.let(v.multiply(scale, less));
+  const value = w.let(v.add(scale, part));
+  return {
+    sign: w.let(v.and(u, w.constant(-0))),
+    less: w.let(v.add(part, v.subtract(scale, w.constant(1)))),
+    value,
+    share: w.let(v.divide(w.constant(1), v.add(w.constant(1), v.multiply(value, value)))),
+  };
+}
+
+export function tanh(w: FunctionWriter, { sign, less, share }: Decay): Vector {
+  const size = v.multiply(v.multiply(less, v.add(w.constant(2), less)), share);
+  return w.let(v.xor(v.negate(size), sign));
+}
+
+export function sech(w: FunctionWriter, { value, share }: Decay): Vector {
+  return w.let(v.multiply(v.add(value, value), share));
+}
+
+/** sinh or cosh; e^|u|/2 in two factors where e^|u| alone would overflow. */
+export function hyperbolic(w: FunctionWriter, name: 'sinh' | 'cosh', u: Vector): Vector {
+  const { sign, less, value } = decay(w, u);
+  const twice = v.add(value, value);
+  const square = v.multiply(value, value);
+  const near = name === 'cosh' ? v.divide(v.add(w.constant(1), square), twice) : v.negate(v.divide(v.multiply(less, v.add(w.constant(2), less)), twice));
+  const root = exp(w, w.let(v.multiply(v.abs(u), w.constant(0.5))));
+  const far = v.multiply(v.multiply(root, w.constant(0.5)), root);
+  const size = v.select(v.greaterThan(v.abs(u), w.constant(700)), far, near);
+  return w.let(name === 'cosh' ? size : v.xor(size, sign));
+}

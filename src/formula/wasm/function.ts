@@ -1,0 +1,122 @@
+import { int, type Code, type Int, type ValueType, type Vector } from './code.ts';
+import { instructions } from './instructions.ts';
+import { unsigned } from './leb128.ts';
+import type { Callee, ModuleWriter } from './module.ts';
+
+/** A local that is written more than once. */
+export interface Variable<T extends ValueType> extends Code<T> {
+  set(value: Code<T>): void;
+}
+
+const typeCodes: Readonly<Record<ValueType, number>> = { i32: 0x7f, i64: 0x7e, f64: 0x7c, v128: 0x7b };
+const stores: Readonly<Record<'i32' | 'f64' | 'v128', readonly number[]>> = {
+  i32: [...instructions['i32.store'], 2],
+  f64: [...instructions['f64.store'], 3],
+  v128: [...instructions['v128.store'], 4],
+};
+
+const control = { block: 0x02, loop: 0x03, if: 0x04, else: 0x05, end: 0x0b, br: 0x0c, brIf: 0x0d, return: 0x0f, call: 0x10, localGet: 0x20, localSet: 0x21, none: 0x40 } as const;
+
+/** The body of one function as it is being written, statement by statement. */
+export class FunctionWriter {
+  private readonly body: number[] = [];
+  private readonly locals: ValueType[] = [];
+
+  constructor(
+    readonly module: ModuleWriter,
+    private readonly parameters: readonly ValueType[],
+  ) {}
+
+  parameter<T extends ValueType>(index: number, type: T): Code<T> {
+    return { type, bytes: [control.localGet, ...unsigned(index)] };
+  }
+
+  /** Computes a value now and names it: the code returned reads it again. */
+  let<T extends ValueType>(value: Code<T>): Code<T> {
+    const variable = this.variable(value.type);
+    variable.set(value);
+    return { type: value.type, bytes: variable.bytes };
+  }
+
+  /** A new local, zero at first. */
+  variable<T extends ValueType>(type: T, start?: Code<T>): Variable<T> {
+    const index = unsigned(this.parameters.length + this.locals.push(type) - 1);
+    const variable = {
+      type,
+      bytes: [control.localGet, ...index],
+      set: (value: Code<T>): void => this.push(value.bytes, [control.localSet, ...index]),
+    };
+    if (start) variable.set(start);
+    return variable;
+  }
+
+  /** A number in both lanes. */
+  constant(value: number): Vector {
+    return this.module.constant(value);
+  }
+
+  store(address: Int, offset: number, value: Code<'i32' | 'f64' | 'v128'>): void {
+    this.push(address.bytes, value.bytes, stores[value.type], unsigned(offset));
+  }
+
+  /** Calls a function of one result. */
+  call<T extends ValueType>(callee: Callee, type: T, ...values: readonly Code<ValueType>[]): Code<T> {
+    return { type, bytes: [...values.flatMap((value) => value.bytes), control.call, ...unsigned(callee.index)] };
+  }
+
+  /** Calls a function for what it does, or for two results, which are named. */
+  run(callee: Callee, ...values: readonly Code<ValueType>[]): readonly Code<ValueType>[] {
+    const results = callee.results.map((type) => this.variable(type));
+    this.push(...values.map((value) => value.bytes), [control.call, ...unsigned(callee.index)]);
+    for (const result of [...results].reverse()) this.push([control.localSet, ...result.bytes.slice(1)]);
+    return results;
+  }
+
+  when(condition: Int, then: () => void, otherwise?: () => void): void {
+    this.push(condition.bytes, [control.if, control.none]);
+    then();
+    if (otherwise) {
+      this.push([control.else]);
+      otherwise();
+    }
+    this.push([control.end]);
+  }
+
+  /** Runs `step` while the condition, evaluated before every turn, holds. */
+  repeatWhile(condition: () => Int, step: () => void): void {
+    this.push([control.block, control.none, control.loop, control.none], condition().bytes, [...instructions['i32.eqz'], control.brIf, 1]);
+    step();
+    this.push([control.br, 0, control.end, control.end]);
+  }
+
+  /** Runs `step` for a rising number from `from` up to but without `to`; at least once. */
+  count(from: Int, to: Int, by: number, step: (index: Int) => void): void {
+    const index = this.variable('i32', from);
+    this.push([control.loop, control.none]);
+    step(index);
+    index.set(int.add(index, int.constant(by)));
+    this.push(int.less(index, to).bytes, [control.brIf, 0, control.end]);
+  }
+
+  /** Leaves the function with these results. */
+  leave(...results: readonly Code<ValueType>[]): void {
+    this.push(...results.map((result) => result.bytes), [control.return]);
+  }
+
+  /** The function's bytes in the code section; the last statement must have been `leave`, or there are no results. */
+  finish(): number[] {
+    const groups: [count: number, type: ValueType][] = [];
+    for (const type of this.locals) {
+      const last = groups.at(-1);
+      if (last && last[1] === type) last[0]++;
+      else groups.push([1, type]);
+    }
+    const head = unsigned(groups.length).concat(...groups.map(([count, type]) => [...unsigned(count), typeCodes[type]]));
+    const bytes = head.concat(this.body, [control.end]);
+    return unsigned(bytes.length).concat(bytes);
+  }
+
+  private push(...parts: readonly (readonly number[])[]): void {
+    for (const part of parts) for (const byte of part) this.body.push(byte);
+  }
+}

@@ -1,0 +1,154 @@
+import { operandsOf, type Instruction, type Program, type Value } from '../lower.ts';
+import { int, vector as v, type Int, type Vector } from './code.ts';
+import type { FunctionWriter } from './function.ts';
+import type { Callee, ModuleWriter } from './module.ts';
+import { readTable, type TableShape } from './table.ts';
+import { comparisonMask, VectorMaths, type Comparison } from './vector-maths.ts';
+
+/** Where a program finds its run-time values in memory, and how its steps are written. */
+export interface PlacedProgram {
+  /** Address of the parameters, f64 each, in the program's order. */
+  readonly parameters: number;
+  /** Address of one i32 per table and order: where its coefficients lie. */
+  readonly tables: number;
+  /** Derivatives of each table that the program reads, beside its value. */
+  readonly tableOrders: number;
+  /** Function without arguments: computes all that does not differ between samples. Call it first. */
+  readonly prepare: Callee;
+  /** Writes the steps for two samples; gives the values of the outputs. */
+  sample(w: FunctionWriter, lanes: readonly Vector[]): readonly Vector[];
+}
+
+/** Lays out a program in a module. All tables share one shape. */
+export function placeProgram(module: ModuleWriter, program: Program, shape: TableShape): PlacedProgram {
+  const parameters = module.reserve(8 * program.parameters.length);
+  const tableOrders = 1 + Math.max(0, ...program.instructions.map((step) => (step.op === 'table' ? step.order : 0)));
+  const tables = module.reserve(4 * tableOrders * program.tables.length);
+  const kept = keptValues(program);
+  const keptAt = new Map(kept.map((value) => [value, module.reserve(16)]));
+  const writer = (w: FunctionWriter, lanes: readonly Vector[]): StepWriter => new StepWriter(w, lanes, { parameters, tables, tableOrders, shape });
+  const prepare = module.define([], [], (w) => {
+    const steps = writer(w, []);
+    program.instructions.forEach((step, value) => {
+      if (program.varying[value]) return;
+      steps.write(step, value);
+      const address = keptAt.get(value);
+      if (address !== undefined) w.store(int.constant(0), address, steps.value(value));
+    });
+  });
+  return {
+    parameters,
+    tables,
+    tableOrders,
+    prepare,
+    sample: (w, lanes) => {
+      const steps = writer(w, lanes);
+      for (const [value, address] of keptAt) {
+        const step = program.instructions[value];
+        steps.know(value, step.op === 'constant' ? w.constant(step.value) : v.load(int.constant(0), address));
+      }
+      program.instructions.forEach((step, value) => {
+        if (program.varying[value]) steps.write(step, value);
+      });
+      return program.outputs.map((value) => steps.value(value));
+    },
+  };
+}
+
+/** Values that are the same for all samples and that samples or outputs read. */
+function keptValues(program: Program): readonly Value[] {
+  const kept = new Set<Value>();
+  const keep = (value: Value): void => {
+    if (!program.varying[value]) kept.add(value);
+  };
+  program.instructions.forEach((step, value) => {
+    if (program.varying[value]) operandsOf(step).forEach(keep);
+  });
+  program.outputs.forEach(keep);
+  return [...kept];
+}
+
+interface Places {
+  readonly parameters: number;
+  readonly tables: number;
+  readonly tableOrders: number;
+  readonly shape: TableShape;
+}
+
+/** Writes instructions one by one and remembers where their values are. */
+class StepWriter {
+  private readonly values: Vector[] = [];
+  private readonly masks = new Map<Value, Vector>();
+  private readonly maths: VectorMaths;
+
+  constructor(
+    private readonly w: FunctionWriter,
+    private readonly lanes: readonly Vector[],
+    private readonly places: Places,
+  ) {
+    this.maths = new VectorMaths(w);
+  }
+
+  value(index: Value): Vector {
+    return this.values[index];
+  }
+
+  know(index: Value, code: Vector): void {
+    this.values[index] = code;
+  }
+
+  write(step: Instruction, index: Value): void {
+    const code = this.code(step, index);
+    this.values[index] = step.op === 'lane' || step.op === 'constant' ? code : this.w.let(code);
+  }
+
+  private code(step: Instruction, index: Value): Vector {
+    const { values } = this;
+    switch (step.op) {
+      case 'constant':
+        return this.w.constant(step.value);
+      case 'parameter':
+        return v.loadSplat(int.constant(0), this.places.parameters + 8 * step.index);
+      case 'lane':
+        return this.lanes[step.index];
+      case 'add':
+        return v.add(values[step.left], values[step.right]);
+      case 'subtract':
+        return v.subtract(values[step.left], values[step.right]);
+      case 'multiply':
+        return v.multiply(values[step.left], values[step.right]);
+      case 'divide':
+        return v.divide(values[step.left], values[step.right]);
+      case 'negate':
+        return v.negate(values[step.argument]);
+      case 'sqrt':
+        return v.sqrt(values[step.argument]);
+      case 'unary':
+        return this.maths.unary(step.name, values[step.argument], step.argument);
+      case 'binary':
+        return this.binary(step, index);
+      case 'select':
+        return v.select(this.mask(step.condition), values[step.yes], values[step.no]);
+      case 'table': {
+        const pointer: Int = int.load(int.constant(0), this.places.tables + 4 * (step.table * this.places.tableOrders + step.order));
+        return readTable(this.w, this.places.shape, this.w.let(pointer), values[step.argument]);
+      }
+    }
+  }
+
+  private binary({ name, left, right }: Instruction & { op: 'binary' }, index: Value): Vector {
+    const [a, b] = [this.values[left], this.values[right]];
+    if (!isComparison(name)) return this.maths.binary(name, a, b);
+    const mask = this.w.let(comparisonMask(name, a, b));
+    this.masks.set(index, mask);
+    return v.and(mask, this.w.constant(1));
+  }
+
+  private mask(condition: Value): Vector {
+    return this.masks.get(condition) ?? v.notEqual(this.values[condition], this.w.constant(0));
+  }
+}
+
+function isComparison(name: string): name is Comparison {
+  return name === 'less' || name === 'lessOrEqual' || name === 'equal';
+}
