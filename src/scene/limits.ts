@@ -43,7 +43,7 @@ export const sceneLimits = {
   noiseSteradian: limit('Jy/sr', 0, 1e20, 'Jy/sr', 'rms of the noise of a channel'),
   foregroundDepth: limit('rad/m^2', -1e6, 1e6, 'rad/m^2', 'Faraday depth of the foreground'),
   tolerance: limit('', 1e-12, 0.1, '', 'largest error relative to the map, see physics.md section 3'),
-  seed: limit('', 0, Number.MAX_SAFE_INTEGER, '', 'seed of everything random', whole),
+  seed: limit('', 0, 1e15, '', 'seed of everything random', whole),
 } as const satisfies Readonly<Record<string, SceneLimit>>;
 
 /** The schema of one of these quantities: text with a unit in, a number in its internal unit out. */

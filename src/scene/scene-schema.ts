@@ -28,6 +28,14 @@ const turbulence = keys(
 );
 
 const pixelCount = limited(sceneLimits.pixels);
+const pixels = z.union([pixelCount, z.tuple([pixelCount, pixelCount])], {
+  error: (issue) => {
+    const what = 'a number of pixels n, or [nx, ny], is wanted';
+    if (issue.input === undefined) return `is missing: ${what}`;
+    const isNumber = typeof issue.input === 'number' && Number.isFinite(issue.input);
+    return (isNumber && issue.errors[0][0]?.message) || `${quoteValue(issue.input)} is given where ${what}`;
+  },
+});
 
 const band = keys({
   name: nameText(),
@@ -41,12 +49,7 @@ const band = keys({
 const observation = keys(
   {
     image: keys({
-      pixels: z.union([pixelCount, z.tuple([pixelCount, pixelCount])], {
-        error: ({ input }) =>
-          input === undefined
-            ? 'is missing: a number of pixels n, or [nx, ny], is wanted'
-            : `${quoteValue(input)} is given where a number of pixels n, or [nx, ny], is wanted`,
-      }),
+      pixels,
       pixel: quantityOfEither([sceneLimits.pixelArcsec, sceneLimits.pixelKpc]),
     }),
     bands: listOf(band, 'bands', 1, MAX_ITEMS),

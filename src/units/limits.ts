@@ -26,7 +26,7 @@ export function findLimitProblem(value: number, limits: Limits, given: string): 
   const { min, max, above, whole, nonZero } = limits;
   const inside = value <= max && (above ? value > min : value >= min);
   if (inside && !(whole && !Number.isInteger(value)) && !(nonZero && value === 0)) return undefined;
-  return whole || (inside && nonZero)
+  return whole || above || (inside && nonZero)
     ? `${given} is not allowed: ${describeLimits(limits)}`
     : `${given} is outside ${describeLimits(limits)}`;
 }
