@@ -11,7 +11,7 @@ import { sections } from './section.ts';
 import type { Component, Galaxy, Scene, UnresolvedTurbulence } from './types.ts';
 
 /** The newest version of the scene format, and the only one so far. */
-export const SCENE_VERSION = 1;
+const SCENE_VERSION = 1;
 
 const fileSchema = sceneSchema({ field: looseComponent, density: looseComponent, layer: looseComponent });
 

@@ -26,7 +26,7 @@ export function keys<Shape extends z.ZodRawShape>(shape: Shape, later: readonly 
 }
 
 /** The message about a key that does not exist, or not yet. */
-export function unknownKey(key: string, allowed: readonly string[], later: readonly string[] = []): string {
+function unknownKey(key: string, allowed: readonly string[], later: readonly string[] = []): string {
   if (later.includes(key)) return `"${key}" is not available in this version`;
   // In {a: b, c} the comma ends the text b: a common slip in prose.
   if (/\s/.test(key)) return `unknown key ${quoteValue(key)}: a text with a comma inside { } needs quotes`;

@@ -118,7 +118,7 @@ export function placeAt(input: YamlInput, path: YamlPath, key?: string): Place {
 }
 
 /** A path in words, list items by their `name` or `model`: `field.halo.core`. */
-export function describePath(whole: unknown, path: YamlPath): string {
+function describePath(whole: unknown, path: YamlPath): string {
   let text = '';
   let value = whole;
   for (const step of path) {
@@ -141,7 +141,7 @@ export function childOf(document: Document, node: unknown, step: string | number
 }
 
 /** The node itself, or the one an alias stands for. */
-export function resolveAlias(document: Document, node: unknown): unknown {
+function resolveAlias(document: Document, node: unknown): unknown {
   return isAlias(node) ? node.resolve(document) : node;
 }
 
@@ -155,7 +155,7 @@ function placeOfNode(input: YamlInput, node: unknown): Place {
 }
 
 /** The place of a character of the text, counted from 0. */
-export function placeOfOffset(input: YamlInput, offset: number): Place {
+function placeOfOffset(input: YamlInput, offset: number): Place {
   const { line, col } = input.lines.linePos(offset);
   return { file: input.fileName, line: Math.max(line, 1), column: Math.max(col, 1) };
 }
