@@ -1,8 +1,8 @@
 import { InputError } from '../units/input-error.ts';
 import { sceneLimits } from './limits.ts';
 import type { SceneLimit } from './limits.ts';
-import { arcsecOf } from './observation.ts';
-import type { Beam, Galaxy, Observation, Scene, UnresolvedTurbulence } from './types.ts';
+import { arcsecOf, gradientPerArcsec } from './observation.ts';
+import type { Beam, ForegroundGradient, ForegroundScreen, Galaxy, Observation, Scene, UnresolvedTurbulence } from './types.ts';
 
 /** What a path of a scene reads and writes; `SceneLimit` says in which unit and range. */
 export interface PathEntry extends SceneLimit {
@@ -33,6 +33,9 @@ export const fixedPaths: readonly PathEntry[] = [
   turbulencePath('rms', sceneLimits.rms, ({ rmsUG }) => rmsUG, (old, rmsUG) => ({ ...old, rmsUG })),
   turbulencePath('cell', sceneLimits.cell, ({ cellKpc }) => cellKpc, (old, cellKpc) => ({ ...old, cellKpc })),
   observationPath('foreground.depth', sceneLimits.foregroundDepth, ({ foregroundDepth }) => foregroundDepth, (old, foregroundDepth) => ({ ...old, foregroundDepth })),
+  ...gradientPaths(),
+  screenPath('rms', sceneLimits.screenRms, ({ rmsRadM2 }) => rmsRadM2, (old, rmsRadM2) => ({ ...old, rmsRadM2 })),
+  screenPath('scale', sceneLimits.screenScale, ({ scaleArcsec }) => scaleArcsec, (old, scaleArcsec) => ({ ...old, scaleArcsec })),
   noisePath('Jy/beam', sceneLimits.noiseBeam),
   noisePath('Jy/sr', sceneLimits.noiseSteradian),
   beamPath('major', sceneLimits.beamMajor, ({ majorArcsec }) => majorArcsec, (old, majorArcsec) => ({ ...old, majorArcsec })),
@@ -52,14 +55,16 @@ export const fixedPaths: readonly PathEntry[] = [
   },
 ];
 
-/** A pixel given in kpc keeps its size in the galaxy; one in arcsec keeps its size on the sky. */
+/** What is given in kpc keeps its size in the galaxy; what is given in arcsec keeps its size on the sky. */
 function withDistance(scene: Scene, distanceKpc: number): Scene {
-  const { image } = scene.observation;
+  const { image, foregroundGradient } = scene.observation;
+  const perKpc = foregroundGradient?.radM2PerKpc;
+  const gradient = perKpc === undefined ? foregroundGradient : { ...foregroundGradient, angle: foregroundGradient?.angle ?? 0, radM2PerKpc: perKpc, radM2PerArcsec: gradientPerArcsec(perKpc, distanceKpc) };
   const pixelArcsec = image.pixelKpc === undefined ? image.pixelArcsec : arcsecOf(image.pixelKpc, distanceKpc);
   return {
     ...scene,
     galaxy: { ...scene.galaxy, distanceKpc },
-    observation: { ...scene.observation, image: { ...image, pixelArcsec } },
+    observation: { ...scene.observation, image: { ...image, pixelArcsec }, ...(gradient && { foregroundGradient: gradient }) },
   };
 }
 
@@ -127,4 +132,50 @@ function turbulencePath(
       return old ? { ...scene, turbulence: { ...scene.turbulence, unresolved: write(old, value) } } : scene;
     },
   };
+}
+
+/** The amount is an angular or a linear gradient, as the scene gives it; only one of the two paths exists. */
+function gradientPaths(): readonly PathEntry[] {
+  const path = (
+    key: 'amount' | 'angle',
+    limit: SceneLimit,
+    read: (old: ForegroundGradient) => number | undefined,
+    write: (scene: Scene, old: ForegroundGradient, value: number) => ForegroundGradient,
+  ): PathEntry => ({
+    path: `observation.foreground.gradient.${key}`,
+    ...limit,
+    read: ({ observation }) => observation.foregroundGradient && read(observation.foregroundGradient),
+    write: (scene, value) => {
+      const old = scene.observation.foregroundGradient;
+      return old ? { ...scene, observation: { ...scene.observation, foregroundGradient: write(scene, old, value) } } : scene;
+    },
+  });
+  return [
+    path(
+      'amount',
+      sceneLimits.gradientAngular,
+      ({ radM2PerArcsec, radM2PerKpc }) => (radM2PerKpc === undefined ? radM2PerArcsec : undefined),
+      (_, old, radM2PerArcsec) => ({ ...old, radM2PerArcsec }),
+    ),
+    path('amount', sceneLimits.gradientLinear, ({ radM2PerKpc }) => radM2PerKpc, ({ galaxy }, old, radM2PerKpc) => ({
+      ...old,
+      radM2PerKpc,
+      radM2PerArcsec: gradientPerArcsec(radM2PerKpc, galaxy.distanceKpc),
+    })),
+    path('angle', sceneLimits.gradientAngle, ({ angle }) => angle, (_, old, angle) => ({ ...old, angle })),
+  ];
+}
+
+function screenPath(
+  key: 'rms' | 'scale',
+  limit: SceneLimit,
+  read: (old: ForegroundScreen) => number,
+  write: (old: ForegroundScreen, value: number) => ForegroundScreen,
+): PathEntry {
+  return observationPath(
+    `foreground.random.${key}`,
+    limit,
+    ({ foregroundScreen }) => foregroundScreen && read(foregroundScreen),
+    (old, value) => (old.foregroundScreen ? { ...old, foregroundScreen: write(old.foregroundScreen, value) } : old),
+  );
 }

@@ -42,6 +42,13 @@ export const sceneLimits = {
   noiseBeam: limit('Jy/beam', 0, 1e9, 'Jy/beam', 'rms of the noise of a channel'),
   noiseSteradian: limit('Jy/sr', 0, 1e20, 'Jy/sr', 'rms of the noise of a channel'),
   foregroundDepth: limit('rad/m^2', -1e6, 1e6, 'rad/m^2', 'Faraday depth of the foreground'),
+  gradientAngular: limit('rad/m^2/arcmin', -1e6, 1e6, 'rad/m^2/arcsec', 'growth of the foreground depth over the sky'),
+  gradientLinear: limit('rad/m^2/kpc', -1e6, 1e6, 'rad/m^2/kpc', 'growth of the foreground depth at the distance of the galaxy'),
+  gradientAngle: limit('deg', -360, 360, 'rad', 'direction in which the foreground depth grows, north through east'),
+  screenRms: limit('rad/m^2', 0, 1e6, 'rad/m^2', 'rms of the random foreground screen'),
+  screenScale: limit('arcsec', 0, 360000, 'arcsec', 'distance at which the autocorrelation of the screen has fallen to 1/e', above),
+  missingWavelengths: limit('', 0, 1e9, '', 'spacings below so many wavelengths are missing', above),
+  missingScale: limit('arcsec', 0, 360000, 'arcsec', 'structure larger than this is missing', above),
   tolerance: limit('', 1e-12, 0.1, '', 'largest error relative to the map, see physics.md section 3'),
   seed: limit('', 0, 1e15, '', 'seed of everything random', whole),
 } as const satisfies Readonly<Record<string, SceneLimit>>;

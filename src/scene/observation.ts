@@ -16,14 +16,44 @@ const MAX_WIDTH_DEG = 20;
 /** The observation of a checked scene file. Throws InputError with its place. */
 export function readObservation(input: YamlInput, file: ObservationFile, distanceKpc: number): Observation {
   const beam = file.beam && readBeam(input, file.beam);
-  const noise = readNoise(input, file.noise, beam);
+  const noise = readNoise(input, TOP, file.noise, beam);
   return {
     image: readImage(input, file.image, distanceKpc),
-    bands: readBands(input, file.bands),
+    bands: readBands(input, file.bands, beam),
     ...(beam && { beam }),
     ...(noise !== undefined && { noise }),
-    foregroundDepth: file.foreground?.depth ?? 0,
+    ...readForeground(file.foreground, distanceKpc),
+    ...(file.shortSpacings && { missingWavelengths: missingWavelengths(file.shortSpacings.missingBelow) }),
   };
+}
+
+type Foreground = Pick<Observation, 'foregroundDepth' | 'foregroundGradient' | 'foregroundScreen'>;
+
+function readForeground(file: ObservationFile['foreground'], distanceKpc: number): Foreground {
+  const gradient = file?.gradient;
+  const random = file?.random;
+  const perKpc = gradient?.amount.unit === 'rad/m^2/kpc' ? gradient.amount.value : undefined;
+  return {
+    foregroundDepth: file?.depth ?? 0,
+    ...(gradient && {
+      foregroundGradient: {
+        radM2PerArcsec: perKpc === undefined ? gradient.amount.value : gradientPerArcsec(perKpc, distanceKpc),
+        ...(perKpc !== undefined && { radM2PerKpc: perKpc }),
+        angle: gradient.angle,
+      },
+    }),
+    ...(random && { foregroundScreen: { rmsRadM2: random.rms, scaleArcsec: random.scale } }),
+  };
+}
+
+/** A gradient over the sky (rad m^-2 per arcsec) of one per kpc at a distance. */
+export function gradientPerArcsec(radM2PerKpc: number, distanceKpc: number): number {
+  return radM2PerKpc / arcsecOf(1, distanceKpc);
+}
+
+/** A number counts wavelengths; an angle is the period of the spacing that is 1/angle wavelengths long. */
+function missingWavelengths(missingBelow: NonNullable<ObservationFile['shortSpacings']>['missingBelow']): number {
+  return typeof missingBelow === 'number' ? missingBelow : 1 / convertQuantity(missingBelow.arcsec, 'arcsec', 'rad');
 }
 
 /** The angle, arcsec, that a length spans at a distance (small angle, physics.md section 9.5). */
@@ -55,7 +85,7 @@ function readBeam(input: YamlInput, { major, minor, angle }: NonNullable<Observa
   return { majorArcsec: major, minorArcsec: minor, angle: angle ?? 0 };
 }
 
-function readNoise(input: YamlInput, noise: ObservationFile['noise'], beam: Beam | undefined): number | undefined {
+function readNoise(input: YamlInput, path: YamlPath, noise: ObservationFile['noise'], beam: Beam | undefined): number | undefined {
   if (noise === undefined) return undefined;
   const wanted = beam ? 'Jy/beam' : 'Jy/sr';
   if (noise.unit === wanted) return noise.value;
@@ -63,10 +93,10 @@ function readNoise(input: YamlInput, noise: ObservationFile['noise'], beam: Beam
   const reason = beam
     ? `noise is ${given}, but there is a beam: give it in Jy/beam`
     : `noise is ${given}, but there is no beam: give a beam, or noise in Jy/sr`;
-  throw new InputError(reason, placeAt(input, [...TOP, 'noise']));
+  throw new InputError(reason, placeAt(input, [...path, 'noise']));
 }
 
-function readBands(input: YamlInput, files: readonly BandFile[]): Band[] {
+function readBands(input: YamlInput, files: readonly BandFile[], beam: Beam | undefined): Band[] {
   let total = 0;
   return files.map((file, index) => {
     const path = [...TOP, 'bands', index];
@@ -79,7 +109,8 @@ function readBands(input: YamlInput, files: readonly BandFile[]): Band[] {
     const band = file.at === undefined ? readRange(file, fail) : readList(file, file.at, fail);
     total += band.channels.length;
     if (total > MAX_CHANNELS) fail(`with it the scene has ${total} channels; at most ${MAX_CHANNELS} are allowed`);
-    return band;
+    const noise = readNoise(input, path, file.noise, beam);
+    return { ...band, ...(noise !== undefined && { noise }) };
   });
 }
 

@@ -44,6 +44,26 @@ const band = keys({
   channels: limited(sceneLimits.channels).optional(),
   at: listOf(limited(sceneLimits.frequency), 'frequencies', 1, MAX_FREQUENCIES).optional(),
   width: limited(sceneLimits.width).optional(),
+  noise: quantityOfEither([sceneLimits.noiseBeam, sceneLimits.noiseSteradian]).optional(),
+});
+
+const foreground = keys({
+  depth: limited(sceneLimits.foregroundDepth).default(0),
+  gradient: keys({
+    amount: quantityOfEither([sceneLimits.gradientAngular, sceneLimits.gradientLinear]),
+    angle: limited(sceneLimits.gradientAngle),
+  }).optional(),
+  random: keys({ rms: limited(sceneLimits.screenRms), scale: limited(sceneLimits.screenScale) }).optional(),
+});
+
+const missingBelow = z.union([limited(sceneLimits.missingWavelengths), limited(sceneLimits.missingScale).transform((arcsec) => ({ arcsec }))], {
+  error: (issue) => {
+    const what = 'a number of wavelengths such as 500, or an angle such as "300 arcsec", is wanted';
+    if (issue.input === undefined) return `is missing: ${what}`;
+    const option = typeof issue.input === 'number' ? 0 : 1;
+    const own = typeof issue.input === 'number' || typeof issue.input === 'string' ? issue.errors[option]?.[0]?.message : undefined;
+    return own || `${quoteValue(issue.input)} is given where ${what}`;
+  },
 });
 
 const observation = keys(
@@ -59,9 +79,9 @@ const observation = keys(
       angle: limited(sceneLimits.beamAngle).optional(),
     }).optional(),
     noise: quantityOfEither([sceneLimits.noiseBeam, sceneLimits.noiseSteradian]).optional(),
-    foreground: keys({ depth: limited(sceneLimits.foregroundDepth) }, ['gradient', 'random']).optional(),
+    foreground: foreground.optional(),
+    shortSpacings: keys({ missingBelow }).optional(),
   },
-  ['shortSpacings'],
 );
 
 const numerics = keys({

@@ -44,6 +44,8 @@ export interface Band {
   readonly channels: readonly { readonly frequencyHz: number; readonly widthHz: number }[];
   /** Centre of the whole band; undefined for a list of separate frequencies. */
   readonly centreHz?: number;
+  /** rms per channel in this band, in place of the observation's. */
+  readonly noise?: number;
 }
 
 export interface Beam {
@@ -62,6 +64,21 @@ export interface ImageSpec {
   readonly pixelKpc?: number;
 }
 
+/** Depth of the foreground that grows along one direction of the sky, 0 at the galaxy's centre. */
+export interface ForegroundGradient {
+  readonly radM2PerArcsec: number;
+  /** Where the scene gives it per kpc: it stays so when the distance is varied. */
+  readonly radM2PerKpc?: number;
+  /** Direction of growth, north through east, rad. */
+  readonly angle: number;
+}
+
+/** A Gaussian random screen with autocorrelation rms^2 exp(-(d/scale)^2). */
+export interface ForegroundScreen {
+  readonly rmsRadM2: number;
+  readonly scaleArcsec: number;
+}
+
 export interface Observation {
   readonly image: ImageSpec;
   readonly bands: readonly Band[];
@@ -70,6 +87,10 @@ export interface Observation {
   readonly noise?: number;
   /** rad m^-2, 0 where there is none. */
   readonly foregroundDepth: number;
+  readonly foregroundGradient?: ForegroundGradient;
+  readonly foregroundScreen?: ForegroundScreen;
+  /** Spacings missing from the uv plane: fewer wavelengths than this are seen at half or less. */
+  readonly missingWavelengths?: number;
 }
 
 export interface Numerics {

@@ -2,10 +2,11 @@ import type { RayBackend, Watch } from '../ray/job.ts';
 import type { RayResult } from '../ray/types.ts';
 import type { Scene } from '../scene/types.ts';
 import { applyBeam, beamMargin } from './beam.ts';
-import { turnByForeground } from './foreground.ts';
-import { cropCube, cropPlanes, gridFromScene, gridOffsetsKpc, growGrid } from './grid.ts';
+import { foregroundDepths, largestForeground, turnByForeground } from './foreground.ts';
+import { cropCube, cropPlanes, gridFromScene, gridOffsetsKpc, growGrid, wcsFromGrid } from './grid.ts';
 import { refuseTooLarge } from './memory.ts';
 import { addNoise } from './noise.ts';
+import { missingBeam, removeShortSpacings } from './short-spacings.ts';
 import { planSpectrum, type BandPlan, type SpectralPlan } from './spectral-plan.ts';
 import type { SkyGrid, StokesCube } from './types.ts';
 
@@ -33,22 +34,23 @@ export interface ObservedSky {
 const smallestShare = 1e-2;
 
 /**
- * Rays → foreground screen → channel averages → beam → noise, in that order (physics.md section
- * 5), for every band of a scene. Throws InputError where the image would not fit into memory.
+ * Rays → foreground screen → channel averages → beam → missing short spacings → noise, in that order
+ * (physics.md section 5), for every band of a scene. Throws InputError where the image would not fit into memory.
  */
 export async function observe(scene: Scene, backend: RayBackend, watch: Watch = {}): Promise<ObservedSky> {
   const grid = gridFromScene(scene);
-  const { beam, bands } = scene.observation;
-  const margin = beamMargin(beam, grid);
+  const { beam, bands, missingWavelengths } = scene.observation;
+  const margin = beamMargin(beam, grid) + (missingWavelengths === undefined ? 0 : beamMargin(missingBeam(missingWavelengths), grid));
   const wide = growGrid(grid, margin);
   const channels = bands.reduce((sum, band) => sum + band.channels.length, 0);
   const size = { nx: grid.nx, ny: grid.ny, margin, channels };
   refuseTooLarge({ ...size, frequencies: channels });
   const bundle = gridOffsetsKpc(wide);
-  const plan = planSpectrum(scene, bundle, bands);
+  const foreground = foregroundDepths(scene, wcsFromGrid(wide), wide.nx, wide.ny);
+  const plan = planSpectrum(scene, bundle, bands, { foreground: largestForeground(foreground) });
   refuseTooLarge({ ...size, frequencies: plan.spectrum.length });
   const rays = await backend({ scene, spectrum: plan.spectrum, bundle }, watch);
-  turnScreen(scene, plan, rays);
+  turnScreen(foreground, plan, rays);
   const cubes = plan.bands.map((band) => {
     const sharp: StokesCube = {
       ...bandCube(band, rays, wide.nx * wide.ny),
@@ -58,10 +60,12 @@ export async function observe(scene: Scene, backend: RayBackend, watch: Watch = 
       unit: 'Jy/sr',
       noise: new Float64Array(band.channels.length),
     };
-    const seen = cropCube(beam ? applyBeam(sharp, beam) : sharp, margin);
-    return scene.observation.noise ? addNoise(seen, scene.observation.noise, scene.numerics.seed) : seen;
+    const beamed = beam ? applyBeam(sharp, beam) : sharp;
+    const seen = cropCube(missingWavelengths === undefined ? beamed : removeShortSpacings(beamed, missingWavelengths), margin);
+    const noise = band.band.noise ?? scene.observation.noise;
+    return noise ? addNoise(seen, noise, scene.numerics.seed) : seen;
   });
-  const depth = rays.faradayDepth.map((value) => value + scene.observation.foregroundDepth);
+  const depth = rays.faradayDepth.map((value, k) => value + (typeof foreground === 'number' ? foreground : foreground[k]));
   const cropped = (planes: Float64Array): Float64Array => cropPlanes(planes, wide.nx, wide.ny, margin);
   return {
     grid,
@@ -75,8 +79,7 @@ export async function observe(scene: Scene, backend: RayBackend, watch: Watch = 
 }
 
 /** Turns Q and U of every frequency by the foreground's depth, before any average. */
-function turnScreen(scene: Scene, plan: SpectralPlan, rays: RayResult): void {
-  const depth = scene.observation.foregroundDepth;
+function turnScreen(depth: number | Float64Array, plan: SpectralPlan, rays: RayResult): void {
   if (depth === 0) return;
   const frequenciesHz = plan.spectrum.map((point) => point.frequencyHz);
   turnByForeground(rays.Q, rays.U, frequenciesHz, depth);

@@ -29,6 +29,10 @@ export interface SpectralPlan {
 export interface PlanOptions {
   /** How much larger than the scene's own the depths may be that channels must be averaged for. */
   readonly depthReserve?: number;
+  /** Largest |depth| of the foreground, rad m^-2; the scene's constant one where left out. */
+  readonly foreground?: number;
+  /** Which share of rays the averages must be exact for; 1 by default. */
+  readonly depthQuantile?: number;
   /** Whether heights of origin are wanted. */
   readonly origins?: boolean;
 }
@@ -38,11 +42,10 @@ export function planSpectrum(
   scene: Scene,
   bundle: RayBundle,
   bands: readonly Band[],
-  { depthReserve = 1, origins: withOrigins = true }: PlanOptions = {},
+  { depthReserve = 1, foreground = Math.abs(scene.observation.foregroundDepth), origins: withOrigins = true }: PlanOptions = {},
 ): SpectralPlan {
   const wide = bands.some((band) => band.channels.some((channel) => channel.widthHz > 0));
-  const foreground = Math.abs(scene.observation.foregroundDepth);
-  const largestDepth = wide ? depthReserve * (findLargestDepth(scene, bundle) + foreground) : 0;
+  const largestDepth = wide ? depthReserve * (findLargestDepth(scene, bundle, depthQuantile) + foreground) : 0;
   const spectrum: SpectralPoint[] = [];
   const known = new Map<string, number>();
   const point = (frequencyHz: number, centreHz: number): number => {
