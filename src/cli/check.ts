@@ -10,6 +10,7 @@ import { InputError } from '../units/input-error.ts';
 import { convertQuantity, formatQuantity } from '../units/quantity.ts';
 import { readYaml } from '../units/yaml-input.ts';
 import { internalUnit } from '../model/parameters.ts';
+import { gatherAssumptions } from './assumptions.ts';
 import { prepareHypothesis } from './hypothesis-run.ts';
 import { loadData } from './load-data.ts';
 import { loadScene } from './load-scene.ts';
@@ -104,7 +105,7 @@ function checkStudy(file: string, text: string, flags: CommonFlags): CheckReport
   const { data, notes } = loadData(study.data, file);
   const lines = [`${file}: a study, "${study.title}"`];
   for (const band of data.bands) lines.push(`  data     ${band.name}: ${band.channels.map((channel) => `${(channel.frequencyHz / 1e9).toPrecision(6)} GHz`).join(', ')}`);
-  for (const sentence of [...data.assumptions, ...notes]) lines.push(`  assumed  ${sentence}`);
+  for (const sentence of gatherAssumptions([...data.assumptions, ...notes])) lines.push(`  assumed  ${sentence}`);
   for (const hypothesis of study.hypotheses) {
     const { name, scene, parameters } = prepareHypothesis(hypothesis, file, data, overridesOf({ set: flags.set }));
     const free = parameters.map(({ path }) => path).join(', ');

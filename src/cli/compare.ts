@@ -15,6 +15,7 @@ import type { DataEntry } from '../infer/study-types.ts';
 import type { DataSet } from '../infer/types.ts';
 import type { Sector } from '../measure/rings.ts';
 import { InputError } from '../units/input-error.ts';
+import { gatherAssumptions } from './assumptions.ts';
 import { loadData } from './load-data.ts';
 import { loadScene } from './load-scene.ts';
 import { OutputFolder } from './output-folder.ts';
@@ -43,7 +44,7 @@ async function compare(path: string, files: readonly string[], flags: CompareFla
   refuseNoOverlap(data, scene.galaxy);
   const ring = ringOf(flags.ring, scene);
   const assumptions = [...data.assumptions, ...notes];
-  sayWords(flags, ...assumptions.map((sentence) => `assumed  ${sentence}`));
+  sayWords(flags, ...gatherAssumptions(assumptions).map((sentence) => `assumed  ${sentence}`));
   const likelihood = makeLikelihood(data);
   const planes = await withRunContext(flags, ({ pool, signal, progress }) => {
     progress.show('following rays', 0, 1);

@@ -72,7 +72,7 @@ export async function fitHypothesis(
     const residuals = likelihood.residuals(await forward(known.values, context.signal));
     return { ...known, chi2: chiSquared(residuals), priorChi2: 0, logLikelihood: logLikelihood(likelihood, residuals), residuals, descents: [] };
   }
-  const expected = effort.starts + 1 + effort.descents * (parameters.length + 1) * 10;
+  const expected = effort.starts + 1 + effort.descents * (parameters.length + 1) * 14;
   return fitModel({
     parameters,
     forward,
@@ -82,7 +82,7 @@ export async function fitHypothesis(
     descents: effort.descents,
     signal: context.signal,
     onProgress: ({ evaluations, chi2 }) =>
-      context.progress.show(label, Math.min(evaluations, expected - 1), expected, 'models', `χ² ${chi2.toFixed(1)}`),
+      context.progress.show(label, evaluations, Math.max(expected, Math.ceil(1.15 * evaluations)), 'models', `χ² ${chi2.toFixed(1)}`),
   });
 }
 

@@ -18,6 +18,7 @@ import { symmetrySentences } from '../ray/symmetry.ts';
 import { scenePath } from '../scene/paths.ts';
 import { offsetFromPixel } from '../sky/wcs.ts';
 import { convertQuantity, formatQuantity } from '../units/quantity.ts';
+import { gatherAssumptions } from './assumptions.ts';
 import { bestTexts, correlationTable, errorTexts, type FittedRun } from './hypothesis-run.ts';
 import { slug, type OutputFolder } from './output-folder.ts';
 import { version } from './version.ts';
@@ -195,7 +196,7 @@ function htmlReport(report: RankReport): Parameters<typeof reportHtml>[0] {
       quantity: entry.quantity,
       file: entry.files.join(', '),
       about: `noise ${entry.noise?.text ?? `map ${entry.noiseMap ?? ''}`}`,
-      assumed: k === 0 ? assumptions : [],
+      assumed: k === 0 ? gatherAssumptions(assumptions) : [],
     })),
     hypotheses: outcome.ordered.map((run, k): ReportHypothesis => {
       const row = outcome.rows[k];

@@ -5,6 +5,7 @@ import { makeLikelihood } from '../infer/likelihood.ts';
 import { parseStudy } from '../infer/study.ts';
 import { measureOnData } from '../figure/comparison.ts';
 import { InputError } from '../units/input-error.ts';
+import { gatherAssumptions } from './assumptions.ts';
 import { FitStore } from './fit-store.ts';
 import { finishHypothesis, fitHypothesis, fitKey, prepareHypothesis, type FittedRun } from './hypothesis-run.ts';
 import { loadData } from './load-data.ts';
@@ -40,7 +41,7 @@ async function rank(path: string, flags: RankFlags): Promise<void> {
   const effort = { starts: startsOf(flags.starts), descents: 2 };
   const likelihood = makeLikelihood(data);
   const assumptions = [...data.assumptions, ...notes];
-  sayWords(flags, ...assumptions.map((sentence) => `assumed  ${sentence}`));
+  sayWords(flags, ...gatherAssumptions(assumptions).map((sentence) => `assumed  ${sentence}`));
 
   const started = Date.now();
   const store = new FitStore(flags.out);

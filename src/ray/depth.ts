@@ -10,10 +10,11 @@ import type { RayBundle } from './types.ts';
 const panelsPerInterval = 4;
 
 /**
- * An upper estimate of the Faraday depth (rad m^-2) anywhere along a bundle's rays: the largest
- * ∫|dφ/ds| ds over an even choice of them, so that fields of either sign cannot cancel.
+ * An upper estimate of the Faraday depth (rad m^-2) anywhere along a bundle's rays: ∫|dφ/ds| ds, so
+ * that fields of either sign cannot cancel, over an even choice of rays. The largest of them, or a
+ * smaller quantile where a few rays through a singular centre should not decide.
  */
-export function findLargestDepth(scene: Scene, bundle: RayBundle): number {
+export function findLargestDepth(scene: Scene, bundle: RayBundle, quantile = 1): number {
   const { integrand } = makeRayEngine(scene, [{ frequencyHz: 1e9, centreHz: 1e9 }]);
   const inputs = integrand.inputs(scene);
   const geometry = rayGeometry(scene, inputs.edges);
@@ -21,7 +22,7 @@ export function findLargestDepth(scene: Scene, bundle: RayBundle): number {
   const breaks = new Float64Array(128);
   const lanes = [0, 1, 2].map(() => new Float64Array(panelNodes));
   const out = integrand.program.outputs.map(() => new Float64Array(panelNodes));
-  let largest = 0;
+  const depths: number[] = [];
   for (const index of pickRays(bundle.northKpc.length)) {
     const [north, east] = [bundle.northKpc[index], bundle.eastKpc[index]];
     const [major, minor] = [north * cosPA + east * sinPA, east * cosPA - north * sinPA];
@@ -41,7 +42,8 @@ export function findLargestDepth(scene: Scene, bundle: RayBundle): number {
         for (let i = 0; i < panelNodes; i++) depth += half * panelRule.weights[i] * Math.abs(out[output.faraday][i]);
       }
     }
-    largest = Math.max(largest, depth);
+    depths.push(depth);
   }
-  return largest;
+  depths.sort((a, b) => a - b);
+  return depths[Math.max(0, Math.ceil(quantile * depths.length) - 1)] ?? 0;
 }
