@@ -15,7 +15,7 @@ const panelsPerInterval = 4;
  * smaller quantile where a few rays through a singular centre should not decide.
  */
 export function findLargestDepth(scene: Scene, bundle: RayBundle, quantile = 1): number {
-  const { integrand } = makeRayEngine(scene, [{ frequencyHz: 1e9, centreHz: 1e9 }]);
+  const { integrand, kernel } = makeRayEngine(scene, [{ frequencyHz: 1e9, centreHz: 1e9 }]);
   const inputs = integrand.inputs(scene);
   const geometry = rayGeometry(scene, inputs.edges);
   const [sinPA, cosPA] = exactSineCosine(scene.galaxy.positionAngle);
@@ -38,7 +38,7 @@ export function findLargestDepth(scene: Scene, bundle: RayBundle, quantile = 1):
           lanes[1][i] = minor * geometry.cosI - s * geometry.sinI;
           lanes[2][i] = minor * geometry.sinI + s * geometry.cosI;
         }
-        integrand.kernel.evaluate(panelNodes, inputs.parameters, lanes, out, inputs.tables);
+        kernel().evaluate(panelNodes, inputs.parameters, lanes, out, inputs.tables);
         for (let i = 0; i < panelNodes; i++) depth += half * panelRule.weights[i] * Math.abs(out[output.faraday][i]);
       }
     }

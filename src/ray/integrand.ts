@@ -1,10 +1,10 @@
-import { compileJavaScript, type Kernel } from '../formula/javascript.ts';
+import { interpretProgram } from '../formula/javascript.ts';
 import { Graph, type NodeId } from '../formula/graph.ts';
 import { lowerGraph, type Program } from '../formula/lower.ts';
 import { coordinateSubstitution } from '../formula/vector-calculus.ts';
 import type { Table } from '../math/table.ts';
 import type { Scene } from '../scene/types.ts';
-import { riceTables } from './rice.ts';
+import { riceTables, riceTableShape } from './rice.ts';
 import { parameterValues, SceneGraph, smallestFieldSquared } from './scene-graph.ts';
 import { faradayDepthPerKpc } from './synchrotron.ts';
 
@@ -16,7 +16,6 @@ import { faradayDepthPerKpc } from './synchrotron.ts';
  */
 export interface Integrand {
   readonly program: Program;
-  readonly kernel: Kernel;
   /** Which frequencies share a C: one group for all where no layer depends on frequency. */
   readonly groupOf: readonly number[];
   readonly groups: number;
@@ -34,6 +33,9 @@ export interface IntegrandInputs {
 
 /** Fixed places of the outputs; C of the first emission group stands at `firstGroup`. */
 export const output = { faraday: 0, dispersion: 1, total: 2, cosine: 3, sine: 4, firstGroup: 5 } as const;
+
+/** What all tables of an integrand are like. */
+export const tableShape = riceTableShape;
 
 /** A frequency at which to follow rays, and the centre of the channel it belongs to, Hz. */
 export interface SpectralPoint {
@@ -69,7 +71,6 @@ export function compileIntegrand(scene: Scene, spectrum: readonly SpectralPoint[
   const groupFrequencies = Array.from({ length: groups }, (_, group) => spectrum[groupOf.indexOf(group)].centreHz);
   return {
     program,
-    kernel: compileJavaScript(program),
     groupOf,
     groups,
     hasDispersion: rms !== undefined,
@@ -121,8 +122,6 @@ function edgeValues(scene: Scene, values: ReadonlyMap<string, number>): Integran
   const { z, r } = new SceneGraph(graph, scene).edges();
   if (z.length + r.length === 0) return { zKpc: [], rKpc: [] };
   const program = lowerGraph(graph, [...z, ...r], []);
-  const out = program.outputs.map(() => new Float64Array(1));
-  compileJavaScript(program).evaluate(1, Float64Array.from(program.parameters, (name) => values.get(name) ?? NaN), [], out, []);
-  const numbers = out.map(([value]) => value);
+  const numbers = interpretProgram(program, Float64Array.from(program.parameters, (name) => values.get(name) ?? NaN), []);
   return { zKpc: numbers.slice(0, z.length), rKpc: numbers.slice(z.length) };
 }

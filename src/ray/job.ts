@@ -1,6 +1,6 @@
 import type { Scene } from '../scene/types.ts';
 import type { SpectralPoint } from './integrand.ts';
-import { findMapScale, makeRayEngine, traceRays, type RayEngine } from './trace.ts';
+import { findMapScale, makeRayEngine, traceRays, type BackEnd, type RayEngine } from './trace.ts';
 import type { RayBundle, RayResult } from './types.ts';
 
 /** A scene to be followed along a bundle of rays at a list of frequencies. */
@@ -32,12 +32,15 @@ export function tilesOf(rays: number): readonly (readonly [number, number])[] {
 export class EngineCache {
   private readonly engines = new Map<string, RayEngine>();
 
+  /** `backEnd` forces what follows rays; by default the fastest that the host has. */
+  constructor(private readonly backEnd?: BackEnd) {}
+
   /** The engine of a scene, compiled where none of the same structure is kept. */
   get(scene: Scene, spectrum: readonly SpectralPoint[]): RayEngine {
     const key = structureKey(scene, spectrum);
     let engine = this.engines.get(key);
     if (!engine) {
-      engine = makeRayEngine(scene, spectrum);
+      engine = makeRayEngine(scene, spectrum, this.backEnd);
       if (this.engines.size >= 16) this.engines.delete([...this.engines.keys()][0]);
       this.engines.set(key, engine);
     }

@@ -9,6 +9,15 @@ export interface RayGeometry {
   readonly edges: IntegrandInputs['edges'];
 }
 
+/** Most breaks of one ray. */
+export const mostBreaks = 128;
+/** Breaks closer than this share of the path are one. */
+export const coincidence = 1e-12;
+/** Heights, as shares of the volume's, at which first panels end. */
+export const gradedShares = [0.1, 0.4] as const;
+/** Rays that run through the disc lengthwise, |cos i| below this, are graded towards the axis too. */
+export const steepestGraded = 0.3;
+
 /**
  * Fills `breaks` with the rising values of s (kpc, growing towards the observer) between which
  * the integrand along the ray at (major, minor) is smooth: the ends of the volume, the plane, the
@@ -20,15 +29,24 @@ export function findBreaks(geometry: RayGeometry, majorKpc: number, minorKpc: nu
   const span = volumeSpan(geometry, majorKpc, minorKpc);
   if (!span) return 0;
   const [from, to] = span;
-  let count = 0;
-  const add = (s: number): void => {
-    if (s > from && s < to && count < breaks.length - 2) breaks[count++] = s;
+  const least = (to - from) * coincidence;
+  breaks[0] = from;
+  breaks[1] = to;
+  let count = 2;
+  const insert = (s: number): void => {
+    if (!(s > from && s < to) || count >= mostBreaks) return;
+    let at = count - 1;
+    while (breaks[at - 1] > s) at--;
+    if (s - breaks[at - 1] <= least || breaks[at] - s <= least) return;
+    for (let k = count; k > at; k--) breaks[k] = breaks[k - 1];
+    breaks[at] = s;
+    count++;
   };
   const atHeight = (z: number): void => {
-    if (cosI !== 0) add((z - minorKpc * sinI) / cosI);
+    if (cosI !== 0) insert((z - minorKpc * sinI) / cosI);
   };
   const atDepth = (y: number): void => {
-    if (sinI !== 0) add((minorKpc * cosI - y) / sinI);
+    if (sinI !== 0) insert((minorKpc * cosI - y) / sinI);
   };
   atHeight(0);
   atDepth(0);
@@ -42,20 +60,12 @@ export function findBreaks(geometry: RayGeometry, majorKpc: number, minorKpc: nu
   for (const share of gradedShares) {
     atHeight(share * heightKpc);
     atHeight(-share * heightKpc);
-    // Near edge-on rays run through the disc lengthwise: grade towards the axis too.
-    if (Math.abs(cosI) < 0.3) {
-      atDepth(share * radiusKpc);
-      atDepth(-share * radiusKpc);
-    }
+    if (Math.abs(cosI) >= steepestGraded) continue;
+    atDepth(share * radiusKpc);
+    atDepth(-share * radiusKpc);
   }
-  breaks[count++] = from;
-  breaks[count++] = to;
-  const sorted = breaks.subarray(0, count).sort();
-  return dropCoincident(sorted, (to - from) * 1e-12);
+  return count;
 }
-
-/** Heights, as shares of the volume's, at which first panels end. */
-const gradedShares = [0.1, 0.4];
 
 /** Where a ray enters and leaves the volume, far end first; undefined where it misses. */
 function volumeSpan({ sinI, cosI, radiusKpc, heightKpc }: RayGeometry, majorKpc: number, minorKpc: number): [number, number] | undefined {
@@ -64,7 +74,7 @@ function volumeSpan({ sinI, cosI, radiusKpc, heightKpc }: RayGeometry, majorKpc:
   let from = -Infinity;
   let to = Infinity;
   if (sinI === 0) {
-    if (minorKpc * minorKpc >= square) return undefined;
+    if (minorKpc * minorKpc > square) return undefined;
   } else {
     const half = Math.sqrt(square) / Math.abs(sinI);
     const middle = (minorKpc * cosI) / sinI;
@@ -79,13 +89,4 @@ function volumeSpan({ sinI, cosI, radiusKpc, heightKpc }: RayGeometry, majorKpc:
     to = Math.min(to, middle + half);
   }
   return to > from ? [from, to] : undefined;
-}
-
-function dropCoincident(sorted: Float64Array, least: number): number {
-  let kept = 1;
-  for (let k = 1; k < sorted.length; k++) {
-    if (sorted[k] - sorted[kept - 1] > least) sorted[kept++] = sorted[k];
-    else if (k === sorted.length - 1) sorted[kept - 1] = sorted[k];
-  }
-  return kept;
 }

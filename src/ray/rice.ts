@@ -28,16 +28,20 @@ export function riceAligned(q: number, u: number): number {
   return 0.5 * gamma(2 + q / 2) * Math.pow(1 - u, q / 2 - 1) * kummerOfMinus(1 - q / 2, 3, u / (1 - u));
 }
 
+/** What both tables are like. */
+export const riceTableShape = { pieces: 64, degree: 11 } as const;
+
 const cache = new Map<number, RiceTables>();
 
 /** Both functions tabulated for an electron index p; accurate to 1e-12. */
 export function riceTables(index: number): RiceTables {
+  const { pieces, degree } = riceTableShape;
   const known = cache.get(index);
   if (known) return known;
   const q = (index + 1) / 2;
   const tables = {
-    total: makeTable((u) => riceTotal(q, u), 64, 11),
-    aligned: makeTable((u) => riceAligned(q, u), 64, 11),
+    total: makeTable((u) => riceTotal(q, u), pieces, degree),
+    aligned: makeTable((u) => riceAligned(q, u), pieces, degree),
   };
   if (cache.size > 64) cache.clear();
   cache.set(index, tables);

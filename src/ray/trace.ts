@@ -1,23 +1,48 @@
+import { compileJavaScript, type Kernel } from '../formula/javascript.ts';
+import { hasWasmSimd } from '../formula/wasm/available.ts';
+import { compileWasm } from '../formula/wasm/kernel.ts';
 import type { Scene } from '../scene/types.ts';
-import { compileIntegrand, type Integrand, type SpectralPoint } from './integrand.ts';
+import { compileIntegrand, tableShape, type Integrand, type SpectralPoint } from './integrand.ts';
 import type { RayGeometry } from './path.ts';
 import { exactSineCosine } from './scene-graph.ts';
 import { brightnessPerKpc, intrinsicPolarization, wavelengthSquared } from './synchrotron.ts';
 import { makeRaySums, RayTracer, type Accuracy, type RaySums } from './transfer.ts';
 import type { RayBundle, RayResult } from './types.ts';
+import { WasmTransfer } from './wasm-tracer.ts';
+
+/** What follows rays: WebAssembly SIMD code, or generated JavaScript. */
+export type BackEnd = 'wasm' | 'javascript';
 
 /**
- * A scene ready to be looked at in a list of frequencies. `structure` may be reused for scenes
- * that differ in numbers only.
+ * A scene ready to be looked at in a list of frequencies. It may be reused for scenes that differ
+ * in numbers only.
  */
 export interface RayEngine {
   readonly integrand: Integrand;
   readonly spectrum: readonly SpectralPoint[];
+  readonly backEnd: BackEnd;
+  /** The integrand at any points; compiled when first asked for. */
+  kernel(): Kernel;
+  /** The code that follows rays where the back end is WebAssembly. */
+  transfer(): WasmTransfer;
 }
 
-/** Compiles a scene for a spectrum. */
-export function makeRayEngine(scene: Scene, spectrum: readonly SpectralPoint[]): RayEngine {
-  return { integrand: compileIntegrand(scene, spectrum), spectrum };
+/** Compiles a scene for a spectrum: to WebAssembly where the host has its SIMD instructions, unless told otherwise. */
+export function makeRayEngine(scene: Scene, spectrum: readonly SpectralPoint[], backEnd: BackEnd = hasWasmSimd() ? 'wasm' : 'javascript'): RayEngine {
+  const integrand = compileIntegrand(scene, spectrum);
+  let kernel: Kernel | undefined;
+  let transfer: WasmTransfer | undefined;
+  return {
+    integrand,
+    spectrum,
+    backEnd,
+    kernel: () => (kernel ??= backEnd === 'wasm' ? compileWasm(integrand.program, tableShape) : compileJavaScript(integrand.program)),
+    transfer: () => (transfer ??= new WasmTransfer(integrand, wavelengthsOf(spectrum))),
+  };
+}
+
+function wavelengthsOf(spectrum: readonly SpectralPoint[]): Float64Array {
+  return Float64Array.from(spectrum, (point) => wavelengthSquared(point.frequencyHz));
 }
 
 /** Rays followed to set the scale that `tolerance` is relative to. */
@@ -98,13 +123,22 @@ function followAll(
   take: (index: number, sums: RaySums) => void,
 ): void {
   const inputs = engine.integrand.inputs(scene);
-  const wavelengthM2 = Float64Array.from(engine.spectrum, (point) => wavelengthSquared(point.frequencyHz));
-  const tracer = new RayTracer(engine.integrand, inputs, rayGeometry(scene, inputs.edges), wavelengthM2, accuracy);
+  const geometry = rayGeometry(scene, inputs.edges);
   const [sinPA, cosPA] = exactSineCosine(scene.galaxy.positionAngle);
-  const sums = makeRaySums(wavelengthM2.length);
-  for (const index of indices) {
+  const sums = makeRaySums(engine.spectrum.length);
+  const place = (index: number): readonly [major: number, minor: number] => {
     const [north, east] = [bundle.northKpc[index], bundle.eastKpc[index]];
-    tracer.follow(north * cosPA + east * sinPA, east * cosPA - north * sinPA, sums);
+    return [north * cosPA + east * sinPA, east * cosPA - north * sinPA];
+  };
+  if (engine.backEnd === 'wasm') {
+    const rays = new Float64Array(2 * indices.length);
+    indices.forEach((index, k) => rays.set(place(index), 2 * k));
+    engine.transfer().follow(inputs, geometry, accuracy, rays, sums, (k) => take(indices[k], sums));
+    return;
+  }
+  const tracer = new RayTracer(engine.integrand, engine.kernel(), inputs, geometry, wavelengthsOf(engine.spectrum), accuracy);
+  for (const index of indices) {
+    tracer.follow(...place(index), sums);
     take(index, sums);
   }
 }

@@ -1,4 +1,5 @@
-import { findBreaks, type RayGeometry } from './path.ts';
+import { findBreaks, mostBreaks, type RayGeometry } from './path.ts';
+import type { Kernel } from '../formula/javascript.ts';
 import { output, type Integrand, type IntegrandInputs } from './integrand.ts';
 import { panelNodes, panelRule } from './panel.ts';
 
@@ -42,12 +43,12 @@ export function makeRaySums(count: number): RaySums {
 }
 
 const n = panelNodes;
-const deepestSplit = 48;
-const mostBreaks = 128;
+/** Bisections of one interval. */
+export const deepestSplit = 48;
 /** Part of the tolerance that one panel may use: errors of several panels add up in quadrature. */
-const panelShare = 0.1;
+export const panelShare = 0.1;
 /** Largest turn or damping exponent across a panel that its nodes are trusted to notice. */
-const mostPerPanel = 12;
+export const mostPerPanel = 12;
 
 /**
  * Follows single rays through an integrand from the observer's end: panels of Gauss–Legendre
@@ -76,6 +77,7 @@ export class RayTracer {
 
   constructor(
     private readonly integrand: Integrand,
+    private readonly kernel: Kernel,
     private readonly inputs: IntegrandInputs,
     private readonly geometry: RayGeometry,
     private readonly wavelengthM2: Float64Array,
@@ -134,7 +136,7 @@ export class RayTracer {
       y[i] = minor * cosI - s * sinI;
       z[i] = minor * sinI + s * cosI;
     }
-    this.integrand.kernel.evaluate(n, this.inputs.parameters, this.lanes, out, this.inputs.tables);
+    this.kernel.evaluate(n, this.inputs.parameters, this.lanes, out, this.inputs.tables);
     const faraday = out[output.faraday];
     const dispersion = out[output.dispersion];
     const { toNearEnd } = panelRule;
@@ -158,22 +160,23 @@ export class RayTracer {
     const tailPhi = tail(faraday);
     const errorPhi = 2 * half * quadratureError(tailPhi, largest(faraday));
     for (const k of this.tested) {
-      const turn = 2 * this.wavelengthM2[k];
-      const total = this.rotate(k);
+      const total = this.emit(k);
       if (this.mayHide(k, half, limit * scaleP[k])) return false;
-      const tailTotal = tail(total);
-      const errorI = (2 * half * quadratureError(tailTotal, largest(total))) / scaleI[k];
-      const tailP = Math.hypot(tail(this.real), tail(this.imaginary));
+      const errorI = (2 * half * quadratureError(tail(total), largest(total))) / scaleI[k];
+      if (errorI > limit) return false;
+      this.rotate(k);
+      const turn = 2 * this.wavelengthM2[k];
+      const [tailReal, tailImaginary] = [tail(this.real), tail(this.imaginary)];
+      const tailP = Math.sqrt(tailReal * tailReal + tailImaginary * tailImaginary);
       const sizeP = Math.max(largest(this.real), largest(this.imaginary));
       // Depth errors at the nodes beat with the emission; at the far end they turn all that lies behind.
       const coupled = tailP * turn * half * tailPhi * 0.1;
       const behind = turn * errorPhi * scaleI[k];
       const errorP = (2 * half * (quadratureError(tailP, sizeP) + coupled) + behind) / scaleP[k];
-      const error = Math.max(errorI, errorP);
-      if (error > limit) return false;
-      this.pending[k] = error;
+      if (errorP > limit) return false;
+      this.pending[k] = Math.max(errorI, errorP);
     }
-    for (const k of this.tested) sums.error[k] = Math.hypot(sums.error[k], this.pending[k]);
+    for (const k of this.tested) sums.error[k] = Math.sqrt(sums.error[k] * sums.error[k] + this.pending[k] * this.pending[k]);
     return true;
   }
 
@@ -190,12 +193,20 @@ export class RayTracer {
     return 2 * half * largest(this.emission) * reaching > limit;
   }
 
-  /** Writes the rotated, damped polarized emission of a frequency; returns the unpolarized one. */
-  private rotate(k: number): Float64Array {
-    const { out, phi, sigma, real, imaginary, emission } = this;
+  /** Writes the unpolarized emission of a frequency. */
+  private emit(k: number): Float64Array {
+    const { out, emission } = this;
+    const density = out[output.firstGroup + this.integrand.groupOf[k]];
+    for (let i = 0; i < n; i++) emission[i] = density[i] * out[output.total][i];
+    return emission;
+  }
+
+  /** Writes the rotated, damped polarized emission of a frequency. */
+  private rotate(k: number): void {
+    const { out, phi, sigma, real, imaginary } = this;
     const square = this.wavelengthM2[k];
     const density = out[output.firstGroup + this.integrand.groupOf[k]];
-    const [total, cosine, sine] = [out[output.total], out[output.cosine], out[output.sine]];
+    const [cosine, sine] = [out[output.cosine], out[output.sine]];
     const damps = this.integrand.hasDispersion;
     for (let i = 0; i < n; i++) {
       const angle = 2 * square * phi[i];
@@ -203,9 +214,7 @@ export class RayTracer {
       const [c, s] = [Math.cos(angle) * size, Math.sin(angle) * size];
       real[i] = c * cosine[i] - s * sine[i];
       imaginary[i] = s * cosine[i] + c * sine[i];
-      emission[i] = density[i] * total[i];
     }
-    return emission;
   }
 
   /** Adds the panel's share to the sums of every frequency and moves on behind it. */
@@ -214,7 +223,8 @@ export class RayTracer {
     const { weights } = panelRule;
     const [cosine, sine] = [out[output.cosine], out[output.sine]];
     for (let k = 0; k < this.wavelengthM2.length; k++) {
-      const total = this.rotate(k);
+      const total = this.emit(k);
+      this.rotate(k);
       const density = out[output.firstGroup + this.integrand.groupOf[k]];
       let [sumI, sumQ, sumU, sumZQ, sumZU, emitted] = [0, 0, 0, 0, 0, 0];
       for (let i = 0; i < n; i++) {
@@ -264,10 +274,13 @@ function largest(values: Float64Array): number {
  * geometrically to t·size at degree 7 leave about t²·size for a rule exact to degree 15.
  */
 function quadratureError(tailSize: number, size: number): number {
-  return size > 0 ? size * Math.pow(tailSize / size, 2.5) : 0;
+  if (!(size > 0)) return 0;
+  const ratio = tailSize / size;
+  return size * ratio * ratio * Math.sqrt(ratio);
 }
 
-function testedFrequencies(wavelengthM2: Float64Array): readonly number[] {
+/** Frequencies whose integrands decide on bisection: the longest and the shortest wavelength. */
+export function testedFrequencies(wavelengthM2: Float64Array): readonly number[] {
   let [longest, shortest] = [0, 0];
   for (let k = 1; k < wavelengthM2.length; k++) {
     if (wavelengthM2[k] > wavelengthM2[longest]) longest = k;

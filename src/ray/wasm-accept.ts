@@ -1,0 +1,113 @@
+import { float as f, int, vector as v, type Vector } from '../formula/wasm/code.ts';
+import type { FunctionWriter } from '../formula/wasm/function.ts';
+import type { Callee } from '../formula/wasm/module.ts';
+import { output } from './integrand.ts';
+import { resultsPerFrequency, spectrumRecord, type TransferContext } from './wasm-layout.ts';
+import { dot, loadNodes, nodeBytes, pairOffsets, sumLanes, zero, type NodeValues } from './wasm-nodes.ts';
+import { rotatePair, type Resolve } from './wasm-resolve.ts';
+
+/** The sums of a ray: emptied before it, added to by panels, written out behind it. */
+export interface Sums {
+  readonly clear: Callee;
+  /** (half): adds the panel at hand and moves on behind it. */
+  readonly accept: Callee;
+  /** (results): writes all but depth and samples. */
+  readonly write: Callee;
+}
+
+/** Sums per frequency, each two lanes wide: Q, U, and z times both. */
+const frequencyBytes = 64;
+/** Sums per emission group: I and the emitted polarization. */
+const groupBytes = 32;
+
+/** Writes the summing of `accept` of RayTracer; rotated emission that the test has left is not made again. */
+export function writeAccept(context: TransferContext, { rotated, squaredErrors }: Resolve): Sums {
+  const { module, layout, spectrum, structure } = context;
+  const { groupOf, tested } = structure;
+  const groups = Math.max(...groupOf) + 1;
+  const frequencySums = module.reserve(frequencyBytes * groupOf.length);
+  const groupSums = module.reserve(groupBytes * groups);
+  // Polarized emission of each group at the nodes, both parts.
+  const polarized = module.reserve(2 * nodeBytes * groups);
+  const clear = module.define([], [], (w) => {
+    const empty = w.constant(0);
+    w.count(zero, int.constant(frequencyBytes * groupOf.length), 16, (offset) => w.store(offset, frequencySums, empty));
+    w.count(zero, int.constant(groupBytes * groups), 16, (offset) => w.store(offset, groupSums, empty));
+    for (const address of squaredErrors) w.store(zero, address, f.constant(0));
+  });
+
+  const accept = module.define(['f64'], [], (w) => {
+    const half = w.parameter(0, 'f64');
+    const halves = w.let(v.splat(half));
+    const weights = pairOffsets.map((pair) => w.let(v.multiply(halves, v.load(zero, layout.weights + pair))));
+    const z = loadNodes(w, layout.z);
+    const outputAt = (index: number): NodeValues => loadNodes(w, layout.outputs + nodeBytes * index);
+    const [cosine, sine] = [outputAt(output.cosine), outputAt(output.sine)];
+    const sizes = cosine.map((c, k) => w.let(v.sqrt(v.add(v.multiply(c, c), v.multiply(sine[k], sine[k])))));
+    const total = outputAt(output.total);
+    for (let group = 0; group < groups; group++) {
+      const density = outputAt(output.firstGroup + group);
+      const weighted = density.map((value, k) => w.let(v.multiply(value, weights[k])));
+      addTo(w, groupSums + groupBytes * group, dot(weighted, total));
+      addTo(w, groupSums + groupBytes * group + 16, dot(weighted, sizes));
+      pairOffsets.forEach((pair, k) => {
+        const into = polarized + 2 * nodeBytes * group + pair;
+        w.store(zero, into, v.multiply(density[k], cosine[k]));
+        w.store(zero, into + nodeBytes, v.multiply(density[k], sine[k]));
+      });
+    }
+    tested.forEach((k, slot) => {
+      addFrequency(w, zero, frequencySums + frequencyBytes * k, weights, z, loadNodes(w, rotated[slot]), loadNodes(w, rotated[slot] + nodeBytes));
+    });
+    for (const [from, to] of untestedRuns(groupOf, tested)) {
+      const base = polarized + 2 * nodeBytes * groupOf[from];
+      w.count(int.constant(from), int.constant(to), 1, (k) => {
+        const record = w.let(int.multiply(k, int.constant(spectrumRecord.bytes)));
+        const turn = w.let(v.loadSplat(record, spectrum + spectrumRecord.turn));
+        const damping = w.let(v.loadSplat(record, spectrum + spectrumRecord.damping));
+        const parts = pairOffsets.map((pair) => rotatePair(w, context, pair, turn, damping, [v.load(zero, base + pair), v.load(zero, base + nodeBytes + pair)]));
+        addFrequency(w, w.let(int.multiply(k, int.constant(frequencyBytes))), frequencySums, weights, z, parts.map(([real]) => real), parts.map(([, imaginary]) => imaginary));
+      });
+    }
+    const integrals: [number, typeof layout.nearPhi][] = [[output.faraday, layout.nearPhi]];
+    if (structure.hasDispersion) integrals.push([output.dispersion, layout.nearSigma]);
+    for (const [index, cell] of integrals) cell.set(w, f.add(cell.get(), sumLanes(w, dot(weights, outputAt(index)))));
+  });
+
+  const write = module.define(['i32'], [], (w) => {
+    const results = w.parameter(0, 'i32');
+    groupOf.forEach((group, k) => {
+      const start = 8 * resultsPerFrequency * k;
+      const sum = (address: number) => sumLanes(w, v.load(zero, address));
+      const own = frequencySums + frequencyBytes * k;
+      const shared = groupSums + groupBytes * group;
+      [shared, own, own + 16, own + 32, own + 48, shared + 16].forEach((address, index) => w.store(results, start + 8 * index, sum(address)));
+      const slot = tested.indexOf(k);
+      w.store(results, start + 48, slot < 0 ? f.constant(0) : f.sqrt(f.load(zero, squaredErrors[slot])));
+    });
+  });
+  return { clear, accept, write };
+}
+
+/** Runs [from, to) of frequencies that are not tested and share an emission group. */
+function untestedRuns(groupOf: readonly number[], tested: readonly number[]): readonly (readonly [number, number])[] {
+  const runs: [number, number][] = [];
+  groupOf.forEach((group, k) => {
+    if (tested.includes(k)) return;
+    const last = runs.at(-1);
+    if (last && last[1] === k && groupOf[last[0]] === group) last[1]++;
+    else runs.push([k, k + 1]);
+  });
+  return runs;
+}
+
+function addTo(w: FunctionWriter, address: number, value: Vector): void {
+  w.store(zero, address, v.add(v.load(zero, address), value));
+}
+
+/** Adds a frequency's rotated emission to its four sums. */
+function addFrequency(w: FunctionWriter, offset: typeof zero, address: number, weights: NodeValues, z: NodeValues, real: NodeValues, imaginary: NodeValues): void {
+  const weighted = [real, imaginary].map((part) => part.map((value, k) => w.let(v.multiply(value, weights[k]))));
+  const sums = [...weighted.map((part) => part.reduce((sum, value) => v.add(sum, value))), ...weighted.map((part) => dot(part, z))];
+  sums.forEach((sum, index) => w.store(offset, address + 16 * index, v.add(v.load(offset, address + 16 * index), sum)));
+}

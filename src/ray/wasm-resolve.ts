@@ -1,0 +1,127 @@
+import { float as f, int, vector as v, type Float, type Vector } from '../formula/wasm/code.ts';
+import { exp } from '../formula/wasm/exponential.ts';
+import type { FunctionWriter } from '../formula/wasm/function.ts';
+import type { Callee } from '../formula/wasm/module.ts';
+import { sineCosine } from '../formula/wasm/trigonometry.ts';
+import { output } from './integrand.ts';
+import { mostPerPanel } from './transfer.ts';
+import { spectrumRecord, type TransferContext, type TransferLayout } from './wasm-layout.ts';
+import { largest, loadNodes, nodeBytes, pairOffsets, tail, zero, type NodeValues } from './wasm-nodes.ts';
+
+/** The test of a panel, and what it leaves behind for those that it accepts. */
+export interface Resolve {
+  /** (half): whether estimated errors are within the share of the tolerance that a panel may use. */
+  readonly isResolved: Callee;
+  /** Per tested frequency: address of its rotated emission, real then imaginary, at the nodes. */
+  readonly rotated: readonly number[];
+  /** Per tested frequency: address of the sum of squared errors. */
+  readonly squaredErrors: readonly number[];
+}
+
+/** Rotated, damped polarized emission of one pair of nodes. */
+export function rotatePair(w: FunctionWriter, { layout, structure }: TransferContext, pair: number, turn: Vector, damping: Vector, polarized: readonly [Vector, Vector]): readonly [Vector, Vector] {
+  const [sine, cosine] = sineCosine(w, w.let(v.multiply(turn, v.load(zero, layout.phi + pair))));
+  let [c, s] = [cosine, sine];
+  if (structure.hasDispersion) {
+    const size = exp(w, w.let(v.multiply(damping, v.load(zero, layout.sigma + pair))));
+    [c, s] = [w.let(v.multiply(c, size)), w.let(v.multiply(s, size))];
+  }
+  const [major, minor] = polarized;
+  return [w.let(v.subtract(v.multiply(c, major), v.multiply(s, minor))), w.let(v.add(v.multiply(s, major), v.multiply(c, minor)))];
+}
+
+/** Error of the mean over a panel from the tail of its coefficients: see `quadratureError` of transfer.ts. */
+function quadratureError(w: FunctionWriter, tailSize: Float, size: Float): Float {
+  const error = w.variable('f64', f.constant(0));
+  w.when(f.greaterThan(size, f.constant(0)), () => {
+    const ratio = w.let(f.divide(tailSize, size));
+    error.set(f.multiply(f.multiply(size, f.multiply(ratio, ratio)), f.sqrt(ratio)));
+  });
+  return error;
+}
+
+/** Writes `isResolved` of RayTracer. */
+export function writeIsResolved(context: TransferContext): Resolve {
+  const { module, layout, spectrum, structure } = context;
+  const rotated = structure.tested.map(() => module.reserve(2 * nodeBytes));
+  const squaredErrors = structure.tested.map(() => module.reserve(8));
+  const [no, yes] = [int.constant(0), int.constant(1)];
+  const isResolved = module.define(['f64'], ['i32'], (w) => {
+    const half = w.parameter(0, 'f64');
+    const outputAt = (index: number): NodeValues => loadNodes(w, layout.outputs + nodeBytes * index);
+    const faraday = outputAt(output.faraday);
+    const tailPhi = tail(w, layout, faraday);
+    const largestPhi = largest(w, faraday);
+    const path = w.let(f.multiply(f.constant(2), half));
+    const errorPhi = w.let(f.multiply(path, quadratureError(w, tailPhi, largestPhi)));
+    const largestDispersion = structure.hasDispersion ? largest(w, outputAt(output.dispersion)) : f.constant(0);
+    const limit = layout.limit.get();
+    const groups = new Map<number, { readonly size: Float; readonly error: Float }>();
+    const pending = structure.tested.map((k, slot) => {
+      const record = (offset: number): Float => f.load(zero, spectrum + spectrumRecord.bytes * k + offset);
+      const density = outputAt(output.firstGroup + structure.groupOf[k]);
+      let group = groups.get(structure.groupOf[k]);
+      if (!group) {
+        const total = outputAt(output.total).map((value, pair) => w.let(v.multiply(density[pair], value)));
+        const size = largest(w, total);
+        group = { size, error: w.let(f.multiply(path, quadratureError(w, tail(w, layout, total), size))) };
+        groups.set(structure.groupOf[k], group);
+      }
+      const [turn, damping] = [w.let(record(spectrumRecord.turn)), w.let(record(spectrumRecord.damping))];
+      const [scaleI, scaleP] = [w.let(record(spectrumRecord.scaleI)), w.let(record(spectrumRecord.scaleP))];
+      refuseHidden(w, layout, { path, turn, damping, largestPhi, largestDispersion, emission: group.size, limit: f.multiply(limit, scaleP), hasDispersion: structure.hasDispersion });
+      const errorI = w.let(f.divide(group.error, scaleI));
+      w.when(f.greaterThan(errorI, limit), () => w.leave(no));
+      const [real, imaginary] = rotateNodes(w, context, rotated[slot], turn, damping, density);
+      const [tailReal, tailImaginary] = [tail(w, layout, real), tail(w, layout, imaginary)];
+      const tailP = w.let(f.sqrt(f.add(f.multiply(tailReal, tailReal), f.multiply(tailImaginary, tailImaginary))));
+      const coupled = f.multiply(f.multiply(f.multiply(f.multiply(tailP, turn), half), tailPhi), f.constant(0.1));
+      const behind = f.multiply(f.multiply(turn, errorPhi), scaleI);
+      const quadrature = quadratureError(w, tailP, largest(w, real, imaginary));
+      const errorP = w.let(f.divide(f.add(f.multiply(path, f.add(quadrature, coupled)), behind), scaleP));
+      w.when(f.greaterThan(errorP, limit), () => w.leave(no));
+      return w.let(f.max(errorI, errorP));
+    });
+    pending.forEach((error, slot) => {
+      w.store(zero, squaredErrors[slot], f.add(f.load(zero, squaredErrors[slot]), f.multiply(error, error)));
+    });
+    w.leave(yes);
+  });
+  return { isResolved, rotated, squaredErrors };
+}
+
+/** Rotates the emission of a tested frequency at all nodes, keeps it and hands it over. */
+function rotateNodes(w: FunctionWriter, context: TransferContext, into: number, turn: Float, damping: Float, density: NodeValues): readonly [NodeValues, NodeValues] {
+  const { layout } = context;
+  const [turns, dampings] = [w.let(v.splat(turn)), w.let(v.splat(damping))];
+  const parts = pairOffsets.map((pair, index) => {
+    const polarized = [output.cosine, output.sine].map((part) => w.let(v.multiply(density[index], v.load(zero, layout.outputs + nodeBytes * part + pair)))) as [Vector, Vector];
+    const [real, imaginary] = rotatePair(w, context, pair, turns, dampings, polarized);
+    w.store(zero, into + pair, real);
+    w.store(zero, into + nodeBytes + pair, imaginary);
+    return [real, imaginary] as const;
+  });
+  return [parts.map(([real]) => real), parts.map(([, imaginary]) => imaginary)];
+}
+
+interface HiddenTest {
+  readonly path: Float;
+  readonly turn: Float;
+  readonly damping: Float;
+  readonly largestPhi: Float;
+  readonly largestDispersion: Float;
+  readonly emission: Float;
+  readonly limit: Float;
+  readonly hasDispersion: boolean;
+}
+
+/** Leaves with "not resolved" where emission between the nodes could go unnoticed: `mayHide` of RayTracer. */
+function refuseHidden(w: FunctionWriter, layout: TransferLayout, { path, turn, damping, largestPhi, largestDispersion, emission, limit, hasDispersion }: HiddenTest): void {
+  const turned = f.multiply(f.multiply(turn, path), largestPhi);
+  const damped = f.multiply(f.multiply(f.negate(damping), path), largestDispersion);
+  const exponent = hasDispersion ? f.add(turned, damped) : turned;
+  w.when(int.not(f.less(exponent, f.constant(mostPerPanel))), () => {
+    const reaching = hasDispersion ? v.lane(exp(w, w.let(v.splat(f.multiply(damping, layout.nearSigma.get())))), 0) : f.constant(1);
+    w.when(f.greaterThan(f.multiply(f.multiply(path, emission), reaching), limit), () => w.leave(int.constant(0)));
+  });
+}

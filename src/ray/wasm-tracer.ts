@@ -1,0 +1,99 @@
+import { ensureMemory, placeTables } from '../formula/wasm/kernel.ts';
+import type { Integrand, IntegrandInputs } from './integrand.ts';
+import type { RayGeometry } from './path.ts';
+import { panelShare, testedFrequencies, type Accuracy, type RaySums } from './transfer.ts';
+import { resultsPerFrequency, spectrumRecord } from './wasm-layout.ts';
+import { writeTransfer, type TransferModule } from './wasm-transfer.ts';
+
+/** Rays that one call follows. */
+const raysPerCall = 256;
+
+/** Follows rays in WebAssembly: what `RayTracer` does in JavaScript, many rays a call. */
+export class WasmTransfer {
+  private readonly module: TransferModule;
+  private readonly memory: WebAssembly.Memory;
+  private readonly run: (rays: number, results: number, count: number) => void;
+
+  constructor(
+    integrand: Integrand,
+    private readonly wavelengthM2: Float64Array,
+  ) {
+    const { program, groupOf, hasDispersion } = integrand;
+    this.module = writeTransfer({ program, groupOf, hasDispersion, tested: testedFrequencies(wavelengthM2) });
+    const instance = new WebAssembly.Instance(new WebAssembly.Module(this.module.bytes));
+    this.memory = instance.exports.memory as WebAssembly.Memory;
+    this.run = instance.exports.follow as typeof this.run;
+  }
+
+  /**
+   * Follows rays given as pairs (major, minor), kpc; `take` is called for each, in order, with its
+   * sums filled in.
+   */
+  follow(inputs: IntegrandInputs, geometry: RayGeometry, accuracy: Accuracy, rays: Float64Array, sums: RaySums, take: (ray: number) => void): void {
+    const { resultLength } = this.module;
+    const raysAt = this.place(inputs, geometry, accuracy);
+    const resultsAt = raysAt + 16 * raysPerCall;
+    ensureMemory(this.memory, resultsAt + 8 * resultLength * raysPerCall);
+    const numbers = new Float64Array(this.memory.buffer);
+    const count = rays.length / 2;
+    for (let from = 0; from < count; from += raysPerCall) {
+      const here = Math.min(raysPerCall, count - from);
+      numbers.set(rays.subarray(2 * from, 2 * (from + here)), raysAt / 8);
+      this.run(raysAt, resultsAt, here);
+      for (let ray = 0; ray < here; ray++) {
+        this.read(numbers, resultsAt / 8 + ray * resultLength, sums);
+        take(from + ray);
+      }
+    }
+  }
+
+  /** Writes all that a run has in common to memory; returns the first free address. */
+  private place(inputs: IntegrandInputs, geometry: RayGeometry, accuracy: Accuracy): number {
+    const { memory, module } = this;
+    const { layout, placed } = module;
+    let free = placeTables(memory, placed.tables, placed.tableOrders, inputs.tables, module.heapStart);
+    const edges = [
+      [layout.zEdges, geometry.edges.zKpc],
+      [layout.rEdges, geometry.edges.rKpc],
+    ] as const;
+    for (const [place, values] of edges) {
+      ensureMemory(memory, free + 8 * values.length);
+      new Float64Array(memory.buffer).set(values, free / 8);
+      const whole = new Int32Array(memory.buffer);
+      whole[place.count.address / 4] = values.length;
+      whole[place.address.address / 4] = free;
+      free += 16 * Math.ceil(values.length / 2);
+    }
+    const numbers = new Float64Array(memory.buffer);
+    numbers.set(inputs.parameters, placed.parameters / 8);
+    const cells = [
+      [layout.sinI, geometry.sinI],
+      [layout.cosI, geometry.cosI],
+      [layout.radius, geometry.radiusKpc],
+      [layout.height, geometry.heightKpc],
+      [layout.limit, accuracy.tolerance * panelShare],
+    ] as const;
+    for (const [cell, value] of cells) numbers[cell.address / 8] = value;
+    this.wavelengthM2.forEach((square, k) => {
+      const record = (module.spectrum + spectrumRecord.bytes * k) / 8;
+      numbers.set([2 * square, -2 * square * square, accuracy.scaleI[k], accuracy.scaleP[k]], record);
+    });
+    return free;
+  }
+
+  private read(numbers: Float64Array, at: number, sums: RaySums): void {
+    const { total, cosine, sine, heightCosine, heightSine, emitted, error } = sums;
+    let place = at;
+    for (let k = 0; k < total.length; k++, place += resultsPerFrequency) {
+      total[k] = numbers[place];
+      cosine[k] = numbers[place + 1];
+      sine[k] = numbers[place + 2];
+      heightCosine[k] = numbers[place + 3];
+      heightSine[k] = numbers[place + 4];
+      emitted[k] = numbers[place + 5];
+      error[k] = numbers[place + 6];
+    }
+    sums.faradayDepth = numbers[place];
+    sums.samples = numbers[place + 1];
+  }
+}

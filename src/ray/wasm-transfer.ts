@@ -1,0 +1,154 @@
+import { float as f, int, vector as v, type Int, type Vector } from '../formula/wasm/code.ts';
+import type { FunctionWriter } from '../formula/wasm/function.ts';
+import { ModuleWriter, type Callee } from '../formula/wasm/module.ts';
+import { placeProgram, type PlacedProgram } from '../formula/wasm/program.ts';
+import { output, tableShape } from './integrand.ts';
+import { writeFindBreaks } from './wasm-breaks.ts';
+import { layOut, resultsPerFrequency, spectrumRecord, type TransferLayout, type TransferStructure } from './wasm-layout.ts';
+import { writeAccept, type Sums } from './wasm-accept.ts';
+import { writeIsResolved } from './wasm-resolve.ts';
+import { nodeBytes, pairOffsets, zero } from './wasm-nodes.ts';
+import { deepestSplit } from './transfer.ts';
+import { panelNodes } from './panel.ts';
+
+/** A module that follows rays, and where it wants its inputs. */
+export interface TransferModule {
+  readonly bytes: Uint8Array<ArrayBuffer>;
+  readonly layout: TransferLayout;
+  readonly placed: PlacedProgram;
+  readonly spectrum: number;
+  /** f64 of one ray's results: 7 per frequency (I, Q, U, heights of Q and U, emitted, error), depth, samples. */
+  readonly resultLength: number;
+  readonly heapStart: number;
+}
+
+/** Writes the module that follows the rays of a structure: the algorithm of `RayTracer`, two nodes at a time. */
+export function writeTransfer(structure: TransferStructure): TransferModule {
+  const { program, groupOf } = structure;
+  const module = new ModuleWriter();
+  const layout = layOut(module, program.outputs.length);
+  const spectrum = module.reserve(spectrumRecord.bytes * groupOf.length);
+  const placed = placeProgram(module, program, tableShape);
+  const findBreaks = writeFindBreaks(module, layout);
+  const sample = writeSample(module, layout, placed, structure.hasDispersion);
+  const context = { module, layout, spectrum, structure };
+  const resolve = writeIsResolved(context);
+  const sums = writeAccept(context, resolve);
+  const interval = writeInterval(module, layout, sample, resolve.isResolved, sums.accept);
+  const resultLength = resultsPerFrequency * groupOf.length + 2;
+  writeFollow(module, layout, { prepare: placed.prepare, findBreaks, interval, sums, resultLength });
+  return { bytes: module.encode(), layout, placed, spectrum, resultLength, heapStart: module.heapStart };
+}
+
+/** (a, b): evaluates the integrand at the nodes of [a, b], and φ and Σ from the observer to each node. */
+function writeSample(module: ModuleWriter, layout: TransferLayout, placed: PlacedProgram, hasDispersion: boolean): Callee {
+  const { outputs } = layout;
+  return module.define(['f64', 'f64'], [], (w) => {
+    const [a, b] = [w.parameter(0, 'f64'), w.parameter(1, 'f64')];
+    const half = w.let(v.splat(f.multiply(f.constant(0.5), f.subtract(b, a))));
+    const centre = w.let(v.splat(f.multiply(f.constant(0.5), f.add(a, b))));
+    w.count(zero, int.constant(nodeBytes), 16, (offset) => {
+      const s = w.let(v.add(centre, v.multiply(half, v.load(offset, layout.nodes))));
+      const y = w.let(v.subtract(layout.minorCos.both(), v.multiply(s, layout.sinI.both())));
+      const z = w.let(v.add(layout.minorSin.both(), v.multiply(s, layout.cosI.both())));
+      w.store(offset, layout.z, z);
+      const values = placed.sample(w, [w.let(layout.major.both()), y, z]);
+      values.forEach((value, k) => {
+        if (k !== output.dispersion || hasDispersion) w.store(offset, outputs + nodeBytes * k, value);
+      });
+    });
+    integrateToNodes(w, layout, outputs + nodeBytes * output.faraday, half, layout.nearPhi.both(), layout.phi);
+    if (hasDispersion) integrateToNodes(w, layout, outputs + nodeBytes * output.dispersion, half, layout.nearSigma.both(), layout.sigma);
+  });
+}
+
+/** Cumulative integral at each node: what lies nearer, and the panel's part up to there. */
+function integrateToNodes(w: FunctionWriter, layout: TransferLayout, values: number, half: Vector, near: Vector, into: number): void {
+  const columns = Array.from({ length: panelNodes }, (_, j) => w.let(v.loadSplat(zero, values + 8 * j)));
+  for (const pair of pairOffsets) {
+    const terms = columns.map((value, j) => v.multiply(v.load(zero, layout.toNearEnd + nodeBytes * j + pair), value));
+    const sum = terms.reduce((total, term) => v.add(total, term));
+    w.store(zero, into + pair, v.add(near, v.multiply(half, sum)));
+  }
+}
+
+/** (from, to): integrates between two breaks, nearest panel first, bisecting where needed. */
+function writeInterval(module: ModuleWriter, { stack, samples }: TransferLayout, sample: Callee, isResolved: Callee, accept: Callee): Callee {
+  return module.define(['f64', 'f64'], [], (w) => {
+    const address = w.variable('i32');
+    w.store(zero, stack, w.parameter(0, 'f64'));
+    w.store(zero, stack + 8, w.parameter(1, 'f64'));
+    w.store(zero, stack + 16, f.constant(0));
+    const record = int.constant(24);
+    w.repeatWhile(() => int.greaterOrEqual(address, zero), () => {
+      const [a, b, depth] = [0, 8, 16].map((offset) => w.let(f.load(address, stack + offset)));
+      w.run(sample, a, b);
+      samples.set(w, f.add(samples.get(), f.constant(panelNodes)));
+      const half = w.let(f.multiply(f.constant(0.5), f.subtract(b, a)));
+      const done = w.variable('i32', int.not(f.less(depth, f.constant(deepestSplit))));
+      w.when(int.not(done), () => done.set(w.call(isResolved, 'i32', half)));
+      w.when(
+        done,
+        () => {
+          w.run(accept, half);
+          address.set(int.subtract(address, record));
+        },
+        () => {
+          const middle = w.let(f.multiply(f.constant(0.5), f.add(a, b)));
+          const deeper = w.let(f.add(depth, f.constant(1)));
+          w.store(address, stack + 8, middle);
+          w.store(address, stack + 16, deeper);
+          address.set(int.add(address, record));
+          w.store(address, stack, middle);
+          w.store(address, stack + 8, b);
+          w.store(address, stack + 16, deeper);
+        },
+      );
+    });
+  });
+}
+
+interface FollowParts {
+  readonly prepare: Callee;
+  readonly findBreaks: Callee;
+  readonly interval: Callee;
+  readonly sums: Sums;
+  readonly resultLength: number;
+}
+
+/** Exported (rays, results, count): follows rays, pairs of f64 major and minor, one after the other. */
+function writeFollow(module: ModuleWriter, layout: TransferLayout, { prepare, findBreaks, interval, sums, resultLength }: FollowParts): void {
+  const { major, minor, minorSin, minorCos, sinI, cosI, nearPhi, nearSigma, samples, breaks, breakCount } = layout;
+  module.define(
+    ['i32', 'i32', 'i32'],
+    [],
+    (w) => {
+      const rays = w.variable('i32', w.parameter(0, 'i32'));
+      const results = w.variable('i32', w.parameter(1, 'i32'));
+      w.run(prepare);
+      w.count(zero, w.parameter(2, 'i32'), 1, () => {
+        major.set(w, f.load(rays));
+        minor.set(w, f.load(rays, 8));
+        minorSin.set(w, f.multiply(minor.get(), sinI.get()));
+        minorCos.set(w, f.multiply(minor.get(), cosI.get()));
+        for (const cell of [nearPhi, nearSigma, samples]) cell.set(w, f.constant(0));
+        w.run(sums.clear);
+        w.run(findBreaks);
+        const k = w.variable('i32', int.subtract(breakCount.get(), int.constant(1)));
+        w.repeatWhile(() => int.greaterThan(k, zero), () => {
+          const address: Int = int.shiftLeft(k, int.constant(3));
+          w.run(interval, f.load(int.subtract(address, int.constant(8)), breaks), f.load(address, breaks));
+          k.set(int.subtract(k, int.constant(1)));
+        });
+        w.run(sums.write, results);
+        const end = 8 * (resultLength - 2);
+        w.store(results, end, nearPhi.get());
+        w.store(results, end + 8, samples.get());
+        rays.set(int.add(rays, int.constant(16)));
+        results.set(int.add(results, int.constant(8 * resultLength)));
+      });
+    },
+    'follow',
+  );
+}
+
