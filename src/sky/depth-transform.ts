@@ -1,4 +1,7 @@
-import type { DepthPlan } from './depth-spectrum.ts';
+import FFT from 'fft.js';
+import { goodSize } from '../math/fft.ts';
+import { gaussLegendre } from '../math/quadrature.ts';
+import { depthAt, type DepthPlan } from './depth-spectrum.ts';
 
 /** Faraday spectra of pixels side by side: planes [depth * pixels + pixel]. */
 export interface DepthSpectra {
@@ -6,61 +9,88 @@ export interface DepthSpectra {
   readonly im: Float64Array;
 }
 
+/** From Q and U of `pixels` pixels, planes [channel * pixels + pixel], to their spectra. */
+export type DepthTransform = (Q: ArrayLike<number>, U: ArrayLike<number>, pixels: number, out?: DepthSpectra) => DepthSpectra;
+
+/** Samples over which a channel is spread, twice oversampled: error about 1e-13 of sum |w P|. */
+const taps = 14;
+const sharpness = 2.3 * taps;
+
 /**
- * Makes the transform F(phi) = sum w P e^{-2 i phi (lambda^2 - lambda0^2)} of a plan: a function from
- * Q and U of `pixels` pixels, planes [channel * pixels + pixel], to spectra. Where a pixel lacks
- * channels (NaN) the others carry its weight; NaN where it lacks more than half of it.
- * All angles are computed once: depths are taken in pairs about the middle one, which share their
- * products. Source: Brentjens & de Bruyn 2005, eq. 25 and 36.
+ * Makes the transform F(phi) = sum w P e^{-2 i phi (lambda^2 - lambda0^2)} of a plan (Brentjens & de
+ * Bruyn 2005, eq. 25 and 36). Where a pixel lacks channels (NaN) the others carry its weight; NaN
+ * where it lacks half of it or more.
+ * A non-uniform fast Fourier transform with the kernel of Barnett, Magland & af Klinteberg 2019:
+ * channels are spread over an even grid, transformed, and divided by the kernel's own transform.
  */
-export function makeDepthTransform(plan: DepthPlan): (Q: ArrayLike<number>, U: ArrayLike<number>, pixels: number, out?: DepthSpectra) => DepthSpectra {
-  const { lambda2M2, factors, weights, referenceLambda2, firstDepth, step, count } = plan;
+export function makeDepthTransform(plan: DepthPlan): DepthTransform {
+  const { lambda2M2, factors, weights, referenceLambda2, step, count } = plan;
   const channels = lambda2M2.length;
-  const middle = firstDepth + (step * (count - 1)) / 2;
-  const pairs = Math.ceil(count / 2);
-  // Pair j stands for depths middle +- offset; for an odd count the first is its own mirror.
-  const [cosines, sines] = [new Float64Array(pairs * channels), new Float64Array(pairs * channels)];
-  const [turnCos, turnSin] = [new Float64Array(channels), new Float64Array(channels)];
-  for (let k = 0; k < channels; k++) {
-    const square = 2 * (lambda2M2[k] - referenceLambda2);
-    turnCos[k] = factors[k] * Math.cos(square * middle);
-    turnSin[k] = -factors[k] * Math.sin(square * middle);
-    for (let j = 0; j < pairs; j++) {
-      const offset = step * (count % 2 === 1 ? j : j + 0.5);
-      cosines[j * channels + k] = Math.cos(square * offset);
-      sines[j * channels + k] = Math.sin(square * offset);
-    }
-  }
-  const [x, y] = [new Float64Array(channels), new Float64Array(channels)];
-  const half = (count - 1) / 2;
+  const size = Math.max(2 * taps, goodSize(2 * count + 2));
+  const middle = Math.floor(count / 2);
+  const { first, values } = spreadChannels(lambda2M2.map((square) => 2 * step * (square - referenceLambda2)), size);
+  // Each channel is turned to the middle depth, about which indices count.
+  const turns = lambda2M2.map((square) => -2 * depthAt(plan, middle) * (square - referenceLambda2));
+  const [turnRe, turnIm] = [turns.map((turn, k) => factors[k] * Math.cos(turn)), turns.map((turn, k) => factors[k] * Math.sin(turn))];
+  const correction = kernelCorrection(count, middle, size);
+  const transform = new FFT(size);
+  const [grid, spectrum] = [new Float64Array(2 * size), new Float64Array(2 * size)];
   return (Q, U, pixels, out = { re: new Float64Array(count * pixels), im: new Float64Array(count * pixels) }) => {
+    const { re, im } = out;
     for (let pixel = 0; pixel < pixels; pixel++) {
+      grid.fill(0);
       let seen = 0;
       for (let k = 0, at = pixel; k < channels; k++, at += pixels) {
-        const [q, u] = [Q[at], U[at]];
-        const known = q - q === 0 && u - u === 0;
-        seen += known ? weights[k] : 0;
-        x[k] = known ? q * turnCos[k] - u * turnSin[k] : 0;
-        y[k] = known ? q * turnSin[k] + u * turnCos[k] : 0;
-      }
-      const scale = seen > 0.5 ? 1 / seen : NaN;
-      for (let j = 0, at = 0; j < pairs; j++) {
-        let [xc, xs, yc, ys] = [0, 0, 0, 0];
-        for (let k = 0; k < channels; k++, at++) {
-          const [c, s] = [cosines[at], sines[at]];
-          xc += x[k] * c;
-          xs += x[k] * s;
-          yc += y[k] * c;
-          ys += y[k] * s;
+        const q = Q[at];
+        const u = U[at];
+        if (q - q !== 0 || u - u !== 0) continue;
+        seen += weights[k];
+        const x = q * turnRe[k] - u * turnIm[k];
+        const y = q * turnIm[k] + u * turnRe[k];
+        for (let tap = 0, cell = first[k]; tap < taps; tap++, cell = cell + 1 === size ? 0 : cell + 1) {
+          const share = values[k * taps + tap];
+          grid[2 * cell] += x * share;
+          grid[2 * cell + 1] += y * share;
         }
-        const offset = count % 2 === 1 ? j : j + 0.5;
-        const [above, below] = [(half + offset) * pixels + pixel, (half - offset) * pixels + pixel];
-        out.re[above] = scale * (xc + ys);
-        out.im[above] = scale * (yc - xs);
-        out.re[below] = scale * (xc - ys);
-        out.im[below] = scale * (yc + xs);
+      }
+      transform.transform(spectrum, grid);
+      const scale = seen > 0.5 ? 1 / seen : NaN;
+      for (let index = 0, at = pixel; index < count; index++, at += pixels) {
+        const cell = index < middle ? index - middle + size : index - middle;
+        const factor = scale * correction[index];
+        re[at] = factor * spectrum[2 * cell];
+        im[at] = factor * spectrum[2 * cell + 1];
       }
     }
     return out;
   };
+}
+
+/** For every channel, the first cell of the periodic grid it touches and its share in each of `taps`. */
+function spreadChannels(angles: Float64Array, size: number): { first: Int32Array; values: Float64Array } {
+  const first = new Int32Array(angles.length);
+  const values = new Float64Array(angles.length * taps);
+  angles.forEach((angle, k) => {
+    const turns = angle / (2 * Math.PI);
+    const place = size * (turns - Math.floor(turns));
+    const start = Math.ceil(place - taps / 2);
+    first[k] = ((start % size) + size) % size;
+    for (let tap = 0; tap < taps; tap++) values[k * taps + tap] = kernel((start + tap - place) / (taps / 2));
+  });
+  return { first, values };
+}
+
+function kernel(z: number): number {
+  return Math.abs(z) > 1 ? 0 : Math.exp(sharpness * (Math.sqrt(1 - z * z) - 1));
+}
+
+/** 1 over the transform of the kernel at each index, by quadrature. */
+function kernelCorrection(count: number, middle: number, size: number): Float64Array {
+  const { nodes, weights } = gaussLegendre(64);
+  return Float64Array.from({ length: count }, (_, index) => {
+    const frequency = ((index - middle) * Math.PI * taps) / size;
+    let sum = 0;
+    nodes.forEach((z, k) => (sum += weights[k] * kernel(z) * Math.cos(frequency * z)));
+    return 2 / (taps * sum);
+  });
 }
