@@ -8,6 +8,7 @@ export default defineConfig({
   test: {
     include: ['test/**/*.test.ts'],
     exclude: ['test/**/*.long.test.ts', 'node_modules/**'],
+    globalSetup: fileURLToPath(new URL('./build-once.ts', import.meta.url)),
     testTimeout: 120_000,
     hookTimeout: 120_000,
     maxWorkers: 2,
