@@ -1,5 +1,6 @@
 import type { Scene } from '../scene/types.ts';
 import type { SpectralPoint } from './integrand.ts';
+import { isUnused } from './scene-graph.ts';
 import { findMapScale, makeRayEngine, traceRays, type BackEnd, type RayEngine } from './trace.ts';
 import type { RayBundle, RayResult } from './types.ts';
 
@@ -56,7 +57,7 @@ function structureKey(scene: Scene, spectrum: readonly SpectralPoint[]): string 
       component.name,
       component.model,
       component.choices,
-      Object.keys(component.parameters),
+      Object.keys(component.parameters).map((name) => [name, isUnused(component, name)]),
       'heightIndex' in component && component.heightIndex !== undefined,
     ]),
     scene.field.length,

@@ -106,7 +106,9 @@ export class SceneGraph {
   }
 
   use({ path, component }: PlacedComponent): ModelUse {
-    const parameters = new Map(Object.keys(component.parameters).map((name) => [name, this.graph.parameter(`${path}/${name}`)]));
+    const parameters = new Map(
+      Object.keys(component.parameters).map((name) => [name, isUnused(component, name) ? this.graph.constant(0) : this.graph.parameter(`${path}/${name}`)]),
+    );
     return { model: component.model, parameters, choices: component.choices };
   }
 
@@ -116,6 +118,11 @@ export class SceneGraph {
     const all = [...field, ...thermalElectrons, ...cosmicRays].map((placed) => buildEdges(this.graph, this.use(placed)));
     return { z: all.flatMap((edges) => edges.z), r: all.flatMap((edges) => edges.r) };
   }
+}
+
+/** Whether an optional parameter is at its default of 0: what it would change is left out of the code. */
+export function isUnused(component: Component, name: string): boolean {
+  return component.parameters[name] === 0 && component.model.parameters.some((parameter) => parameter.name === name && parameter.default === 0);
 }
 
 /** Values of every run-time parameter by name, in the units formulas see. */

@@ -72,7 +72,7 @@ export function writeAccept(context: TransferContext, { rotated, squaredErrors }
     const integrals: [number, typeof layout.nearPhi][] = [[output.faraday, layout.nearPhi]];
     if (structure.hasDispersion) integrals.push([output.dispersion, layout.nearSigma]);
     for (const [index, cell] of integrals) cell.set(w, f.add(cell.get(), sumLanes(w, dot(weights, outputAt(index)))));
-  });
+  }, 'accept');
 
   const write = module.define(['i32'], [], (w) => {
     const results = w.parameter(0, 'i32');

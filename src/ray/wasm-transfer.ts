@@ -47,19 +47,21 @@ function writeSample(module: ModuleWriter, layout: TransferLayout, placed: Place
     const [a, b] = [w.parameter(0, 'f64'), w.parameter(1, 'f64')];
     const half = w.let(v.splat(f.multiply(f.constant(0.5), f.subtract(b, a))));
     const centre = w.let(v.splat(f.multiply(f.constant(0.5), f.add(a, b))));
+    const evaluate = placed.begin(w);
+    const [sinI, cosI, minorSin, minorCos, major] = [layout.sinI, layout.cosI, layout.minorSin, layout.minorCos, layout.major].map((cell) => w.let(cell.both()));
     w.count(zero, int.constant(nodeBytes), 16, (offset) => {
       const s = w.let(v.add(centre, v.multiply(half, v.load(offset, layout.nodes))));
-      const y = w.let(v.subtract(layout.minorCos.both(), v.multiply(s, layout.sinI.both())));
-      const z = w.let(v.add(layout.minorSin.both(), v.multiply(s, layout.cosI.both())));
+      const y = w.let(v.subtract(minorCos, v.multiply(s, sinI)));
+      const z = w.let(v.add(minorSin, v.multiply(s, cosI)));
       w.store(offset, layout.z, z);
-      const values = placed.sample(w, [w.let(layout.major.both()), y, z]);
+      const values = evaluate([major, y, z]);
       values.forEach((value, k) => {
         if (k !== output.dispersion || hasDispersion) w.store(offset, outputs + nodeBytes * k, value);
       });
     });
     integrateToNodes(w, layout, outputs + nodeBytes * output.faraday, half, layout.nearPhi.both(), layout.phi);
     if (hasDispersion) integrateToNodes(w, layout, outputs + nodeBytes * output.dispersion, half, layout.nearSigma.both(), layout.sigma);
-  });
+  }, 'sample');
 }
 
 /** Cumulative integral at each node: what lies nearer, and the panel's part up to there. */

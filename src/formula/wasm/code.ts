@@ -21,9 +21,7 @@ export type Long = Code<'i64'>;
 
 /** Glues operands, an instruction and its immediate values to one expression. */
 function join<T extends ValueType>(type: T, operands: readonly Code<ValueType>[], instruction: readonly number[], immediates: readonly number[] = []): Code<T> {
-  const bytes: number[] = [];
-  for (const operand of operands) for (const byte of operand.bytes) bytes.push(byte);
-  bytes.push(...instruction, ...immediates);
+  const bytes = ([] as number[]).concat(...operands.map((operand) => operand.bytes), instruction, immediates);
   return { type, bytes };
 }
 
@@ -49,6 +47,11 @@ const inSteps = (name: string) => (a: Vector, count: number): Vector => join('v1
 /** Operations on two numbers at a time. Comparisons give all ones or all zeros per lane. */
 export const vector = {
   load: (address: Int, offset = 0): Vector => join('v128', [address], instructions['v128.load'], memoryArguments(4, offset)),
+  /** The same pattern of 64 bits in both lanes. */
+  constant: (bits: bigint): Vector => {
+    const half = new Uint8Array(BigUint64Array.of(bits).buffer);
+    return { type: 'v128', bytes: [...instructions['v128.const'], ...half, ...half] };
+  },
   /** One number of 64 bits from memory in both lanes. */
   loadSplat: (address: Int, offset = 0): Vector => join('v128', [address], instructions['v128.load64_splat'], memoryArguments(3, offset)),
   splat: monadic<'f64', 'v128'>('v128', 'f64x2.splat'),

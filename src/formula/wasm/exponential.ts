@@ -8,39 +8,45 @@ export const roundingShift = 6755399441055744;
 const log2e = 1.4426950408889634;
 const ln2High = 0.6931471803691238;
 const ln2Low = 1.9082149292705877e-10;
-/** Within these bounds e^x is a number of full precision. */
-const [lowest, highest] = [-708.39, 709.782712893384];
+/** Below, e^x has no full precision. */
+const lowest = -708.39;
 
-/** x = k ln2 + r: e^r - 1 - r²-and-up in one number, and k in the lowest bits of another. */
-function reduce(w: FunctionWriter, x: Vector): { readonly less: Vector; readonly shifted: Vector } {
-  const shifted = w.let(v.add(v.multiply(x, w.constant(log2e)), w.constant(roundingShift)));
-  const k = w.let(v.subtract(shifted, w.constant(roundingShift)));
+/** x = k ln2 + r: what e^x, e^x - 1 and the hyperbolic functions of x are made of. */
+export interface Reduction {
+  /** e^r - 1 */
+  readonly less: Vector;
+  /** k - 1, in the bits of an exponent. */
+  readonly shifted: Vector;
+}
+
+/** Reduces x, which must not lie far beyond the bounds where e^x is finite. */
+export function reduce(w: FunctionWriter, x: Vector): Reduction {
+  const shift = w.constant(roundingShift - 1);
+  const shifted = w.let(v.add(v.multiply(x, w.constant(log2e)), shift));
+  const k = w.let(v.subtract(shifted, shift));
   const r = w.let(v.subtract(v.subtract(x, v.multiply(k, w.constant(ln2High))), v.multiply(k, w.constant(ln2Low))));
-  const less = w.let(v.add(r, v.multiply(v.multiply(r, r), polynomial(w, r, exponential))));
+  const square = w.let(v.multiply(r, r));
+  const less = w.let(v.add(r, v.multiply(square, polynomial(w, r, exponential, square))));
   return { less, shifted: w.let(v.shiftLeft(shifted, 52)) };
 }
 
-/** e^x; 0 below the smallest number of full precision. */
-export function exp(w: FunctionWriter, x: Vector): Vector {
-  const { less, shifted } = reduce(w, x);
-  const value = v.addBits(v.add(w.constant(1), less), shifted);
-  const isPlain = v.and(v.greaterOrEqual(x, w.constant(lowest)), v.lessOrEqual(x, w.constant(highest)));
-  return w.let(v.select(isPlain, value, beyond(w, x)));
+/** x held to where `reduce` works; NaN stays NaN. */
+export function holdExponent(w: FunctionWriter, x: Vector): Vector {
+  return w.let(v.greater(v.lesser(x, w.constant(710)), w.constant(-710)));
 }
 
-/** Infinity for large, 0 for small x, NaN for none. */
-function beyond(w: FunctionWriter, x: Vector): Vector {
-  return v.multiply(v.greater(x, w.constant(0)), w.constant(1e308));
+/** e^x; 0 below the smallest number of full precision. */
+export function exp(w: FunctionWriter, x: Vector, { less, shifted } = reduce(w, holdExponent(w, x))): Vector {
+  // Half the value, doubled last: the doubling overflows as it should.
+  const half = w.let(v.addBits(v.add(w.constant(1), less), shifted));
+  return w.let(v.andNot(v.add(half, half), v.less(x, w.constant(lowest))));
 }
 
 /** e^x - 1, exact relative to itself also near 0. */
-export function expm1(w: FunctionWriter, x: Vector): Vector {
-  const { less, shifted } = reduce(w, x);
+export function expm1(w: FunctionWriter, x: Vector, { less, shifted } = reduce(w, holdExponent(w, x))): Vector {
   const scale = w.let(v.addBits(w.constant(1), shifted));
-  const near = v.add(v.multiply(scale, less), v.subtract(scale, w.constant(1)));
-  const far = v.addBits(v.add(w.constant(1), less), shifted);
-  const positive = v.select(v.lessOrEqual(x, w.constant(highest)), v.select(v.less(x, w.constant(600)), near, far), beyond(w, x));
-  return w.let(v.select(v.less(x, w.constant(-600)), w.constant(-1), positive));
+  const half = w.let(v.add(v.multiply(scale, less), v.subtract(scale, w.constant(0.5))));
+  return w.let(v.select(v.less(x, w.constant(-600)), w.constant(-1), v.add(half, half)));
 }
 
 /** e^-|u| - 1 and e^-|u|, both exact relative to themselves: what hyperbolic functions are made of. */
@@ -53,9 +59,8 @@ export interface Decay {
 }
 
 export function decay(w: FunctionWriter, u: Vector): Decay {
-  const size = v.greater(v.negate(v.abs(u)), w.constant(lowest));
-  const { less, shifted } = reduce(w, w.let(size));
-  const scale = w.let(v.addBits(w.constant(1), shifted));
+  const { less, shifted } = reduce(w, w.let(v.greater(v.negate(v.abs(u)), w.constant(lowest))));
+  const scale = w.let(v.addBits(w.constant(2), shifted));
   const part = w.let(v.multiply(scale, less));
   const value = w.let(v.add(scale, part));
   return {

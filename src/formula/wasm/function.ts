@@ -1,4 +1,4 @@
-import { int, type Code, type Int, type ValueType, type Vector } from './code.ts';
+import { int, vector, type Code, type Int, type ValueType, type Vector } from './code.ts';
 import { instructions } from './instructions.ts';
 import { unsigned } from './leb128.ts';
 import type { Callee, ModuleWriter } from './module.ts';
@@ -38,6 +38,17 @@ export class FunctionWriter {
     return { type: value.type, bytes: variable.bytes };
   }
 
+  /**
+   * Computes a value now, keeps it in memory and reads it anew at each use. Optimizing compilers
+   * move plain expressions far from where they are written and then run out of registers; a store
+   * holds them in place.
+   */
+  pin(value: Vector): Vector {
+    const address = this.module.reserve(16);
+    this.store(int.constant(0), address, value);
+    return vector.load(int.constant(0), address);
+  }
+
   /** A new local, zero at first. */
   variable<T extends ValueType>(type: T, start?: Code<T>): Variable<T> {
     const index = unsigned(this.parameters.length + this.locals.push(type) - 1);
@@ -52,7 +63,7 @@ export class FunctionWriter {
 
   /** A number in both lanes. */
   constant(value: number): Vector {
-    return this.module.constant(value);
+    return vector.constant(bitsOf(value));
   }
 
   store(address: Int, offset: number, value: Code<'i32' | 'f64' | 'v128'>): void {
@@ -117,6 +128,10 @@ export class FunctionWriter {
   }
 
   private push(...parts: readonly (readonly number[])[]): void {
-    for (const part of parts) for (const byte of part) this.body.push(byte);
+    for (const part of parts) this.body.push(...part);
   }
+}
+
+function bitsOf(value: number): bigint {
+  return new BigUint64Array(Float64Array.of(value).buffer)[0];
 }

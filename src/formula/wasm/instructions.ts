@@ -16,7 +16,7 @@ const plain: Readonly<Record<string, number>> = {
 };
 
 const wide: Readonly<Record<string, number>> = {
-  'v128.load': 0x00, 'v128.load64_splat': 0x0a, 'v128.store': 0x0b, 'i8x16.shuffle': 0x0d, 'i64x2.splat': 0x12, 'f64x2.splat': 0x14,
+  'v128.load': 0x00, 'v128.load64_splat': 0x0a, 'v128.store': 0x0b, 'v128.const': 0x0c, 'i8x16.shuffle': 0x0d, 'i64x2.splat': 0x12, 'f64x2.splat': 0x14,
   'i32x4.extract_lane': 0x1b, 'i64x2.extract_lane': 0x1d, 'f64x2.extract_lane': 0x21, 'f64x2.replace_lane': 0x22,
   'f64x2.eq': 0x47, 'f64x2.ne': 0x48, 'f64x2.lt': 0x49, 'f64x2.gt': 0x4a, 'f64x2.le': 0x4b, 'f64x2.ge': 0x4c,
   'v128.and': 0x4e, 'v128.andnot': 0x4f, 'v128.or': 0x50, 'v128.xor': 0x51, 'v128.bitselect': 0x52, 'v128.any_true': 0x53,

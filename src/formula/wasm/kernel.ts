@@ -23,8 +23,9 @@ export function compileWasm(program: Program, shape: TableShape = { pieces: 32, 
     [],
     (w) => {
       w.run(placed.prepare);
+      const sample = placed.begin(w);
       w.count(int.constant(0), int.shiftLeft(w.parameter(0, 'i32'), int.constant(3)), 16, (offset) => {
-        const values = placed.sample(w, program.lanes.map((_, k) => w.let(v.load(offset, lanes + 8 * chunk * k))));
+        const values = sample(program.lanes.map((_, k) => w.let(v.load(offset, lanes + 8 * chunk * k))));
         values.forEach((value, k) => w.store(offset, outputs + 8 * chunk * k, value));
       });
     },

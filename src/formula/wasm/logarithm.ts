@@ -12,10 +12,10 @@ const smallestNormal = 2.2250738585072014e-308;
 export function log(w: FunctionWriter, x: Vector): Vector {
   const isSmall = w.let(v.less(x, w.constant(smallestNormal)));
   const scaled = w.let(v.select(isSmall, v.multiply(x, w.constant(2 ** 54)), x));
-  const exponent = w.let(v.shiftRight(v.subtractBits(scaled, w.module.pattern(0x3fe6a09e667f3bcdn)), 52));
+  const exponent = w.let(v.shiftRight(v.subtractBits(scaled, v.constant(0x3fe6a09e667f3bcdn)), 52));
   const m = v.subtractBits(scaled, v.shiftLeft(exponent, 52));
   // The exponent, 12 bits with sign, is made a number: wrapped to 0 … 4095, then brought back.
-  const wrapped = w.let(v.subtract(v.or(v.and(exponent, w.module.pattern(0xfffn)), w.constant(2 ** 52)), w.constant(2 ** 52)));
+  const wrapped = w.let(v.subtract(v.or(v.and(exponent, v.constant(0xfffn)), w.constant(2 ** 52)), w.constant(2 ** 52)));
   const signed = v.subtract(wrapped, v.and(v.greaterOrEqual(wrapped, w.constant(2048)), w.constant(4096)));
   const k = w.let(v.subtract(signed, v.and(isSmall, w.constant(54))));
   const less = w.let(v.subtract(m, w.constant(1)));
@@ -34,7 +34,7 @@ export function log(w: FunctionWriter, x: Vector): Vector {
 export function pow(w: FunctionWriter, x: Vector, y: Vector): Vector {
   const result = w.variable('v128', exp(w, w.let(v.multiply(y, log(w, w.let(v.abs(x)))))));
   const isPlain = v.and(v.and(v.greaterThan(x, w.constant(0)), v.less(x, w.constant(Infinity))), v.less(v.abs(y), w.constant(Infinity)));
-  w.when(v.anyTrue(v.andNot(w.module.pattern((1n << 64n) - 1n), isPlain)), () => result.set(powSpecial(w, x, y, result)));
+  w.when(v.anyTrue(v.andNot(v.constant((1n << 64n) - 1n), isPlain)), () => result.set(powSpecial(w, x, y, result)));
   return w.let(result);
 }
 

@@ -1,4 +1,4 @@
-import { int, vector, type ValueType, type Vector } from './code.ts';
+import { int, type ValueType } from './code.ts';
 import { unsigned } from './leb128.ts';
 import { FunctionWriter } from './function.ts';
 
@@ -13,15 +13,14 @@ const typeCodes: Readonly<Record<ValueType, number>> = { i32: 0x7f, i64: 0x7e, f
 const pageBytes = 65536;
 
 /**
- * A WebAssembly module as it is being written: functions, one exported memory, and constants in
- * it. Memory is given out from address 0 upwards; `heapStart` is the first address left free.
+ * A WebAssembly module as it is being written: functions, one exported memory, and tables of
+ * numbers in it. Memory is given out from address 0 upwards; `heapStart` is the first address left free.
  */
 export class ModuleWriter {
   private readonly types = new Map<string, number>();
   private readonly functions: { readonly type: number; body: readonly number[] }[] = [];
   private readonly shared = new Map<string, Callee>();
   private readonly exports: { readonly name: string; readonly index: number }[] = [];
-  private readonly constants = new Map<string, number>();
   private readonly data: { readonly address: number; readonly bytes: Uint8Array }[] = [];
   private free = 0;
 
@@ -40,22 +39,6 @@ export class ModuleWriter {
   /** Memory that holds these 32-bit whole numbers when the module starts. */
   words(values: readonly number[]): number {
     return this.place(new Uint8Array(Uint32Array.from(values).buffer));
-  }
-
-  /** A number in both lanes, kept in memory: cheaper than an immediate value. */
-  constant(value: number): Vector {
-    return this.pattern(new BigUint64Array(new Float64Array([value]).buffer)[0]);
-  }
-
-  /** A pattern of 64 bits in both lanes. */
-  pattern(bits: bigint): Vector {
-    const key = String(bits);
-    let address = this.constants.get(key);
-    if (address === undefined) {
-      address = this.place(new Uint8Array(BigUint64Array.from([bits, bits]).buffer));
-      this.constants.set(key, address);
-    }
-    return vector.load(int.constant(0), address);
   }
 
   /** Writes a function once and returns how to call it; `name` also exports it where asked. */
@@ -88,15 +71,16 @@ export class ModuleWriter {
     const memoryIndex = 0;
     const exports = [[...text('memory'), 2, memoryIndex], ...this.exports.map(({ name, index }) => [...text(name), 0, ...unsigned(index)])];
     const segments = this.data.map(({ address, bytes }) => [0, ...int.constant(address).bytes, 0x0b, ...unsigned(bytes.length), ...bytes]);
-    return Uint8Array.from([
-      ...[0x00, 0x61, 0x73, 0x6d, 1, 0, 0, 0],
-      ...section(1, [...this.types.keys()].map((key) => JSON.parse(key) as number[])),
-      ...section(3, this.functions.map(({ type }) => unsigned(type))),
-      ...section(5, [[0, ...unsigned(pages)]]),
-      ...section(7, exports),
-      ...section(10, this.functions.map(({ body }) => body)),
-      ...section(11, segments),
-    ]);
+    return Uint8Array.from(
+      [0x00, 0x61, 0x73, 0x6d, 1, 0, 0, 0].concat(
+        section(1, [...this.types.keys()].map((key) => JSON.parse(key) as number[])),
+        section(3, this.functions.map(({ type }) => unsigned(type))),
+        section(5, [[0, ...unsigned(pages)]]),
+        section(7, exports),
+        section(10, this.functions.map(({ body }) => body)),
+        section(11, segments),
+      ),
+    );
   }
 
   private place(bytes: Uint8Array): number {
@@ -116,8 +100,6 @@ export class ModuleWriter {
 }
 
 function section(id: number, items: readonly (readonly number[])[]): number[] {
-  const content = unsigned(items.length);
-  for (const item of items) for (const byte of item) content.push(byte);
-  const head = [id, ...unsigned(content.length)];
-  return head.concat(content);
+  const content = unsigned(items.length).concat(...items);
+  return [id, ...unsigned(content.length)].concat(content);
 }

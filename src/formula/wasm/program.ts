@@ -15,8 +15,11 @@ export interface PlacedProgram {
   readonly tableOrders: number;
   /** Function without arguments: computes all that does not differ between samples. Call it first. */
   readonly prepare: Callee;
-  /** Writes the steps for two samples; gives the values of the outputs. */
-  sample(w: FunctionWriter, lanes: readonly Vector[]): readonly Vector[];
+  /**
+   * Writes what a loop over samples needs before it; the function returned writes the steps for
+   * two samples within the loop and gives the values of the outputs.
+   */
+  begin(w: FunctionWriter): (lanes: readonly Vector[]) => readonly Vector[];
 }
 
 /** Lays out a program in a module. All tables share one shape. */
@@ -41,16 +44,20 @@ export function placeProgram(module: ModuleWriter, program: Program, shape: Tabl
     tables,
     tableOrders,
     prepare,
-    sample: (w, lanes) => {
-      const steps = writer(w, lanes);
+    begin: (w) => {
+      const known = new Map<Value, Vector>();
       for (const [value, address] of keptAt) {
         const step = program.instructions[value];
-        steps.know(value, step.op === 'constant' ? w.constant(step.value) : v.load(int.constant(0), address));
+        known.set(value, step.op === 'constant' ? w.constant(step.value) : w.let(v.load(int.constant(0), address)));
       }
-      program.instructions.forEach((step, value) => {
-        if (program.varying[value]) steps.write(step, value);
-      });
-      return program.outputs.map((value) => steps.value(value));
+      return (lanes) => {
+        const steps = writer(w, lanes);
+        for (const [value, code] of known) steps.know(value, code);
+        program.instructions.forEach((step, value) => {
+          if (program.varying[value]) steps.write(step, value);
+        });
+        return program.outputs.map((value) => steps.value(value));
+      };
     },
   };
 }
@@ -99,7 +106,8 @@ class StepWriter {
 
   write(step: Instruction, index: Value): void {
     const code = this.code(step, index);
-    this.values[index] = step.op === 'lane' || step.op === 'constant' ? code : this.w.let(code);
+    const isPlain = step.op === 'lane' || step.op === 'constant';
+    this.values[index] = isPlain ? code : isCostly(step) ? this.w.pin(code) : this.w.let(code);
   }
 
   private code(step: Instruction, index: Value): Vector {
@@ -151,4 +159,10 @@ class StepWriter {
 
 function isComparison(name: string): name is Comparison {
   return name === 'less' || name === 'lessOrEqual' || name === 'equal';
+}
+
+/** Steps of many instructions, whose results are held in memory. */
+function isCostly(step: Instruction): boolean {
+  if (step.op === 'unary') return step.name !== 'abs' && step.name !== 'sign';
+  return step.op === 'table' || (step.op === 'binary' && !isComparison(step.name));
 }

@@ -24,7 +24,7 @@ function fromQuadrant(w: FunctionWriter, r: Vector, quadrant: Vector): readonly 
   const sin = w.let(v.add(r, v.multiply(v.multiply(square, r), polynomial(w, square, sine))));
   const half = w.let(v.multiply(square, w.constant(0.5)));
   const cos = w.let(v.add(v.subtract(w.constant(1), half), v.multiply(v.multiply(square, square), polynomial(w, square, cosine))));
-  const one = w.module.pattern(1n);
+  const one = v.constant(1n);
   const isEven = w.let(v.equalBits(v.and(quadrant, one), w.constant(0)));
   const signBit = w.constant(-0);
   const sineSign = v.and(v.shiftLeft(quadrant, 62), signBit);

@@ -1,6 +1,6 @@
 import type { BinaryName, UnaryName } from '../functions.ts';
 import { vector as v, type Vector } from './code.ts';
-import { decay, exp, expm1, hyperbolic, sech, tanh, type Decay } from './exponential.ts';
+import { decay, exp, expm1, holdExponent, hyperbolic, reduce, sech, tanh, type Decay, type Reduction } from './exponential.ts';
 import type { FunctionWriter } from './function.ts';
 import { log, pow } from './logarithm.ts';
 import { erf, incompleteGamma2 } from './special.ts';
@@ -9,6 +9,7 @@ import { atan2, sineCosine } from './trigonometry.ts';
 /** Writes functions of two numbers at a time, sharing what several functions of one argument have in common. */
 export class VectorMaths {
   private readonly decays = new Map<number, Decay>();
+  private readonly reductions = new Map<number, Reduction>();
   private readonly turns = new Map<number, readonly [Vector, Vector]>();
 
   constructor(private readonly w: FunctionWriter) {}
@@ -22,9 +23,9 @@ export class VectorMaths {
       case 'sign':
         return v.select(v.greaterThan(v.abs(x), w.constant(0)), v.or(v.and(x, w.constant(-0)), w.constant(1)), x);
       case 'exp':
-        return exp(w, x);
+        return exp(w, x, this.reduction(x, key));
       case 'expm1':
-        return expm1(w, x);
+        return expm1(w, x, this.reduction(x, key));
       case 'log':
         return this.call('log', log, x);
       case 'sin':
@@ -67,6 +68,12 @@ export class VectorMaths {
       case 'pow':
         return this.w.call(this.twoArguments('pow', pow), 'v128', a, b);
     }
+  }
+
+  private reduction(x: Vector, key: number): Reduction {
+    const known = this.reductions.get(key) ?? reduce(this.w, holdExponent(this.w, x));
+    this.reductions.set(key, known);
+    return known;
   }
 
   private decay(x: Vector, key: number): Decay {
