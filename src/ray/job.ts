@@ -9,6 +9,8 @@ export interface RayJob {
   readonly scene: Scene;
   readonly spectrum: readonly SpectralPoint[];
   readonly bundle: RayBundle;
+  /** Whether heights of origin are wanted; a pool leaves their arrays empty where not. True by default. */
+  readonly origins?: boolean;
 }
 
 /** How a long job is watched and stopped. */

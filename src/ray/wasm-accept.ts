@@ -1,10 +1,9 @@
 import { float as f, int, vector as v, type Vector } from '../formula/wasm/code.ts';
 import type { FunctionWriter } from '../formula/wasm/function.ts';
 import type { Callee } from '../formula/wasm/module.ts';
-import { output } from './integrand.ts';
-import { resultsPerFrequency, spectrumRecord, type TransferContext } from './wasm-layout.ts';
+import { emissionBytes, resultsPerFrequency, spectrumRecord, type TransferContext } from './wasm-layout.ts';
 import { dot, loadNodes, nodeBytes, pairOffsets, sumLanes, zero, type NodeValues } from './wasm-nodes.ts';
-import { rotatePair, type Resolve } from './wasm-resolve.ts';
+import type { Resolve } from './wasm-resolve.ts';
 
 /** The sums of a ray: emptied before it, added to by panels, written out behind it. */
 export interface Sums {
@@ -21,14 +20,13 @@ const frequencyBytes = 64;
 const groupBytes = 32;
 
 /** Writes the summing of `accept` of RayTracer; rotated emission that the test has left is not made again. */
-export function writeAccept(context: TransferContext, { rotated, squaredErrors }: Resolve): Sums {
+export function writeAccept(context: TransferContext, { rotate, rotated, squaredErrors }: Resolve): Sums {
   const { module, layout, spectrum, structure } = context;
   const { groupOf, tested } = structure;
   const groups = Math.max(...groupOf) + 1;
   const frequencySums = module.reserve(frequencyBytes * groupOf.length);
   const groupSums = module.reserve(groupBytes * groups);
-  // Polarized emission of each group at the nodes, both parts.
-  const polarized = module.reserve(2 * nodeBytes * groups);
+  const scratch = module.reserve(2 * nodeBytes);
   const clear = module.define([], [], (w) => {
     const empty = w.constant(0);
     w.count(zero, int.constant(frequencyBytes * groupOf.length), 16, (offset) => w.store(offset, frequencySums, empty));
@@ -41,37 +39,27 @@ export function writeAccept(context: TransferContext, { rotated, squaredErrors }
     const halves = w.let(v.splat(half));
     const weights = pairOffsets.map((pair) => w.let(v.multiply(halves, v.load(zero, layout.weights + pair))));
     const z = loadNodes(w, layout.z);
-    const outputAt = (index: number): NodeValues => loadNodes(w, layout.outputs + nodeBytes * index);
-    const [cosine, sine] = [outputAt(output.cosine), outputAt(output.sine)];
-    const sizes = cosine.map((c, k) => w.let(v.sqrt(v.add(v.multiply(c, c), v.multiply(sine[k], sine[k])))));
-    const total = outputAt(output.total);
     for (let group = 0; group < groups; group++) {
-      const density = outputAt(output.firstGroup + group);
-      const weighted = density.map((value, k) => w.let(v.multiply(value, weights[k])));
-      addTo(w, groupSums + groupBytes * group, dot(weighted, total));
-      addTo(w, groupSums + groupBytes * group + 16, dot(weighted, sizes));
-      pairOffsets.forEach((pair, k) => {
-        const into = polarized + 2 * nodeBytes * group + pair;
-        w.store(zero, into, v.multiply(density[k], cosine[k]));
-        w.store(zero, into + nodeBytes, v.multiply(density[k], sine[k]));
-      });
+      const [total, major, minor] = [0, 1, 2].map((k) => loadNodes(w, layout.emission + emissionBytes * group + nodeBytes * k));
+      const sizes = major.map((c, k) => v.sqrt(v.add(v.multiply(c, c), v.multiply(minor[k], minor[k]))));
+      addTo(w, groupSums + groupBytes * group, dot(weights, total));
+      addTo(w, groupSums + groupBytes * group + 16, dot(weights, sizes));
     }
     tested.forEach((k, slot) => {
       addFrequency(w, zero, frequencySums + frequencyBytes * k, weights, z, loadNodes(w, rotated[slot]), loadNodes(w, rotated[slot] + nodeBytes));
     });
     for (const [from, to] of untestedRuns(groupOf, tested)) {
-      const base = polarized + 2 * nodeBytes * groupOf[from];
+      const emission = int.constant(layout.emission + emissionBytes * groupOf[from]);
       w.count(int.constant(from), int.constant(to), 1, (k) => {
         const record = w.let(int.multiply(k, int.constant(spectrumRecord.bytes)));
-        const turn = w.let(v.loadSplat(record, spectrum + spectrumRecord.turn));
-        const damping = w.let(v.loadSplat(record, spectrum + spectrumRecord.damping));
-        const parts = pairOffsets.map((pair) => rotatePair(w, context, pair, turn, damping, [v.load(zero, base + pair), v.load(zero, base + nodeBytes + pair)]));
-        addFrequency(w, w.let(int.multiply(k, int.constant(frequencyBytes))), frequencySums, weights, z, parts.map(([real]) => real), parts.map(([, imaginary]) => imaginary));
+        const [turn, damping] = [spectrumRecord.turn, spectrumRecord.damping].map((place) => f.load(record, spectrum + place));
+        w.run(rotate, turn, damping, emission, int.constant(scratch));
+        addFrequency(w, w.let(int.multiply(k, int.constant(frequencyBytes))), frequencySums, weights, z, loadNodes(w, scratch), loadNodes(w, scratch + nodeBytes));
       });
     }
-    const integrals: [number, typeof layout.nearPhi][] = [[output.faraday, layout.nearPhi]];
-    if (structure.hasDispersion) integrals.push([output.dispersion, layout.nearSigma]);
-    for (const [index, cell] of integrals) cell.set(w, f.add(cell.get(), sumLanes(w, dot(weights, outputAt(index)))));
+    const integrals: [number, typeof layout.nearPhi][] = [[layout.faraday, layout.nearPhi]];
+    if (structure.hasDispersion) integrals.push([layout.dispersion, layout.nearSigma]);
+    for (const [values, cell] of integrals) cell.set(w, f.add(cell.get(), sumLanes(w, dot(weights, loadNodes(w, values)))));
   }, 'accept');
 
   const write = module.define(['i32'], [], (w) => {

@@ -68,14 +68,21 @@ export interface TransferLayout {
   readonly last: number;
   /** Columns of the matrix of `PanelRule.toNearEnd`. */
   readonly toNearEnd: number;
-  readonly outputs: number;
+  /** dφ/ds and dΣ/ds at the nodes. */
+  readonly faraday: number;
+  readonly dispersion: number;
+  /** Per emission group: total emission, then the two parts of the polarized one, at the nodes. */
+  readonly emission: number;
   readonly z: number;
   readonly phi: number;
   readonly sigma: number;
 }
 
-/** Sets memory aside for a transfer of so many outputs of the integrand. */
-export function layOut(module: ModuleWriter, outputs: number): TransferLayout {
+/** Bytes of what a group emits at the nodes. */
+export const emissionBytes = 3 * nodeBytes;
+
+/** Sets memory aside for a transfer of so many emission groups. */
+export function layOut(module: ModuleWriter, groups: number): TransferLayout {
   const cell = (): Cell => makeCell(module);
   const edges = (): TransferLayout['zEdges'] => ({ count: makeIntCell(module), address: makeIntCell(module) });
   const columns = Array.from({ length: panelNodes }, (_, j) => Array.from({ length: panelNodes }, (_, i) => panelRule.toNearEnd[i * panelNodes + j])).flat();
@@ -105,7 +112,9 @@ export function layOut(module: ModuleWriter, outputs: number): TransferLayout {
     lastButOne: module.numbers(panelRule.lastButOne),
     last: module.numbers(panelRule.last),
     toNearEnd: module.numbers(columns),
-    outputs: module.reserve(nodeBytes * outputs),
+    faraday: module.reserve(nodeBytes),
+    dispersion: module.reserve(nodeBytes),
+    emission: module.reserve(emissionBytes * groups),
     z: module.reserve(nodeBytes),
     phi: module.reserve(nodeBytes),
     sigma: module.reserve(nodeBytes),

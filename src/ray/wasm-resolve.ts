@@ -1,33 +1,22 @@
-import { float as f, int, vector as v, type Float, type Vector } from '../formula/wasm/code.ts';
+import { float as f, int, vector as v, type Float } from '../formula/wasm/code.ts';
 import { exp } from '../formula/wasm/exponential.ts';
 import type { FunctionWriter } from '../formula/wasm/function.ts';
 import type { Callee } from '../formula/wasm/module.ts';
-import { sineCosine } from '../formula/wasm/trigonometry.ts';
-import { output } from './integrand.ts';
+import { writeRotate } from './wasm-rotate.ts';
 import { mostPerPanel } from './transfer.ts';
-import { spectrumRecord, type TransferContext, type TransferLayout } from './wasm-layout.ts';
-import { largest, loadNodes, nodeBytes, pairOffsets, tail, zero, type NodeValues } from './wasm-nodes.ts';
+import { emissionBytes, spectrumRecord, type TransferContext, type TransferLayout } from './wasm-layout.ts';
+import { largest, loadNodes, nodeBytes, tail, zero } from './wasm-nodes.ts';
 
 /** The test of a panel, and what it leaves behind for those that it accepts. */
 export interface Resolve {
   /** (half): whether estimated errors are within the share of the tolerance that a panel may use. */
   readonly isResolved: Callee;
+  /** (2λ², -2λ⁴, emission, into): rotated, damped polarized emission at the nodes, real then imaginary. */
+  readonly rotate: Callee;
   /** Per tested frequency: address of its rotated emission, real then imaginary, at the nodes. */
   readonly rotated: readonly number[];
   /** Per tested frequency: address of the sum of squared errors. */
   readonly squaredErrors: readonly number[];
-}
-
-/** Rotated, damped polarized emission of one pair of nodes. */
-export function rotatePair(w: FunctionWriter, { layout, structure }: TransferContext, pair: number, turn: Vector, damping: Vector, polarized: readonly [Vector, Vector]): readonly [Vector, Vector] {
-  const [sine, cosine] = sineCosine(w, w.let(v.multiply(turn, v.load(zero, layout.phi + pair))));
-  let [c, s] = [cosine, sine];
-  if (structure.hasDispersion) {
-    const size = exp(w, w.let(v.multiply(damping, v.load(zero, layout.sigma + pair))));
-    [c, s] = [w.let(v.multiply(c, size)), w.let(v.multiply(s, size))];
-  }
-  const [major, minor] = polarized;
-  return [w.let(v.subtract(v.multiply(c, major), v.multiply(s, minor))), w.let(v.add(v.multiply(s, major), v.multiply(c, minor)))];
 }
 
 /** Error of the mean over a panel from the tail of its coefficients: see `quadratureError` of transfer.ts. */
@@ -43,26 +32,26 @@ function quadratureError(w: FunctionWriter, tailSize: Float, size: Float): Float
 /** Writes `isResolved` of RayTracer. */
 export function writeIsResolved(context: TransferContext): Resolve {
   const { module, layout, spectrum, structure } = context;
+  const rotate = writeRotate(context);
   const rotated = structure.tested.map(() => module.reserve(2 * nodeBytes));
   const squaredErrors = structure.tested.map(() => module.reserve(8));
   const [no, yes] = [int.constant(0), int.constant(1)];
   const isResolved = module.define(['f64'], ['i32'], (w) => {
     const half = w.parameter(0, 'f64');
-    const outputAt = (index: number): NodeValues => loadNodes(w, layout.outputs + nodeBytes * index);
-    const faraday = outputAt(output.faraday);
+    const faraday = loadNodes(w, layout.faraday);
     const tailPhi = tail(w, layout, faraday);
     const largestPhi = largest(w, faraday);
     const path = w.let(f.multiply(f.constant(2), half));
     const errorPhi = w.let(f.multiply(path, quadratureError(w, tailPhi, largestPhi)));
-    const largestDispersion = structure.hasDispersion ? largest(w, outputAt(output.dispersion)) : f.constant(0);
+    const largestDispersion = structure.hasDispersion ? largest(w, loadNodes(w, layout.dispersion)) : f.constant(0);
     const limit = layout.limit.get();
     const groups = new Map<number, { readonly size: Float; readonly error: Float }>();
     const pending = structure.tested.map((k, slot) => {
       const record = (offset: number): Float => f.load(zero, spectrum + spectrumRecord.bytes * k + offset);
-      const density = outputAt(output.firstGroup + structure.groupOf[k]);
+      const emission = layout.emission + emissionBytes * structure.groupOf[k];
       let group = groups.get(structure.groupOf[k]);
       if (!group) {
-        const total = outputAt(output.total).map((value, pair) => w.let(v.multiply(density[pair], value)));
+        const total = loadNodes(w, emission);
         const size = largest(w, total);
         group = { size, error: w.let(f.multiply(path, quadratureError(w, tail(w, layout, total), size))) };
         groups.set(structure.groupOf[k], group);
@@ -72,7 +61,8 @@ export function writeIsResolved(context: TransferContext): Resolve {
       refuseHidden(w, layout, { path, turn, damping, largestPhi, largestDispersion, emission: group.size, limit: f.multiply(limit, scaleP), hasDispersion: structure.hasDispersion });
       const errorI = w.let(f.divide(group.error, scaleI));
       w.when(f.greaterThan(errorI, limit), () => w.leave(no));
-      const [real, imaginary] = rotateNodes(w, context, rotated[slot], turn, damping, density);
+      w.run(rotate, turn, damping, int.constant(emission), int.constant(rotated[slot]));
+      const [real, imaginary] = [loadNodes(w, rotated[slot]), loadNodes(w, rotated[slot] + nodeBytes)];
       const [tailReal, tailImaginary] = [tail(w, layout, real), tail(w, layout, imaginary)];
       const tailP = w.let(f.sqrt(f.add(f.multiply(tailReal, tailReal), f.multiply(tailImaginary, tailImaginary))));
       const coupled = f.multiply(f.multiply(f.multiply(f.multiply(tailP, turn), half), tailPhi), f.constant(0.1));
@@ -87,21 +77,7 @@ export function writeIsResolved(context: TransferContext): Resolve {
     });
     w.leave(yes);
   }, 'isResolved');
-  return { isResolved, rotated, squaredErrors };
-}
-
-/** Rotates the emission of a tested frequency at all nodes, keeps it and hands it over. */
-function rotateNodes(w: FunctionWriter, context: TransferContext, into: number, turn: Float, damping: Float, density: NodeValues): readonly [NodeValues, NodeValues] {
-  const { layout } = context;
-  const [turns, dampings] = [w.let(v.splat(turn)), w.let(v.splat(damping))];
-  const parts = pairOffsets.map((pair, index) => {
-    const polarized = [output.cosine, output.sine].map((part) => w.let(v.multiply(density[index], v.load(zero, layout.outputs + nodeBytes * part + pair)))) as [Vector, Vector];
-    const [real, imaginary] = rotatePair(w, context, pair, turns, dampings, polarized);
-    w.store(zero, into + pair, real);
-    w.store(zero, into + nodeBytes + pair, imaginary);
-    return [real, imaginary] as const;
-  });
-  return [parts.map(([real]) => real), parts.map(([, imaginary]) => imaginary)];
+  return { isResolved, rotate, rotated, squaredErrors };
 }
 
 interface HiddenTest {

@@ -4,7 +4,7 @@ import { ModuleWriter, type Callee } from '../formula/wasm/module.ts';
 import { placeProgram, type PlacedProgram } from '../formula/wasm/program.ts';
 import { output, tableShape } from './integrand.ts';
 import { writeFindBreaks } from './wasm-breaks.ts';
-import { layOut, resultsPerFrequency, spectrumRecord, type TransferLayout, type TransferStructure } from './wasm-layout.ts';
+import { emissionBytes, layOut, resultsPerFrequency, spectrumRecord, type TransferLayout, type TransferStructure } from './wasm-layout.ts';
 import { writeAccept, type Sums } from './wasm-accept.ts';
 import { writeIsResolved } from './wasm-resolve.ts';
 import { nodeBytes, pairOffsets, zero } from './wasm-nodes.ts';
@@ -26,7 +26,7 @@ export interface TransferModule {
 export function writeTransfer(structure: TransferStructure): TransferModule {
   const { program, groupOf } = structure;
   const module = new ModuleWriter();
-  const layout = layOut(module, program.outputs.length);
+  const layout = layOut(module, Math.max(...groupOf) + 1);
   const spectrum = module.reserve(spectrumRecord.bytes * groupOf.length);
   const placed = placeProgram(module, program, tableShape);
   const findBreaks = writeFindBreaks(module, layout);
@@ -42,7 +42,6 @@ export function writeTransfer(structure: TransferStructure): TransferModule {
 
 /** (a, b): evaluates the integrand at the nodes of [a, b], and φ and Σ from the observer to each node. */
 function writeSample(module: ModuleWriter, layout: TransferLayout, placed: PlacedProgram, hasDispersion: boolean): Callee {
-  const { outputs } = layout;
   return module.define(['f64', 'f64'], [], (w) => {
     const [a, b] = [w.parameter(0, 'f64'), w.parameter(1, 'f64')];
     const half = w.let(v.splat(f.multiply(f.constant(0.5), f.subtract(b, a))));
@@ -55,12 +54,16 @@ function writeSample(module: ModuleWriter, layout: TransferLayout, placed: Place
       const z = w.let(v.add(minorSin, v.multiply(s, cosI)));
       w.store(offset, layout.z, z);
       const values = evaluate([major, y, z]);
-      values.forEach((value, k) => {
-        if (k !== output.dispersion || hasDispersion) w.store(offset, outputs + nodeBytes * k, value);
+      w.store(offset, layout.faraday, values[output.faraday]);
+      if (hasDispersion) w.store(offset, layout.dispersion, values[output.dispersion]);
+      values.slice(output.firstGroup).forEach((density, group) => {
+        [output.total, output.cosine, output.sine].forEach((part, k) => {
+          w.store(offset, layout.emission + emissionBytes * group + nodeBytes * k, v.multiply(density, values[part]));
+        });
       });
     });
-    integrateToNodes(w, layout, outputs + nodeBytes * output.faraday, half, layout.nearPhi.both(), layout.phi);
-    if (hasDispersion) integrateToNodes(w, layout, outputs + nodeBytes * output.dispersion, half, layout.nearSigma.both(), layout.sigma);
+    integrateToNodes(w, layout, layout.faraday, half, layout.nearPhi.both(), layout.phi);
+    if (hasDispersion) integrateToNodes(w, layout, layout.dispersion, half, layout.nearSigma.both(), layout.sigma);
   }, 'sample');
 }
 

@@ -34,7 +34,11 @@ export function log(w: FunctionWriter, x: Vector): Vector {
 export function pow(w: FunctionWriter, x: Vector, y: Vector): Vector {
   const result = w.variable('v128', exp(w, w.let(v.multiply(y, log(w, w.let(v.abs(x)))))));
   const isPlain = v.and(v.and(v.greaterThan(x, w.constant(0)), v.less(x, w.constant(Infinity))), v.less(v.abs(y), w.constant(Infinity)));
-  w.when(v.anyTrue(v.andNot(v.constant((1n << 64n) - 1n), isPlain)), () => result.set(powSpecial(w, x, y, result)));
+  const special = w.module.once('powSpecial', ['v128', 'v128', 'v128'], ['v128'], (inner) => {
+    const [base, exponent, size] = [0, 1, 2].map((k) => inner.parameter(k, 'v128'));
+    inner.leave(powSpecial(inner, base, exponent, size));
+  });
+  w.when(v.anyTrue(v.andNot(v.constant((1n << 64n) - 1n), isPlain)), () => result.set(w.call(special, 'v128', x, y, result)));
   return w.let(result);
 }
 

@@ -28,8 +28,9 @@ export function placeProgram(module: ModuleWriter, program: Program, shape: Tabl
   const tableOrders = 1 + Math.max(0, ...program.instructions.map((step) => (step.op === 'table' ? step.order : 0)));
   const tables = module.reserve(4 * tableOrders * program.tables.length);
   const kept = keptValues(program);
+  const reach = reachOf(program);
   const keptAt = new Map(kept.map((value) => [value, module.reserve(16)]));
-  const writer = (w: FunctionWriter, lanes: readonly Vector[]): StepWriter => new StepWriter(w, lanes, { parameters, tables, tableOrders, shape });
+  const writer = (w: FunctionWriter, lanes: readonly Vector[]): StepWriter => new StepWriter(w, lanes, { parameters, tables, tableOrders, shape }, reach);
   const prepare = module.define([], [], (w) => {
     const steps = writer(w, []);
     program.instructions.forEach((step, value) => {
@@ -75,6 +76,19 @@ function keptValues(program: Program): readonly Value[] {
   return [...kept];
 }
 
+/** Values read so many steps later are held in memory: registers would not last. */
+const farReach = 1000;
+
+/** How many steps after each step its value is last read. */
+function reachOf(program: Program): readonly number[] {
+  const reach = program.instructions.map(() => 0);
+  program.instructions.forEach((step, index) => {
+    for (const value of operandsOf(step)) reach[value] = index - value;
+  });
+  for (const value of program.outputs) reach[value] = program.instructions.length - value;
+  return reach;
+}
+
 interface Places {
   readonly parameters: number;
   readonly tables: number;
@@ -92,6 +106,8 @@ class StepWriter {
     private readonly w: FunctionWriter,
     private readonly lanes: readonly Vector[],
     private readonly places: Places,
+    /** How many steps after each its value is last read. */
+    private readonly reach: readonly number[],
   ) {
     this.maths = new VectorMaths(w);
   }
@@ -107,7 +123,7 @@ class StepWriter {
   write(step: Instruction, index: Value): void {
     const code = this.code(step, index);
     const isPlain = step.op === 'lane' || step.op === 'constant';
-    this.values[index] = isPlain ? code : isCostly(step) ? this.w.pin(code) : this.w.let(code);
+    this.values[index] = isPlain ? code : isCostly(step) || this.reach[index] > farReach ? this.w.pin(code) : this.w.let(code);
   }
 
   private code(step: Instruction, index: Value): Vector {

@@ -27,7 +27,7 @@ export class VectorMaths {
       case 'expm1':
         return expm1(w, x, this.reduction(x, key));
       case 'log':
-        return this.call('log', log, x);
+        return log(this.w, x);
       case 'sin':
         return this.turn(x, key)[0];
       case 'cos':
@@ -66,7 +66,7 @@ export class VectorMaths {
       case 'atan2':
         return this.angle(a, b);
       case 'pow':
-        return this.w.call(this.twoArguments('pow', pow), 'v128', a, b);
+        return this.w.call(this.w.module.once('pow', ['v128', 'v128'], ['v128'], (i) => i.leave(pow(i, i.parameter(0, 'v128'), i.parameter(1, 'v128')))), 'v128', a, b);
     }
   }
 
@@ -89,7 +89,8 @@ export class VectorMaths {
   }
 
   private angle(y: Vector, x: Vector): Vector {
-    return this.w.call(this.twoArguments('atan2', atan2), 'v128', y, x);
+    const callee = this.w.module.once('atan2', ['v128', 'v128'], ['v128'], (inner) => inner.leave(atan2(inner, inner.parameter(0, 'v128'), inner.parameter(1, 'v128'))));
+    return this.w.call(callee, 'v128', y, x);
   }
 
   /** √(1 - x²) by factors, exact also near 1. */
@@ -101,10 +102,6 @@ export class VectorMaths {
   private call(name: string, write: (w: FunctionWriter, x: Vector) => Vector, x: Vector): Vector {
     const callee = this.w.module.once(name, ['v128'], ['v128'], (inner) => inner.leave(write(inner, inner.parameter(0, 'v128'))));
     return this.w.call(callee, 'v128', x);
-  }
-
-  private twoArguments(name: string, write: (w: FunctionWriter, a: Vector, b: Vector) => Vector): ReturnType<FunctionWriter['module']['once']> {
-    return this.w.module.once(name, ['v128', 'v128'], ['v128'], (inner) => inner.leave(write(inner, inner.parameter(0, 'v128'), inner.parameter(1, 'v128'))));
   }
 }
 
