@@ -105,6 +105,7 @@ export async function fitModel(request: FitRequest): Promise<Fit> {
         relativeStep: request.relativeStep ?? 1e-3,
         // A change of chi2 that no error bar sees, and that adaptive rays could not resolve.
         tolerance: 1e-7,
+        resolution: 0.01,
         maxIterations: request.maxIterations ?? 100,
         onProgress: () => report('descent', k + 1, followed.length),
       }),

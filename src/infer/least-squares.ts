@@ -17,6 +17,11 @@ export interface LeastSquaresOptions {
   readonly sizes?: Float64Array;
   /** Stop when chi2 falls, or a step moves, by less than this share; default 1e-10. */
   readonly tolerance?: number;
+  /**
+   * Stop when chi2 is predicted to fall, and falls, by less than this; or falls by less twice in a
+   * row, as it does where derivatives are coarse. Default 0.
+   */
+  readonly resolution?: number;
   /** Default 200. */
   readonly maxIterations?: number;
   readonly onProgress?: (progress: LeastSquaresProgress) => void;
@@ -58,7 +63,7 @@ export async function leastSquares(
   residuals: ResidualFunction, start: Float64Array, options: LeastSquaresOptions = {},
 ): Promise<LeastSquaresResult> {
   const n = start.length;
-  const { signal, tolerance = 1e-10, maxIterations = 200 } = options;
+  const { signal, tolerance = 1e-10, resolution = 0, maxIterations = 200 } = options;
   const steps = differenceSteps(start, options);
   const { lower, upper } = steps;
   start.forEach((value, j) => {
@@ -82,6 +87,7 @@ export async function leastSquares(
   let growth = 2;
   let reason: LeastSquaresResult['reason'] | undefined;
   let iterations = 0;
+  let stalled = 0;
   let local = linearise(await derivatives(values, r), r);
   while (!reason) {
     options.onProgress?.({ iteration: iterations, evaluations, chi2, values });
@@ -99,8 +105,10 @@ export async function leastSquares(
       const chi2There = chiSquared(there);
       const gain = predicted > 0 && Number.isFinite(chi2There) ? (chi2 - chi2There) / predicted : -1;
       const small = scaledNorm(step, scale) <= tolerance * scaledNorm(values, scale);
-      const flat = predicted <= tolerance * chi2 && Math.abs(chi2 - chi2There) <= tolerance * chi2;
+      const negligible = Math.max(tolerance * chi2, resolution);
+      const flat = predicted <= negligible && Math.abs(chi2 - chi2There) <= negligible;
       if (gain > 1e-4) {
+        stalled = chi2 - chi2There < resolution ? stalled + 1 : 0;
         accepted = true;
         values = trial;
         r = there;
@@ -113,7 +121,7 @@ export async function leastSquares(
       }
       // Beyond any damping there is no step left to try.
       if (small || damping > 1e200) reason = 'step';
-      else if (flat) reason = 'chi2';
+      else if (flat || stalled >= 2) reason = 'chi2';
     }
     iterations++;
     if (!reason && iterations >= maxIterations) reason = 'iterations';

@@ -6,7 +6,8 @@ import { foregroundDepths, largestForeground, turnByForeground } from '../sky/fo
 import { cropPlanes, offsetsKpc } from '../sky/grid.ts';
 import { bandCube } from '../sky/observe.ts';
 import { missingBeam } from '../sky/short-spacings.ts';
-import { planSpectrum, type SpectralPlan } from '../sky/spectral-plan.ts';
+import { planSpectrum } from '../sky/spectral-plan.ts';
+import type { RayBundle } from '../ray/types.ts';
 import type { CelestialWcs } from '../sky/wcs-types.ts';
 import type { ForwardModel } from './forward.ts';
 import type { DataSet, StokesQuantity } from './types.ts';
@@ -30,19 +31,24 @@ export function makeSkyModel(data: DataSet, start: Scene, paths: readonly string
   const bands = data.bands.map((band): Band => ({ name: band.name, channels: band.channels }));
   const plan = planSpectrum(start, raysOf(start, frame), bands, {
     depthReserve,
+    depthQuantile,
     foreground: largestForeground(foregroundDepths(start, frame.wcs, frame.nx, frame.ny)),
     origins: false,
   });
+  const frequenciesHz = plan.spectrum.map((point) => point.frequencyHz);
+  const telescopes = data.bands.map((_, band) => makeTelescope(data, frame, band, start.observation.missingWavelengths));
+  const aim = makeAim(frame);
   return async (values, signal) => {
     const scene = sceneWith(start, paths, values);
-    const bundle = raysOf(scene, frame);
-    const rays = await backend({ scene, spectrum: plan.spectrum, bundle }, { signal });
+    const { bundle, pixels } = aim(scene);
+    const seen = await backend({ scene, spectrum: plan.spectrum, bundle, origins: false }, { signal });
+    const rays = spread(seen, pixels, frame.nx * frame.ny, plan.spectrum.length);
     const depth = foregroundDepths(scene, frame.wcs, frame.nx, frame.ny);
-    if (depth !== 0) turnByForeground(rays.Q, rays.U, plan.spectrum.map((point) => point.frequencyHz), depth);
-    const maps = plan.bands.map((_, band) => bandMaps(data, frame, plan, band, rays, scene.observation.missingWavelengths));
+    if (depth !== 0) turnByForeground(rays.Q, rays.U, frequenciesHz, depth);
+    const maps = plan.bands.map((band, index) => telescopes[index](bandCube(band, rays, frame.nx * frame.ny)));
     return data.planes.map((plane) => {
-      const pixels = data.axes.nx * data.axes.ny;
-      return maps[plane.band][plane.quantity].subarray(plane.channel * pixels, (plane.channel + 1) * pixels);
+      const size = data.axes.nx * data.axes.ny;
+      return maps[plane.band][plane.quantity].subarray(plane.channel * size, (plane.channel + 1) * size);
     });
   };
 }
@@ -72,38 +78,64 @@ function raysOf(scene: Scene, { wcs, nx, ny }: Frame): ReturnType<typeof offsets
   return { northKpc: bundle.northKpc.map(known), eastKpc: bundle.eastKpc.map(known) };
 }
 
-/** One band's I, Q and U on the data's pixels, in the data's unit. */
-function bandMaps(
-  data: DataSet,
-  frame: Frame,
-  plan: SpectralPlan,
-  index: number,
-  rays: Parameters<typeof bandCube>[1],
-  missingWavelengths: number | undefined,
-): Readonly<Record<StokesQuantity, Float64Array>> {
+/**
+ * Which rays can meet the galaxy at all, and the pixels they belong to. The same rays are given
+ * again while distance, centre and volume stay, so that they need not be sent to workers anew.
+ */
+function makeAim(frame: Frame): (scene: Scene) => { readonly bundle: RayBundle; readonly pixels: Int32Array } {
+  let last: { key: string; bundle: RayBundle; pixels: Int32Array } | undefined;
+  return (scene) => {
+    const { distanceKpc, centre, volume } = scene.galaxy;
+    const key = JSON.stringify([distanceKpc, centre, volume]);
+    if (last?.key === key) return last;
+    const all = raysOf(scene, frame);
+    const reach = Math.hypot(volume.radiusKpc, volume.heightKpc);
+    const pixels = Int32Array.from(all.northKpc.keys()).filter((k) => Math.hypot(all.northKpc[k], all.eastKpc[k]) <= reach);
+    const pick = (offsets: Float64Array): Float64Array => Float64Array.from(pixels, (pixel) => offsets[pixel]);
+    last = { key, bundle: { northKpc: pick(all.northKpc), eastKpc: pick(all.eastKpc) }, pixels };
+    return last;
+  };
+}
+
+/** Rays put back to their pixels, the sky empty elsewhere. */
+function spread(rays: StokesPlanes, pixels: Int32Array, size: number, planes: number): StokesPlanes {
+  const whole = (values: Float64Array): Float64Array => {
+    const spreadOut = new Float64Array(planes * size);
+    for (let plane = 0, k = 0; plane < planes; plane++) {
+      for (const pixel of pixels) spreadOut[plane * size + pixel] = values[k++];
+    }
+    return spreadOut;
+  };
+  return { I: whole(rays.I), Q: whole(rays.Q), U: whole(rays.U) };
+}
+
+type StokesPlanes = Readonly<Record<StokesQuantity, Float64Array>>;
+
+/** A function that brings one band's sky to the data's pixels and unit; I only where there are data of it. */
+function makeTelescope(data: DataSet, frame: Frame, index: number, missingWavelengths: number | undefined): (sky: StokesPlanes) => StokesPlanes {
   const { nx, ny, margin, wcs } = frame;
   const { beam } = data.bands[index];
-  const cube = bandCube(plan.bands[index], rays, nx * ny);
-  if (beam) {
-    const convolve = beamConvolver(pixelBeam(beam, wcs.cd), nx, ny);
-    const perBeam = data.unit === 'Jy/beam' ? beamSolidAngleSr(beam) : 1;
-    for (let start = 0; start < cube.I.length; start += nx * ny) {
-      const plane = (stokes: Float64Array): Float64Array => stokes.subarray(start, start + nx * ny);
-      convolve(plane(cube.Q), plane(cube.U));
-      convolve(plane(cube.I));
-    }
-    for (const stokes of [cube.I, cube.Q, cube.U]) for (let k = 0; k < stokes.length; k++) stokes[k] *= perBeam;
-  }
-  if (missingWavelengths !== undefined) {
-    const smooth = beamConvolver(pixelBeam(missingBeam(missingWavelengths), wcs.cd), nx, ny);
-    for (const stokes of [cube.I, cube.Q, cube.U]) {
-      for (let start = 0; start < stokes.length; start += nx * ny) {
-        const broad = stokes.slice(start, start + nx * ny);
-        smooth(broad);
-        for (let k = 0; k < broad.length; k++) stokes[start + k] -= broad[k];
+  const convolve = beam && beamConvolver(pixelBeam(beam, wcs.cd), nx, ny);
+  const smooth = missingWavelengths === undefined ? undefined : beamConvolver(pixelBeam(missingBeam(missingWavelengths), wcs.cd), nx, ny);
+  const perBeam = beam && data.unit === 'Jy/beam' ? beamSolidAngleSr(beam) : 1;
+  const seesI = data.planes.some((plane) => plane.band === index && plane.quantity === 'I');
+  return ({ I, Q, U }) => {
+    const size = nx * ny;
+    for (let start = 0; start < Q.length; start += size) {
+      const plane = (stokes: Float64Array): Float64Array => stokes.subarray(start, start + size);
+      convolve?.(plane(Q), plane(U));
+      if (seesI) convolve?.(plane(I));
+      if (!smooth) continue;
+      const [broadQ, broadU, broadI] = [Q, U, I].map((stokes) => plane(stokes).slice());
+      smooth(broadQ, broadU);
+      smooth(broadI);
+      for (let k = 0; k < size; k++) {
+        Q[start + k] -= broadQ[k];
+        U[start + k] -= broadU[k];
+        I[start + k] -= broadI[k];
       }
     }
-  }
-  const crop = (stokes: Float64Array): Float64Array => cropPlanes(stokes, nx, ny, margin);
-  return { I: crop(cube.I), Q: crop(cube.Q), U: crop(cube.U) };
+    const bring = (stokes: Float64Array): Float64Array => cropPlanes(stokes, nx, ny, margin).map((value) => value * perBeam);
+    return { I: bring(I), Q: bring(Q), U: bring(U) };
+  };
 }

@@ -8,7 +8,7 @@ import type { RayService } from './ray-service.ts';
 /** Starts a pool of threads of this machine: as many as asked for, or one per core. */
 export function startNodePool(workers = availableParallelism()): RayPool {
   const script = new URL('./ray-worker.js', import.meta.url);
-  return makeRayPool(Array.from({ length: workers }, () => startWorker(script)));
+  return makeRayPool(Array.from({ length: workers }, () => startWorker(script)), true);
 }
 
 function startWorker(script: URL): PooledWorker {

@@ -1,12 +1,13 @@
-import { joinTiles, tilesOf, type RayBackend, type RayJob, type Watch } from '../ray/job.ts';
+import { tilesOf, type RayBackend, type RayJob, type Watch } from '../ray/job.ts';
 import type { MapScale } from '../ray/trace.ts';
-import type { RayResult } from '../ray/types.ts';
+import type { RayBundle, RayResult } from '../ray/types.ts';
+import { rayArrays, writeTile, type RayArray, type ServiceJob, type SharedRays, type TileNote } from './ray-service.ts';
 
 /** One worker as the pool sees it; every call is answered or rejected, also when the worker dies. */
 export interface PooledWorker {
-  begin(job: RayJob): Promise<void>;
+  begin(job: ServiceJob): Promise<void>;
   scale(): Promise<MapScale>;
-  tile(scale: MapScale, from: number, to: number): Promise<RayResult>;
+  tile(scale: MapScale, from: number, to: number): Promise<RayResult | TileNote>;
   close(): Promise<void>;
 }
 
@@ -19,14 +20,21 @@ export interface RayPool {
 }
 
 /**
- * A pool over workers made by `start`. Jobs queue; tiles of a job go to whoever is free, and
- * results are joined in tile order, so they are the same for any number of workers. The error of
- * one worker ends the job with that error.
+ * A pool over workers. Jobs queue; tiles of a job go to whoever is free, and every tile has its
+ * place in the result, so it is the same for any number of workers. The error of one worker ends
+ * the job with that error. `canShare`: whether memory may be shared with the workers.
  */
-export function makeRayPool(workers: readonly PooledWorker[]): RayPool {
+export function makeRayPool(workers: readonly PooledWorker[], canShare: boolean): RayPool {
   let queue: Promise<unknown> = Promise.resolve();
+  let sent: RayBundle | undefined;
   const backend: RayBackend = (job, watch) => {
-    const result = queue.then(() => runJob(workers, job, watch ?? {}));
+    const result = queue.then(async () => {
+      const bundle = job.bundle === sent ? undefined : job.bundle;
+      sent = undefined;
+      const done = await runJob(workers, job, bundle, canShare, watch ?? {});
+      sent = job.bundle;
+      return done;
+    });
     queue = result.catch(() => undefined);
     return result;
   };
@@ -39,25 +47,35 @@ export function makeRayPool(workers: readonly PooledWorker[]): RayPool {
   };
 }
 
-async function runJob(workers: readonly PooledWorker[], job: RayJob, { onProgress, signal }: Watch): Promise<RayResult> {
+async function runJob(
+  workers: readonly PooledWorker[],
+  job: RayJob,
+  bundle: RayBundle | undefined,
+  canShare: boolean,
+  { onProgress, signal }: Watch,
+): Promise<RayResult> {
   signal?.throwIfAborted();
-  await Promise.all(workers.map((worker) => worker.begin(job)));
-  const scale = await workers[0].scale();
   const rays = job.bundle.northKpc.length;
+  const arrays = makeArrays(job, canShare);
+  const { scene, spectrum } = job;
+  await Promise.all(workers.map((worker) => worker.begin({ scene, spectrum, bundle, shared: canShare ? arrays : undefined })));
+  const scale = await workers[0].scale();
   const tiles = tilesOf(rays);
-  const results: RayResult[] = new Array<RayResult>(tiles.length);
-  let [next, done] = [0, 0];
+  const error = new Float64Array(spectrum.length);
+  let [next, done, samples] = [0, 0, 0];
   let failed = false;
   const serve = async (worker: PooledWorker): Promise<void> => {
     while (next < tiles.length && !failed) {
-      signal?.throwIfAborted();
-      const index = next++;
-      const [from, to] = tiles[index];
+      const [from, to] = tiles[next++];
       try {
-        results[index] = await worker.tile(scale, from, to);
-      } catch (error) {
+        signal?.throwIfAborted();
+        const tile = await worker.tile(scale, from, to);
+        if ('I' in tile) for (const name of rayArrays) if (arrays[name]) writeTile(arrays[name], tile[name], rays, from);
+        for (let k = 0; k < error.length; k++) error[k] = Math.max(error[k], tile.error[k]);
+        samples += tile.samples;
+      } catch (problem) {
         failed = true;
-        throw error;
+        throw problem;
       }
       done += to - from;
       onProgress?.(done, rays);
@@ -65,5 +83,28 @@ async function runJob(workers: readonly PooledWorker[], job: RayJob, { onProgres
   };
   const outcomes = await Promise.allSettled(workers.map(serve));
   for (const outcome of outcomes) if (outcome.status === 'rejected') throw outcome.reason;
-  return joinTiles(results, job.spectrum.length);
+  const array = (name: RayArray): Float64Array => arrays[name] ?? new Float64Array(0);
+  return {
+    I: array('I'),
+    Q: array('Q'),
+    U: array('U'),
+    heightQ: array('heightQ'),
+    heightU: array('heightU'),
+    emittedP: array('emittedP'),
+    faradayDepth: array('faradayDepth'),
+    error,
+    samples,
+  };
+}
+
+/** Empty arrays for the whole result of a job; without origins those that serve them only are left out. */
+function makeArrays({ spectrum, bundle, origins = true }: RayJob, canShare: boolean): SharedRays {
+  const rays = bundle.northKpc.length;
+  const wanted = rayArrays.filter((name) => origins || !['heightQ', 'heightU', 'emittedP'].includes(name));
+  return Object.fromEntries(
+    wanted.map((name) => {
+      const length = name === 'faradayDepth' ? rays : rays * spectrum.length;
+      return [name, canShare ? new Float64Array(new SharedArrayBuffer(8 * length)) : new Float64Array(length)];
+    }),
+  );
 }

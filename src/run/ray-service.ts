@@ -1,6 +1,24 @@
 import { EngineCache, type RayJob } from '../ray/job.ts';
 import { findMapScale, traceRays, type MapScale } from '../ray/trace.ts';
-import type { RayResult } from '../ray/types.ts';
+import type { RayBundle, RayResult } from '../ray/types.ts';
+
+/** A job as a worker is told of it; what it has already (the same rays again) is not sent twice. */
+export interface ServiceJob extends Omit<RayJob, 'bundle'> {
+  readonly bundle: RayBundle | undefined;
+  /** Arrays of the whole result in shared memory, where the host has it; tiles are written there. */
+  readonly shared: SharedRays | undefined;
+}
+
+/** The arrays of a result that a job wants, over all its rays. */
+export type SharedRays = Readonly<Partial<Record<RayArray, Float64Array>>>;
+
+/** Names of a result's arrays; all but the depth have one plane per frequency. */
+export type RayArray = 'I' | 'Q' | 'U' | 'heightQ' | 'heightU' | 'emittedP' | 'faradayDepth';
+
+export const rayArrays: readonly RayArray[] = ['I', 'Q', 'U', 'heightQ', 'heightU', 'emittedP', 'faradayDepth'];
+
+/** What a tile says of itself where its arrays are in shared memory. */
+export type TileNote = Pick<RayResult, 'error' | 'samples'>;
 
 /**
  * What a worker does for a pool: keeps the job it is on, finds its scale, follows tiles of it. The
@@ -9,10 +27,14 @@ import type { RayResult } from '../ray/types.ts';
 export class RayService {
   private readonly cache = new EngineCache();
   private job: RayJob | undefined;
+  private shared: SharedRays | undefined;
 
   /** Takes up a job in place of the last. */
-  begin(job: RayJob): void {
-    this.job = job;
+  begin({ scene, spectrum, bundle, shared }: ServiceJob): void {
+    const rays = bundle ?? this.job?.bundle;
+    if (!rays) throw new Error('a job came without rays');
+    this.job = { scene, spectrum, bundle: rays };
+    this.shared = shared;
   }
 
   /** The scale that the job's tolerance is relative to. */
@@ -21,10 +43,17 @@ export class RayService {
     return findMapScale(this.cache.get(scene, spectrum), scene, bundle);
   }
 
-  /** Follows the rays `from` ≤ index < `to`. */
-  tile(scale: MapScale, from: number, to: number): RayResult {
+  /** Follows the rays `from` ≤ index < `to`: into shared memory, or as a result of its own. */
+  tile(scale: MapScale, from: number, to: number): RayResult | TileNote {
     const { scene, spectrum, bundle } = this.current();
-    return traceRays(this.cache.get(scene, spectrum), scene, bundle, scale, from, to);
+    const result = traceRays(this.cache.get(scene, spectrum), scene, bundle, scale, from, to);
+    if (!this.shared) return result;
+    const rays = bundle.northKpc.length;
+    for (const name of rayArrays) {
+      const whole = this.shared[name];
+      if (whole) writeTile(whole, result[name], rays, from);
+    }
+    return { error: result.error, samples: result.samples };
   }
 
   private current(): RayJob {
@@ -33,9 +62,15 @@ export class RayService {
   }
 }
 
-/** The large arrays of a tile's result, to be moved rather than copied between threads. */
-export function buffersOf(result: RayResult): ArrayBuffer[] {
-  const { I, Q, U, heightQ, heightU, emittedP, faradayDepth } = result;
-  return [I, Q, U, heightQ, heightU, emittedP, faradayDepth].map((array) => array.buffer as ArrayBuffer);
+/** Copies planes [frequency][ray of the tile] to their place among all rays. */
+export function writeTile(whole: Float64Array, tile: Float64Array, rays: number, from: number): void {
+  const planes = whole.length / rays;
+  const count = tile.length / planes;
+  for (let plane = 0; plane < planes; plane++) whole.set(tile.subarray(plane * count, (plane + 1) * count), plane * rays + from);
 }
 
+/** The large arrays of a tile's result, to be moved rather than copied between threads. */
+export function buffersOf(result: RayResult | TileNote): ArrayBuffer[] {
+  if (!('I' in result)) return [];
+  return rayArrays.map((name) => result[name].buffer as ArrayBuffer);
+}

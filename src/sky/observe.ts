@@ -87,7 +87,7 @@ function turnScreen(depth: number | Float64Array, plan: SpectralPlan, rays: RayR
 }
 
 /** The channels of a band, [channel * pixels + pixel], as means over their frequencies, Jy/sr. */
-export function bandCube(plan: BandPlan, rays: RayResult, pixels: number): Pick<StokesCube, 'I' | 'Q' | 'U'> {
+export function bandCube(plan: BandPlan, rays: Pick<RayResult, 'I' | 'Q' | 'U'>, pixels: number): Pick<StokesCube, 'I' | 'Q' | 'U'> {
   const mean = (planes: Float64Array): Float64Array => {
     const cube = new Float64Array(plan.channels.length * pixels);
     plan.channels.forEach(({ points, weights }, channel) => {

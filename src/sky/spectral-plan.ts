@@ -42,7 +42,7 @@ export function planSpectrum(
   scene: Scene,
   bundle: RayBundle,
   bands: readonly Band[],
-  { depthReserve = 1, foreground = Math.abs(scene.observation.foregroundDepth), origins: withOrigins = true }: PlanOptions = {},
+  { depthReserve = 1, depthQuantile = 1, foreground = Math.abs(scene.observation.foregroundDepth), origins: withOrigins = true }: PlanOptions = {},
 ): SpectralPlan {
   const wide = bands.some((band) => band.channels.some((channel) => channel.widthHz > 0));
   const largestDepth = wide ? depthReserve * (findLargestDepth(scene, bundle, depthQuantile) + foreground) : 0;
