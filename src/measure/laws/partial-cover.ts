@@ -1,0 +1,16 @@
+import { polar, rotation, source, width, type Law } from './types.ts';
+
+/** A turbulent screen before a part f of the source: p (f e^{-2 sigma^2 lambda^4} + 1 - f). */
+export const partialCover: Law = {
+  name: 'partial-cover',
+  title: 'Turbulent screen over a part',
+  source: 'Rossetti et al. 2008; Mantovani et al. 2009; the rotation is common to both parts here',
+  parameters: [
+    ...source(),
+    rotation('rm', 'Faraday depth before the whole source'),
+    width('sigma', 'rms of the Faraday depth of the screen'),
+    { name: 'cover', unit: '', role: 'share', min: 0, max: 1, meaning: 'share of the emission behind the screen' },
+  ],
+  value: (square, [p, chi, rm, sigma, cover]) =>
+    polar(p * (cover * Math.exp(-2 * (sigma * square) ** 2) + 1 - cover), 2 * (chi + rm * square)),
+};
