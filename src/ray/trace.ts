@@ -53,7 +53,8 @@ export type MapScale = Pick<Accuracy, 'scaleI' | 'scaleP'>;
 
 /**
  * Finds the scale of `tolerance` (physics.md section 3) from evenly picked rays of a bundle: the
- * same for any split of the bundle, and never larger than the scale of the whole map.
+ * same for any split of the bundle, never larger than the scale of the whole map, and not set by a
+ * few rays through a nearly singular centre.
  */
 export function findMapScale(engine: RayEngine, scene: Scene, bundle: RayBundle): MapScale {
   const picked = pickRays(bundle.northKpc.length);
@@ -65,14 +66,30 @@ export function findMapScale(engine: RayEngine, scene: Scene, bundle: RayBundle)
   if (dark) return coarse;
   const intrinsic = intrinsicPolarization(scene.cosmicRays.index);
   const loose = { tolerance: 1e-2, scaleI: guess, scaleP: guess.map((value) => (1e-3 * value) / intrinsic) };
-  const scaleI = new Float64Array(count);
-  const largestP = new Float64Array(count);
+  const brightness = { I: seriesOf(count), P: seriesOf(count) };
   followAll(engine, scene, bundle, picked, loose, (_, sums) => {
-    keepLargest(scaleI, sums.total);
-    for (let k = 0; k < count; k++) largestP[k] = Math.max(largestP[k], Math.hypot(sums.cosine[k], sums.sine[k]));
+    for (let k = 0; k < count; k++) {
+      brightness.I[k].push(sums.total[k]);
+      brightness.P[k].push(Math.hypot(sums.cosine[k], sums.sine[k]));
+    }
   });
-  const scaleP = largestP.map((value, k) => Math.max(value, (1e-3 * scaleI[k]) / intrinsic));
+  const scaleI = Float64Array.from(brightness.I, typicalLargest);
+  const scaleP = Float64Array.from(brightness.P, (values, k) => Math.max(typicalLargest(values), (1e-3 * scaleI[k]) / intrinsic));
   return { scaleI, scaleP };
+}
+
+/** A nearly singular centre may not set the scale for the whole galaxy: this many times the bright rays' level is the most. */
+const mostAboveBright = 5;
+
+/** The largest of a few rays' values, but no more than a few times their 90 % point; empty rays do not count. */
+function typicalLargest(values: readonly number[]): number {
+  const sorted = values.filter((value) => value > 0).sort((a, b) => a - b);
+  if (sorted.length === 0) return 0;
+  return Math.min(sorted[sorted.length - 1], mostAboveBright * sorted[Math.floor(0.9 * (sorted.length - 1))]);
+}
+
+function seriesOf(count: number): number[][] {
+  return Array.from({ length: count }, () => []);
 }
 
 /** Follows the rays `from` ≤ index < `to` of a bundle to the scene's tolerance. */
