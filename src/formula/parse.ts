@@ -62,7 +62,7 @@ class Parser {
   }
 
   private choice(): Tree {
-    if (++this.depth > deepestNesting) this.fail(`nested deeper than ${deepestNesting} levels`, this.peek().at);
+    this.deepen();
     const condition = this.comparison();
     let tree = condition;
     if (this.take('?')) {
@@ -105,7 +105,7 @@ class Parser {
   private signed(): Tree {
     const sign = this.takeAny('+', '-');
     if (!sign) return this.power();
-    if (++this.depth > deepestNesting) this.fail(`nested deeper than ${deepestNesting} levels`, sign.at);
+    this.deepen();
     const operand = this.signed();
     this.depth--;
     return sign.text === '+' ? operand : { kind: 'operation', operator: 'negate', args: [operand], at: sign.at };
@@ -114,7 +114,10 @@ class Parser {
   private power(): Tree {
     const base = this.primary();
     if (!this.take('^')) return base;
-    return { kind: 'operation', operator: '^', args: [base, this.signed()], at: base.at };
+    this.deepen();
+    const exponent = this.signed();
+    this.depth--;
+    return { kind: 'operation', operator: '^', args: [base, exponent], at: base.at };
   }
 
   private primary(): Tree {
@@ -170,6 +173,10 @@ class Parser {
 
   private expect(sign: string, why: string): void {
     if (!this.take(sign)) this.fail(`expected "${sign}" ${why}, found ${describe(this.peek())}`, this.peek().at);
+  }
+
+  private deepen(): void {
+    if (++this.depth > deepestNesting) this.fail(`nested deeper than ${deepestNesting} levels`, this.peek().at);
   }
 
   private fail(problem: string, at: number): never {
