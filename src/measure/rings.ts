@@ -9,13 +9,15 @@ import type { MeasuredMaps, RegionValues } from './region.ts';
 export interface RingSpec {
   readonly edgesKpc: readonly number[];
   readonly sectors: number;
+  /** Galaxy azimuth on which the first sector is centred, rad; 0 where left out. */
+  readonly firstAzimuth?: number;
 }
 
 /** One sector of a ring. */
 export interface Sector extends RegionValues {
   readonly innerKpc: number;
   readonly outerKpc: number;
-  /** Galaxy azimuth of the sector's middle, rad, from 0: sector k is centred on 2 pi k/sectors. */
+  /** Galaxy azimuth of the sector's middle, rad: sector k is centred on the first one's azimuth + 2 pi k/sectors. */
   readonly azimuth: number;
 }
 
@@ -24,7 +26,7 @@ const steepestDeg = 75;
 
 /**
  * Measures rings and sectors of a thin disc: result[ring][sector]. The first sector is centred on
- * azimuth 0, the receding half of the major axis, and a pixel belongs to the sector of its centre.
+ * azimuth 0, the receding half of the major axis, unless the spec says otherwise, and a pixel belongs to the sector of its centre.
  * Throws InputError for a disc more than 75 deg from face-on, and for edges or sectors that make no rings.
  */
 export function measureRings(
@@ -33,6 +35,23 @@ export function measureRings(
   orientation: DiscOrientation,
   spec: RingSpec,
 ): Sector[][] {
+  const sectorOf = ringSectors(frame, orientation, spec);
+  const { firstAzimuth = 0 } = spec;
+  const width = (2 * Math.PI) / spec.sectors;
+  const rings = spec.edgesKpc.length - 1;
+  const values = measureRegions(maps, sectorOf, rings * spec.sectors, pixelsPerBeam(frame));
+  return Array.from({ length: rings }, (_, ring) =>
+    Array.from({ length: spec.sectors }, (_, sector) => ({
+      ...values[ring * spec.sectors + sector],
+      innerKpc: spec.edgesKpc[ring],
+      outerKpc: spec.edgesKpc[ring + 1],
+      azimuth: firstAzimuth + sector * width,
+    })),
+  );
+}
+
+/** The sector of every pixel, ring * sectors + sector, or -1. Throws InputError as `measureRings` does. */
+export function ringSectors(frame: MapFrame, orientation: DiscOrientation, spec: RingSpec): Int32Array {
   refuseEdgeOn(orientation.inclination);
   checkEdges(spec.edgesKpc, 'rings');
   if (spec.edgesKpc[0] < 0) {
@@ -43,22 +62,13 @@ export function measureRings(
   }
   const { radiusKpc, azimuth } = discCoordinates(frame, orientation);
   const width = (2 * Math.PI) / spec.sectors;
-  const sectorOf = Int32Array.from(radiusKpc, (radius, k) => {
+  const { firstAzimuth = 0 } = spec;
+  return Int32Array.from(radiusKpc, (radius, k) => {
     const ring = findBin(spec.edgesKpc, radius);
     if (ring < 0) return -1;
-    const sector = Math.floor(azimuth[k] / width + 0.5 + rounding);
-    return ring * spec.sectors + ((sector + spec.sectors) % spec.sectors);
+    const sector = Math.floor((azimuth[k] - firstAzimuth) / width + 0.5 + rounding);
+    return ring * spec.sectors + (((sector % spec.sectors) + spec.sectors) % spec.sectors);
   });
-  const rings = spec.edgesKpc.length - 1;
-  const values = measureRegions(maps, sectorOf, rings * spec.sectors, pixelsPerBeam(frame));
-  return Array.from({ length: rings }, (_, ring) =>
-    Array.from({ length: spec.sectors }, (_, sector) => ({
-      ...values[ring * spec.sectors + sector],
-      innerKpc: spec.edgesKpc[ring],
-      outerKpc: spec.edgesKpc[ring + 1],
-      azimuth: sector * width,
-    })),
-  );
 }
 
 function refuseEdgeOn(inclination: number): void {

@@ -31,16 +31,8 @@ export function measureStrips(
   orientation: DiscOrientation,
   spec: StripSpec,
 ): Box[][] {
-  checkEdges(spec.stripEdgesKpc, 'strips');
-  checkEdges(spec.boxEdgesKpc, 'boxes');
-  const { alongMajor, alongMinor } = axisOffsetsKpc(frame, orientation);
-  const [along, across] = spec.parallelTo === 'major axis' ? [alongMajor, alongMinor] : [alongMinor, alongMajor];
+  const boxOf = stripBoxes(frame, orientation, spec);
   const [strips, boxes] = [spec.stripEdgesKpc.length - 1, spec.boxEdgesKpc.length - 1];
-  const boxOf = Int32Array.from(along, (offset, k) => {
-    const box = findBin(spec.boxEdgesKpc, offset);
-    const strip = findBin(spec.stripEdgesKpc, across[k]);
-    return box < 0 || strip < 0 ? -1 : strip * boxes + box;
-  });
   const values = measureRegions(maps, boxOf, strips * boxes, pixelsPerBeam(frame));
   return Array.from({ length: strips }, (_, strip) =>
     Array.from({ length: boxes }, (_, box) => ({
@@ -49,6 +41,20 @@ export function measureStrips(
       acrossKpc: middle(spec.stripEdgesKpc, strip),
     })),
   );
+}
+
+/** The box of every pixel, strip * boxes + box, or -1. Throws InputError for edges that do not rise. */
+export function stripBoxes(frame: MapFrame, orientation: DiscOrientation, spec: StripSpec): Int32Array {
+  checkEdges(spec.stripEdgesKpc, 'strips');
+  checkEdges(spec.boxEdgesKpc, 'boxes');
+  const { alongMajor, alongMinor } = axisOffsetsKpc(frame, orientation);
+  const [along, across] = spec.parallelTo === 'major axis' ? [alongMajor, alongMinor] : [alongMinor, alongMajor];
+  const boxes = spec.boxEdgesKpc.length - 1;
+  return Int32Array.from(along, (offset, k) => {
+    const box = findBin(spec.boxEdgesKpc, offset);
+    const strip = findBin(spec.stripEdgesKpc, across[k]);
+    return box < 0 || strip < 0 ? -1 : strip * boxes + box;
+  });
 }
 
 function middle(edges: readonly number[], bin: number): number {
