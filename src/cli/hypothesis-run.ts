@@ -6,12 +6,16 @@ import { correlations, fitModel, type Fit } from '../infer/fit.ts';
 import { resolveFree } from '../infer/free-parameters.ts';
 import { chiSquared, logLikelihood, type Likelihood } from '../infer/likelihood.ts';
 import type { FreeParameter } from '../infer/prior.ts';
-import { makeSkyModel, sceneWith } from '../infer/sky-model.ts';
+import type { ForwardModel } from '../infer/forward.ts';
+import { calibrationParameters, foregroundNuisance, withCalibration } from '../infer/nuisances.ts';
+import { makeSkyModel, sceneWith, type SceneOf } from '../infer/sky-model.ts';
+import { compileTie, followTies, type Tie } from '../infer/ties.ts';
 import { refuseNoOverlap } from '../infer/overlap.ts';
-import type { Hypothesis } from '../infer/study-types.ts';
+import type { Hypothesis, Study } from '../infer/study-types.ts';
 import type { DataSet } from '../infer/types.ts';
 import type { Ring } from '../measure/ring-profile.ts';
 import type { Override } from '../scene/overrides.ts';
+import { scenePath } from '../scene/paths.ts';
 import { sceneText } from '../scene/parse-scene.ts';
 import type { Scene } from '../scene/types.ts';
 import { formatQuantity } from '../units/quantity.ts';
@@ -26,6 +30,10 @@ export interface PreparedHypothesis {
   readonly scene: Scene;
   readonly provenance: Provenance;
   readonly parameters: readonly FreeParameter[];
+  /** Numbers that follow from the free ones, in the scene and in the posterior only. */
+  readonly ties: readonly Tie[];
+  readonly derived: readonly Tie[];
+  readonly sceneOf: SceneOf;
 }
 
 /** A fitted hypothesis with its best scene and maps. */
@@ -41,18 +49,34 @@ export interface FittedRun {
 }
 
 /** Reads a hypothesis's scene and checks its free parameters against it. */
-export function prepareHypothesis(hypothesis: Hypothesis, studyFile: string, data: DataSet, overrides: readonly Override[]): PreparedHypothesis {
+export function prepareHypothesis(
+  hypothesis: Hypothesis, study: Pick<Study, 'foreground' | 'calibration'>, studyFile: string, data: DataSet, overrides: readonly Override[],
+): PreparedHypothesis {
   const sceneFile = resolve(dirname(studyFile), hypothesis.scene);
   const { scene, provenance } = placed(hypothesis, () => loadScene(sceneFile, overrides));
   placed(hypothesis, () => refuseNoOverlap(data, scene.galaxy));
-  const parameters = resolveFree(hypothesis.free, scene);
-  return { name: hypothesis.name, sceneFile, scene, provenance, parameters };
+  const turned = data.planes.some(({ quantity }) => quantity !== 'I');
+  const named = [...hypothesis.free.map(({ path }) => path), ...hypothesis.tied.map((tie) => tie.name)];
+  const foreground = foregroundNuisance(turned ? study.foreground : undefined, scene, named, hypothesis.place);
+  const ofScene = resolveFree([...hypothesis.free, ...(foreground ? [foreground] : [])], scene);
+  const parameters = [...ofScene, ...calibrationParameters(study.calibration, data.bands)];
+  const ties = hypothesis.tied.map((tie) => compileTie(tie, scene));
+  const paths = ofScene.map(({ path }) => path);
+  const sceneOf: SceneOf = (values) => followTies(sceneWith(scene, paths, values), ties);
+  placed(hypothesis, () => followTies(scene, ties));
+  const derived = hypothesis.derived.map((one) => compileTie(one, scene));
+  return { name: hypothesis.name, sceneFile, scene, provenance, parameters, ties, derived, sceneOf };
 }
 
 /** How hard a fit looks for the lowest χ². */
 export interface FitEffort {
   readonly starts: number;
   readonly descents: number;
+}
+
+/** The model of the data that a hypothesis makes. */
+export function forwardOf({ scene, sceneOf, parameters }: PreparedHypothesis, data: DataSet, context: RunContext): ForwardModel {
+  return withCalibration(makeSkyModel(data, scene, sceneOf, context.pool.backend), data, parameters);
 }
 
 /** Fits one hypothesis; `known` is the fit of an earlier, interrupted run. */
@@ -66,13 +90,13 @@ export async function fitHypothesis(
   label: string,
   known?: Pick<Fit, 'values' | 'errors' | 'covariance' | 'atBound' | 'converged' | 'evaluations'>,
 ): Promise<Fit> {
-  const { scene, parameters } = prepared;
-  const forward = makeSkyModel(data, scene, parameters.map(({ path }) => path), context.pool.backend);
+  const { parameters } = prepared;
+  const forward = forwardOf(prepared, data, context);
   if (known) {
     const residuals = likelihood.residuals(await forward(known.values, context.signal));
     return { ...known, chi2: chiSquared(residuals), priorChi2: 0, logLikelihood: logLikelihood(likelihood, residuals), residuals, descents: [] };
   }
-  const expected = effort.starts + 1 + effort.descents * (parameters.length + 1) * 14;
+  const expected = effort.starts + 2 + effort.descents * (parameters.length + 1) * 14;
   return fitModel({
     parameters,
     forward,
@@ -88,11 +112,14 @@ export async function fitHypothesis(
 
 /** The best scene of a fit, its maps on the data's grid, and what is measured on them. */
 export async function finishHypothesis(prepared: PreparedHypothesis, fit: Fit, data: DataSet, ring: Ring, context: RunContext): Promise<FittedRun> {
-  const paths = prepared.parameters.map(({ path }) => path);
-  const bestScene = sceneWith(prepared.scene, paths, fit.values);
-  const planes = await makeSkyModel(data, prepared.scene, paths, context.pool.backend)(fit.values, context.signal);
-  const best = bestTexts(prepared, fit);
-  const overrides = paths.map((path): Override => ({ path, value: best[path], flag: path }));
+  const bestScene = prepared.sceneOf(fit.values);
+  const planes = await forwardOf(prepared, data, context)(fit.values, context.signal);
+  const ofScene = prepared.parameters.filter(({ calibrationBand }) => calibrationBand === undefined);
+  const changed = [...ofScene.map(({ path }) => path), ...prepared.ties.map(({ name: path }) => path)];
+  const overrides = changed.map((path): Override => {
+    const { unit, shownUnit, get } = scenePath(bestScene, path);
+    return { path, value: formatQuantity(get(), unit, shownUnit), flag: path };
+  });
   const text = sceneText(prepared.provenance.sceneText, prepared.sceneFile, overrides);
   return {
     prepared,

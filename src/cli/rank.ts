@@ -25,7 +25,7 @@ interface RankFlags extends CommonFlags {
 export function addRank(program: Command): void {
   addCommonFlags(program.command('rank <study>').description('fit every hypothesis of a study to its data, and rank them'))
     .option('--ring <inner,outer>', 'ring of the azimuth profiles, such as "4 kpc,7 kpc" (default: a quarter to half of the volume radius)')
-    .option('--starts <n>', 'starting points tried per hypothesis, beside the scene’s own values', '6')
+    .option('--starts <n>', 'starting points tried per hypothesis, beside the scene’s own values', '4')
     .option('--resume', 'keep the fits that an interrupted run has finished')
     .action((path: string, flags: RankFlags) => rank(path, flags));
 }
@@ -36,7 +36,7 @@ async function rank(path: string, flags: RankFlags): Promise<void> {
   const { data, notes } = loadData(study.data, path);
   const overrides = overridesOf({ set: flags.set });
   const seed = flags.seed ?? study.seed;
-  const prepared = study.hypotheses.map((hypothesis) => prepareHypothesis(hypothesis, path, data, overrides));
+  const prepared = study.hypotheses.map((hypothesis) => prepareHypothesis(hypothesis, study, path, data, overrides));
   const ring = ringOf(flags.ring, prepared[0].scene);
   const effort = { starts: startsOf(flags.starts), descents: 2 };
   const likelihood = makeLikelihood(data);

@@ -11,7 +11,7 @@ export interface FitRequest {
   readonly forward: ForwardModel;
   readonly likelihood: Likelihood;
   readonly seed: number;
-  /** Starts spread over the priors, besides the scene's own values. */
+  /** Starts spread over the priors, besides the scene's own values and the middle of the priors. */
   readonly starts: number;
   /** How many of all starts, best chi2 first, are followed down. */
   readonly descents: number;
@@ -55,7 +55,7 @@ export interface Fit {
 
 /**
  * Fits the free parameters of a model to data by least squares from several starts: the scene's own
- * values and a seeded spread over the priors, ranked by chi2 before the best are followed down.
+ * values, the middle of the priors and a seeded spread over them, ranked by chi2 before the best are followed down.
  * Normal priors enter as residuals. Throws the signal's reason when aborted, and where no start
  * gives finite residuals.
  */
@@ -85,7 +85,8 @@ export async function fitModel(request: FitRequest): Promise<Fit> {
   const own = Float64Array.from(parameters, (parameter, j) =>
     Math.min(upper[j], Math.max(lower[j], scaledFromValue(parameter, parameter.start))),
   ).map((u, j) => (Number.isFinite(u) ? u : lower[j]));
-  const starts = [own, ...spreadStarts(parameters, request.starts, request.seed)];
+  const middle = Float64Array.from(parameters, ({ prior }, j) => (prior.kind === 'normal' ? Math.min(upper[j], Math.max(lower[j], 0)) : 0.5));
+  const starts = request.starts > 0 ? [own, middle, ...spreadStarts(parameters, request.starts, request.seed)] : [own];
   const ranked: { start: Float64Array; chi2: number }[] = [];
   for (const [k, start] of starts.entries()) {
     signal?.throwIfAborted();
