@@ -107,7 +107,7 @@ function checkStudy(file: string, text: string, flags: CommonFlags): CheckReport
   for (const band of data.bands) lines.push(`  data     ${band.name}: ${band.channels.map((channel) => `${(channel.frequencyHz / 1e9).toPrecision(6)} GHz`).join(', ')}`);
   for (const sentence of gatherAssumptions([...data.assumptions, ...notes])) lines.push(`  assumed  ${sentence}`);
   for (const hypothesis of study.hypotheses) {
-    const { name, scene, parameters } = prepareHypothesis(hypothesis, file, data, overridesOf({ set: flags.set }));
+    const { name, scene, parameters } = prepareHypothesis(hypothesis, study, file, data, overridesOf({ set: flags.set }));
     const free = parameters.map(({ path }) => path).join(', ');
     lines.push(`  hypothesis "${name}": ${parameters.length} free${free ? ` (${free})` : ''}; ${symmetrySentences(scene).join(' ')}`);
   }

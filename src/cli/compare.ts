@@ -48,7 +48,7 @@ async function compare(path: string, files: readonly string[], flags: CompareFla
   const likelihood = makeLikelihood(data);
   const planes = await withRunContext(flags, ({ pool, signal, progress }) => {
     progress.show('following rays', 0, 1);
-    return makeSkyModel(data, scene, [], pool.backend)(new Float64Array(0), signal);
+    return makeSkyModel(data, scene, () => scene, pool.backend)(new Float64Array(0), signal);
   });
   const residuals = likelihood.residuals(planes);
   const chi2 = chiSquared(residuals);

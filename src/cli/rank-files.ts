@@ -4,7 +4,8 @@ import { methodsText } from '../figure/methods-text.ts';
 import { overviewSvg } from '../figure/overview.ts';
 import { reportHtml, type ReportHypothesis, type ReportParameter } from '../figure/report.ts';
 import { frequencyLabel, polarizationView, profileOfP, profileOfRm, rotationMeasureView } from '../figure/sky-views.ts';
-import type { RankingRow } from '../figure/table.ts';
+import { withError } from '../figure/number-text.ts';
+import { chi2Text, deltaAicText, type RankingRow } from '../figure/table.ts';
 import { writeCsv } from '../files/csv-write.ts';
 import { mapFits } from '../files/sky-fits-write.ts';
 import { decidedBy } from '../infer/decided-by.ts';
@@ -125,12 +126,19 @@ export function addRankFiles(folder: OutputFolder, report: RankReport): void {
   for (const [k, run] of outcome.ordered.entries()) {
     const name = slug(run.prepared.name);
     const { reducedChi2, deltaAic } = outcome.ranked[k];
-    const subtitle = `χ²/N ${reducedChi2.toFixed(2)}, Δ AIC ${deltaAic.toFixed(1)}; ${Object.entries(bestTexts(run.prepared, run.fit)).map(([path, value]) => `${path} ${value}`).join(', ')}`;
+    const subtitle = [`χ²/N ${chi2Text(reducedChi2)}`, `Δ AIC ${deltaAicText(deltaAic)}`, ...run.prepared.parameters.map((_, j) => parameterText(run, j))].join('; ');
     folder.add(`${name}/overview.svg`, overviewSvg(comparisonOverview(run.prepared.name, subtitle, run.bestScene, data, observed, run.measured, ring)));
     folder.add(`${name}/best.scene.yaml`, run.bestProvenance.sceneText);
     addModelMaps(folder, name, run, data);
   }
   folder.add('report.html', reportHtml(htmlReport(report)));
+}
+
+/** `field.halo.strength 1.70 ± 0.02 µG`. */
+function parameterText({ prepared, fit }: FittedRun, j: number): string {
+  const { path, unit, shownUnit } = prepared.parameters[j];
+  const error = Number.isFinite(fit.errors[j]) ? convertQuantity(fit.errors[j], unit, shownUnit) : undefined;
+  return `${path} ${withError(convertQuantity(fit.values[j], unit, shownUnit), error, shownUnit)}`;
 }
 
 /** Model and residual (data less model) maps, one cube per band and Stokes parameter. */
@@ -233,7 +241,7 @@ function htmlReport(report: RankReport): Parameters<typeof reportHtml>[0] {
 }
 
 function reportParameter({ prepared, fit, bestScene }: FittedRun, j: number): ReportParameter {
-  const { path, unit, shownUnit: shown, prior } = prepared.parameters[j];
+  const { path, unit, shownUnit: shown, prior, calibrationBand } = prepared.parameters[j];
   const text = (value: number): string => formatQuantity(value, unit, shown);
   const allowed = prior.kind === 'normal' ? `normal, ${text(prior.mean)} ± ${text(prior.sigma)}` : `${text(prior.low)} to ${text(prior.high)}`;
   return {
@@ -242,7 +250,7 @@ function reportParameter({ prepared, fit, bestScene }: FittedRun, j: number): Re
     value: convertQuantity(fit.values[j], unit, shown),
     ...(Number.isFinite(fit.errors[j]) && { error: convertQuantity(fit.errors[j], unit, shown) }),
     allowed,
-    meaning: scenePath(bestScene, path).meaning,
+    meaning: calibrationBand === undefined ? scenePath(bestScene, path).meaning : 'factor on the model in this band',
   };
 }
 

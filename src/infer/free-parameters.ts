@@ -17,6 +17,7 @@ export function resolveFree(free: readonly FreeText[], scene: Scene): FreeParame
     if (whole) throw new InputError(`${path} takes whole numbers only; a fit needs a parameter that can change a little`, text.place);
     const [first, second] = text.values.map((part) => placed(part.place, () => parseQuantity(part.text, unit)));
     const prior = makePrior(text, first, second);
+    if (prior.kind === 'isotropic') refuseNoAngle(text, unit, prior);
     placed(text.values[0].place, () => target.set(scene, first));
     if (text.kind !== 'normal') placed(text.values[1].place, () => target.set(scene, second));
     return { path, unit, shownUnit, prior, allowed: allowedRange(target, scene, prior), start: target.get() };
@@ -38,7 +39,16 @@ function allowedRange(target: ScenePath, scene: Scene, prior: Prior): [number, n
   return [inside(target.range[0], 1e-6 * width), inside(target.range[1], -1e-6 * width)];
 }
 
-function makePrior({ path, kind, values }: FreeText, first: number, second: number): Prior {
+/** An isotropic prior is one of inclinations, 0 to 180 deg. */
+function refuseNoAngle({ path, values }: FreeText, unit: string, { low, high }: { low: number; high: number }): void {
+  if (unit !== 'rad') throw new InputError(`${path} is no angle; isotropic priors are for angles such as galaxy.inclination`, values[0].place);
+  if (low < 0 || high > Math.PI * (1 + 1e-12)) {
+    throw new InputError(`${path}: isotropic from ${values[0].text} to ${values[1].text}; allowed: 0 to 180 deg`, values[0].place);
+  }
+}
+
+/** A prior of values in the unit of its path. Throws InputError where it is empty. */
+export function makePrior({ path, kind, values }: FreeText, first: number, second: number): Prior {
   const refuse = (part: PlacedText, reason: string): never => {
     throw new InputError(`${path}: ${reason}`, part.place);
   };

@@ -4,7 +4,9 @@ import { randomStream } from '../math/random.ts';
 export type Prior =
   | { readonly kind: 'uniform'; readonly low: number; readonly high: number }
   | { readonly kind: 'logUniform'; readonly low: number; readonly high: number }
-  | { readonly kind: 'normal'; readonly mean: number; readonly sigma: number };
+  | { readonly kind: 'normal'; readonly mean: number; readonly sigma: number }
+  /** Density proportional to the sine: an inclination, rad, of directions that are all as likely. */
+  | { readonly kind: 'isotropic'; readonly low: number; readonly high: number };
 
 /** A parameter that a fit may change. */
 export interface FreeParameter {
@@ -17,16 +19,19 @@ export interface FreeParameter {
   readonly allowed: readonly [number, number];
   /** The scene's own value, where a first start is made. */
   readonly start: number;
+  /** Set where it is no number of the scene but a factor on the model of this band of the data. */
+  readonly calibrationBand?: number;
 }
 
 /**
- * The scale on which a fit works: 0 to 1 over a uniform range, the same in ln x for logUniform, and
- * standard deviations from the mean for normal.
+ * The scale on which a fit works: 0 to 1 over a uniform range, the same in ln x for logUniform and in
+ * cos x for isotropic, and standard deviations from the mean for normal.
  */
 export function scaledFromValue({ prior }: FreeParameter, value: number): number {
   if (prior.kind === 'normal') return (value - prior.mean) / prior.sigma;
   const { low, high } = prior;
   if (prior.kind === 'uniform') return (value - low) / (high - low);
+  if (prior.kind === 'isotropic') return (Math.cos(low) - Math.cos(value)) / (Math.cos(low) - Math.cos(high));
   return Math.log(value / low) / Math.log(high / low);
 }
 
@@ -35,6 +40,7 @@ export function valueFromScaled({ prior }: FreeParameter, scaled: number): numbe
   if (prior.kind === 'normal') return prior.mean + scaled * prior.sigma;
   const { low, high } = prior;
   if (prior.kind === 'uniform') return low + scaled * (high - low);
+  if (prior.kind === 'isotropic') return Math.acos(Math.min(1, Math.max(-1, Math.cos(low) - scaled * (Math.cos(low) - Math.cos(high)))));
   return low * (high / low) ** scaled;
 }
 
@@ -43,14 +49,18 @@ export function slopeFromScaled(parameter: FreeParameter, scaled: number): numbe
   const { prior } = parameter;
   if (prior.kind === 'normal') return prior.sigma;
   if (prior.kind === 'uniform') return prior.high - prior.low;
+  if (prior.kind === 'isotropic') return (Math.cos(prior.low) - Math.cos(prior.high)) / Math.sin(valueFromScaled(parameter, scaled));
   return valueFromScaled(parameter, scaled) * Math.log(prior.high / prior.low);
 }
 
 /** The bounds of a parameter on its scale: the prior's range within what the scene allows. */
 export function scaledBounds(parameter: FreeParameter): [number, number] {
   const { prior, allowed } = parameter;
-  const edge = (value: number, inside: number): number =>
-    Number.isFinite(value) && (prior.kind !== 'logUniform' || value > 0) ? scaledFromValue(parameter, value) : inside;
+  const meant = (value: number): boolean => {
+    if (prior.kind === 'logUniform') return value > 0;
+    return prior.kind !== 'isotropic' || (value >= 0 && value <= Math.PI);
+  };
+  const edge = (value: number, inside: number): number => (Number.isFinite(value) && meant(value) ? scaledFromValue(parameter, value) : inside);
   const lower = edge(allowed[0], -Infinity);
   const upper = edge(allowed[1], Infinity);
   return prior.kind === 'normal' ? [lower, upper] : [Math.max(0, lower), Math.min(1, upper)];

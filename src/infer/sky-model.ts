@@ -17,6 +17,9 @@ const depthReserve = 3;
 /** The few rays through a nearly singular centre, blended by the beam, do not decide how finely channels are averaged. */
 const depthQuantile = 0.98;
 
+/** The scene of a hypothesis for values of its free parameters. */
+export type SceneOf = (values: ArrayLike<number>) => Scene;
+
 /** A scene with values set at paths; `values` in the units of the paths. */
 export function sceneWith(scene: Scene, paths: readonly string[], values: ArrayLike<number>): Scene {
   return paths.reduce((changed, path, k) => scenePath(changed, path).set(changed, values[k]), scene);
@@ -26,7 +29,7 @@ export function sceneWith(scene: Scene, paths: readonly string[], values: ArrayL
  * The maps that a scene would give on a data set's grid, beam by beam: the model is brought to the
  * data, never the reverse. Rays are followed beyond the image as far as the widest beam reaches.
  */
-export function makeSkyModel(data: DataSet, start: Scene, paths: readonly string[], backend: RayBackend): ForwardModel {
+export function makeSkyModel(data: DataSet, start: Scene, sceneOf: SceneOf, backend: RayBackend): ForwardModel {
   const frame = widenedFrame(data, start.observation.missingWavelengths);
   const bands = data.bands.map((band): Band => ({ name: band.name, channels: band.channels }));
   const plan = planSpectrum(start, raysOf(start, frame), bands, {
@@ -39,7 +42,7 @@ export function makeSkyModel(data: DataSet, start: Scene, paths: readonly string
   const telescopes = data.bands.map((_, band) => makeTelescope(data, frame, band, start.observation.missingWavelengths));
   const aim = makeAim(frame);
   return async (values, signal) => {
-    const scene = sceneWith(start, paths, values);
+    const scene = sceneOf(values);
     const { bundle, pixels } = aim(scene);
     const seen = await backend({ scene, spectrum: plan.spectrum, bundle, origins: false }, { signal });
     const rays = spread(seen, pixels, frame.nx * frame.ny, plan.spectrum.length);

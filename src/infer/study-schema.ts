@@ -14,19 +14,12 @@ const laterQuantities: ReadonlyMap<unknown, string> = new Map([
   ['chi', 'chi is not compared in this version; give Q and U, which hold the same angles with Gaussian noise'],
   ['RM', 'RM is not compared in this version; give Q and U of the bands it was made from'],
 ]);
-const laterMethods: ReadonlyMap<unknown, string> = new Map([
-  ['walkers', 'walkers are not available in this version; use least-squares, which gives errors and correlations at the best fit'],
-  ['nested', 'nested sampling is not available in this version; use least-squares, which ranks by BIC'],
-]);
-
 const stokes = z.enum(['I', 'Q', 'U'], {
   error: ({ input }) =>
     input === undefined ? 'is missing: I, Q or U is wanted' : (laterQuantities.get(input) ?? `${quoteValue(input)} is not allowed: quantity is one of I, Q, U`),
 });
 
-const method = z.enum(['least-squares'], {
-  error: ({ input }) => laterMethods.get(input) ?? `${quoteValue(input)} is not allowed: method is least-squares`,
-});
+const method = oneOf(['least-squares', 'walkers', 'nested'], 'method');
 
 const dataEntry = keys({
   quantity: stokes,
@@ -58,9 +51,14 @@ export const laterData: ReadonlyMap<string, string> = new Map([
 /** A text with its unit, or a bare number where there is none. */
 const value = z.union([z.string(), z.number()]);
 const pair = z.tuple([value, value]);
-const prior = z.union([pair, z.strictObject({ normal: pair }), z.strictObject({ logUniform: pair })], {
-  error: ({ input }) => `${quoteValue(input)} is given where [low, high], {normal: [mean, sigma]} or {logUniform: [low, high]} is wanted`,
+const prior = z.union([pair, z.strictObject({ normal: pair }), z.strictObject({ logUniform: pair }), z.strictObject({ isotropic: pair })], {
+  error: ({ input }) => `${quoteValue(input)} is given where [low, high], {normal: [mean, sigma]}, {logUniform: [low, high]} or {isotropic: [low, high]} is wanted`,
 });
+
+const where = z.record(z.string(), words('a path of the scene')).default({});
+/** Numbers enter a formula, and leave it, in the shown units of their paths. */
+const formula = keys({ formula: words('a formula such as 0.5*a'), where });
+const derivedFormula = keys({ formula: words('a formula such as a/b'), where, unit: z.string().default('') });
 
 const hypothesis = keys({
   name: words('a name'),
@@ -68,6 +66,8 @@ const hypothesis = keys({
   free: z
     .record(z.string(), prior, { error: ({ input }) => `${quoteValue(input)} is given where paths with ranges are wanted, such as {galaxy.inclination: [30 deg, 45 deg]}` })
     .default({}),
+  tied: z.record(z.string(), formula, { error: ({ input }) => `${quoteValue(input)} is given where paths with formulas are wanted` }).default({}),
+  derived: z.record(z.string(), derivedFormula, { error: ({ input }) => `${quoteValue(input)} is given where names with formulas are wanted` }).default({}),
 });
 
 /** The study file: see architecture.md, "Files". */
@@ -77,5 +77,7 @@ export const studySchema = keys({
   data: listOf(dataEntry, 'data entries', 1, MAX_ENTRIES),
   hypotheses: listOf(hypothesis, 'hypotheses', 1, MAX_HYPOTHESES),
   method: method.default('least-squares'),
+  foreground: z.union([z.literal('fixed'), prior], { error: ({ input }) => `${quoteValue(input)} is given where \`fixed\` or a prior such as {normal: [0 rad/m^2, 20 rad/m^2]} is wanted` }).optional(),
+  calibration: z.record(z.string(), prior, { error: ({ input }) => `${quoteValue(input)} is given where frequencies with priors are wanted, such as {1.4 GHz: {normal: [1, 0.05]}}` }).default({}),
   seed: plainNumber({ unit: '', min: 0, max: Number.MAX_SAFE_INTEGER, whole: true }).default(1),
 });

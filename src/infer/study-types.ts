@@ -1,5 +1,6 @@
 import type { Beam } from '../scene/types.ts';
 import type { Place } from '../units/input-error.ts';
+import type { Prior } from './prior.ts';
 import type { StokesQuantity } from './types.ts';
 
 /** A value that a study gives as text with a unit, and where. */
@@ -35,9 +36,20 @@ export interface DataEntry {
 /** The prior of one free parameter as written, before the scene says its unit. */
 export interface FreeText {
   readonly path: string;
-  readonly kind: 'uniform' | 'logUniform' | 'normal';
+  readonly kind: Prior['kind'];
   /** [low, high] or [mean, sigma]. */
   readonly values: readonly [PlacedText, PlacedText];
+  readonly place: Place;
+}
+
+/** A number that follows from others: that of a path (tied), or one for the posterior only (derived). */
+export interface FormulaText {
+  readonly name: string;
+  readonly formula: string;
+  /** Names in the formula and the scene's paths that they stand for. */
+  readonly where: Readonly<Record<string, string>>;
+  /** Of a derived number, as written; '' for a tie. */
+  readonly unit: string;
   readonly place: Place;
 }
 
@@ -46,14 +58,26 @@ export interface Hypothesis {
   /** File of the scene, as written, relative to the study. */
   readonly scene: string;
   readonly free: readonly FreeText[];
+  readonly tied: readonly FormulaText[];
+  readonly derived: readonly FormulaText[];
   readonly place: Place;
 }
+
+/** How posteriors are found. */
+export type Method = 'least-squares' | 'walkers' | 'nested';
+
+/** The prior of the foreground's depth; `place` is missing where it is the default. */
+export type ForegroundText = Pick<FreeText, 'kind' | 'values' | 'place'> | 'default';
 
 /** A checked study file. */
 export interface Study {
   readonly title: string;
   readonly data: readonly DataEntry[];
   readonly hypotheses: readonly Hypothesis[];
-  readonly method: 'least-squares';
+  readonly method: Method;
+  /** Prior of the foreground's Faraday depth where a hypothesis does not free it; undefined: held fixed. */
+  readonly foreground?: ForegroundText;
+  /** Prior of one factor a band, on the model. */
+  readonly calibration: readonly FreeText[];
   readonly seed: number;
 }

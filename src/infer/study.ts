@@ -3,11 +3,12 @@ import { checkVersion, checkYaml, childOf, placeAt, readYaml } from '../units/ya
 import type { YamlInput, YamlPath } from '../units/yaml-input.ts';
 import type { z } from 'zod';
 import { laterData, studySchema } from './study-schema.ts';
-import type { DataEntry, FreeText, Hypothesis, PlacedText, Study } from './study-types.ts';
+import type { DataEntry, FormulaText, FreeText, Hypothesis, PlacedText, Study } from './study-types.ts';
 
 type StudyFile = z.output<typeof studySchema>;
 type FileEntry = StudyFile['data'][number];
 type FileHypothesis = StudyFile['hypotheses'][number];
+type FilePrior = FileHypothesis['free'][string];
 
 /**
  * Reads a study: data, hypotheses with their free parameters, method. Values whose unit depends on
@@ -28,6 +29,8 @@ export function parseStudy(text: string, fileName: string): Study {
     data: file.data.map((entry, k) => readEntry(input, entry, k)),
     hypotheses,
     method: file.method,
+    ...readForeground(input, file.foreground),
+    calibration: Object.entries(file.calibration).map(([band, prior]) => readPrior(input, ['calibration'], band, prior)),
     seed: file.seed,
   };
 }
@@ -78,18 +81,39 @@ function readEntry(input: YamlInput, entry: FileEntry, index: number): DataEntry
   };
 }
 
-function readHypothesis(input: YamlInput, { name, scene, free }: FileHypothesis, index: number): Hypothesis {
+function readHypothesis(input: YamlInput, { name, scene, free, tied, derived }: FileHypothesis, index: number): Hypothesis {
   const path: YamlPath = ['hypotheses', index];
+  const formulas = (key: 'tied' | 'derived', entries: FileHypothesis['tied' | 'derived']): FormulaText[] =>
+    Object.entries(entries).map(([target, { formula, where, ...unit }]) => ({
+      name: target, formula, where, unit: 'unit' in unit ? String(unit.unit) : '', place: placeAt(input, [...path, key], target),
+    }));
+  const twice = Object.keys(tied).find((target) => target in free);
+  if (twice !== undefined) throw new InputError(`${twice} is both free and tied; one is wanted`, placeAt(input, [...path, 'tied'], twice));
   return {
     name,
     scene,
-    free: Object.entries(free).map(([parameter, prior]): FreeText => {
-      const kind = Array.isArray(prior) ? 'uniform' : 'normal' in prior ? 'normal' : 'logUniform';
-      const pair = Array.isArray(prior) ? prior : 'normal' in prior ? prior.normal : prior.logUniform;
-      const at: YamlPath = [...path, 'free', parameter, ...(kind === 'uniform' ? [] : [kind])];
-      const placed = (k: 0 | 1): PlacedText => ({ text: String(pair[k]), place: placeAt(input, [...at, k]) });
-      return { path: parameter, kind, values: [placed(0), placed(1)], place: placeAt(input, [...path, 'free'], parameter) };
-    }),
+    free: Object.entries(free).map(([parameter, prior]) => readPrior(input, [...path, 'free'], parameter, prior)),
+    tied: formulas('tied', tied),
+    derived: formulas('derived', derived),
     place: placeAt(input, path),
   };
+}
+
+/** A prior under the key `name` of the group at `path`. */
+function readPrior(input: YamlInput, path: YamlPath, name: string, prior: FilePrior): FreeText {
+  const kind = kindOf(prior);
+  const pair = Array.isArray(prior) ? prior : Object.values(prior)[0] as readonly [string | number, string | number];
+  const at: YamlPath = [...path, name, ...(kind === 'uniform' ? [] : [kind])];
+  const placed = (k: 0 | 1): PlacedText => ({ text: String(pair[k]), place: placeAt(input, [...at, k]) });
+  return { path: name, kind, values: [placed(0), placed(1)], place: placeAt(input, path, name) };
+}
+
+function kindOf(prior: FilePrior): FreeText['kind'] {
+  if (Array.isArray(prior)) return 'uniform';
+  return 'normal' in prior ? 'normal' : 'logUniform' in prior ? 'logUniform' : 'isotropic';
+}
+
+function readForeground(input: YamlInput, given: StudyFile['foreground']): Pick<Study, 'foreground'> {
+  if (given === 'fixed') return {};
+  return { foreground: given === undefined ? 'default' : readPrior(input, [], 'foreground', given) };
 }

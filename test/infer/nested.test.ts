@@ -60,7 +60,7 @@ describe('runNested', () => {
   it('does not depend on who evaluates: one by one or together', async () => {
     const { likelihood } = gaussianBox(2);
     const request = { parameters: 2, seed: 3, livePoints: 50 };
-    const apart = await runNested({ ...request, likelihood: async (points) => (await Promise.all(points.map((one) => likelihood([one])))).map(([value]) => value) });
+    const apart = await runNested({ ...request, likelihood: async (points) => (await Promise.all(points.map((one) => likelihood([one])))).map((values) => values[0]) });
     expect(apart).toEqual(await runNested({ ...request, likelihood }));
   });
 

@@ -10,7 +10,7 @@ import { needPython, pythonJson } from '../support/tools.ts';
 const lambda2 = Array.from({ length: 12 }, (_, k) => 0.01 + 0.005 * k);
 const truth = [0.5, 0.3, 40, 8];
 const noise = 0.02;
-const model = ([p0, chi0, rm, s]: ArrayLike<number>): number[] =>
+const model = ([p0, chi0, rm, s]: Iterable<number>): number[] =>
   lambda2.flatMap((l2) => {
     const p = p0 * Math.exp(-2 * s * s * l2 * l2);
     return [p * Math.cos(2 * (chi0 + rm * l2)), p * Math.sin(2 * (chi0 + rm * l2))];

@@ -50,7 +50,7 @@ describe('runWalkers', () => {
 describe('moves', () => {
   it.each([['stretch', stretchMove], ['difference', differenceMove]] as const)('%s commutes with affine maps (Goodman & Weare 2010)', (_, move) => {
     const others = [[1, 2], [-1, 0.5], [0.3, -2], [2, 2]];
-    const map = ([x, y]: ArrayLike<number>): number[] => [3 * x - y + 5, 0.1 * x + 2 * y - 7];
+    const map = ([x, y]: Iterable<number>): number[] => [3 * x - y + 5, 0.1 * x + 2 * y - 7];
     const plain = move(randomStream(1, 'move'), [0.2, 0.4], others);
     const mapped = move(randomStream(1, 'move'), map([0.2, 0.4]), others.map(map));
     // Rounding only.
