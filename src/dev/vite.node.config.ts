@@ -10,7 +10,7 @@ export default defineConfig({
   root,
   publicDir: false,
   logLevel: 'warn',
-  ssr: { noExternal: true, external: builtinModules },
+  ssr: { noExternal: true, external: [...builtinModules] },
   build: {
     ssr: true,
     target: 'node20',
