@@ -9,9 +9,8 @@ export interface PanelRule {
   readonly weights: Float64Array;
   /** [i * n + j]: ∫ from node i to 1 of the j-th Lagrange polynomial: depth between node and near end. */
   readonly toNearEnd: Float64Array;
-  /** Rows that give the last two Legendre coefficients of a function from its values at the nodes. */
-  readonly lastButOne: Float64Array;
-  readonly last: Float64Array;
+  /** [k * n + j]: the weight of the value at node j in the k-th Legendre coefficient of a function. */
+  readonly legendre: Float64Array;
 }
 
 /** The rule of `panelNodes` nodes. */
@@ -32,8 +31,11 @@ function makeRule(n: number): PanelRule {
       toNearEnd[i * n + j] = sum;
     }
   }
-  const row = (k: number): Float64Array => Float64Array.from(nodes, (_, j) => ((2 * k + 1) / 2) * weights[j] * legendre[j][k]);
-  return { nodes, weights, toNearEnd, lastButOne: row(n - 2), last: row(n - 1) };
+  const rows = Float64Array.from({ length: n * n }, (_, index) => {
+    const [k, j] = [Math.floor(index / n), index % n];
+    return ((2 * k + 1) / 2) * weights[j] * legendre[j][k];
+  });
+  return { nodes, weights, toNearEnd, legendre: rows };
 }
 
 /** P_0 … P_count at x. */

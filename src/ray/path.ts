@@ -15,6 +15,14 @@ export const mostBreaks = 128;
 export const coincidence = 1e-12;
 /** Heights, as shares of the volume's, at which first panels end. */
 export const gradedShares = [0.1, 0.4] as const;
+/** Rays that pass the axis closer than this share of the volume's radius break where they are closest to it. */
+export const closeToAxis = 0.15;
+/**
+ * Rays that pass the axis closer than this share of the volume's radius see fields turn within
+ * about their distance from it, too fast for a long panel to notice: they break at so many distances.
+ */
+export const nearAxis = 0.03;
+export const axisBreaks = [3, 12] as const;
 /** Rays that run through the disc lengthwise, |cos i| below this, are graded towards the axis too. */
 export const steepestGraded = 0.3;
 
@@ -49,13 +57,20 @@ export function findBreaks(geometry: RayGeometry, majorKpc: number, minorKpc: nu
     if (sinI !== 0) insert((minorKpc * cosI - y) / sinI);
   };
   atHeight(0);
-  atDepth(0);
+  const distance = Math.abs(majorKpc);
+  if (distance < closeToAxis * radiusKpc) atDepth(0);
   for (const z of edges.zKpc) atHeight(z);
   for (const r of edges.rKpc) {
     const square = r * r - majorKpc * majorKpc;
     if (square <= 0) continue;
     atDepth(Math.sqrt(square));
     atDepth(-Math.sqrt(square));
+  }
+  if (distance < nearAxis * radiusKpc) {
+    for (const times of axisBreaks) {
+      atDepth(times * distance);
+      atDepth(-times * distance);
+    }
   }
   for (const share of gradedShares) {
     atHeight(share * heightKpc);

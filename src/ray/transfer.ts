@@ -45,8 +45,25 @@ export function makeRaySums(count: number): RaySums {
 const n = panelNodes;
 /** Bisections of one interval. */
 export const deepestSplit = 48;
-/** Part of the tolerance that one panel may use: errors of several panels add up in quadrature. */
-export const panelShare = 0.1;
+/**
+ * Largest error that one panel may be estimated to have. Panels' errors rarely add up and the
+ * estimates are far too large where coefficients fall ever faster, as they do in wide panels; at
+ * small tolerances, where they fall evenly, less of that is left.
+ */
+export function panelLimit(tolerance: number): number {
+  const root = Math.sqrt(Math.sqrt(tolerance / 1e-4));
+  return tolerance * Math.min(1, root * Math.sqrt(root));
+}
+
+/** Polarization from behind a panel, net of its own rotation, over the scale of P: a bound. */
+export const mostBehind = 10;
+/**
+ * Coefficients are never trusted to fall faster in two degrees: beneath a large smooth part a small
+ * one that falls more slowly may hide.
+ */
+export const fastestDecay = 0.03;
+/** Keeps ratios of coefficients finite. */
+export const tiniest = 1e-300;
 /** Largest turn or damping exponent across a panel that its nodes are trusted to notice. */
 export const mostPerPanel = 12;
 
@@ -70,7 +87,7 @@ export class RayTracer {
   private readonly pending: Float64Array;
   private readonly breaks = new Float64Array(mostBreaks);
   private readonly stack = new Float64Array(3 * (deepestSplit + 2));
-  /** Frequencies whose integrands decide on bisection: the longest and the shortest wavelength. */
+  /** Frequencies whose integrands decide on bisection. */
   private readonly tested: readonly number[];
   private nearPhi = 0;
   private nearSigma = 0;
@@ -84,7 +101,7 @@ export class RayTracer {
     private readonly accuracy: Accuracy,
   ) {
     this.out = integrand.program.outputs.map(() => new Float64Array(n));
-    this.tested = testedFrequencies(wavelengthM2);
+    this.tested = testedFrequencies(wavelengthM2, integrand.hasDispersion);
     this.pending = new Float64Array(wavelengthM2.length);
   }
 
@@ -155,24 +172,23 @@ export class RayTracer {
   /** Whether the panel's estimated errors are within the share of the tolerance a panel may use. */
   private isResolved(half: number, sums: RaySums): boolean {
     const { tolerance, scaleI, scaleP } = this.accuracy;
-    const limit = tolerance * panelShare;
-    const faraday = this.out[output.faraday];
-    const tailPhi = tail(faraday);
-    const errorPhi = 2 * half * quadratureError(tailPhi, largest(faraday));
+    const limit = panelLimit(tolerance);
+    const path = 2 * half;
+    const depth = tailOf(this.out[output.faraday]);
+    const errorPhi = path * meanError(depth.tail, depth.decay);
     for (const k of this.tested) {
       const total = this.emit(k);
       if (this.mayHide(k, half, limit * scaleP[k])) return false;
-      const errorI = (2 * half * quadratureError(tail(total), largest(total))) / scaleI[k];
+      const { tail, decay } = tailOf(total);
+      const errorI = (path * meanError(tail, decay)) / scaleI[k];
       if (errorI > limit) return false;
       this.rotate(k);
       const turn = 2 * this.wavelengthM2[k];
-      const [tailReal, tailImaginary] = [tail(this.real), tail(this.imaginary)];
-      const tailP = Math.sqrt(tailReal * tailReal + tailImaginary * tailImaginary);
-      const sizeP = Math.max(largest(this.real), largest(this.imaginary));
+      const polarized = tailOf(this.real, this.imaginary);
       // Depth errors at the nodes beat with the emission; at the far end they turn all that lies behind.
-      const coupled = tailP * turn * half * tailPhi * 0.1;
-      const behind = turn * errorPhi * scaleI[k];
-      const errorP = (2 * half * (quadratureError(tailP, sizeP) + coupled) + behind) / scaleP[k];
+      const coupled = polarized.tail * turn * half * depth.tail * 0.1;
+      const behind = turn * errorPhi * Math.min(scaleI[k], mostBehind * scaleP[k]);
+      const errorP = (path * (meanError(polarized.tail, polarized.decay) + coupled) + behind) / scaleP[k];
       if (errorP > limit) return false;
       this.pending[k] = Math.max(errorI, errorP);
     }
@@ -253,14 +269,34 @@ export class RayTracer {
   }
 }
 
-/** Size of the last two Legendre coefficients. */
-function tail(values: Float64Array): number {
-  let [a, b] = [0, 0];
-  for (let i = 0; i < n; i++) {
-    a += panelRule.lastButOne[i] * values[i];
-    b += panelRule.last[i] * values[i];
-  }
-  return Math.abs(a) + Math.abs(b);
+/**
+ * Sizes of the Legendre coefficients 6 and 7 of one or two functions at the nodes, and by which
+ * factor coefficients fall in two degrees: the larger of the last two such factors, at most 1.
+ */
+function tailOf(values: Float64Array, others?: Float64Array): { readonly tail: number; readonly decay: number } {
+  const [last, middle, first] = [pairSize(6, values, others), pairSize(4, values, others), pairSize(2, values, others)];
+  const decay = Math.max(last / Math.max(middle, tiniest), middle / Math.max(first, tiniest));
+  return { tail: last, decay: Math.min(Math.max(decay, fastestDecay), 1) };
+}
+
+function pairSize(degree: number, values: Float64Array, others: Float64Array | undefined): number {
+  const own = Math.abs(coefficient(degree, values)) + Math.abs(coefficient(degree + 1, values));
+  return others ? own + pairSize(degree, others, undefined) : own;
+}
+
+function coefficient(degree: number, values: Float64Array): number {
+  let sum = 0;
+  for (let j = 0; j < n; j++) sum += panelRule.legendre[degree * n + j] * values[j];
+  return sum;
+}
+
+/**
+ * Error of the mean over a panel: the rule is exact to degree 15, so coefficients that fall by
+ * `decay` in two degrees leave tail · decay^4.75 of those at 16 and beyond. A lower power is safe
+ * where they fall unevenly (null rules: Berntsen & Espelid 1991).
+ */
+function meanError(tail: number, decay: number): number {
+  return tail * decay * decay * decay;
 }
 
 function largest(values: Float64Array): number {
@@ -269,24 +305,21 @@ function largest(values: Float64Array): number {
   return size;
 }
 
-/**
- * Error of the mean over a panel from the tail of its coefficients: coefficients that fall
- * geometrically to t·size at degree 7 leave about t²·size for a rule exact to degree 15.
- */
-function quadratureError(tailSize: number, size: number): number {
-  if (!(size > 0)) return 0;
-  const ratio = tailSize / size;
-  return size * ratio * ratio * Math.sqrt(ratio);
-}
+/** Where rotation is damped, tested frequencies lie at most this factor apart in λ², if there are any between. */
+const testedRatio = 2;
 
-/** Frequencies whose integrands decide on bisection: the longest and the shortest wavelength. */
-export function testedFrequencies(wavelengthM2: Float64Array): readonly number[] {
-  let [longest, shortest] = [0, 0];
-  for (let k = 1; k < wavelengthM2.length; k++) {
-    if (wavelengthM2[k] > wavelengthM2[longest]) longest = k;
-    if (wavelengthM2[k] < wavelengthM2[shortest]) shortest = k;
+/**
+ * Frequencies whose integrands decide on bisection: the longest and the shortest wavelength; where
+ * unresolved turbulence may hide from the longest what shorter ones see, some between them too.
+ */
+export function testedFrequencies(wavelengthM2: Float64Array, hasDispersion: boolean): readonly number[] {
+  const order = Array.from(wavelengthM2.keys()).sort((a, b) => wavelengthM2[b] - wavelengthM2[a]);
+  const tested = [order[0]];
+  for (const k of hasDispersion ? order : []) {
+    if (wavelengthM2[tested[tested.length - 1]] >= testedRatio * wavelengthM2[k]) tested.push(k);
   }
-  return longest === shortest ? [longest] : [longest, shortest];
+  const shortest = order[order.length - 1];
+  return tested.includes(shortest) ? tested : [...tested, shortest];
 }
 
 function clear(sums: RaySums): void {

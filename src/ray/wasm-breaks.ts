@@ -1,7 +1,7 @@
 import { float as f, int, type Float, type Int } from '../formula/wasm/code.ts';
 import type { FunctionWriter } from '../formula/wasm/function.ts';
 import type { Callee, ModuleWriter } from '../formula/wasm/module.ts';
-import { coincidence, gradedShares, mostBreaks, steepestGraded } from './path.ts';
+import { axisBreaks, closeToAxis, coincidence, gradedShares, mostBreaks, nearAxis, steepestGraded } from './path.ts';
 import type { TransferLayout } from './wasm-layout.ts';
 
 const zero = int.constant(0);
@@ -26,7 +26,8 @@ export function writeFindBreaks(module: ModuleWriter, layout: TransferLayout): C
       w.when(f.notEqual(sinI.get(), f.constant(0)), () => w.run(insert, f.divide(f.subtract(minorCos.get(), y), sinI.get())));
     };
     atHeight(f.constant(0));
-    atDepth(f.constant(0));
+    const distance = w.let(f.abs(major.get()));
+    w.when(f.less(distance, f.multiply(f.constant(closeToAxis), radius.get())), () => atDepth(f.constant(0)));
     forEachEdge(w, layout.zEdges, atHeight);
     forEachEdge(w, layout.rEdges, (r) => {
       const square = w.let(f.subtract(f.multiply(r, r), f.multiply(major.get(), major.get())));
@@ -35,6 +36,12 @@ export function writeFindBreaks(module: ModuleWriter, layout: TransferLayout): C
         atDepth(depth);
         atDepth(f.negate(depth));
       });
+    });
+    w.when(f.less(distance, f.multiply(f.constant(nearAxis), radius.get())), () => {
+      for (const times of axisBreaks) {
+        atDepth(w.let(f.multiply(f.constant(times), distance)));
+        atDepth(w.let(f.multiply(f.constant(-times), distance)));
+      }
     });
     for (const share of gradedShares) {
       const level = w.let(f.multiply(f.constant(share), height.get()));

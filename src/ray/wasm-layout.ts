@@ -64,8 +64,8 @@ export interface TransferLayout {
   readonly rEdges: { readonly count: IntCell; readonly address: IntCell };
   readonly nodes: number;
   readonly weights: number;
-  readonly lastButOne: number;
-  readonly last: number;
+  /** Weights of the sums and differences of mirrored nodes in pairs of Legendre coefficients: [degree / 2][node][2]. */
+  readonly legendrePairs: number;
   /** Columns of the matrix of `PanelRule.toNearEnd`. */
   readonly toNearEnd: number;
   /** dφ/ds and dΣ/ds at the nodes. */
@@ -80,6 +80,12 @@ export interface TransferLayout {
 
 /** Bytes of what a group emits at the nodes. */
 export const emissionBytes = 3 * nodeBytes;
+
+function legendrePairs(): number[] {
+  const n = panelNodes;
+  const degrees = Array.from({ length: n / 2 }, (_, k) => 2 * k);
+  return degrees.flatMap((k) => Array.from({ length: n / 2 }, (_, j) => [panelRule.legendre[k * n + j], panelRule.legendre[(k + 1) * n + n - 1 - j]]).flat());
+}
 
 /** Sets memory aside for a transfer of so many emission groups. */
 export function layOut(module: ModuleWriter, groups: number): TransferLayout {
@@ -109,8 +115,7 @@ export function layOut(module: ModuleWriter, groups: number): TransferLayout {
     rEdges: edges(),
     nodes: module.numbers(panelRule.nodes),
     weights: module.numbers(panelRule.weights),
-    lastButOne: module.numbers(panelRule.lastButOne),
-    last: module.numbers(panelRule.last),
+    legendrePairs: module.numbers(legendrePairs()),
     toNearEnd: module.numbers(columns),
     faraday: module.reserve(nodeBytes),
     dispersion: module.reserve(nodeBytes),

@@ -1,6 +1,7 @@
-import { float as f, int, vector as v, type Float, type Vector } from '../formula/wasm/code.ts';
+import { float as f, int, vector as v, type Float, type Int, type Vector } from '../formula/wasm/code.ts';
 import type { FunctionWriter } from '../formula/wasm/function.ts';
 import { panelNodes } from './panel.ts';
+import { fastestDecay, tiniest } from './transfer.ts';
 import type { TransferLayout } from './wasm-layout.ts';
 
 export const zero = int.constant(0);
@@ -27,13 +28,40 @@ export function sumLanes(w: FunctionWriter, pair: Vector): Float {
   return f.add(v.lane(known, 0), v.lane(known, 1));
 }
 
-/** Size of the last two Legendre coefficients of a function. */
-export function tail(w: FunctionWriter, layout: TransferLayout, values: NodeValues): Float {
-  const row = (address: number): Vector => w.let(dot(values, pairOffsets.map((pair) => v.load(zero, address + pair))));
-  const [a, b] = [row(layout.lastButOne), row(layout.last)];
-  // Both sums at once: [Σa, Σb].
-  const sums = w.let(v.abs(v.add(v.shuffle(a, 0, b, 0), v.shuffle(a, 1, b, 1))));
-  return w.let(f.add(v.lane(sums, 0), v.lane(sums, 1)));
+/** Size of a function's last Legendre coefficients, and by which factor they fall: `tailOf` of transfer.ts. */
+export interface Tail {
+  readonly tail: Float;
+  readonly decay: Float;
+}
+
+/** Measures the tail of one or two functions whose values at the nodes lie at these addresses. */
+export function measureTail(w: FunctionWriter, layout: TransferLayout, ...addresses: readonly Int[]): Tail {
+  const sizes = addresses.map((address) => pairSizes(w, layout, address)).reduce((sum, more) => sum.map((size, k) => w.let(v.add(size, more[k]))));
+  // [first, middle] and [middle, last], each both coefficients of a pair added.
+  const [first, middle, last] = sizes;
+  const early = w.let(v.add(v.shuffle(first, 0, middle, 0), v.shuffle(first, 1, middle, 1)));
+  const late = w.let(v.add(v.shuffle(middle, 0, last, 0), v.shuffle(middle, 1, last, 1)));
+  const factors = w.let(v.divide(late, v.max(early, w.constant(tiniest))));
+  const decay = f.min(f.max(f.max(v.lane(factors, 0), v.lane(factors, 1)), f.constant(fastestDecay)), f.constant(1));
+  return { tail: w.let(v.lane(late, 1)), decay: w.let(decay) };
+}
+
+/** |c_k|, |c_k+1| for k = 2, 4 and 6: even ones from sums of mirrored nodes, odd ones from differences. */
+function pairSizes(w: FunctionWriter, { legendrePairs }: TransferLayout, address: Int): Vector[] {
+  const negateSecond = v.withLane(w.constant(0), 1, f.constant(-0));
+  const mirrored = Array.from({ length: panelNodes / 2 }, (_, j) => {
+    const [far, near] = [v.loadSplat(address, 8 * j), v.loadSplat(address, 8 * (panelNodes - 1 - j))];
+    return w.let(v.add(near, v.xor(far, negateSecond)));
+  });
+  return [2, 4, 6].map((degree) => {
+    const terms = mirrored.map((value, j) => v.multiply(value, v.load(zero, legendrePairs + 8 * panelNodes * (degree / 2) + 16 * j)));
+    return w.let(v.abs(terms.reduce((sum, term) => v.add(sum, term))));
+  });
+}
+
+/** Error of the mean over a panel: `meanError` of transfer.ts. */
+export function meanError(w: FunctionWriter, { tail, decay }: Tail): Float {
+  return w.let(f.multiply(f.multiply(tail, decay), f.multiply(decay, decay)));
 }
 
 /** Largest size among the values of some functions. */

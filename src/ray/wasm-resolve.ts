@@ -3,9 +3,9 @@ import { exp } from '../formula/wasm/exponential.ts';
 import type { FunctionWriter } from '../formula/wasm/function.ts';
 import type { Callee } from '../formula/wasm/module.ts';
 import { writeRotate } from './wasm-rotate.ts';
-import { mostPerPanel } from './transfer.ts';
+import { mostBehind, mostPerPanel } from './transfer.ts';
 import { emissionBytes, spectrumRecord, type TransferContext, type TransferLayout } from './wasm-layout.ts';
-import { largest, loadNodes, nodeBytes, tail, zero } from './wasm-nodes.ts';
+import { largest, loadNodes, measureTail, meanError, nodeBytes, zero } from './wasm-nodes.ts';
 
 /** The test of a panel, and what it leaves behind for those that it accepts. */
 export interface Resolve {
@@ -19,16 +19,6 @@ export interface Resolve {
   readonly squaredErrors: readonly number[];
 }
 
-/** Error of the mean over a panel from the tail of its coefficients: see `quadratureError` of transfer.ts. */
-function quadratureError(w: FunctionWriter, tailSize: Float, size: Float): Float {
-  const error = w.variable('f64', f.constant(0));
-  w.when(f.greaterThan(size, f.constant(0)), () => {
-    const ratio = w.let(f.divide(tailSize, size));
-    error.set(f.multiply(f.multiply(size, f.multiply(ratio, ratio)), f.sqrt(ratio)));
-  });
-  return error;
-}
-
 /** Writes `isResolved` of RayTracer. */
 export function writeIsResolved(context: TransferContext): Resolve {
   const { module, layout, spectrum, structure } = context;
@@ -38,11 +28,10 @@ export function writeIsResolved(context: TransferContext): Resolve {
   const [no, yes] = [int.constant(0), int.constant(1)];
   const isResolved = module.define(['f64'], ['i32'], (w) => {
     const half = w.parameter(0, 'f64');
-    const faraday = loadNodes(w, layout.faraday);
-    const tailPhi = tail(w, layout, faraday);
-    const largestPhi = largest(w, faraday);
+    const depth = measureTail(w, layout, int.constant(layout.faraday));
+    const largestPhi = largest(w, loadNodes(w, layout.faraday));
     const path = w.let(f.multiply(f.constant(2), half));
-    const errorPhi = w.let(f.multiply(path, quadratureError(w, tailPhi, largestPhi)));
+    const errorPhi = w.let(f.multiply(path, meanError(w, depth)));
     const largestDispersion = structure.hasDispersion ? largest(w, loadNodes(w, layout.dispersion)) : f.constant(0);
     const limit = layout.limit.get();
     const groups = new Map<number, { readonly size: Float; readonly error: Float }>();
@@ -51,9 +40,8 @@ export function writeIsResolved(context: TransferContext): Resolve {
       const emission = layout.emission + emissionBytes * structure.groupOf[k];
       let group = groups.get(structure.groupOf[k]);
       if (!group) {
-        const total = loadNodes(w, emission);
-        const size = largest(w, total);
-        group = { size, error: w.let(f.multiply(path, quadratureError(w, tail(w, layout, total), size))) };
+        const size = largest(w, loadNodes(w, emission));
+        group = { size, error: w.let(f.multiply(path, meanError(w, measureTail(w, layout, int.constant(emission))))) };
         groups.set(structure.groupOf[k], group);
       }
       const [turn, damping] = [w.let(record(spectrumRecord.turn)), w.let(record(spectrumRecord.damping))];
@@ -62,13 +50,10 @@ export function writeIsResolved(context: TransferContext): Resolve {
       const errorI = w.let(f.divide(group.error, scaleI));
       w.when(f.greaterThan(errorI, limit), () => w.leave(no));
       w.run(rotate, turn, damping, int.constant(emission), int.constant(rotated[slot]));
-      const [real, imaginary] = [loadNodes(w, rotated[slot]), loadNodes(w, rotated[slot] + nodeBytes)];
-      const [tailReal, tailImaginary] = [tail(w, layout, real), tail(w, layout, imaginary)];
-      const tailP = w.let(f.sqrt(f.add(f.multiply(tailReal, tailReal), f.multiply(tailImaginary, tailImaginary))));
-      const coupled = f.multiply(f.multiply(f.multiply(f.multiply(tailP, turn), half), tailPhi), f.constant(0.1));
-      const behind = f.multiply(f.multiply(turn, errorPhi), scaleI);
-      const quadrature = quadratureError(w, tailP, largest(w, real, imaginary));
-      const errorP = w.let(f.divide(f.add(f.multiply(path, f.add(quadrature, coupled)), behind), scaleP));
+      const polarized = measureTail(w, layout, int.constant(rotated[slot]), int.constant(rotated[slot] + nodeBytes));
+      const coupled = f.multiply(f.multiply(f.multiply(f.multiply(polarized.tail, turn), half), depth.tail), f.constant(0.1));
+      const behind = f.multiply(f.multiply(turn, errorPhi), f.min(scaleI, f.multiply(f.constant(mostBehind), scaleP)));
+      const errorP = w.let(f.divide(f.add(f.multiply(path, f.add(meanError(w, polarized), coupled)), behind), scaleP));
       w.when(f.greaterThan(errorP, limit), () => w.leave(no));
       return w.let(f.max(errorI, errorP));
     });

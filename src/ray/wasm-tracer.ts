@@ -1,7 +1,7 @@
 import { ensureMemory, placeTables } from '../formula/wasm/kernel.ts';
 import type { Integrand, IntegrandInputs } from './integrand.ts';
 import type { RayGeometry } from './path.ts';
-import { panelShare, testedFrequencies, type Accuracy, type RaySums } from './transfer.ts';
+import { panelLimit, testedFrequencies, type Accuracy, type RaySums } from './transfer.ts';
 import { resultsPerFrequency, spectrumRecord } from './wasm-layout.ts';
 import { writeTransfer, type TransferModule } from './wasm-transfer.ts';
 
@@ -19,7 +19,7 @@ export class WasmTransfer {
     private readonly wavelengthM2: Float64Array,
   ) {
     const { program, groupOf, hasDispersion } = integrand;
-    this.module = writeTransfer({ program, groupOf, hasDispersion, tested: testedFrequencies(wavelengthM2) });
+    this.module = writeTransfer({ program, groupOf, hasDispersion, tested: testedFrequencies(wavelengthM2, hasDispersion) });
     const instance = (this as any).instance = new WebAssembly.Instance(new WebAssembly.Module(this.module.bytes));
     this.memory = instance.exports.memory as WebAssembly.Memory;
     this.run = instance.exports.follow as typeof this.run;
@@ -71,7 +71,7 @@ export class WasmTransfer {
       [layout.cosI, geometry.cosI],
       [layout.radius, geometry.radiusKpc],
       [layout.height, geometry.heightKpc],
-      [layout.limit, accuracy.tolerance * panelShare],
+      [layout.limit, panelLimit(accuracy.tolerance)],
     ] as const;
     for (const [cell, value] of cells) numbers[cell.address / 8] = value;
     this.wavelengthM2.forEach((square, k) => {
