@@ -2,7 +2,9 @@ import { Command, CommanderError } from 'commander';
 import { InputError } from '../units/input-error.ts';
 import { addCheck } from './check.ts';
 import { addCompare } from './compare.ts';
+import { addFit } from './fit.ts';
 import { addMap } from './map.ts';
+import { addMeasure } from './measure.ts';
 import { addOrient } from './orient.ts';
 import { addProbe } from './probe.ts';
 import { addRank } from './rank.ts';
@@ -18,7 +20,7 @@ function makeProgram(): Command {
     .version(version)
     .exitOverride()
     .configureOutput({ writeErr: () => undefined });
-  for (const add of [addMap, addCompare, addRank, addCheck, addProbe, addOrient]) add(program);
+  for (const add of [addMap, addCompare, addRank, addFit, addMeasure, addCheck, addProbe, addOrient]) add(program);
   for (const command of program.commands) command.exitOverride().configureOutput({ writeErr: () => undefined });
   return program;
 }

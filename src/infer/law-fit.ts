@@ -35,7 +35,8 @@ const mostOverData = 20;
 /** One law, ready to be fitted to many spectra of the same channels. */
 export interface LawFitter {
   readonly law: Law;
-  fit(spectrum: Pick<FractionSpectrum, 'q' | 'u'>): Promise<LawFit>;
+  /** `sigma` in place of the fitter's own, which then only guides where fits start. */
+  fit(spectrum: Pick<FractionSpectrum, 'q' | 'u'> & { readonly sigma?: Float64Array }): Promise<LawFit>;
 }
 
 /**
@@ -54,8 +55,8 @@ export function makeLawFitter(law: Law, lambda2M2: Float64Array, sigma: Float64A
   const sizes = Float64Array.from(law.parameters, ({ role }) => (role === 'rotation' || role === 'width' ? 0.1 / Math.max(...lambda2M2) : role === 'fraction' ? 1e-3 : 0.1));
   return {
     law,
-    fit: async ({ q, u }) => {
-      const residuals = async (values: Float64Array): Promise<Float64Array> => lawResiduals(law, lambda2M2, q, u, scale, values);
+    fit: async ({ q, u, sigma: own = scale }) => {
+      const residuals = async (values: Float64Array): Promise<Float64Array> => lawResiduals(law, lambda2M2, q, u, own, values);
       const most = mostOverData * largestFraction(q, u);
       const upper = Float64Array.from(law.parameters, ({ role, max }) => (role === 'fraction' ? most : max));
       let best: LeastSquaresResult | undefined;

@@ -71,10 +71,16 @@ export function ringSectors(frame: MapFrame, orientation: DiscOrientation, spec:
   });
 }
 
-function refuseEdgeOn(inclination: number): void {
+/** Whether a disc of this inclination (rad) can be deprojected: at most 75 deg from face-on. */
+export function measurableAsDisc(inclination: number): boolean {
   const degrees = (inclination * 180) / Math.PI;
   const fromFaceOn = degrees > 90 ? 180 - degrees : degrees;
-  if (fromFaceOn <= steepestDeg + 1e-9) return;
+  return fromFaceOn <= steepestDeg + 1e-9;
+}
+
+function refuseEdgeOn(inclination: number): void {
+  if (measurableAsDisc(inclination)) return;
+  const degrees = (inclination * 180) / Math.PI;
   throw new InputError(
     `rings cannot be measured at an inclination of ${Number(degrees.toPrecision(6))} deg: a disc more than ` +
       `${steepestDeg} deg from face-on cannot be deprojected, its height fills the map; ` +

@@ -6,7 +6,7 @@ import { channelLambda2M2, lambda2M2 } from './wavelength.ts';
 export type DepthWeighting = 'equal' | 'noise';
 
 export interface DepthOptions {
-  /** `noise`: 1/rms^2; default where every channel states its noise, else `equal`. */
+  /** `noise`: 1/rms^2, the least error of P, though a quiet band then decides the resolution alone; default `equal`. */
   readonly weighting?: DepthWeighting;
   /** P is divided by (nu/mean nu)^-alpha, so that the spectrum of the emission does not look like depth; default 0. */
   readonly spectralIndex?: number;
@@ -41,6 +41,8 @@ export interface DepthPlan {
 
 const stepsPerResolution = 8;
 const mostDepths = 2001;
+/** However wide the channels, the spectrum shows its spread function whole. */
+const leastResolutions = 4;
 /** sinc(x) = 1/2 at this x. */
 const halfSinc = 1.8954942670339809;
 /** Channels that state no width are as wide as their spacing. */
@@ -63,7 +65,7 @@ export function planDepths(channels: readonly Channel[], noise: ArrayLike<number
   const resolution = spreadWidth(lambda2, weights, referenceLambda2, span);
   const largestDepth = halfSinc / widestChannel(channels, sorted);
   const step = options.step ?? resolution / stepsPerResolution;
-  const reach = Math.min(largestDepth, (step * (mostDepths - 1)) / 2);
+  const reach = Math.min(Math.max(largestDepth, leastResolutions * resolution), (step * (mostDepths - 1)) / 2);
   const firstDepth = options.firstDepth ?? -step * Math.floor(reach / step);
   const lastDepth = options.lastDepth ?? step * Math.floor(reach / step);
   if (!(step > 0 && lastDepth > firstDepth && Number.isFinite(lastDepth - firstDepth))) {
@@ -110,7 +112,7 @@ export function spreadFunction(plan: Pick<DepthPlan, 'lambda2M2' | 'weights' | '
 function channelWeights(channels: readonly Channel[], noise: ArrayLike<number>, weighting: DepthWeighting | undefined): Float64Array {
   const isNoisy = channels.every((_, k) => noise[k] > 0);
   if (weighting === 'noise' && !isNoisy) throw new InputError('weights by noise need the noise of every channel; state it, or weight channels equally');
-  const raw = Float64Array.from(channels, (_, k) => ((weighting ?? (isNoisy ? 'noise' : 'equal')) === 'noise' ? noise[k] ** -2 : 1));
+  const raw = Float64Array.from(channels, (_, k) => (weighting === 'noise' ? noise[k] ** -2 : 1));
   const total = raw.reduce((sum, weight) => sum + weight, 0);
   return raw.map((weight) => weight / total);
 }

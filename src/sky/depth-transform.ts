@@ -26,7 +26,7 @@ const sharpness = 2.3 * taps;
 export function makeDepthTransform(plan: DepthPlan): DepthTransform {
   const { lambda2M2, factors, weights, referenceLambda2, step, count } = plan;
   const channels = lambda2M2.length;
-  const size = Math.max(2 * taps, goodSize(2 * count + 2));
+  const size = goodSize(Math.max(2 * taps, 2 * count + 2));
   const middle = Math.floor(count / 2);
   const { first, values } = spreadChannels(lambda2M2.map((square) => 2 * step * (square - referenceLambda2)), size);
   // Each channel is turned to the middle depth, about which indices count.
