@@ -107,7 +107,8 @@ export function interpretProgram(program: Program, parameters: Float64Array, lan
   return program.outputs.map((value) => values[value]);
 }
 
-function interpretInstruction(
+/** The value of one step from those of earlier steps. */
+export function interpretInstruction(
   instruction: Instruction,
   v: readonly number[],
   parameters: Float64Array,

@@ -60,7 +60,7 @@ export function writeAccept(context: TransferContext, { rotate, rotated, squared
     const integrals: [number, typeof layout.nearPhi][] = [[layout.faraday, layout.nearPhi]];
     if (structure.hasDispersion) integrals.push([layout.dispersion, layout.nearSigma]);
     for (const [values, cell] of integrals) cell.set(w, f.add(cell.get(), sumLanes(w, dot(weights, loadNodes(w, values)))));
-  }, 'accept');
+  });
 
   const write = module.define(['i32'], [], (w) => {
     const results = w.parameter(0, 'i32');

@@ -55,7 +55,7 @@ export function writeFindBreaks(module: ModuleWriter, layout: TransferLayout): C
         atDepth(f.negate(depth));
       }
     });
-  }, 'breaks');
+  });
 }
 
 function forEachEdge(w: FunctionWriter, { count, address }: TransferLayout['zEdges'], take: (edge: Float) => void): void {

@@ -61,7 +61,7 @@ export function writeIsResolved(context: TransferContext): Resolve {
       w.store(zero, squaredErrors[slot], f.add(f.load(zero, squaredErrors[slot]), f.multiply(error, error)));
     });
     w.leave(yes);
-  }, 'isResolved');
+  });
   return { isResolved, rotate, rotated, squaredErrors };
 }
 

@@ -20,7 +20,7 @@ export class WasmTransfer {
   ) {
     const { program, groupOf, hasDispersion } = integrand;
     this.module = writeTransfer({ program, groupOf, hasDispersion, tested: testedFrequencies(wavelengthM2, hasDispersion) });
-    const instance = (this as any).instance = new WebAssembly.Instance(new WebAssembly.Module(this.module.bytes));
+    const instance = new WebAssembly.Instance(new WebAssembly.Module(this.module.bytes));
     this.memory = instance.exports.memory as WebAssembly.Memory;
     this.run = instance.exports.follow as typeof this.run;
   }

@@ -64,7 +64,7 @@ function writeSample(module: ModuleWriter, layout: TransferLayout, placed: Place
     });
     integrateToNodes(w, layout, layout.faraday, half, layout.nearPhi.both(), layout.phi);
     if (hasDispersion) integrateToNodes(w, layout, layout.dispersion, half, layout.nearSigma.both(), layout.sigma);
-  }, 'sample');
+  });
 }
 
 /** Cumulative integral at each node: what lies nearer, and the panel's part up to there. */
