@@ -24,7 +24,7 @@ export interface LawFit {
 export interface LawFitOptions {
   /** Depths are sought up to this, rad m^-2; default from the slope of the angle. */
   readonly largestDepth?: number;
-  /** Points of the lattice from which fits are started; default 4, and 8 for laws of two sources. */
+  /** Points of the lattice from which fits are started; default 4, and 8 for laws of more than four parameters. */
   readonly starts?: number;
   readonly signal?: AbortSignal;
 }
@@ -60,9 +60,9 @@ export function makeLawFitter(law: Law, lambda2M2: Float64Array, sigma: Float64A
       const most = mostOverData * largestFraction(q, u);
       const upper = Float64Array.from(law.parameters, ({ role, max }) => (role === 'fraction' ? most : max));
       let best: LeastSquaresResult | undefined;
-      for (const start of startingValues(search, { q, u }, options.starts ?? (law.parameters.filter(({ role }) => role === 'fraction').length > 1 ? 8 : 4))) {
+      for (const start of startingValues(search, { q, u }, options.starts ?? (parameters > 4 ? 8 : 4))) {
         const inside = start.map((value, k) => Math.min(Math.max(value, lower[k]), upper[k]));
-        const found = await leastSquares(residuals, inside, { lower, upper, sizes, tolerance: 1e-4, maxIterations: 20, signal: options.signal });
+        const found = await leastSquares(residuals, inside, { lower, upper, sizes, tolerance: 1e-4, maxIterations: parameters > 4 ? 40 : 20, signal: options.signal });
         if (!best || found.chi2 < best.chi2) best = found;
       }
       if (!best) throw new Error(`${law.name} has no starting point`);
@@ -80,7 +80,7 @@ export async function fitLaws(laws: readonly Law[], spectrum: FractionSpectrum, 
   for (const law of laws) {
     // A fit needs one more datum than parameters to say anything about itself.
     if (2 * known.lambda2M2.length <= law.parameters.length) continue;
-    fits.push(await makeLawFitter(law, known.lambda2M2, known.sigma, largestDepth, options).fit(known));
+    fits.push(await makeLawFitter(law, known.lambda2M2, known.sigma, largestDepth, options).fit({ q: known.q, u: known.u }));
   }
   return fits.sort((a, b) => a.bic - b.bic);
 }

@@ -62,7 +62,7 @@ export function makeLawSearch(law: Law, lambda2M2: Float64Array, sigma: Float64A
   return { law, lambda2M2, sigma, axes, shape };
 }
 
-/** Starting values for a spectrum: the best local maxima of the lattice, at most `most`, the best first. */
+/** Starting values for a spectrum: local maxima of the lattice, then its other best points apart from them; `most` in all. */
 export function startingValues(search: LawSearch, { q, u }: Pick<FractionSpectrum, 'q' | 'u'>, most: number): Float64Array[] {
   const { law, axes, sigma } = search;
   const [x, y] = [q.map((value, k) => value / sigma[k]), u.map((value, k) => value / sigma[k])];
@@ -75,10 +75,19 @@ export function startingValues(search: LawSearch, { q, u }: Pick<FractionSpectru
     gains[point] = re.every((value, k) => value * value + im[k] * im[k] <= most2) ? gain : -1;
   }
   const order = Array.from(gains.keys()).sort((a, b) => gains[b] - gains[a]);
-  const starts: Float64Array[] = [];
+  // Half of them at local maxima; the others where a valley hides one from the lattice.
+  const isAllowed = (point: number): boolean => gains[point] >= 0 || point === order[0];
+  const peaks = order.filter((point) => isAllowed(point) && neighbours(axes, point).every((other) => gains[other] <= gains[point])).slice(0, Math.ceil(most / 2));
+  const chosen = new Set(peaks);
+  const taken = new Set(peaks.flatMap((point) => [point, ...neighbours(axes, point)]));
   for (const point of order) {
-    if (starts.length >= most || (gains[point] < 0 && starts.length > 0)) break;
-    if (neighbours(axes, point).some((other) => gains[other] > gains[point])) continue;
+    if (chosen.size >= most || !isAllowed(point)) break;
+    if (taken.has(point)) continue;
+    chosen.add(point);
+    for (const other of [point, ...neighbours(axes, point)]) taken.add(other);
+  }
+  const starts: Float64Array[] = [];
+  for (const point of chosen) {
     const values = valuesAt(law, axes, point);
     const { re, im } = bestFractions(search.shape(point), x, y);
     let fraction = 0;
@@ -107,12 +116,12 @@ function latticeValues({ role, min, max }: LawParameter, all: readonly LawParame
   if (role === 'width') {
     // From what hardly shows at the longest wavelength to what hides all but the shortest.
     const [from, to] = [0.25 / high, 2 / low];
-    const most = rotations > 1 ? 3 : 9;
-    const count = Math.max(2, Math.min(most, Math.ceil(Math.log2(to / from)) + 1));
+    const most = rotations > 1 ? 3 : 12;
+    const count = Math.max(2, Math.min(most, Math.ceil(Math.log(to / from) / Math.log(1.6)) + 1));
     return inside(Array.from({ length: count }, (_, k) => from * (to / from) ** (k / (count - 1))));
   }
   if (role === 'share') return [0.25, 0.5, 0.75, 0.95];
-  if (role === 'ratio') return inside([0.2, 0.5, 1, 2, 5]);
+  if (role === 'ratio') return inside([0.25, 0.5, 1, 1.5, 2.5, 5]);
   return inside([-6, -4.5, -3, -1.5, 0, 1.5, 3, 4.5, 6]);
 }
 
