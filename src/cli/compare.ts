@@ -18,7 +18,7 @@ import { InputError } from '../units/input-error.ts';
 import { gatherAssumptions } from './assumptions.ts';
 import { loadData } from './load-data.ts';
 import { loadScene } from './load-scene.ts';
-import { OutputFolder } from './output-folder.ts';
+import { bandFileName, OutputFolder } from './output-folder.ts';
 import { ringOf } from './ring-flag.ts';
 import { addCommonFlags, overridesOf, sayWords, withRunContext, type CommonFlags } from './run-context.ts';
 import { version } from './version.ts';
@@ -61,7 +61,7 @@ async function compare(path: string, files: readonly string[], flags: CompareFla
   data.planes.forEach((plane, k) => {
     const band = data.bands[plane.band];
     const channel = band.channels[plane.channel];
-    const name = band.channels.length > 1 ? `${plane.quantity}-${band.name}-${plane.channel + 1}` : `${plane.quantity}-${band.name}`;
+    const name = band.channels.length > 1 ? `${plane.quantity}-${bandFileName(band.name)}-${plane.channel + 1}` : `${plane.quantity}-${bandFileName(band.name)}`;
     const about = { unit: data.unit, sky: { nx: data.axes.nx, ny: data.axes.ny, wcs: data.axes.wcs }, band: band.name, frequencyHz: channel.frequencyHz, ...(band.beam && { beam: band.beam }) };
     const residual = planes[k].map((value, pixel) => plane.values[pixel] - value);
     folder.add(`model-${name}.fits`, mapFits({ ...about, quantity: plane.quantity, values: planes[k] }, provenance, 32));

@@ -27,3 +27,8 @@ export function slug(name: string): string {
   const plain = name.normalize('NFKD').toLowerCase().replace(/[^a-z0-9]+/g, '-').replace(/^-+|-+$/g, '');
   return plain === '' ? 'unnamed' : plain;
 }
+
+/** A band's name as part of a file's name: `1.4 GHz (2)` becomes `1.4GHz-2`. */
+export function bandFileName(name: string): string {
+  return name.replace(/\s*\((\d+)\)/g, '-$1').replace(/[^A-Za-z0-9._-]+/g, '');
+}

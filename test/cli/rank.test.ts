@@ -67,11 +67,12 @@ describe('gyrelight rank', () => {
         expect(Math.abs(value(records[0].best[path]) - truth) / value(records[0].errors[path])).toBeLessThan(4);
       }
       for (const name of ['ranking.csv', 'report.html']) expect(namesIn(join(folder, 'out'))).toContain(name);
-      for (const name of ['overview.svg', 'best.scene.yaml', 'model-Q-low.fits', 'residual-U-high.fits']) expect(namesIn(join(folder, 'out', 'quadrupole')).map(plainBand)).toContain(plainBand(name));
+      for (const name of ['overview.svg', 'best.scene.yaml', 'model-Q-1.4GHz.fits', 'residual-U-4.8GHz.fits']) expect(namesIn(join(folder, 'out', 'quadrupole'))).toContain(name);
       expect(existsSync(join(folder, 'out', 'unfinished'))).toBe(false);
       needPython(context, 'astropy');
       const columns = runPython("import sys\nfrom astropy.table import Table\nprint(','.join(Table.read(sys.argv[1], format='ascii.ecsv').colnames))", [join(folder, 'out', 'ranking.csv')]);
       expect(columns.trim()).toBe('place,hypothesis,chi2,dof,aic,bic,parameter,value,error,unit');
+      expect(runPython(readmePython(join(folder, 'out')))).toContain('(1, 18, 19) gyrelight: 1 place');
       const again = gyrelight(['compare', join('out', 'quadrupole', 'best.scene.yaml'), 'study.yaml', '--out', 'cmp', '--json'], folder);
       expect(again.status).toBe(0);
       expect(Math.abs((JSON.parse(again.stdout) as { chi2: number }).chi2 / records[0].chi2 - 1)).toBeLessThan(1e-3);
@@ -145,9 +146,11 @@ describe('gyrelight rank', () => {
   });
 });
 
-/** Band names of data sets are made from their frequencies: only the quantity is compared. */
-function plainBand(name: string): string {
-  return name.replace(/-(low|high|\d[^-]*?)(?=\.fits)/, '');
+/** The README's Python on this study's results, with what it read printed. */
+function readmePython(out: string): string {
+  const code = /```python\n([\s\S]*?)```/.exec(readFileSync(repository('README.md'), 'utf8'))?.[1] ?? '';
+  const here = code.replaceAll('out/lantern-wheel/helical-halo', join(out, 'quadrupole')).replaceAll('out/lantern-wheel', out);
+  return `${here}\nprint(q.shape, scene.split('\\n')[0], ranking.colnames[0])`;
 }
 
 /** Writes the maps as another observatory would: float64 or scaled integers, TAN, 4 axes, gzip, U reversed. */
