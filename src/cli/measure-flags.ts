@@ -56,7 +56,13 @@ export function flagNumber(name: string, text: string, least: number, most: numb
 
 /** Numbers with units, parted by commas. */
 export function flagList(name: string, text: string, unit: string): number[] {
-  return text.split(',').map((part) => flagQuantity(name, part, unit));
+  return text.split(',').map((part) => {
+    try {
+      return parseQuantity(part.trim(), unit);
+    } catch (error) {
+      throw error instanceof InputError ? error.at({ flag: `--${name} ${text}` }) : error;
+    }
+  });
 }
 
 /** "15 arcsec" or "15 arcsec,12 arcsec,30 deg": major and minor FWHM, position angle. */

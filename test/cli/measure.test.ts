@@ -1,0 +1,140 @@
+import { readFileSync, writeFileSync } from 'node:fs';
+import { join } from 'node:path';
+import { describe, expect, it } from 'vitest';
+import { fitsVerdict, inFolder, needCommand, needPython, pythonJson, runPython } from '../support/tools.ts';
+import { gyrelight, namesIn, smallScene } from './run.ts';
+
+interface Summary {
+  readonly layout: string;
+  readonly depthSpectrum: { readonly resolution: number };
+  readonly rings: readonly { readonly quantity: string; readonly harmonics?: readonly { readonly order: number; readonly phaseDeg: number }[] }[];
+  readonly integratedLaws: readonly { readonly law: string; readonly parameters: Readonly<Record<string, { readonly value: number; readonly error: number }>> }[];
+  readonly files: readonly string[];
+}
+
+/** Q and U of a face-on disc behind a screen of depth 30 + 2 per kpc north, made with astropy; headers as many observers write them. */
+const foreignMaps = `
+import sys, numpy as np
+from astropy.io import fits
+n, pixel = 41, 10.0
+y, x = np.mgrid[:n, :n] - 20.0
+kpc = pixel/206264.80624709636*1e4
+r = np.hypot(x, y)*kpc; phi = np.arctan2(-x, y)   # north through east, face-on, position angle 0
+P = 1e-3*np.exp(-r/6); chi0 = phi + np.pi/2 - np.deg2rad(-20) + np.pi/2  # B = cos p phi-hat + sin p r-hat, E across it
+for name, nus in (('low', np.linspace(1.3e9, 1.7e9, 9)), ('high', np.array([4.8e9]))):
+    l2 = (299792458.0/nus)**2
+    rm = 30 + 2*y*kpc
+    angle = 2*(chi0[None] + rm[None]*l2[:, None, None])
+    for s, plane in (('q', P*np.cos(angle)), ('u', -P*np.sin(angle)), ('i', 10*P + 0*angle)):
+        h = fits.Header()
+        h['CTYPE1']='RA---SIN'; h['CTYPE2']='DEC--SIN'; h['CRPIX1']=21.; h['CRPIX2']=21.; h['CRVAL1']=150.; h['CRVAL2']=20.
+        h['CDELT1']=-pixel/3600; h['CDELT2']=pixel/3600; h['BUNIT']='JY/BEAM'; h['BMAJ']=20/3600; h['BMIN']=20/3600; h['BPA']=0.
+        if name == 'low':
+            h['CTYPE3']='FREQ'; h['CRPIX3']=1.; h['CRVAL3']=nus[0]; h['CDELT3']=nus[1]-nus[0]; h['CUNIT3']='Hz'
+        fits.PrimaryHDU((plane if name == 'low' else plane[0]).astype('f4'), h).writeto(f'{sys.argv[1]}/{s}-{name}.fits')
+`;
+
+const lies = ['--inclination', '0 deg', '--position-angle', '0 deg', '--distance', '10 Mpc'];
+
+describe('gyrelight measure', () => {
+  it('measures foreign maps: RM, field pitch, laws; tables with units that astropy reads, clean FITS', (context) => {
+    needPython(context, 'astropy', 'numpy');
+    needCommand(context, 'fitsverify');
+    inFolder((folder) => {
+      runPython(foreignMaps, [folder]);
+      const maps = ['low', 'high'].flatMap((band) => ['i', 'q', 'u'].map((stokes) => `${stokes.toUpperCase()}=${stokes}-${band}.fits${band === 'high' ? '@4.8GHz' : ''}`));
+      const { status, stderr, stdout } = gyrelight(['measure', ...maps, ...lies, '--convention', 'U-reversed', '--noise', '1 uJy/beam', '--radii', '2 kpc,5 kpc,8 kpc', '--sectors', '12', '--laws', 'integrated', '--out', 'm'], folder);
+      expect(stderr).not.toMatch(/Error/);
+      expect(status).toBe(0);
+      expect(stdout).toMatch(/resolution .* largest depth .* largest scale /);
+      for (const name of ['RM.fits', 'RM-error.fits', 'faraday-spectrum.fits', 'fieldAngle.fits', 'profiles.csv', 'laws.csv', 'summary.json', 'plots']) expect(namesIn(join(folder, 'm'))).toContain(name);
+      for (const name of namesIn(join(folder, 'm')).filter((file) => file.endsWith('.fits'))) {
+        expect(fitsVerdict(new Uint8Array(readFileSync(join(folder, 'm', name)))), name).toMatch(/found 0 warning.* and 0 error/);
+      }
+      const seen = pythonJson(
+        `
+import sys, json, numpy as np
+from astropy.io import fits
+from astropy.table import Table
+t = Table.read(sys.argv[1]+'/profiles.csv', format='ascii.ecsv')
+laws = Table.read(sys.argv[1]+'/laws.csv', format='ascii.ecsv')
+rm = fits.getdata(sys.argv[1]+'/RM.fits'); h = fits.getheader(sys.argv[1]+'/faraday-spectrum.fits')
+print(json.dumps(dict(units=[str(t[c].unit) for c in ('RM','P','azimuth','inner')], rows=len(t), rm=[float(rm[20,20]), float(rm[30,20])],
+  pitch=[float(v) for v in t['pitch'][:24]], fraction=float(t['fraction'][0]), axis=h['CTYPE3'], first=str(laws['law'][0]))))
+`,
+        [join(folder, 'm')],
+      ) as { units: string[]; rows: number; rm: number[]; pitch: number[]; fraction: number; axis: string };
+      expect(seen.units).toEqual(['rad / m2', 'Jy / beam', 'deg', 'kpc']);
+      expect(seen.rows).toBe(2 * 24);
+      // 30 rad m^-2 at the centre, and 10 pixels of 0.485 kpc north of it: the peak's parabola errs by 0.1 % of the resolution.
+      expect(Math.abs(seen.rm[0] - 30)).toBeLessThan(0.5);
+      expect(Math.abs(seen.rm[1] - (30 + 2 * 4.848))).toBeLessThan(0.5);
+      // The pitch put in; pixels weigh unevenly in a sector.
+      for (const pitch of seen.pitch) expect(Math.abs(pitch + 20)).toBeLessThan(0.5);
+      expect(Math.abs(seen.fraction - 0.1)).toBeLessThan(1e-4);
+      expect(seen.axis).toBe('FDEP');
+      const summary = JSON.parse(readFileSync(join(folder, 'm', 'summary.json'), 'utf8')) as Summary;
+      const rm = summary.rings.filter(({ quantity }) => quantity === 'RM');
+      expect(rm.length).toBe(2);
+      // It grows north: position angle 0, azimuth 0.
+      for (const { harmonics } of rm) expect(Math.min(harmonics?.[0].phaseDeg ?? NaN, 360 - (harmonics?.[0].phaseDeg ?? NaN))).toBeLessThan(3);
+    });
+  });
+
+  it("measures this program's own maps, whose headers say all", () => {
+    inFolder((folder) => {
+      writeFileSync(join(folder, 's.yaml'), smallScene);
+      expect(gyrelight(['map', 's.yaml', '--out', 'maps', '--quiet'], folder).status).toBe(0);
+      const files = ['low', 'high'].flatMap((band) => ['I', 'Q', 'U'].map((stokes) => `maps/${stokes}-${band}.fits`));
+      const { status, stdout } = gyrelight(['measure', ...files, '--galaxy', 's.yaml', '--laws', 'pixels', '--radii', '4 kpc,5 kpc', '--sectors', '4', '--thermal-fraction', '0.1', '--thermal-at', '1.4 GHz', '--deconvolve', '--json', '--out', 'm'], folder);
+      expect(status).toBe(0);
+      const summary = JSON.parse(stdout) as Summary;
+      expect(summary.layout).toBe('rings');
+      expect(summary.integratedLaws.length).toBeGreaterThan(5);
+      expect(namesIn(join(folder, 'm', 'laws'))).toContain('best.fits');
+    });
+  });
+
+  it('cuts a disc near edge-on into strips', () => {
+    inFolder((folder) => {
+      writeFileSync(join(folder, 's.yaml'), smallScene.replace('inclination: 40 deg', 'inclination: 88 deg'));
+      expect(gyrelight(['map', 's.yaml', '--out', 'maps', '--quiet'], folder).status).toBe(0);
+      const { status, stdout } = gyrelight(['measure', 'maps/Q-low.fits', 'maps/U-low.fits', '--galaxy', 's.yaml', '--laws', 'none', '--json', '--out', 'm'], folder);
+      expect(status).toBe(0);
+      expect((JSON.parse(stdout) as Summary).layout).toBe('strips');
+      expect(readFileSync(join(folder, 'm', 'profiles.csv'), 'utf8')).toMatch(/^band,frequency,from,to,across,/m);
+    });
+  });
+
+  it('refuses bad input with words: exit 2, nothing written, no stack', () => {
+    inFolder((folder) => {
+      writeFileSync(join(folder, 's.yaml'), smallScene);
+      expect(gyrelight(['map', 's.yaml', '--out', 'maps', '--quiet'], folder).status).toBe(0);
+      const [Q, U] = ['maps/Q-low.fits', 'maps/U-low.fits'];
+      const cases: readonly (readonly [readonly string[], RegExp])[] = [
+        [[Q, U], /--inclination.*not known/],
+        [[Q, U, '--galaxy', 's.yaml', '--distance', '3 Mpc'], /leave --distance out/],
+        [[Q, '--galaxy', 's.yaml'], /no Stokes U goes with it/],
+        [[Q, U, 'maps/U-low.fits', '--galaxy', 's.yaml'], /given twice/],
+        [[Q, 'nowhere.fits', '--galaxy', 's.yaml'], /no such file/],
+        [[Q, 's.yaml', '--galaxy', 's.yaml'], /not a FITS file/],
+        [['maps/RM.fits', '--galaxy', 's.yaml'], /Stokes/],
+        [[Q, U, '--galaxy', 's.yaml', '--radii', '4 kpc,2 kpc'], /rise/],
+        [[Q, U, '--galaxy', 's.yaml', '--radii', '4,2'], /--radii 4,2: .*unit/],
+        [[Q, U, '--galaxy', 's.yaml', '--sectors', '0'], /--sectors 0/],
+        [[Q, U, '--galaxy', 's.yaml', '--depths', '1 rad/m^2'], /--depths/],
+        [[Q, U, '--galaxy', 's.yaml', '--smooth', '10 arcsec'], /narrower/],
+        [[Q, U, '--galaxy', 's.yaml', '--thermal-fraction', '2'], /--thermal-fraction 2/],
+        [[Q, U, '--galaxy', 's.yaml', '--noise', '1 kpc'], /--noise 1 kpc/],
+        [[Q, U, ...['--inclination', '40 deg', '--position-angle', '0 deg', '--distance', '10 Mpc', '--centre', '10 deg,10 deg']], /no pixel of the maps/],
+      ];
+      for (const [parameters, pattern] of cases) {
+        const { status, stderr } = gyrelight(['measure', ...parameters, '--out', 'o', '--quiet'], folder);
+        expect(stderr, parameters.join(' ')).toMatch(pattern);
+        expect(status).toBe(2);
+        expect(stderr).not.toMatch(/\n\s+at /);
+      }
+      expect(namesIn(folder)).toEqual(['maps', 's.yaml']);
+    });
+  });
+});
