@@ -78,9 +78,9 @@ function repeated(value: number | undefined, count: number): number[] | undefine
  * they are not whole, or the header says that the beam differs from channel to channel.
  */
 export function readBeam(cards: readonly Card[], place: FitsPlace): Beam | undefined {
-  if (findCard(cards, 'CASAMBM')?.value === true) {
-    throw fitsError(place, 'CASAMBM = T: each channel has a beam of its own; bring them to one beam, or state it');
-  }
+  // A logical keyword that ends in MBM marks multiple beams (common practice, not in the standard).
+  const many = cards.find(({ keyword, value }) => keyword.endsWith('MBM') && value === true);
+  if (many) throw fitsError(place, `${many.keyword} = T: each channel has a beam of its own; bring them to one beam, or state it`);
   const major = findNumber(cards, 'BMAJ', place) ?? 0;
   const minor = findNumber(cards, 'BMIN', place) ?? 0;
   const angle = findNumber(cards, 'BPA', place);

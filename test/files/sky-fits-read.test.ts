@@ -142,7 +142,7 @@ describe('other keywords', () => {
     const header = { ...SKY, BUNIT: 'JY/BEAM', BMAJ: 0.01, BMIN: 0.005, BPA: 90, POLCCONV: 'COSMO' };
     expect(read([3, 2], header)).toMatchObject({ unit: 'Jy/beam', beam: { majorArcsec: 36, minorArcsec: 18, angle: Math.PI / 2 }, convention: 'U-reversed' });
     const stated = { beam: { majorArcsec: 3, minorArcsec: 2, angle: 1 }, unit: 'K', convention: 'IAU' } as const;
-    expect(read([3, 2], { ...header, CASAMBM: true }, stated)).toMatchObject(stated);
+    expect(read([3, 2], { ...header, CHANMBM: true }, stated)).toMatchObject(stated);
     expect(read([3, 2], { ...SKY, BUNIT: '' }).notes).toEqual(['HDU 0 (primary): BUNIT is missing']);
   });
 
@@ -196,7 +196,7 @@ describe('what is not understood is named', () => {
     ['no text', [3, 2], { ...SKY, CTYPE1: 7 }, 'CTYPE1 = 7 is no text in quotes'],
     ['half a beam', [3, 2], { ...SKY, BMAJ: 0.1 }, 'BMAJ = 0.1, BMIN = 0; allowed'],
     ['a beam without angle', [3, 2], { ...SKY, BMAJ: 0.2, BMIN: 0.1 }, 'BPA is missing'],
-    ['many beams', [3, 2], { ...SKY, CASAMBM: true }, 'each channel has a beam of its own'],
+    ['many beams', [3, 2], { ...SKY, CHANMBM: true }, 'each channel has a beam of its own'],
     ['another convention', [3, 2], { ...SKY, POLCCONV: 'MINE' }, "POLCCONV = 'MINE'; allowed: IAU, COSMO"],
     ['a width below 0', [3, 2, 2], { ...FREQ, CHANWID: -1 }, 'the width of a channel is -1 Hz'],
   ])('%s', (_, shape, header, message) => {
