@@ -53,6 +53,28 @@ export class Graph {
     return node.kind === 'constant' ? node.value : undefined;
   }
 
+  /** The nodes that a node is made of, powers' bases and summands included. */
+  argumentsOf(id: NodeId): readonly NodeId[] {
+    const node = this.nodes[id];
+    switch (node.kind) {
+      case 'constant':
+      case 'variable':
+      case 'parameter':
+        return [];
+      case 'sum':
+        return node.terms.map(([, term]) => term);
+      case 'product':
+        return node.factors.map(([base]) => base);
+      case 'unary':
+      case 'table':
+        return [node.argument];
+      case 'binary':
+        return [node.left, node.right];
+      case 'select':
+        return [node.condition, node.yes, node.no];
+    }
+  }
+
   constant(value: number): NodeId {
     return this.intern({ kind: 'constant', value }, `c${Object.is(value, -0) ? 0 : value}`, false);
   }

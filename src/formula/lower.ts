@@ -1,5 +1,6 @@
 import type { BinaryName, UnaryName } from './functions.ts';
 import type { Factor, Graph, NodeId, Term } from './graph.ts';
+import { shareFactors, type SharedFactors } from './share-factors.ts';
 
 /** Index of a value in a program: the result of the instruction at that index. */
 export type Value = number;
@@ -54,6 +55,7 @@ class Lowering {
   private readonly lowered = new Map<NodeId, Value>();
   private readonly parameters: string[] = [];
   private readonly tables: string[] = [];
+  private shared: SharedFactors = { items: [], products: new Map() };
 
   constructor(
     private readonly graph: Graph,
@@ -62,6 +64,7 @@ class Lowering {
   ) {}
 
   program(outputs: readonly NodeId[]): Program {
+    this.shared = shareFactors(this.graph, outputs, (id) => this.substitution.get(id) ?? id);
     const values = outputs.map((id) => this.lower(id));
     return {
       parameters: this.parameters,
@@ -97,7 +100,7 @@ class Lowering {
       case 'sum':
         return this.sum(node.constant, node.terms);
       case 'product':
-        return this.product(node.coefficient, node.factors);
+        return this.product(id, node.coefficient, node.factors);
       case 'unary':
         return this.emit({ op: 'unary', name: node.name, argument: this.lower(node.argument) });
       case 'binary':
@@ -142,16 +145,21 @@ class Lowering {
     return { size, sign: coefficient < 0 ? -1 : 1 };
   }
 
-  private product(coefficient: number, factors: readonly Factor[]): Value {
-    const uniform = factors.filter(([id]) => !this.graph.isVarying(id));
-    const varying = factors.filter(([id]) => this.graph.isVarying(id));
+  private product(id: NodeId, coefficient: number, factors: readonly Factor[]): Value {
+    const uniform = factors.filter(([base]) => !this.graph.isVarying(base)).map(([base, exponent]) => this.power(this.lower(base), exponent));
+    // Products made while lowering are not planned: their factors are taken as they are.
+    const varying = factors.filter(([base]) => this.graph.isVarying(base));
+    const planned = this.shared.products.get(id)?.map((index) => this.item(index)) ?? varying.map(([base, exponent]) => this.power(this.lower(base), exponent));
     let total: Value | undefined = Math.abs(coefficient) === 1 ? undefined : this.constant(Math.abs(coefficient));
-    for (const [id, exponent] of [...uniform, ...varying]) {
-      const power = this.power(this.lower(id), exponent);
-      total = total === undefined ? power : this.multiply(total, power);
-    }
+    for (const value of [...uniform, ...planned]) total = total === undefined ? value : this.multiply(total, value);
     if (total === undefined) return this.constant(coefficient);
     return coefficient < 0 ? this.emit({ op: 'negate', argument: total }) : total;
+  }
+
+  private item(index: number): Value {
+    const item = this.shared.items[index];
+    if (item.kind === 'power') return this.power(this.lower(item.factor[0]), item.factor[1]);
+    return this.multiply(this.item(item.first), this.item(item.second));
   }
 
   /** base^exponent: whole and half powers by multiplication, one division a base. */

@@ -1,5 +1,5 @@
 import { vector as v, type Vector } from './code.ts';
-import { exponential } from './coefficients.ts';
+import { exponential, exponential2 } from './coefficients.ts';
 import type { FunctionWriter } from './function.ts';
 import { polynomial } from './polynomial.ts';
 
@@ -30,9 +30,9 @@ export function reduce(w: FunctionWriter, x: Vector): Reduction {
   return { less, shifted: w.let(v.shiftLeft(shifted, 52)) };
 }
 
-/** x held to where `reduce` works; NaN stays NaN. */
+/** x held to where `reduce` works above; what lies too low is masked by its users. NaN stays NaN. */
 export function holdExponent(w: FunctionWriter, x: Vector): Vector {
-  return w.let(v.greater(v.lesser(x, w.constant(710)), w.constant(-710)));
+  return w.let(v.lesser(x, w.constant(710)));
 }
 
 /** e^x; 0 below the smallest number of full precision. */
@@ -40,6 +40,17 @@ export function exp(w: FunctionWriter, x: Vector, { less, shifted } = reduce(w, 
   // Half the value, doubled last: the doubling overflows as it should.
   const half = w.let(v.addBits(v.add(w.constant(1), less), shifted));
   return w.let(v.andNot(v.add(half, half), v.less(x, w.constant(lowest))));
+}
+
+/** 2^x; 0 below the smallest number of full precision. */
+export function exp2(w: FunctionWriter, x: Vector): Vector {
+  const shift = w.constant(roundingShift - 1);
+  const held = w.let(v.lesser(x, w.constant(1025)));
+  const shifted = w.let(v.add(held, shift));
+  const r = w.let(v.subtract(held, v.subtract(shifted, shift)));
+  const value = v.add(w.constant(1), v.multiply(r, polynomial(w, r, exponential2)));
+  const half = w.let(v.addBits(value, v.shiftLeft(shifted, 52)));
+  return w.let(v.andNot(v.add(half, half), v.less(x, w.constant(-1021.5))));
 }
 
 /** e^x - 1, exact relative to itself also near 0. */

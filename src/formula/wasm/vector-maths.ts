@@ -66,7 +66,7 @@ export class VectorMaths {
       case 'atan2':
         return this.angle(a, b);
       case 'pow':
-        return this.w.call(this.w.module.once('pow', ['v128', 'v128'], ['v128'], (i) => i.leave(pow(i, i.parameter(0, 'v128'), i.parameter(1, 'v128')))), 'v128', a, b);
+        return pow(this.w, a, b);
     }
   }
 
