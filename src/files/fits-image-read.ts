@@ -7,6 +7,11 @@ import { fitsError } from './fits-types.ts';
  * equals BLANK. 64-bit integers beyond 2^53 are rounded to the nearest double.
  */
 export function imageValues(cards: readonly Card[], bitpix: Bitpix, data: Uint8Array, place: FitsPlace): Float64Array {
+  return decodeNumbers(data, bitpix, imageScaling(cards, bitpix, place));
+}
+
+/** BSCALE, BZERO and BLANK of an image. Throws InputError where BLANK is no whole number. */
+export function imageScaling(cards: readonly Card[], bitpix: Bitpix, place: FitsPlace): Scaling {
   const scale = findNumber(cards, 'BSCALE', place) ?? 1;
   const zero = findNumber(cards, 'BZERO', place) ?? 0;
   // BLANK means nothing for floating point, where NaN itself is blank (FITS 4.0, section 4.4.2.5).
@@ -16,7 +21,7 @@ export function imageValues(cards: readonly Card[], bitpix: Bitpix, data: Uint8A
   if (blank !== undefined && !Number.isSafeInteger(blank) && blank !== -(2 ** 63)) {
     throw fitsError(place, `BLANK = ${blank} cannot be told from its neighbours; allowed: below 2^53, or -2^63`);
   }
-  return decodeNumbers(data, bitpix, { scale, zero, blank });
+  return { scale, zero, blank };
 }
 
 export interface Scaling {

@@ -3,7 +3,7 @@ import { onesComplementSum } from './fits-checksum.ts';
 import { findCard, findString, getInteger, isLayoutKeyword, readHeader, valueText } from './fits-header.ts';
 import { imageValues } from './fits-image-read.ts';
 import { tableColumns } from './fits-table.ts';
-import type { Bitpix, Card, FitsHdu, FitsPlace } from './fits-types.ts';
+import type { Bitpix, Card, FitsHdu, FitsPlace, ImageHdu } from './fits-types.ts';
 import { blockedLength, fitsError, fitsPlace } from './fits-types.ts';
 import { InputError } from '../units/input-error.ts';
 
@@ -19,14 +19,40 @@ const LENGTH = { least: 0, most: Number.MAX_SAFE_INTEGER };
 export function readFits(bytes: Uint8Array, fileName: string): FitsHdu[] {
   const plain = isGzip(bytes) ? gunzip(bytes, fileName) : bytes;
   checkStart(plain, fileName);
+  return readUnits(plain, fileName, 0);
+}
+
+/**
+ * The units of a part of a file that begins with unit number `first`: all of it for 0, else extensions.
+ * Throws InputError as `readFits` does.
+ */
+export function readUnits(bytes: Uint8Array, fileName: string, first: number): FitsHdu[] {
   const hdus: FitsHdu[] = [];
   let offset = 0;
-  while (offset < plain.length && !isFill(plain, offset, fileName, hdus.length)) {
-    const { hdu, end } = readUnit(plain, offset, fileName, hdus.length);
+  while (offset < bytes.length && !isFill(bytes, offset, fileName, first + hdus.length)) {
+    const { hdu, end } = readUnit(bytes, offset, fileName, first + hdus.length);
     hdus.push(hdu);
     offset = end;
   }
   return hdus;
+}
+
+/** The first unit of a file from its first bytes: an image without its values, and where they begin and end. */
+export function readFirstHeader(bytes: Uint8Array, fileName: string): { hdu: ImageHdu; dataStart: number; dataEnd: number } {
+  checkStart(bytes, fileName);
+  const place = fitsPlace(fileName, 0);
+  const { cards, end } = readHeader(bytes, 0, place);
+  const { bitpix, shape } = sizesOf(cards, place);
+  const count = shape.length === 0 ? 0 : shape.reduce((product, n) => product * n, 1);
+  const hdu: ImageHdu = { kind: 'image', name: '', notes: [], bitpix, shape, values: new Float64Array(0), cards: cards.filter((card) => !isLayoutKeyword(card.keyword)) };
+  return { hdu, dataStart: end, dataEnd: end + blockedLength((Math.abs(bitpix) / 8) * count) };
+}
+
+function sizesOf(cards: readonly Card[], place: FitsPlace): { bitpix: Bitpix; shape: number[] } {
+  const bitpix = getInteger(cards, 'BITPIX', { least: -64, most: 64 }, place);
+  if (!BITPIX.includes(bitpix)) throw fitsError(place, `BITPIX = ${bitpix}; allowed: ${BITPIX.join(', ')}`);
+  const shape = Array.from({ length: getInteger(cards, 'NAXIS', AXES, place) }, (_, axis) => getInteger(cards, `NAXIS${axis + 1}`, LENGTH, place));
+  return { bitpix: bitpix as Bitpix, shape };
 }
 
 function checkStart(bytes: Uint8Array, file: string): void {
@@ -55,11 +81,7 @@ function readUnit(bytes: Uint8Array, start: number, file: string, index: number)
   const place = fitsPlace(file, index, name);
   const type = index === 0 ? 'IMAGE' : (findString(allCards, 'XTENSION', place) ?? '');
   refuseUnread(allCards, type, place);
-  const bitpix = getInteger(allCards, 'BITPIX', { least: -64, most: 64 }, place);
-  if (!BITPIX.includes(bitpix)) throw fitsError(place, `BITPIX = ${bitpix}; allowed: ${BITPIX.join(', ')}`);
-  const shape = Array.from({ length: getInteger(allCards, 'NAXIS', AXES, place) }, (_, axis) =>
-    getInteger(allCards, `NAXIS${axis + 1}`, LENGTH, place),
-  );
+  const { bitpix, shape } = sizesOf(allCards, place);
   const extra = index === 0 ? 0 : getInteger(allCards, 'PCOUNT', LENGTH, place);
   if (index > 0) getInteger(allCards, 'GCOUNT', { least: 1, most: 1 }, place);
 

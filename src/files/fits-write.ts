@@ -40,16 +40,32 @@ export function writeFits(hdus: readonly (ImageHdu | TableHdu)[]): Uint8Array {
   return file;
 }
 
+/**
+ * The header of a primary image whose data are written elsewhere, bit by bit: `dataSum` is their
+ * ones'-complement sum, fill included. Its length does not depend on the sum.
+ */
+export function imageHeaderBytes(hdu: ImageHdu, dataSum: number): Uint8Array {
+  return finishedHeader(hdu, true, dataSum);
+}
+
+/** The bytes of extensions, to follow a primary image. */
+export function extensionBytes(tables: readonly TableHdu[]): Uint8Array[] {
+  return tables.flatMap((table) => Object.values(unitBytes(table, false)));
+}
+
 interface UnitBytes {
   readonly header: Uint8Array;
   readonly data: Uint8Array;
 }
 
 function unitBytes(hdu: ImageHdu | TableHdu, isPrimary: boolean): UnitBytes {
+  const data = hdu.kind === 'image' ? imageBytes(hdu) : tableBytes(hdu);
+  return { header: finishedHeader(hdu, isPrimary, onesComplementSum(data)), data };
+}
+
+function finishedHeader(hdu: ImageHdu | TableHdu, isPrimary: boolean, dataSum: number): Uint8Array {
   const ownCards = hdu.cards.filter((card) => isLayoutKeyword(card.keyword));
   if (ownCards.length > 0) throw new RangeError(`the writer makes ${ownCards[0].keyword} itself`);
-  const data = hdu.kind === 'image' ? imageBytes(hdu) : tableBytes(hdu);
-  const dataSum = onesComplementSum(data);
   const headerWith = (checksum: string): Uint8Array =>
     headerBytes([
       ...(hdu.kind === 'image' ? imageLayout(hdu, isPrimary) : tableLayout(hdu)),
@@ -59,7 +75,7 @@ function unitBytes(hdu: ImageHdu | TableHdu, isPrimary: boolean): UnitBytes {
       { keyword: 'DATASUM', value: String(dataSum), comment: 'of its data' },
     ]);
   const sum = onesComplementSum(headerWith(NO_CHECKSUM), dataSum);
-  return { header: headerWith(checksumText(sum)), data };
+  return headerWith(checksumText(sum));
 }
 
 function imageLayout(hdu: ImageHdu, isPrimary: boolean): Card[] {

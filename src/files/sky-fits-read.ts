@@ -18,6 +18,18 @@ import { InputError } from '../units/input-error.ts';
 export function skyImageFromFits(hdus: readonly FitsHdu[], fileName: string, overrides: SkyImageOverrides = {}): SkyImage {
   const notes: string[] = [];
   const { hdu, place } = chooseImage(hdus, fileName, overrides.hduIndex, notes);
+  const { facts, order } = skyFacts(hdu, hdus, place, overrides, notes);
+  return { ...facts, values: reordered(hdu.values, order) };
+}
+
+/** All that a file states of an image of the sky but its values, whose axes are in `order`, the slowest first. */
+export interface SkyFacts {
+  readonly facts: Omit<SkyImage, 'values'>;
+  readonly order: readonly Extent[];
+}
+
+/** Reads the header of an image, whose values need not be there. Throws InputError as `skyImageFromFits` does. */
+export function skyFacts(hdu: ImageHdu, hdus: readonly FitsHdu[], place: FitsPlace, overrides: SkyImageOverrides, notes: string[]): SkyFacts {
   notes.push(...hdu.notes);
   const { cards } = hdu;
   const matrix = readAxes(hdu, place);
@@ -51,7 +63,7 @@ export function skyImageFromFits(hdus: readonly FitsHdu[], fileName: string, ove
   const unit = overrides.unit ?? unitOf(cards, place, notes);
   const strides = strideOf(hdu.shape);
   const order = [stokesAxis, layerAxis, latitude, longitude].map((axis) => ({ length: axis?.length ?? 1, stride: axis ? (strides[axis.number - 1] ?? 0) : 0 }));
-  return {
+  const facts = {
     nx: longitude.length,
     ny: latitude.length,
     pixelArcsec: Math.sqrt(Math.abs(wcs.cd[0] * wcs.cd[3] - wcs.cd[1] * wcs.cd[2])) * ARCSEC_PER_DEGREE,
@@ -64,9 +76,9 @@ export function skyImageFromFits(hdus: readonly FitsHdu[], fileName: string, ove
     unit,
     beam: overrides.beam ?? readBeam(cards, place),
     convention: overrides.convention ?? convention(cards, place),
-    values: reordered(hdu.values, order),
     notes,
   };
+  return { facts, order };
 }
 
 function chooseImage(hdus: readonly FitsHdu[], file: string, index: number | undefined, notes: string[]): { hdu: ImageHdu; place: FitsPlace } {
@@ -127,6 +139,7 @@ function strideOf(shape: readonly number[]): number[] {
   });
 }
 
+/** Length of an axis, and how far apart its values lie in the file. */
 interface Extent {
   readonly length: number;
   readonly stride: number;

@@ -4,7 +4,7 @@ import { asciiText } from './fits-card-write.ts';
 import { frequencyAxis } from './frequency-axis.ts';
 import type { Provenance } from './fits-scene.ts';
 import { sceneTable } from './fits-scene.ts';
-import type { Card, TableHdu } from './fits-types.ts';
+import type { Card, ImageHdu, TableHdu } from './fits-types.ts';
 import { makeImage, writeFits } from './fits-write.ts';
 import type { MapSky, ThirdAxis } from './sky-header.ts';
 import { beamCards, conventionCards, coordinateCards, DEPTH_AXIS, skyOfGrid } from './sky-header.ts';
@@ -65,6 +65,15 @@ export function mapFits(map: MapQuantity, provenance: Provenance, bits: 32 | 64)
 
 /** The FITS file of a cube with a linear axis of Faraday depth (free-form CTYPE `FDEP`), with its scene. */
 export function depthCubeFits(cube: DepthCube, provenance: Provenance, bits: 32 | 64): Uint8Array {
+  return skyFits({ ...cube, ...depthAxis(cube), tables: [] }, provenance, bits);
+}
+
+/** The units of such a file but for the values of the first, which are written bit by bit, 32 bits each. */
+export function depthCubeUnits(cube: Omit<DepthCube, 'values'>, provenance: Provenance): { primary: ImageHdu; tables: TableHdu[] } {
+  return skyUnits({ ...cube, ...depthAxis(cube), values: new Float64Array(0), tables: [] }, provenance, 32);
+}
+
+function depthAxis(cube: Omit<DepthCube, 'values'>): Pick<SkyFits, 'third' | 'cards'> {
   const third: ThirdAxis = {
     ctype: DEPTH_AXIS,
     cunit: 'rad/m2',
@@ -77,7 +86,7 @@ export function depthCubeFits(cube: DepthCube, provenance: Provenance, bits: 32 
     cube.referenceLambdaM2 === undefined
       ? []
       : [{ keyword: 'LAMSQ0', value: cube.referenceLambdaM2, comment: '[m2] wavelength squared of the angles' }];
-  return skyFits({ ...cube, third, cards, tables: [] }, provenance, bits);
+  return { third, cards };
 }
 
 interface SkyFits extends Quantity {
@@ -88,6 +97,11 @@ interface SkyFits extends Quantity {
 }
 
 function skyFits(image: SkyFits, provenance: Provenance, bits: 32 | 64): Uint8Array {
+  const { primary, tables } = skyUnits(image, provenance, bits);
+  return writeFits([primary, ...tables]);
+}
+
+function skyUnits(image: SkyFits, provenance: Provenance, bits: 32 | 64): { primary: ImageHdu; tables: TableHdu[] } {
   const sky = 'wcs' in image.sky ? image.sky : skyOfGrid(image.sky);
   const shape = [sky.nx, sky.ny, ...(image.third ? [image.third.length] : [])];
   const cards: Card[] = [
@@ -102,5 +116,5 @@ function skyFits(image: SkyFits, provenance: Provenance, bits: 32 | 64): Uint8Ar
     { keyword: 'COMMENT', comment: 'The scene that this was made from is in the table SCENE.' },
   ];
   const primary = makeImage(shape, image.values, bits === 32 ? -32 : -64, cards);
-  return writeFits([primary, ...image.tables, sceneTable(provenance)]);
+  return { primary, tables: [...image.tables, sceneTable(provenance)] };
 }
