@@ -10,7 +10,8 @@ import { writeCsv } from '../files/csv-write.ts';
 import { mapFits } from '../files/sky-fits-write.ts';
 import { decidedBy } from '../infer/decided-by.ts';
 import type { Likelihood, ResidualPlace } from '../infer/likelihood.ts';
-import { rankHypotheses, type RankedHypothesis } from '../infer/rank.ts';
+import { compareEvidences, evidenceVerdict, type EvidencePair, type JudgedHypothesis } from '../infer/evidence-verdict.ts';
+import { misfitSentence, rankHypotheses, type RankedHypothesis } from '../infer/rank.ts';
 import type { Study } from '../infer/study-types.ts';
 import type { DataSet } from '../infer/types.ts';
 import type { Ring } from '../measure/ring-profile.ts';
@@ -21,19 +22,22 @@ import { offsetFromPixel } from '../sky/wcs.ts';
 import { convertQuantity, formatQuantity } from '../units/quantity.ts';
 import { gatherAssumptions } from './assumptions.ts';
 import { bestTexts, correlationTable, errorTexts, type FittedRun } from './hypothesis-run.ts';
-import { slug, type OutputFolder } from './output-folder.ts';
+import { addPosteriorFiles, posteriorRecord, type SampledRun } from './posterior-files.ts';
+import { bandFileName, slug, type OutputFolder } from './output-folder.ts';
 import { version } from './version.ts';
 
 /** Fitted hypotheses in order, best first, with what is said of them. */
 export interface RankOutcome {
-  readonly ordered: readonly FittedRun[];
+  readonly ordered: readonly SampledRun[];
   readonly ranked: readonly RankedHypothesis[];
   readonly rows: readonly RankingRow[];
+  /** Every pair by evidence; none where there are none. */
+  readonly pairs: readonly EvidencePair[];
   readonly verdict: string;
 }
 
-/** Orders fitted hypotheses and says what tells each from the best. */
-export function rankRuns(runs: readonly FittedRun[], data: DataSet, likelihood: Likelihood): RankOutcome {
+/** Orders fitted hypotheses, by evidence where all have it and else by BIC, and says what tells each from the best. */
+export function rankRuns(runs: readonly SampledRun[], data: DataSet, likelihood: Likelihood): RankOutcome {
   const ranking = rankHypotheses(
     runs.map(({ prepared, fit }) => ({
       name: prepared.name,
@@ -44,22 +48,43 @@ export function rankRuns(runs: readonly FittedRun[], data: DataSet, likelihood: 
       residualCount: likelihood.residualCount,
     })),
   );
-  const ordered = ranking.hypotheses.map(({ name }) => {
+  const judged = runs.flatMap(({ prepared, posterior }) =>
+    posterior?.logEvidence ? [{ name: prepared.name, logEvidence: posterior.logEvidence.value, error: posterior.logEvidence.error }] : [],
+  );
+  const byEvidence = judged.length === runs.length;
+  const evidence = (name: string): JudgedHypothesis | undefined => (byEvidence ? judged.find((one) => one.name === name) : undefined);
+  const ranked = byEvidence
+    ? [...ranking.hypotheses].sort((a, b) => evidence(b.name)!.logEvidence - evidence(a.name)!.logEvidence)
+    : ranking.hypotheses;
+  const ordered = ranked.map(({ name }) => {
     const run = runs.find(({ prepared }) => prepared.name === name);
     if (!run) throw new Error(`hypothesis ${name} was ranked but not fitted`);
     return run;
   });
   const azimuth = azimuthOf(data, ordered[0].bestScene);
-  const rows = ranking.hypotheses.map((hypothesis, k): RankingRow => {
+  const best = evidence(ranked[0].name);
+  const rows = ranked.map((hypothesis, k): RankingRow => {
     const decided = k === 0 ? undefined : decidedBy(data, likelihood.places, ordered[0].fit.residuals, ordered[k].fit.residuals, azimuth);
+    const own = evidence(hypothesis.name);
     return {
       name: hypothesis.name,
       chi2PerN: hypothesis.reducedChi2,
       deltaAic: hypothesis.deltaAic,
+      ...(own && best && { deltaLnEvidence: own.logEvidence - best.logEvidence, deltaLnEvidenceError: Math.hypot(own.error, best.error) }),
       ...(decided && { decidedBy: decidedText(decided, data) }),
     };
   });
-  return { ordered, ranked: ranking.hypotheses, rows, verdict: ranking.verdict };
+  const unsettled = runs.flatMap(({ prepared, posterior }) =>
+    posterior && !posterior.believable ? [`Not to be believed yet: "${prepared.name}". ${posterior.reason}`] : [],
+  );
+  const verdict = byEvidence ? [evidenceVerdict(judged), misfitSentence(ranked[0])] : [ranking.verdict];
+  return {
+    ordered,
+    ranked,
+    rows,
+    pairs: byEvidence ? compareEvidences(judged) : [],
+    verdict: [...verdict, ...unsettled].filter((sentence) => sentence !== '').join(' '),
+  };
 }
 
 /** `1.40 GHz, azimuth 150°–240°`. */
@@ -114,6 +139,7 @@ export function rankingRecords({ ordered, ranked }: RankOutcome): readonly Recor
       converged: fit.converged,
       atBound: prepared.parameters.filter((_, j) => fit.atBound[j]).map(({ path }) => path),
       evaluations: fit.evaluations,
+      ...posteriorRecord(ordered[k]),
     };
   });
 }
@@ -130,6 +156,7 @@ export function addRankFiles(folder: OutputFolder, report: RankReport): void {
     folder.add(`${name}/overview.svg`, overviewSvg(comparisonOverview(run.prepared.name, subtitle, run.bestScene, data, observed, run.measured, ring)));
     folder.add(`${name}/best.scene.yaml`, run.bestProvenance.sceneText);
     addModelMaps(folder, name, run, data);
+    addPosteriorFiles(folder, name, run, observed, data, report.seed);
   }
   folder.add('report.html', reportHtml(htmlReport(report)));
 }
@@ -141,8 +168,8 @@ function parameterText({ prepared, fit }: FittedRun, j: number): string {
   return `${path} ${withError(convertQuantity(fit.values[j], unit, shownUnit), error, shownUnit)}`;
 }
 
-/** Model and residual (data less model) maps, one cube per band and Stokes parameter. */
-function addModelMaps(folder: OutputFolder, name: string, run: FittedRun, data: DataSet): void {
+/** Adds model and residual (data less model) maps, one cube per band and Stokes parameter. */
+export function addModelMaps(folder: OutputFolder, name: string, run: FittedRun, data: DataSet): void {
   const pixels = data.axes.nx * data.axes.ny;
   for (const [index, band] of data.bands.entries()) {
     for (const quantity of ['I', 'Q', 'U'] as const) {
@@ -159,8 +186,8 @@ function addModelMaps(folder: OutputFolder, name: string, run: FittedRun, data: 
         channels: planes.map((plane) => band.channels[data.planes[plane].channel]),
         ...(band.beam && { beam: band.beam }),
       };
-      folder.add(`${name}/model-${quantity}-${band.name}.fits`, mapFits({ ...about, quantity, values: model }, run.bestProvenance, 32));
-      folder.add(`${name}/residual-${quantity}-${band.name}.fits`, mapFits({ ...about, quantity: `${quantity} residual`, values: residual, comments: ['Data less model.'] }, run.bestProvenance, 32));
+      folder.add(`${name}/model-${quantity}-${bandFileName(band.name)}.fits`, mapFits({ ...about, quantity, values: model }, run.bestProvenance, 32));
+      folder.add(`${name}/residual-${quantity}-${bandFileName(band.name)}.fits`, mapFits({ ...about, quantity: `${quantity} residual`, values: residual, comments: ['Data less model.'] }, run.bestProvenance, 32));
     }
   }
 }
@@ -200,6 +227,7 @@ function htmlReport(report: RankReport): Parameters<typeof reportHtml>[0] {
     title: study.title,
     question: `Which of ${outcome.ranked.length} three-dimensional fields makes these maps?`,
     answer: outcome.verdict,
+    pairs: outcome.pairs.map(({ sentence }) => sentence),
     data: study.data.map((entry, k) => ({
       quantity: entry.quantity,
       file: entry.files.join(', '),
@@ -212,6 +240,7 @@ function htmlReport(report: RankReport): Parameters<typeof reportHtml>[0] {
         name: row.name,
         chi2PerN: row.chi2PerN,
         deltaAic: row.deltaAic,
+        ...(row.deltaLnEvidence !== undefined && { deltaLnEvidence: row.deltaLnEvidence, deltaLnEvidenceError: row.deltaLnEvidenceError }),
         ...(row.decidedBy !== undefined && { decidedBy: row.decidedBy }),
         verdict: symmetrySentences(run.bestScene).join(' '),
         parameters: run.prepared.parameters.map((_, j) => reportParameter(run, j)),
@@ -221,7 +250,7 @@ function htmlReport(report: RankReport): Parameters<typeof reportHtml>[0] {
     lineUp: lineUpRows(report, scene),
     legend: comparisonNotes(ring),
     caveats: [
-      'Errors are those of a Gaussian likelihood near the best fit; they do not see other minima.',
+      ...(study.method === 'least-squares' ? ['Errors are those of a Gaussian likelihood near the best fit; they do not see other minima.'] : []),
       ...outcome.ordered.filter(({ fit }) => !fit.converged).map(({ prepared }) => `The fit of "${prepared.name}" did not converge; its χ² is an upper limit.`),
       ...outcome.ordered.flatMap(({ prepared, fit }) =>
         prepared.parameters.filter((_, j) => fit.atBound[j]).map(({ path }) => `"${prepared.name}": ${path} stands at an end of its range.`),
@@ -234,7 +263,7 @@ function htmlReport(report: RankReport): Parameters<typeof reportHtml>[0] {
       noise: true,
       debiased: true,
       ...(observed.rm && { rotationMeasure: 'fit' as const }),
-      fit: 'least-squares',
+      fit: study.method,
     }),
     provenance: [`gyrelight ${version}, seed ${seed}`, `gyrelight rank ${studyFile}`, `${seconds.toFixed(0)} s`],
   };

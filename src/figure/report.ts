@@ -1,10 +1,10 @@
 import { lineUpTable } from './line-up.ts';
 import type { LineUpRow } from './line-up.ts';
 import type { MethodsText } from './methods-text.ts';
-import { numberText, quantityText, withError, withInterval } from './number-text.ts';
+import { quantityText, withError, withInterval } from './number-text.ts';
 import { htmlList, htmlPage, htmlTable, scrolling } from './report-html.ts';
 import { escapeXml } from './svg.ts';
-import { chi2Text, deltaAicText, ranked } from './table.ts';
+import { chi2Text, deltaAicText, deltaLnEvidenceText, ranked } from './table.ts';
 
 /** One parameter of a fitted hypothesis. Numbers in `unit`. */
 export interface ReportParameter {
@@ -26,6 +26,7 @@ export interface ReportHypothesis {
   readonly deltaAic: number;
   /** Natural logarithm of the evidence above the best's, from nested sampling. */
   readonly deltaLnEvidence?: number;
+  readonly deltaLnEvidenceError?: number;
   /** Where the data tell it from the best. */
   readonly decidedBy?: string;
   /** A sentence under its column, such as what symmetry forbids it. */
@@ -49,6 +50,8 @@ export interface Report {
   readonly question: string;
   /** The plain sentence: which hypothesis the data prefer, and how strongly. */
   readonly answer: string;
+  /** A sentence per pair of hypotheses. */
+  readonly pairs?: readonly string[];
   readonly data: readonly ReportData[];
   /** In the order of the columns. */
   readonly hypotheses: readonly ReportHypothesis[];
@@ -77,7 +80,7 @@ export function reportHtml(report: Report): string {
   return htmlPage(report.title, [
     `<header><h1>${escapeXml(report.title)}</h1><p class="question">${escapeXml(report.question)}</p></header>`,
     '<main>',
-    section('The answer', `<p class="answer">${escapeXml(report.answer)}</p>${rankingHtml(hypotheses)}`),
+    section('The answer', `<p class="answer">${escapeXml(report.answer)}</p>${rankingHtml(hypotheses)}${htmlList(report.pairs ?? [])}`),
     section('Line-up', scrolling('Line-up of hypotheses', lineUp)),
     section('Parameters', scrolling('Parameters', hypotheses.map(parametersHtml).join('\n'))),
     section('Data', scrolling('Data', dataHtml(report.data))),
@@ -98,7 +101,7 @@ function rankingHtml(hypotheses: readonly ReportHypothesis[]): string {
     `${k + 1}. ${one.name}`,
     chi2Text(one.chi2PerN),
     deltaAicText(one.deltaAic),
-    ...(evidence ? [numberText(one.deltaLnEvidence ?? NaN)] : []),
+    ...(evidence ? [deltaLnEvidenceText(one)] : []),
     one.decidedBy ?? '',
   ]);
   const headings = ['hypothesis', 'χ²/N', 'Δ AIC', ...(evidence ? ['Δ ln Z'] : []), 'decided by'];

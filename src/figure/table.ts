@@ -36,13 +36,18 @@ export interface RankingRow {
   readonly chi2PerN: number;
   /** AIC above the best; 0 for the best itself. */
   readonly deltaAic: number;
+  /** ln evidence less the best's, with one standard deviation of the difference; from nested sampling only. */
+  readonly deltaLnEvidence?: number;
+  readonly deltaLnEvidenceError?: number;
   /** Where the data tell it from the best, in words; empty for the best. */
   readonly decidedBy?: string;
 }
 
-/** Hypotheses from best to worst by AIC; those without a number last, in the order given. */
-export function ranked<Row extends RankingRow>(rows: readonly Row[]): readonly Row[] {
-  const key = (row: Row): number => (Number.isNaN(row.deltaAic) ? Infinity : row.deltaAic);
+/** Hypotheses from best to worst by evidence where all have it, else by AIC; those without a number last, in the order given. */
+export function ranked<Row extends Pick<RankingRow, 'deltaAic' | 'deltaLnEvidence'>>(rows: readonly Row[]): readonly Row[] {
+  const evidence = rows.every((row) => row.deltaLnEvidence !== undefined);
+  const number = (row: Row): number => (evidence ? -row.deltaLnEvidence! : row.deltaAic);
+  const key = (row: Row): number => (Number.isNaN(number(row)) ? Infinity : number(row));
   return [...rows].sort((a, b) => (key(a) === key(b) ? 0 : key(a) - key(b)));
 }
 
@@ -58,16 +63,25 @@ export function deltaAicText(deltaAic: number): string {
   return /^0[.0]*$/.test(text) || text.startsWith('−') ? text : `+${text}`;
 }
 
-/** The ranking as plain text: place, name, chi-squared per datum, AIC above the best, what decided. */
+/** ln evidence less the best's, with its error. */
+export function deltaLnEvidenceText({ deltaLnEvidence, deltaLnEvidenceError }: Pick<RankingRow, 'deltaLnEvidence' | 'deltaLnEvidenceError'>): string {
+  if (deltaLnEvidence === undefined) return BLANK_TEXT;
+  if (deltaLnEvidence === 0) return '0';
+  return deltaLnEvidenceError === undefined ? fixedText(deltaLnEvidence, 1) : `${fixedText(deltaLnEvidence, 1)} ± ${fixedText(deltaLnEvidenceError, 1)}`;
+}
+
+/** The ranking as plain text: place, name, chi-squared per datum, AIC above the best, Δ ln Z where known, what decided. */
 export function rankingTable(rows: readonly RankingRow[]): string {
+  const evidence = rows.some((row) => row.deltaLnEvidence !== undefined);
   const lines = ranked(rows).map((row, k) => [
-    `${k + 1} ${row.name}`, chi2Text(row.chi2PerN), deltaAicText(row.deltaAic), row.decidedBy ?? '',
+    `${k + 1} ${row.name}`, chi2Text(row.chi2PerN), deltaAicText(row.deltaAic), ...(evidence ? [deltaLnEvidenceText(row)] : []), row.decidedBy ?? '',
   ]);
   return textTable(
     [
       { title: '  hypothesis', align: 'left' },
       { title: 'χ²/N', align: 'decimal' },
       { title: 'Δ AIC', align: 'decimal' },
+      ...(evidence ? [{ title: 'Δ ln Z', align: 'right' as const }] : []),
       { title: 'decided by', align: 'left' },
     ],
     lines,

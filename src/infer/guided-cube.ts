@@ -23,19 +23,21 @@ export function priorCube(parameters: readonly FreeParameter[]): Cube {
 const widening = 2;
 /** Share of points drawn from the prior, so that no other peak is missed. */
 const priorShare = 0.5;
+/** nat from prior to Gaussian; with less to gain the prior's own cube does as well. */
+const leastGain = 5;
 
 /**
  * A cube with one side more, whose points are drawn half from the prior and half from a Gaussian
  * around a least-squares fit; ln Z and posterior stay exactly what they are, since the likelihood is
  * multiplied by prior over mixture (Petrosyan & Handley 2022, stochastic superpositional mixing),
  * while a run no longer spends its evaluations on finding the peak. The prior's own cube where the
- * fit has no covariance.
+ * fit has no covariance, or tells little more than the prior.
  */
 export function guidedCube(parameters: readonly FreeParameter[], fit: Pick<Fit, 'values' | 'covariance'>): Cube {
   const n = parameters.length;
   const plain = priorCube(parameters);
   const lower = fit.covariance && guideLower(parameters, fit.values, fit.covariance);
-  if (!lower) return plain;
+  if (!lower || informationGain(parameters, lower) < leastGain) return plain;
   const centre = scaledOf(parameters, fit.values);
   const logNorm = -logDeterminantOf(lower, n) / 2 - (n / 2) * Math.log(2 * Math.PI);
   return {
@@ -55,6 +57,13 @@ export function guidedCube(parameters: readonly FreeParameter[], fit: Pick<Fit, 
       return -Math.log(priorShare + (1 - priorShare) * Math.exp(guide - prior));
     },
   };
+}
+
+/** Entropy of the prior less that of the Gaussian, nat: ranges of width 1 have none. */
+function informationGain(parameters: readonly FreeParameter[], lower: Float64Array): number {
+  const n = parameters.length;
+  const normal = parameters.filter(({ prior }) => prior.kind === 'normal').length;
+  return ((normal - n) * Math.log(2 * Math.PI * Math.E) - logDeterminantOf(lower, n)) / 2;
 }
 
 /** Values on the scale of a fit. */

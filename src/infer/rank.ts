@@ -93,7 +93,7 @@ export function rankHypotheses(fits: readonly FittedHypothesis[]): Ranking {
 }
 
 function verdict(ranked: readonly RankedHypothesis[]): string {
-  return [preference(ranked), misfit(ranked[0])].filter((part) => part !== '').join(' ');
+  return [preference(ranked), misfitSentence(ranked[0])].filter((part) => part !== '').join(' ');
 }
 
 function preference(ranked: readonly RankedHypothesis[]): string {
@@ -114,7 +114,8 @@ function difference({ deltaBic }: RankedHypothesis): string {
   return `Delta BIC ${deltaBic.toFixed(1)}, ln Bayes factor about ${(deltaBic / 2).toFixed(1)}`;
 }
 
-function misfit(first: RankedHypothesis): string {
+/** What is wrong with the best fit, a sentence; empty where nothing is. */
+export function misfitSentence(first: RankedHypothesis): string {
   const { chi2, degreesOfFreedom, misfitSigma } = first;
   const fitWords = `chi2 ${chi2.toFixed(1)} for ${degreesOfFreedom} degrees of freedom`;
   if (misfitSigma > misfitLimitSigma) {
