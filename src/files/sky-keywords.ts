@@ -1,7 +1,7 @@
 import type { Beam } from '../scene/types.ts';
 import type { Channel } from '../sky/types.ts';
 import type { Axis } from './fits-axes.ts';
-import { findCard, findNumber } from './fits-header.ts';
+import { findNumber } from './fits-header.ts';
 import type { Card, FitsHdu, FitsPlace } from './fits-types.ts';
 import { fitsError } from './fits-types.ts';
 import type { FrequencyList } from './frequency-read.ts';
