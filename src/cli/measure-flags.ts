@@ -31,6 +31,7 @@ export interface MeasureFlags {
   readonly laws: 'none' | 'integrated' | 'sectors' | 'pixels';
   readonly sums?: boolean;
   readonly axis?: string;
+  readonly memory: string;
   readonly out: string;
   readonly json?: boolean;
   readonly quiet?: boolean;
@@ -108,4 +109,16 @@ export function orientationOf(flags: MeasureFlags): DiscOrientation & { readonly
 /** The laws to fit to sectors and integrated light. */
 export function lawsOf({ sums }: MeasureFlags): typeof laws {
   return sums ? [...laws, ...sumsOfTwo] : laws;
+}
+
+/** One number, or a list of them. */
+export function oneOrMore(values: number[]): number | number[] {
+  return values.length === 1 ? values[0] : values;
+}
+
+/** Three depths: first, last and step. */
+export function depthRange(text: string): { firstDepth: number; lastDepth: number; step: number } {
+  const values = flagList('depths', text, 'rad/m^2');
+  if (values.length !== 3) throw new InputError('expected first depth, last depth and step, such as "-500 rad/m^2,500 rad/m^2,5 rad/m^2"', { flag: `--depths ${text}` });
+  return { firstDepth: values[0], lastDepth: values[1], step: values[2] };
 }

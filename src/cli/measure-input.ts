@@ -1,4 +1,5 @@
 import { readFits } from '../files/fits-read.ts';
+import { openCubeRows } from '../files/fits-rows.ts';
 import { readBytes } from '../files/node-io.ts';
 import { skyImageFromFits } from '../files/sky-fits-read.ts';
 import type { SkyImage, SkyImageOverrides } from '../files/sky-image.ts';
@@ -6,6 +7,7 @@ import { sameGrid } from '../infer/map-facts.ts';
 import type { MapFrame } from '../measure/disc.ts';
 import type { Beam } from '../scene/types.ts';
 import { commonBeam, convolveTo } from '../sky/common-beam.ts';
+import type { RowSource } from '../sky/depth-maps.ts';
 import type { BrightnessUnit, Channel } from '../sky/types.ts';
 import { InputError } from '../units/input-error.ts';
 import { convertQuantity, parseQuantity } from '../units/quantity.ts';
@@ -79,17 +81,39 @@ export function readMaps(inputs: readonly string[], facts: StatedFacts): MapData
   return { frame: { nx, ny, wcs, ...(target && { beam: target }) }, unit, bands, notes: [...new Set(notes)] };
 }
 
-function readInput(input: string, facts: StatedFacts, units: Set<BrightnessUnit>, notes: string[]): Plane[] {
+/** What an argument says: the file, and what is written before and behind its name. */
+interface Input {
+  readonly file: string;
+  readonly stokes?: Stokes;
+  readonly overrides: SkyImageOverrides;
+}
+
+function parseInput(input: string, facts: StatedFacts): Input {
   const [, given, file, at] = /^(?:([A-Za-z]{1,2})=)?(.*?)(?:@(.*))?$/.exec(input) ?? [];
   if (given !== undefined && !['I', 'Q', 'U'].includes(given)) {
     throw new InputError(`"${given}=" is not known: I=, Q= or U= may stand before a file`, { flag: input });
   }
-  const place = { file };
   const frequencyHz = at === undefined ? facts.frequencyHz : placedQuantity(at, 'Hz', input);
   const overrides = { ...(frequencyHz !== undefined && { frequencyHz }), ...(facts.widthHz !== undefined && { widthHz: facts.widthHz }), ...(facts.beam && { beam: facts.beam }), ...(facts.convention && { convention: facts.convention }) };
-  const image = skyImageFromFits(readFits(readBytes(file), file), file, overrides);
+  return { file, ...(given !== undefined && { stokes: given as Stokes }), overrides };
+}
+
+/** What a header and the user say together of the planes of a file. */
+interface PlaneFacts {
+  readonly stokes: SkyImage['stokes'];
+  readonly channels: readonly Channel[];
+  readonly brightness: BrightnessUnit;
+  /** To `brightness`, for I and Q; U may change its sign too. */
+  readonly scale: number;
+  readonly signOfU: 1 | -1;
+  readonly noise: Float64Array;
+}
+
+function planeFacts(image: Omit<SkyImage, 'values'>, input: Input, facts: StatedFacts, notes: string[]): PlaneFacts {
+  const { file } = input;
+  const place = { file };
   notes.push(...image.notes.map((note) => `${file}: ${note}`));
-  const stokes = given === undefined ? image.stokes : [given as Stokes];
+  const stokes = input.stokes === undefined ? image.stokes : [input.stokes];
   if (stokes.length === 0) {
     throw new InputError('the header does not say which Stokes parameter this is; write Q= or U= or I= before the file name', place);
   }
@@ -97,20 +121,89 @@ function readInput(input: string, facts: StatedFacts, units: Set<BrightnessUnit>
   if (!channels) throw new InputError('the header does not say its frequency; give --frequency "1.4 GHz" or write @1.4GHz behind the file name', place);
   const brightness = (['Jy/beam', 'Jy/sr'] as const).find((unit) => canConvert(image.unit, unit));
   if (!brightness) throw new InputError(`BUNIT is "${image.unit}"; Jy/beam and Jy/sr with their prefixes are read`, place);
-  units.add(brightness);
   const scale = convertQuantity(1, image.unit, brightness);
   if (image.convention === undefined) notes.push(`${file}: no convention of polarization angles is stated; taken as IAU (--convention)`);
+  const noise = Float64Array.from(channels, (_, k) => (facts.noise !== undefined ? placedQuantity(facts.noise, brightness, `--noise ${facts.noise}`) : scale * (image.noise?.[k] ?? 0)));
+  return { stokes, channels, brightness, scale, signOfU: image.convention === 'U-reversed' ? -1 : 1, noise };
+}
+
+function readInput(text: string, facts: StatedFacts, units: Set<BrightnessUnit>, notes: string[]): Plane[] {
+  const input = parseInput(text, facts);
+  const { file } = input;
+  const image = skyImageFromFits(readFits(readBytes(file), file), file, input.overrides);
+  const { stokes, channels, brightness, scale, signOfU, noise } = planeFacts(image, input, facts, notes);
+  units.add(brightness);
   const size = channels.length * image.nx * image.ny;
   if (image.values.length !== size * stokes.length) {
-    throw new InputError(`${image.values.length / image.nx / image.ny} planes for ${channels.length} channels of Stokes ${stokes.join(', ')}`, place);
+    throw new InputError(`${image.values.length / image.nx / image.ny} planes for ${channels.length} channels of Stokes ${stokes.join(', ')}`, { file });
   }
-  const noise = Float64Array.from(channels, (_, k) => (facts.noise !== undefined ? placedQuantity(facts.noise, brightness, `--noise ${facts.noise}`) : scale * (image.noise?.[k] ?? 0)));
   return stokes.flatMap((name, k): Plane[] => {
     if (name === 'V') return [];
-    const sign = name === 'U' && image.convention === 'U-reversed' ? -scale : scale;
-    const values = image.values.subarray(k * size, (k + 1) * size).map((value) => sign * value);
+    const factor = name === 'U' ? signOfU * scale : scale;
+    const values = image.values.subarray(k * size, (k + 1) * size).map((value) => factor * value);
     return [{ stokes: name, file, image, channels, values, noise, ...(image.beam && { beam: image.beam }) }];
   });
+}
+
+/** Q and U cubes too large for memory, read by rows. */
+export interface LargeMaps {
+  /** Without bands: no plane is in memory yet. */
+  readonly data: MapData;
+  readonly channels: readonly Channel[];
+  readonly noise: Float64Array;
+  readonly source: RowSource;
+  close(): void;
+}
+
+/** Bytes that a number of a map takes while maps are read and measured in memory: as read, sorted, scaled, joined. */
+const bytesInMemory = 32;
+
+/**
+ * Opens cubes of Q and U for reading by rows where holding them would take more than `memoryBytes`;
+ * undefined where it would not, or where other maps are among them. Throws InputError where they do not
+ * fit together, or are packed so that rows cannot be read.
+ */
+export function openLargeMaps(inputs: readonly string[], facts: StatedFacts, memoryBytes: number): LargeMaps | undefined {
+  const parsed = inputs.map((text) => parseInput(text, facts));
+  const opened = parsed.map((input) => ({ input, cube: openCubeRows(input.file, input.file, input.overrides) }));
+  const close = (): void => opened.forEach(({ cube }) => cube?.close());
+  try {
+    const numbers = opened.reduce((sum, { cube }) => sum + (cube?.count ?? 0), 0);
+    if (numbers * bytesInMemory <= memoryBytes) {
+      close();
+      return undefined;
+    }
+    const notes: string[] = [];
+    const planes = opened.map(({ input, cube }) => {
+      if (!cube) throw new InputError('the maps are too large for memory, and this file cannot be read by rows: unpack it, with its axes in the order RA, Dec, frequency', { file: input.file });
+      return { input, cube, ...planeFacts(cube.facts, input, facts, notes) };
+    });
+    const find = (stokes: Stokes): (typeof planes)[number] => {
+      const found = planes.filter((plane) => plane.stokes.length === 1 && plane.stokes[0] === stokes);
+      if (found.length === 1) return found[0];
+      throw new InputError(`maps too large for memory are measured as one cube of Q and one of U; ${found.length} of ${stokes} are given (--memory allows more)`);
+    };
+    const [Q, U] = [find('Q'), find('U')];
+    const first = Q.cube.facts;
+    if (!sameGrid({ ...U.cube.facts, values: new Float64Array(0), file: U.input.file }, first)) throw new InputError(`${U.input.file} is on another grid than ${Q.input.file}; bring all maps to one grid`);
+    const isSame = Q.channels.length === U.channels.length && Q.channels.every(({ frequencyHz }, k) => Math.abs(frequencyHz / U.channels[k].frequencyHz - 1) < 1e-9);
+    if (!isSame || Q.brightness !== U.brightness) throw new InputError(`${U.input.file} has other channels or another unit than ${Q.input.file}`);
+    if (facts.smooth) throw new InputError('maps too large for memory are not smoothed: leave --smooth out, or allow more memory (--memory)');
+    const left = planes.filter((plane) => plane !== Q && plane !== U);
+    for (const { input } of left) notes.push(`${input.file}: left aside, as Q and U are measured by rows (--memory)`);
+    const { nx, ny, wcs, beam } = first;
+    const rows = (plane: typeof Q, factor: number, from: number, to: number): Float64Array => plane.cube.rows(from, to).map((value) => factor * value);
+    return {
+      data: { frame: { nx, ny, wcs, ...(beam && { beam }) }, unit: Q.brightness, bands: [], notes: [...new Set(notes)] },
+      channels: Q.channels,
+      noise: Q.noise.map((rms, k) => Math.max(rms, U.noise[k])),
+      source: { nx, ny, rows: (from, to) => ({ Q: rows(Q, Q.scale, from, to), U: rows(U, U.signOfU * U.scale, from, to) }) },
+      close,
+    };
+  } catch (error) {
+    close();
+    throw error;
+  }
 }
 
 function canConvert(from: string, to: BrightnessUnit): boolean {

@@ -1,7 +1,7 @@
 import type { Command } from 'commander';
 import { Option } from 'commander';
 import type { Provenance } from '../files/fits-scene.ts';
-import { depthCubeFits, mapFits } from '../files/sky-fits-write.ts';
+import { mapFits } from '../files/sky-fits-write.ts';
 import { readBytes } from '../files/node-io.ts';
 import { readFits } from '../files/fits-read.ts';
 import { skyImageFromFits } from '../files/sky-fits-read.ts';
@@ -12,16 +12,17 @@ import { laws } from '../measure/laws/index.ts';
 import { makeLayout, type Layout } from '../measure/layout.ts';
 import type { RegionMean } from '../measure/region.ts';
 import { regionSpectrum, thermalShare, type SpectrumOptions } from '../measure/region-spectrum.ts';
-import { depthMaps, rowsOfPlanes, type DepthMaps } from '../sky/depth-maps.ts';
+import type { DepthMaps } from '../sky/depth-maps.ts';
 import { planDepths, type DepthPlan } from '../sky/depth-spectrum.ts';
 import { makeDepthTransform } from '../sky/depth-transform.ts';
 import { inDegrees } from '../sky/derived.ts';
 import { arcsec } from '../sky/grid.ts';
 import { InputError } from '../units/input-error.ts';
-import { flagBeam, flagList, flagNumber, flagQuantity, lawsOf, orientationOf, type MeasureFlags } from './measure-flags.ts';
-import { readMaps, type MapData } from './measure-input.ts';
+import { addDepthFiles, findDepths, largeDepths, peakBand } from './measure-depths.ts';
+import { depthRange, flagBeam, flagList, flagNumber, flagQuantity, lawsOf, oneOrMore, orientationOf, type MeasureFlags } from './measure-flags.ts';
+import { openLargeMaps, readMaps, type LargeMaps, type MapData } from './measure-input.ts';
 import { lawPlot, profilePlot, rotationPlot, spectrumPlot } from './measure-plots.ts';
-import { changeOfGradient, fieldPitches, fitRegionLaws, fittedRotation, measureBand, regionRotation, ringHarmonics, type MeasuredBand, type RegionLaws } from './measure-run.ts';
+import { changeOfGradient, fieldPitches, fitRegionLaws, measureBand, regionRotation, ringHarmonics, type MeasuredBand, type RegionLaws } from './measure-run.ts';
 import { measureSummary } from './measure-summary.ts';
 import { lawsCsv, profilesCsv } from './measure-tables.ts';
 import { OutputFolder } from './output-folder.ts';
@@ -58,6 +59,7 @@ export function addMeasure(program: Command): void {
     .addOption(new Option('--laws <where>', 'where laws of P(lambda^2) are fitted').choices(['none', 'integrated', 'sectors', 'pixels']).default('sectors'))
     .option('--sums', 'sums of two laws too, in sectors and integrated light')
     .option('--axis <angle>', 'axis of the RM gradient, north through east (default: the major axis)')
+    .option('--memory <megabytes>', 'cubes of Q and U that would take more are read by rows, without laws', '4000')
     .option('--out <dir>', 'folder for the results, made where missing', 'out')
     .option('--json', 'a machine-readable summary on stdout')
     .option('--quiet', 'no progress and no words, errors only')
@@ -82,22 +84,32 @@ function checkedFlags(flags: MeasureFlags) {
     firstAzimuth: flagQuantity('first-sector', flags.firstSector, 'rad'),
     axis: flags.axis === undefined ? undefined : flagQuantity('axis', flags.axis, 'rad'),
     depths: flags.depths === undefined ? undefined : depthRange(flags.depths),
+    memoryBytes: 1e6 * flagNumber('memory', flags.memory, 1, 1e6),
     thermalAtHz: flags.thermalAt === undefined ? undefined : flagQuantity('thermal-at', flags.thermalAt, 'Hz'),
   };
 }
 
 async function measure(inputs: readonly string[], flags: MeasureFlags): Promise<void> {
   const asked = checkedFlags(flags);
+  const large = openLargeMaps(inputs, asked.facts, asked.memoryBytes);
+  try {
+    await measureMaps(inputs, flags, asked, large);
+  } finally {
+    large?.close();
+  }
+}
+
+async function measureMaps(inputs: readonly string[], flags: MeasureFlags, asked: ReturnType<typeof checkedFlags>, large: LargeMaps | undefined): Promise<void> {
   const { orientation } = asked;
-  const data = readMaps(inputs, asked.facts);
-  const edgesKpc = flags.radii === undefined ? usualEdges(data, orientation) : flagList('radii', flags.radii, 'kpc');
-  const layout = makeLayout(data.frame, orientation, { edgesKpc, sectors: asked.sectors, firstAzimuth: asked.firstAzimuth });
+  const read = large?.data ?? readMaps(inputs, asked.facts);
+  const edgesKpc = flags.radii === undefined ? usualEdges(read, orientation) : flagList('radii', flags.radii, 'kpc');
+  const layout = makeLayout(read.frame, orientation, { edgesKpc, sectors: asked.sectors, firstAzimuth: asked.firstAzimuth });
   if (!layout.regionOf.some((region) => region >= 0)) throw new InputError('no pixel of the maps lies in any ring: check --centre, --distance and --radii');
-  const thermal = thermalShares(flags, asked.thermalAtHz, asked.spectralIndex, data);
-  const channels = data.bands.flatMap((band) => band.channels);
-  const noise = data.bands.flatMap((band) => Array.from(band.noise));
+  const thermal = thermalShares(flags, asked.thermalAtHz, asked.spectralIndex, read);
+  const channels = large?.channels ?? read.bands.flatMap((band) => band.channels);
+  const noise = Array.from(large?.noise ?? read.bands.flatMap((band) => Array.from(band.noise)));
   const plan = channels.length > 2 ? planDepths(channels, noise, { ...asked.depths, weighting: flags.weights, spectralIndex: asked.spectralIndex }) : undefined;
-  sayWords(flags, ...data.notes.map((note) => `assumed  ${note}`), ...planWords(data, layout, plan, channels.length, noise));
+  sayWords(flags, ...read.notes.map((note) => `assumed  ${note}`), ...planWords(read, layout, plan, channels.length, noise));
 
   const controller = new AbortController();
   const stop = (): void => controller.abort(new Cancelled());
@@ -113,21 +125,23 @@ async function measure(inputs: readonly string[], flags: MeasureFlags): Promise<
   try {
     const folder = new OutputFolder(flags.out);
     const provenance = measureProvenance(inputs, flags);
-    const { maps, cube } = await findDepths(data, plan, orientation, flags, asked.threshold, watch('Faraday spectra', 'rows'));
+    const search = { threshold: asked.threshold, ...(flags.deconvolve && { deconvolve: {} }), ...watch('Faraday spectra', 'rows') };
+    const { maps, cube } = large && plan ? await largeDepths(large, plan, flags.out, provenance, search) : await findDepths(read, plan, orientation, search);
+    const data = large && plan && maps ? { ...read, bands: [peakBand(plan, maps)] } : read;
     const axis = asked.axis ?? orientation.positionAngle;
     const bands: MeasuredBand[] = [];
     for (const band of data.bands) bands.push(await measureBand(data, band, layout, orientation, axis, { threshold: asked.threshold, spectralIndex: asked.spectralIndex, pause, signal: controller.signal }));
     const rotation = maps && regionRotation(data, layout, maps);
     const pitches = maps && layout.kind === 'rings' ? fieldPitches(data.frame, orientation, layout, maps) : undefined;
     const options: SpectrumOptions = { pixelsPerBeam: pixelsPerBeam(data.frame), spectralIndex: asked.spectralIndex, ...(thermal && { thermal }) };
-    const fits = flags.laws === 'none' || channels.length < 2 ? [] : await fitRegionLaws(data, layout, lawsOf(flags), options, flags.laws !== 'integrated', watch('fitting laws', 'regions'));
+    const fits = flags.laws === 'none' || channels.length < 2 || large ? [] : await fitRegionLaws(data, layout, lawsOf(flags), options, flags.laws !== 'integrated', watch('fitting laws', 'regions'));
     if (maps) addDepthFiles(folder, data, plan, maps, cube, provenance);
-    if (flags.laws === 'pixels' && maps) await addLawMaps(folder, data, layout, maps, options, provenance, watch('fitting laws to pixels', 'pixels'));
+    if (flags.laws === 'pixels' && maps && !large) await addLawMaps(folder, data, layout, maps, options, provenance, watch('fitting laws to pixels', 'pixels'));
     const meta = { program: `gyrelight ${version}`, maps: inputs.join(' '), ...(data.frame.beam && { beam: `${data.frame.beam.majorArcsec} x ${data.frame.beam.minorArcsec} arcsec` }) };
     const meanThermal = (frequencyHz: number): number => meanOver(layout, thermal, frequencyHz);
     folder.add('profiles.csv', profilesCsv(data, layout, bands, rotation, pitches, { thermal: meanThermal, spectralIndex: asked.spectralIndex, meta }));
     if (fits.length > 0) folder.add('laws.csv', lawsCsv(layout, fits, meta));
-    addPlots(folder, data, layout, bands, maps, rotation, plan, fits);
+    addPlots(folder, data, layout, bands, maps, rotation, large ? undefined : plan, fits);
     const quantities = [
       ...bands.map((band) => ({ name: `P ${band.band.name}`, values: band.regions.map(({ P }) => P.value), errors: band.regions.map(({ P }) => P.error) })),
       ...(rotation ? [{ name: 'RM', values: rotation.map(({ value }) => value), errors: rotation.map(({ error }) => error) }] : []),
@@ -145,16 +159,6 @@ async function measure(inputs: readonly string[], flags: MeasureFlags): Promise<
     process.off('SIGINT', stop);
     process.off('SIGTERM', stop);
   }
-}
-
-function oneOrMore(values: number[]): number | number[] {
-  return values.length === 1 ? values[0] : values;
-}
-
-function depthRange(text: string): { firstDepth: number; lastDepth: number; step: number } {
-  const values = flagList('depths', text, 'rad/m^2');
-  if (values.length !== 3) throw new InputError('expected first depth, last depth and step, such as "-500 rad/m^2,500 rad/m^2,5 rad/m^2"', { flag: `--depths ${text}` });
-  return { firstDepth: values[0], lastDepth: values[1], step: values[2] };
 }
 
 /** Four rings out to the volume of the scene, or to four fifths of half the map. */
@@ -209,58 +213,6 @@ function planWords(data: MapData, layout: Layout, plan: DepthPlan | undefined, c
     `Faraday spectrum: resolution ${words(plan.resolution)}, largest depth ${words(plan.largestDepth)}, largest scale ${words(plan.largestScale)}`,
     `depths ${words(plan.firstDepth)} to ${words(plan.firstDepth + plan.step * (plan.count - 1))} in steps of ${words(plan.step)}; noise of the spectrum ${plan.noise.toExponential(2)} ${data.unit}`,
   ];
-}
-
-/** Depths from Faraday spectra, or from the fit of angles where there are only two channels. */
-async function findDepths(
-  data: MapData,
-  plan: DepthPlan | undefined,
-  orientation: DiscOrientation,
-  flags: MeasureFlags,
-  threshold: number,
-  watch: Pick<Parameters<typeof depthMaps>[2] & object, 'onProgress' | 'pause' | 'signal'>,
-): Promise<{ maps?: DepthMaps; cube?: Float64Array }> {
-  const { nx, ny } = data.frame;
-  if (!plan) {
-    if (data.bands.reduce((sum, band) => sum + band.channels.length, 0) < 2) return {};
-    const { rm, rmError, chi0, chi0Error, fieldAngle } = fittedRotation(data, data.bands, orientation);
-    const blank = (): Float64Array => new Float64Array(nx * ny).fill(NaN);
-    const P = data.bands[0].Q.subarray(0, nx * ny).map((q, k) => Math.hypot(q, data.bands[0].U[k]));
-    return { maps: { depth: rm, depthError: rmError, chi0, chi0Error, fieldAngle, P, PError: P.map(() => data.bands[0].noise[0]), momentTotal: blank(), momentMean: blank(), momentWidth: blank() } };
-  }
-  const join = (pick: 'Q' | 'U'): Float64Array => {
-    const all = new Float64Array(data.bands.reduce((sum, band) => sum + band[pick].length, 0));
-    let at = 0;
-    for (const band of data.bands) {
-      all.set(band[pick], at);
-      at += band[pick].length;
-    }
-    return all;
-  };
-  const cube = new Float64Array(plan.count * nx * ny);
-  const onRows = (from: number, to: number, amplitude: Float64Array): void => {
-    const pixels = (to - from) * nx;
-    for (let index = 0; index < plan.count; index++) cube.set(amplitude.subarray(index * pixels, (index + 1) * pixels), (index * ny + from) * nx);
-  };
-  const maps = await depthMaps(rowsOfPlanes(join('Q'), join('U'), nx, ny), plan, { threshold, ...(flags.deconvolve && { deconvolve: {} }), onRows, ...watch });
-  return { maps, cube };
-}
-
-function addDepthFiles(folder: OutputFolder, data: MapData, plan: DepthPlan | undefined, maps: DepthMaps, cube: Float64Array | undefined, provenance: Provenance): void {
-  const shared = { sky: data.frame, ...(data.frame.beam && { beam: data.frame.beam }) };
-  const add = (name: string, quantity: string, unit: string, values: Float64Array, comment: string): void =>
-    folder.add(`${name}.fits`, mapFits({ ...shared, quantity, unit, values, comments: [comment] }, provenance, 32));
-  add('RM', 'RM', 'rad/m2', maps.depth, plan ? 'Depth of the highest peak of the Faraday spectrum.' : 'Slope of the angle over wavelength squared.');
-  add('RM-error', 'RM error', 'rad/m2', maps.depthError, 'One standard deviation, from the noise of the channels.');
-  add('fieldAngle', 'fieldAngle', 'deg', inDegrees(maps.fieldAngle), 'Faraday-corrected orientation of the magnetic field, north through east.');
-  if (!plan || !cube) return;
-  add('peakP', 'P', data.unit, maps.P, 'Height of the highest peak of the Faraday spectrum, without its bias.');
-  add('momentMean', 'mean Faraday depth', 'rad/m2', maps.momentMean, 'First moment of the Faraday spectrum above the threshold.');
-  add('momentWidth', 'width in Faraday depth', 'rad/m2', maps.momentWidth, 'Root of the second moment about the first.');
-  folder.add(
-    'faraday-spectrum.fits',
-    depthCubeFits({ ...shared, quantity: 'Faraday spectrum', unit: data.unit, values: cube, firstDepthRadM2: plan.firstDepth, depthStepRadM2: plan.step, depthCount: plan.count, referenceLambdaM2: plan.referenceLambda2, comments: ['Absolute value of the Faraday spectrum.'] }, provenance, 32),
-  );
 }
 
 async function addLawMaps(folder: OutputFolder, data: MapData, layout: Layout, maps: DepthMaps, options: SpectrumOptions, provenance: Provenance, watch: Parameters<typeof lawMaps>[4]): Promise<void> {

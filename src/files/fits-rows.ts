@@ -4,6 +4,7 @@ import { decodeNumbers, imageScaling } from './fits-image-read.ts';
 import { readFirstHeader, readUnits } from './fits-read.ts';
 import { fitsError, fitsPlace, type FitsHdu } from './fits-types.ts';
 import { isGzip } from './gunzip.ts';
+import { readBytes } from './node-io.ts';
 import { skyFacts } from './sky-fits-read.ts';
 import type { SkyImage, SkyImageOverrides } from './sky-image.ts';
 
@@ -87,6 +88,8 @@ function openFile(path: string, fileName: string): number {
   try {
     return openSync(path, 'r');
   } catch {
+    // It says why.
+    readBytes(path);
     throw new InputError('the file cannot be read', { file: fileName });
   }
 }

@@ -95,6 +95,28 @@ print(json.dumps(dict(units=[str(t[c].unit) for c in ('RM','P','azimuth','inner'
     });
   });
 
+  it('reads cubes beyond --memory by rows: the same depths, byte for byte', () => {
+    inFolder((folder) => {
+      writeFileSync(join(folder, 's.yaml'), smallScene.replace('pixels: [22, 21]', 'pixels: [61, 60]').replace('24 arcsec', '12 arcsec').replace('to: 1.5 GHz, channels: 4', 'to: 1.9 GHz, channels: 12'));
+      expect(gyrelight(['map', 's.yaml', '--out', 'maps', '--quiet'], folder).status).toBe(0);
+      const common = ['measure', 'maps/Q-low.fits', 'maps/U-low.fits', '--galaxy', 's.yaml', '--laws', 'none'];
+      const whole = gyrelight([...common, '--out', 'whole'], folder);
+      const rows = gyrelight([...common, '--out', 'rows', '--memory', '1'], folder);
+      expect([whole.status, rows.status]).toEqual([0, 0]);
+      for (const name of ['RM.fits', 'RM-error.fits', 'faraday-spectrum.fits', 'fieldAngle.fits']) {
+        const [a, b] = ['whole', 'rows'].map((out) => readFileSync(join(folder, out, name)));
+        // The tables of provenance tell the two commands apart; the data stand before them, behind a header of one length.
+        const data = (bytes: Buffer): Buffer => bytes.subarray(5760, bytes.indexOf('XTENSION') - 2880);
+        expect(data(a).length, name).toBeGreaterThan(5000);
+        expect(data(a).equals(data(b)), name).toBe(true);
+      }
+      expect(readFileSync(join(folder, 'rows', 'profiles.csv'), 'utf8')).toMatch(/^peak,/m);
+      const refused = gyrelight(['measure', 'maps/Q-low.fits', '--galaxy', 's.yaml', '--memory', '1', '--out', 'o'], folder);
+      expect(refused.status).toBe(2);
+      expect(refused.stderr).toMatch(/one cube of Q and one of U/);
+    });
+  });
+
   it('cuts a disc near edge-on into strips', () => {
     inFolder((folder) => {
       writeFileSync(join(folder, 's.yaml'), smallScene.replace('inclination: 40 deg', 'inclination: 88 deg'));
