@@ -1,5 +1,6 @@
 import type { Beam } from '../scene/types.ts';
 import type { BrightnessUnit, Channel } from '../sky/types.ts';
+import type { OtherData } from './other-data.ts';
 import type { PixelAxes } from './pixel-axes.ts';
 
 export type StokesQuantity = 'I' | 'Q' | 'U';
@@ -32,6 +33,8 @@ export interface DataSet {
   readonly unit: BrightnessUnit;
   readonly bands: readonly DataBand[];
   readonly planes: readonly DataPlane[];
+  /** What else is known: P, chi, RM in maps, profiles, spectra or behind the galaxy. */
+  readonly others?: readonly OtherData[];
   /** Plain sentences on all that was assumed about signs, noise and beam, for the user to read. */
   readonly assumptions: readonly string[];
 }
