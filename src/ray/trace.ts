@@ -80,12 +80,18 @@ export function findMapScale(engine: RayEngine, scene: Scene, bundle: RayBundle)
 
 /** A nearly singular centre may not set the scale for the whole galaxy: this many times the bright rays' level is the most. */
 const mostAboveBright = 5;
+/** Nor may faint sky around a bright galaxy: the scale is at least this share of the largest, or no panel would ever be fine enough. */
+const leastOfLargest = 1e-3;
 
-/** The largest of a few rays' values, but no more than a few times their 90 % point; empty rays do not count. */
+/**
+ * The largest of a few rays' values, but no more than a few times their 90 % point, unless that is
+ * almost nothing beside it; empty rays do not count.
+ */
 function typicalLargest(values: readonly number[]): number {
   const sorted = values.filter((value) => value > 0).sort((a, b) => a - b);
   if (sorted.length === 0) return 0;
-  return Math.min(sorted[sorted.length - 1], mostAboveBright * sorted[Math.floor(0.9 * (sorted.length - 1))]);
+  const largest = sorted[sorted.length - 1];
+  return Math.min(largest, Math.max(leastOfLargest * largest, mostAboveBright * sorted[Math.floor(0.9 * (sorted.length - 1))]));
 }
 
 function seriesOf(count: number): number[][] {

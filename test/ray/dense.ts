@@ -1,0 +1,95 @@
+import { compileJavaScript } from '../../src/formula/javascript.ts';
+import { gaussLegendre } from '../../src/math/quadrature.ts';
+import { compileIntegrand, output, type SpectralPoint } from '../../src/ray/integrand.ts';
+import { findBreaks } from '../../src/ray/path.ts';
+import { rayGeometry } from '../../src/ray/trace.ts';
+import { brightnessPerKpc, intrinsicPolarization, wavelengthSquared } from '../../src/ray/synchrotron.ts';
+import type { Scene } from '../../src/scene/types.ts';
+
+/** What one ray brings by brute force, per frequency, Jy/sr; depth in rad m^-2. */
+export interface DenseRay {
+  readonly I: number[];
+  readonly Q: number[];
+  readonly U: number[];
+  readonly depth: number;
+}
+
+const n = 16;
+const rule = gaussLegendre(n);
+/** ∫ from node i to 1 of the j-th Lagrange polynomial, by quadrature of the product form. */
+const toNearEnd = rule.nodes.reduce<number[][]>((rows, x) => {
+  const half = (1 - x) / 2;
+  const row = Array.from({ length: n }, (_, j) =>
+    rule.nodes.reduce((sum, t, k) => sum + half * rule.weights[k] * lagrange(j, x + half * (t + 1)), 0),
+  );
+  return [...rows, row];
+}, []);
+
+function lagrange(j: number, x: number): number {
+  return rule.nodes.reduce((product, node, k) => (k === j ? product : (product * (x - node)) / (rule.nodes[j] - node)), 1);
+}
+
+/**
+ * Follows rays with a fixed number of equal panels of 16 nodes between declared breaks, never
+ * looking at the integrand: the slow answer that the adaptive one is held against. `panelKpc` is
+ * the longest panel.
+ */
+export function denseRays(scene: Scene, spectrum: readonly SpectralPoint[], north: readonly number[], east: readonly number[], panelKpc: number): DenseRay[] {
+  const integrand = compileIntegrand(scene, spectrum);
+  const kernel = compileJavaScript(integrand.program);
+  const inputs = integrand.inputs(scene);
+  const geometry = rayGeometry(scene, inputs.edges);
+  const { sinI, cosI } = geometry;
+  const pa = scene.galaxy.positionAngle;
+  const squares = spectrum.map(({ frequencyHz }) => wavelengthSquared(frequencyHz));
+  const lanes = [0, 1, 2].map(() => new Float64Array(n));
+  const out = integrand.program.outputs.map(() => new Float64Array(n));
+  return north.map((northKpc, ray) => {
+    const major = northKpc * Math.cos(pa) + east[ray] * Math.sin(pa);
+    const minor = east[ray] * Math.cos(pa) - northKpc * Math.sin(pa);
+    const breaks = new Float64Array(128);
+    const count = findBreaks(geometry, major, minor, breaks);
+    const sums = squares.map(() => ({ I: 0, Q: 0, U: 0 }));
+    let [phi, sigma] = [0, 0];
+    for (let k = count - 1; k > 0; k--) {
+      const panels = Math.ceil((breaks[k] - breaks[k - 1]) / panelKpc);
+      const half = (breaks[k] - breaks[k - 1]) / panels / 2;
+      for (let panel = panels - 1; panel >= 0; panel--) {
+        const centre = breaks[k - 1] + (2 * panel + 1) * half;
+        for (let i = 0; i < n; i++) {
+          const s = centre + half * rule.nodes[i];
+          lanes[0][i] = major;
+          lanes[1][i] = minor * cosI - s * sinI;
+          lanes[2][i] = minor * sinI + s * cosI;
+        }
+        kernel.evaluate(n, inputs.parameters, lanes, out, inputs.tables);
+        for (let i = 0; i < n; i++) {
+          let [depth, variance] = [phi, sigma];
+          for (let j = 0; j < n; j++) {
+            depth += half * toNearEnd[i][j] * out[output.faraday][j];
+            variance += half * toNearEnd[i][j] * out[output.dispersion][j];
+          }
+          for (let f = 0; f < squares.length; f++) {
+            const emission = half * rule.weights[i] * out[output.firstGroup + integrand.groupOf[f]][i];
+            const size = emission * Math.exp(-2 * squares[f] ** 2 * variance);
+            const [c, s] = [Math.cos(2 * squares[f] * depth), Math.sin(2 * squares[f] * depth)];
+            sums[f].I += emission * out[output.total][i];
+            sums[f].Q += size * (c * out[output.cosine][i] - s * out[output.sine][i]);
+            sums[f].U += size * (s * out[output.cosine][i] + c * out[output.sine][i]);
+          }
+        }
+        phi += half * out[output.faraday].reduce((sum, value, i) => sum + rule.weights[i] * value, 0);
+        sigma += half * out[output.dispersion].reduce((sum, value, i) => sum + rule.weights[i] * value, 0);
+      }
+    }
+    const factors = spectrum.map(({ frequencyHz }) => brightnessPerKpc(scene.cosmicRays.index, frequencyHz));
+    const intrinsic = intrinsicPolarization(scene.cosmicRays.index);
+    const [c, s] = [Math.cos(2 * pa), Math.sin(2 * pa)];
+    return {
+      I: sums.map(({ I }, f) => factors[f] * I),
+      Q: sums.map(({ Q, U }, f) => factors[f] * intrinsic * (c * Q - s * U)),
+      U: sums.map(({ Q, U }, f) => factors[f] * intrinsic * (s * Q + c * U)),
+      depth: phi,
+    };
+  });
+}
