@@ -102,7 +102,7 @@ function checkModelFile(file: string, text: string): CheckReport {
 
 function checkStudy(file: string, text: string, flags: CommonFlags): CheckReport {
   const study = parseStudy(text, file);
-  const { data, notes } = loadData(study.data, file);
+  const { data, notes } = loadData(study.data, file, study.others);
   const lines = [`${file}: a study, "${study.title}"`];
   for (const band of data.bands) lines.push(`  data     ${band.name}: ${band.channels.map((channel) => `${(channel.frequencyHz / 1e9).toPrecision(6)} GHz`).join(', ')}`);
   for (const sentence of gatherAssumptions([...data.assumptions, ...notes])) lines.push(`  assumed  ${sentence}`);

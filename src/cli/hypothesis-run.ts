@@ -8,7 +8,8 @@ import { chiSquared, logLikelihood, type Likelihood } from '../infer/likelihood.
 import type { FreeParameter } from '../infer/prior.ts';
 import type { ForwardModel } from '../infer/forward.ts';
 import { calibrationParameters, foregroundNuisance, withCalibration } from '../infer/nuisances.ts';
-import { makeSkyModel, sceneWith, type SceneOf } from '../infer/sky-model.ts';
+import { makeJointModel } from '../infer/joint-model.ts';
+import { sceneWith, type SceneOf } from '../infer/sky-model.ts';
 import { compileTie, followTies, type Tie } from '../infer/ties.ts';
 import { refuseNoOverlap } from '../infer/overlap.ts';
 import type { Hypothesis, Study } from '../infer/study-types.ts';
@@ -55,7 +56,7 @@ export function prepareHypothesis(
   const sceneFile = resolve(dirname(studyFile), hypothesis.scene);
   const { scene, provenance } = placed(hypothesis, () => loadScene(sceneFile, overrides));
   placed(hypothesis, () => refuseNoOverlap(data, scene.galaxy));
-  const turned = data.planes.some(({ quantity }) => quantity !== 'I');
+  const turned = data.planes.some(({ quantity }) => quantity !== 'I') || (data.others?.length ?? 0) > 0;
   const named = [...hypothesis.free.map(({ path }) => path), ...hypothesis.tied.map((tie) => tie.name)];
   const foreground = foregroundNuisance(turned ? study.foreground : undefined, scene, named, hypothesis.place);
   const ofScene = resolveFree([...hypothesis.free, ...(foreground ? [foreground] : [])], scene);
@@ -76,7 +77,7 @@ export interface FitEffort {
 
 /** The model of the data that a hypothesis makes. */
 export function forwardOf({ scene, sceneOf, parameters }: PreparedHypothesis, data: DataSet, context: RunContext): ForwardModel {
-  return withCalibration(makeSkyModel(data, scene, sceneOf, context.pool.backend), data, parameters);
+  return withCalibration(makeJointModel(data, scene, sceneOf, context.pool.backend), data, parameters);
 }
 
 /** Fits one hypothesis; `known` is the fit of an earlier, interrupted run. */
@@ -163,7 +164,7 @@ export function correlationTable({ parameters }: PreparedHypothesis, fit: Fit): 
 
 /** Identifies a fit by all that goes into it. */
 export function fitKey(studyText: string, prepared: PreparedHypothesis, data: DataSet, effort: FitEffort): string {
-  const numbers = data.planes.map(({ values }) => values.reduce((sum, value, k) => sum + (Number.isFinite(value) ? value * (1 + (k % 97)) : 0), 0));
+  const numbers = [...data.planes, ...(data.others ?? [])].map(({ values }) => values.reduce((sum, value, k) => sum + (Number.isFinite(value) ? value * (1 + (k % 97)) : 0), 0));
   return sha256OfText(JSON.stringify([studyText, prepared.name, prepared.provenance, numbers, effort])).slice(0, 24);
 }
 

@@ -1,10 +1,12 @@
 import { dirname, resolve } from 'node:path';
-import { readBytes } from '../files/node-io.ts';
+import { csvNumbers, parseCsv } from '../files/csv-parse.ts';
+import { readBytes, readText } from '../files/node-io.ts';
 import { readFits } from '../files/fits-read.ts';
 import { skyImageFromFits } from '../files/sky-fits-read.ts';
 import { makeDataSet, type LoadedEntry } from '../infer/dataset.ts';
 import type { ReadMap } from '../infer/map-facts.ts';
-import type { DataEntry } from '../infer/study-types.ts';
+import { readOther, type LoadedOther, type ReadTable } from '../infer/read-other.ts';
+import type { DataEntry, OtherEntry } from '../infer/study-types.ts';
 import type { DataSet } from '../infer/types.ts';
 import { InputError } from '../units/input-error.ts';
 
@@ -15,7 +17,7 @@ export interface LoadedData {
 }
 
 /** Reads a study's data entries; files are found beside `baseFile`. Throws InputError for what is wrong. */
-export function loadData(entries: readonly DataEntry[], baseFile: string): LoadedData {
+export function loadData(entries: readonly DataEntry[], baseFile: string, others: readonly OtherEntry[] = []): LoadedData {
   const notes: string[] = [];
   const folder = dirname(baseFile);
   const read = (file: string, entry: DataEntry): ReadMap => {
@@ -32,7 +34,32 @@ export function loadData(entries: readonly DataEntry[], baseFile: string): Loade
       ...(entry.mask !== undefined && { mask: read(entry.mask, { ...entry, frequencyHz: undefined }) }),
     }),
   );
-  return { data: makeDataSet(loaded), notes: [...new Set(notes)] };
+  const otherMap = (file: string, entry: OtherEntry): ReadMap => read(file, { ...entry, quantity: 'Q', files: [], noise: undefined, unit: undefined });
+  const loadedOthers = others.map((entry): LoadedOther =>
+    entry.kind === 'map'
+      ? { entry, map: otherMap(entry.file, entry), ...(entry.mask !== undefined && { mask: otherMap(entry.mask, { ...entry, frequencyHz: undefined }) }) }
+      : { entry, table: tableOf(resolve(folder, entry.file), entry) },
+  );
+  const maps = loaded.length > 0 ? makeDataSet(loaded) : emptyDataSet(loadedOthers);
+  const assumptions: string[] = [];
+  const seen = loadedOthers.map((one) => readOther(one, maps, assumptions));
+  const data: DataSet = others.length === 0 ? maps : { ...maps, others: seen, assumptions: [...new Set([...maps.assumptions, ...assumptions])] };
+  return { data, notes: [...new Set(notes)] };
+}
+
+/** A data set without Stokes maps, on the grid of its first other map. */
+function emptyDataSet(others: readonly LoadedOther[]): DataSet {
+  const first = others.find((one): one is Extract<LoadedOther, { map: ReadMap }> => 'map' in one);
+  if (!first) throw new InputError('a study needs at least one map among its data; its grid is the one that the model is brought to', others[0]?.entry.place);
+  const { wcs, nx, ny, unit } = first.map;
+  return { axes: { wcs, nx, ny }, unit: unit === 'Jy/sr' ? 'Jy/sr' : 'Jy/beam', bands: [], planes: [], assumptions: [] };
+}
+
+function tableOf(path: string, entry: OtherEntry): ReadTable {
+  return placed(entry, () => {
+    const table = parseCsv(readText(path), entry.file);
+    return { file: entry.file, rows: table.rows.length, units: table.units, column: (name) => csvNumbers(table, name) };
+  });
 }
 
 function overridesOf(entry: DataEntry): Parameters<typeof skyImageFromFits>[2] {
@@ -44,7 +71,7 @@ function overridesOf(entry: DataEntry): Parameters<typeof skyImageFromFits>[2] {
   };
 }
 
-function placed<T>({ place }: DataEntry, work: () => T): T {
+function placed<T>({ place }: Pick<DataEntry, 'place'>, work: () => T): T {
   try {
     return work();
   } catch (error) {

@@ -62,9 +62,11 @@ export function rankRuns(runs: readonly SampledRun[], data: DataSet, likelihood:
     return run;
   });
   const azimuth = azimuthOf(data, ordered[0].bestScene);
+  // Residuals of other data come after those of the maps, and have no place in them.
+  const ofMaps = ({ fit }: SampledRun): Float64Array => fit.residuals.subarray(0, likelihood.places.length);
   const best = evidence(ranked[0].name);
   const rows = ranked.map((hypothesis, k): RankingRow => {
-    const decided = k === 0 ? undefined : decidedBy(data, likelihood.places, ordered[0].fit.residuals, ordered[k].fit.residuals, azimuth);
+    const decided = k === 0 || data.planes.length === 0 ? undefined : decidedBy(data, likelihood.places, ofMaps(ordered[0]), ofMaps(ordered[k]), azimuth);
     const own = evidence(hypothesis.name);
     return {
       name: hypothesis.name,

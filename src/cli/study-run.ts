@@ -1,6 +1,7 @@
 import { readText } from '../files/node-io.ts';
 import { sha256OfText } from '../files/sha256.ts';
-import { makeLikelihood, type Likelihood } from '../infer/likelihood.ts';
+import type { Likelihood } from '../infer/likelihood.ts';
+import { jointLikelihood } from '../infer/other-data.ts';
 import { parseStudy } from '../infer/study.ts';
 import type { Method, Study } from '../infer/study-types.ts';
 import type { DataSet } from '../infer/types.ts';
@@ -39,7 +40,7 @@ export interface LoadedStudy {
 export function loadStudy(file: string, flags: StudyFlags, only?: string): LoadedStudy {
   const text = readText(file);
   const study = parseStudy(text, file);
-  const { data, notes } = loadData(study.data, file);
+  const { data, notes } = loadData(study.data, file, study.others);
   const overrides = overridesOf({ set: flags.set });
   const wanted = only === undefined ? study.hypotheses : study.hypotheses.filter(({ name }) => name === only);
   if (wanted.length === 0) {
@@ -50,7 +51,7 @@ export function loadStudy(file: string, flags: StudyFlags, only?: string): Loade
   const ring = ringOf(flags.ring, prepared[0].scene);
   const assumptions = [...data.assumptions, ...notes];
   sayWords(flags, ...gatherAssumptions(assumptions).map((sentence) => `assumed  ${sentence}`));
-  return { file, text, study, data, likelihood: makeLikelihood(data), assumptions, prepared, ring, seed: flags.seed ?? study.seed };
+  return { file, text, study, data, likelihood: jointLikelihood(data), assumptions, prepared, ring, seed: flags.seed ?? study.seed };
 }
 
 /** Fits, and where the method asks for it samples, every hypothesis of a study; checkpoints make it resumable. */

@@ -61,7 +61,6 @@ export interface Fit {
  */
 export async function fitModel(request: FitRequest): Promise<Fit> {
   const { parameters, likelihood, signal } = request;
-  const dataCount = likelihood.residualCount;
   const bounds = parameters.map(scaledBounds);
   const lower = Float64Array.from(bounds, ([low]) => low);
   const upper = Float64Array.from(bounds, ([, high]) => high);
@@ -71,9 +70,9 @@ export async function fitModel(request: FitRequest): Promise<Fit> {
   const residuals = async (scaled: Float64Array, stop?: AbortSignal): Promise<Float64Array> => {
     const data = likelihood.residuals(await request.forward(valuesOf(scaled), stop));
     const prior = priorResiduals(parameters, scaled);
-    const all = new Float64Array(dataCount + prior.length);
+    const all = new Float64Array(data.length + prior.length);
     all.set(data);
-    all.set(prior, dataCount);
+    all.set(prior, data.length);
     evaluations++;
     lowest = Math.min(lowest, chiSquared(all));
     return all;
@@ -118,6 +117,7 @@ export async function fitModel(request: FitRequest): Promise<Fit> {
   // Back to the units of the parameters.
   const slopes = best.values.map((u, j) => slopeFromScaled(parameters[j], u));
   const n = parameters.length;
+  const dataCount = best.residuals.length - priorResiduals(parameters, best.values).length;
   const data = best.residuals.slice(0, dataCount);
   return {
     values: valuesOf(best.values),

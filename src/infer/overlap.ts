@@ -12,9 +12,12 @@ export function refuseNoOverlap(data: DataSet, galaxy: Galaxy): void {
   const { distanceKpc, volume } = galaxy;
   const offset = offsetFromPixel(wcs, galaxy.centre ?? { raDeg: 0, decDeg: 0 });
   const reach = Math.hypot(volume.radiusKpc, volume.heightKpc) / distanceKpc;
-  const seen = data.planes.some(({ values }) =>
-    values.some((value, p) => {
+  const maps = [...data.planes, ...(data.others ?? []).filter(({ kind }) => kind === 'map')];
+  const pixels = nx * data.axes.ny;
+  const seen = maps.some(({ values }) =>
+    values.some((value, k) => {
       if (!Number.isFinite(value)) return false;
+      const p = k % pixels;
       const column = p % nx;
       const { north, east } = offset(column + 1, (p - column) / nx + 1);
       return Math.hypot(north, east) <= reach;

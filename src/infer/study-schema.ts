@@ -8,21 +8,18 @@ const MAX_ENTRIES = 100;
 const MAX_FILES = 100_000;
 const MAX_HYPOTHESES = 100;
 
-/** What the format knows and this version does not compute, and what to do instead. */
-const laterQuantities: ReadonlyMap<unknown, string> = new Map([
-  ['P', 'P is not compared in this version; give Q and U, which hold the same light with Gaussian noise'],
-  ['chi', 'chi is not compared in this version; give Q and U, which hold the same angles with Gaussian noise'],
-  ['RM', 'RM is not compared in this version; give Q and U of the bands it was made from'],
-]);
-const stokes = z.enum(['I', 'Q', 'U'], {
-  error: ({ input }) =>
-    input === undefined ? 'is missing: I, Q or U is wanted' : (laterQuantities.get(input) ?? `${quoteValue(input)} is not allowed: quantity is one of I, Q, U`),
-});
+const dataQuantity = oneOf(['I', 'Q', 'U', 'P', 'chi', 'RM'], 'quantity');
 
 const method = oneOf(['least-squares', 'walkers', 'nested'], 'method');
 
 const dataEntry = keys({
-  quantity: stokes,
+  quantity: dataQuantity,
+  sources: words('the name of a CSV file').optional(),
+  sectors: words('the name of a CSV file').optional(),
+  spectrum: words('the name of a CSV file').optional(),
+  from: listOf(limited(sceneLimits.frequency), 'frequencies', 2, MAX_FILES).optional(),
+  ring: z.tuple([limited(sceneLimits.volumeRadius), limited(sceneLimits.volumeRadius)], { error: ({ input }) => `${quoteValue(input)} is given where two radii such as [4 kpc, 7 kpc] are wanted` }).optional(),
+  scatter: words('a scatter such as 10 rad/m^2').optional(),
   file: words('the name of a FITS file').optional(),
   files: listOf(words('the name of a FITS file'), 'files, one per channel', 1, MAX_FILES).optional(),
   noise: words('an rms such as 20 uJy/beam').optional(),
@@ -41,12 +38,6 @@ const dataEntry = keys({
   angleOf: oneOf(['E', 'B'], 'angleOf').optional(),
   correlation: quantity({ unit: 'arcsec', min: 0, max: 36000 }, 'arcsec', 'FWHM of the autocorrelation of the noise; 0: independent pixels').optional(),
 });
-
-/** Kinds of data that the format knows and this version does not read, and what to do instead. */
-export const laterData: ReadonlyMap<string, string> = new Map([
-  ['sources', '`sources` (rotation measures of background sources) are not compared in this version; give Q and U maps'],
-  ['sectors', '`sectors` (tables of profiles) are not compared in this version; give the Q and U maps they were made from'],
-]);
 
 /** A text with its unit, or a bare number where there is none. */
 const value = z.union([z.string(), z.number()]);

@@ -33,6 +33,28 @@ export interface DataEntry {
   readonly place: Place;
 }
 
+/** An entry of a study's `data` that is no Stokes map. Whatever is undefined was not said. */
+export interface OtherEntry {
+  readonly quantity: 'P' | 'chi' | 'RM';
+  readonly kind: 'map' | 'sectors' | 'spectrum' | 'sources';
+  /** As written, relative to the study. */
+  readonly file: string;
+  readonly noise?: PlacedText;
+  readonly unit?: PlacedText;
+  readonly mask?: string;
+  readonly angleOf?: 'E' | 'B';
+  readonly frequencyHz?: number;
+  readonly widthHz?: number;
+  readonly beam?: Beam;
+  /** Frequencies that an RM was made from. */
+  readonly fromHz?: readonly number[];
+  /** Inner and outer radius of a profile. */
+  readonly ringKpc?: readonly [number, number];
+  /** Of sources by themselves, beside the error of each. */
+  readonly scatter?: PlacedText;
+  readonly place: Place;
+}
+
 /** The prior of one free parameter as written, before the scene says its unit. */
 export interface FreeText {
   readonly path: string;
@@ -73,6 +95,7 @@ export type ForegroundText = Pick<FreeText, 'kind' | 'values' | 'place'> | 'defa
 export interface Study {
   readonly title: string;
   readonly data: readonly DataEntry[];
+  readonly others: readonly OtherEntry[];
   readonly hypotheses: readonly Hypothesis[];
   readonly method: Method;
   /** Prior of the foreground's Faraday depth where a hypothesis does not free it; undefined: held fixed. */

@@ -1,9 +1,10 @@
 import { InputError } from '../units/input-error.ts';
-import { checkVersion, checkYaml, childOf, placeAt, readYaml } from '../units/yaml-input.ts';
+import { checkVersion, checkYaml, placeAt, readYaml } from '../units/yaml-input.ts';
 import type { YamlInput, YamlPath } from '../units/yaml-input.ts';
 import type { z } from 'zod';
-import { laterData, studySchema } from './study-schema.ts';
-import type { DataEntry, FormulaText, FreeText, Hypothesis, PlacedText, Study } from './study-types.ts';
+import { studySchema } from './study-schema.ts';
+import type { DataEntry, FormulaText, FreeText, Hypothesis, OtherEntry, PlacedText, Study } from './study-types.ts';
+import type { StokesQuantity } from './types.ts';
 
 type StudyFile = z.output<typeof studySchema>;
 type FileEntry = StudyFile['data'][number];
@@ -17,7 +18,6 @@ type FilePrior = FileHypothesis['free'][string];
 export function parseStudy(text: string, fileName: string): Study {
   const input = readYaml(text, fileName);
   checkVersion(input, 'gyrelight-study', 1);
-  refuseLaterData(input);
   const file = checkYaml(input, studySchema);
   const hypotheses = file.hypotheses.map((hypothesis, k) => readHypothesis(input, hypothesis, k));
   hypotheses.forEach(({ name }, k) => {
@@ -26,7 +26,8 @@ export function parseStudy(text: string, fileName: string): Study {
   });
   return {
     title: file.title,
-    data: file.data.map((entry, k) => readEntry(input, entry, k)),
+    data: file.data.flatMap((entry, k) => (isOther(entry) ? [] : [readEntry(input, entry, k)])),
+    others: file.data.flatMap((entry, k) => (isOther(entry) ? [readOtherEntry(input, entry, k)] : [])),
     hypotheses,
     method: file.method,
     ...readForeground(input, file.foreground),
@@ -35,15 +36,46 @@ export function parseStudy(text: string, fileName: string): Study {
   };
 }
 
-/** Says what to use instead of kinds of data that this version does not read. */
-function refuseLaterData(input: YamlInput): void {
-  const { document } = input;
-  const data = childOf(document, document.contents, 'data');
-  for (let k = 0, entry: unknown; (entry = childOf(document, data, k)) !== undefined; k++) {
-    for (const [key, reason] of laterData) {
-      if (childOf(document, entry, key) !== undefined) throw new InputError(reason, placeAt(input, ['data', k], key));
-    }
-  }
+const tables = ['sources', 'sectors', 'spectrum'] as const;
+/** Keys that each kind of other data takes beside its file. */
+const otherKeys: Readonly<Record<OtherEntry['kind'], readonly (keyof FileEntry)[]>> = {
+  map: ['noise', 'unit', 'mask', 'angleOf', 'frequency', 'width', 'beam', 'from'],
+  sectors: ['ring', 'frequency', 'width', 'beam', 'from'],
+  spectrum: ['width'],
+  sources: ['scatter'],
+};
+const otherQuantities: Readonly<Record<OtherEntry['kind'], readonly string[]>> = { map: ['P', 'chi', 'RM'], sectors: ['P', 'chi', 'RM'], spectrum: ['P'], sources: ['RM'] };
+
+function isOther({ quantity, ...entry }: FileEntry): boolean {
+  return !['I', 'Q', 'U'].includes(quantity) || tables.some((table) => entry[table] !== undefined);
+}
+
+function readOtherEntry(input: YamlInput, entry: FileEntry, index: number): OtherEntry {
+  const path: YamlPath = ['data', index];
+  const refuse = (reason: string, key?: keyof FileEntry): never => {
+    throw new InputError(reason, placeAt(input, key === undefined ? path : [...path, key]));
+  };
+  const given = tables.filter((table) => entry[table] !== undefined);
+  if (entry.files !== undefined) refuse(`${entry.quantity} is given as one \`file\``, 'files');
+  if (given.length + (entry.file === undefined ? 0 : 1) !== 1) refuse('a data entry of P, chi or RM needs one of `file`, `sectors`, `spectrum`, `sources`');
+  const kind: OtherEntry['kind'] = given[0] ?? 'map';
+  const quantity = otherQuantities[kind].includes(entry.quantity) ? (entry.quantity as OtherEntry['quantity']) : refuse(`\`${kind}\` hold ${otherQuantities[kind].join(', ')}, not ${entry.quantity}`, 'quantity');
+  const allowed: readonly string[] = ['quantity', 'file', ...tables, ...otherKeys[kind]];
+  const stray = (Object.keys(entry) as (keyof FileEntry)[]).find((key) => entry[key] !== undefined && !allowed.includes(key));
+  if (stray !== undefined) refuse(`\`${stray}\` means nothing here; ${given.length === 0 ? `a map of ${quantity}` : `\`${kind}\``} takes ${otherKeys[kind].join(', ')}`, stray);
+  const placed = (key: 'noise' | 'unit' | 'scatter'): PlacedText | undefined => {
+    const text = entry[key];
+    return text === undefined ? undefined : { text, place: placeAt(input, [...path, key]) };
+  };
+  const { beam, ring } = entry;
+  if (ring && !(ring[0] < ring[1])) refuse('the inner radius comes first', 'ring');
+  return {
+    quantity, kind, file: (given.length === 0 ? entry.file : entry[given[0]])!,
+    noise: placed('noise'), unit: placed('unit'), scatter: placed('scatter'),
+    mask: entry.mask, angleOf: entry.angleOf, frequencyHz: entry.frequency, widthHz: entry.width,
+    beam: beam && { majorArcsec: beam.major, minorArcsec: beam.minor, angle: beam.angle },
+    fromHz: entry.from, ringKpc: ring, place: placeAt(input, path),
+  };
 }
 
 function readEntry(input: YamlInput, entry: FileEntry, index: number): DataEntry {
@@ -55,7 +87,9 @@ function readEntry(input: YamlInput, entry: FileEntry, index: number): DataEntry
     const given = entry[key];
     return given === undefined ? undefined : { text: given, place: placeAt(input, [...path, key]) };
   };
-  const { quantity, file, files, beam, noise, noiseMap, convention, angleOf } = entry;
+  const { file, files, beam, noise, noiseMap, convention, angleOf } = entry;
+  const quantity = entry.quantity as StokesQuantity;
+  for (const key of ['from', 'ring', 'scatter'] as const) if (entry[key] !== undefined) refuse(`\`${key}\` means nothing for a map of ${quantity}`, key);
   if ((file === undefined) === (files === undefined)) refuse('a data entry needs `file`, or `files` with one per channel, and not both');
   if (noise !== undefined && noiseMap !== undefined) refuse('`noise` and `noiseMap` are both given; one is wanted', 'noiseMap');
   if (quantity === 'I' && convention !== undefined) refuse('`convention` means nothing for I; it belongs to Q and U', 'convention');
