@@ -9,7 +9,7 @@ import { makeProgress, type Progress } from './progress.ts';
 /** The flags that commands share, as commander gives them. */
 export interface CommonFlags {
   readonly out: string;
-  readonly set: readonly string[];
+  readonly set?: readonly string[];
   readonly seed?: number;
   readonly workers?: number;
   readonly engine: string;
@@ -35,12 +35,12 @@ export function addCommonFlags(command: Command): Command {
 /** Adds the flags that change a scene before it is checked. */
 export function addSceneFlags(command: Command): Command {
   return command
-    .option('--set <path=value>', 'change a value of the scene, such as field.halo.strength="3 uG" (repeatable)', collect, [])
+    .option('--set <path=value>', 'change a value of the scene, such as field.halo.strength="3 uG" (repeatable)', collect)
     .option('--seed <n>', 'seed of all random streams, in place of the scene’s', wholeNumber('--seed', 0, Number.MAX_SAFE_INTEGER));
 }
 
 /** `--set` and `--seed` as overrides of a scene's text. */
-export function overridesOf({ set, seed }: Pick<CommonFlags, 'set' | 'seed'>): readonly Override[] {
+export function overridesOf({ set = [], seed }: Pick<CommonFlags, 'set' | 'seed'>): readonly Override[] {
   const overrides = set.map((text): Override => {
     const equals = text.indexOf('=');
     const flag = `--set ${text}`;
@@ -89,7 +89,7 @@ export function sayWords(flags: Pick<CommonFlags, 'quiet' | 'json'>, ...lines: r
   for (const line of lines) stream.write(`${line}\n`);
 }
 
-function collect(value: string, previous: readonly string[]): readonly string[] {
+function collect(value: string, previous: readonly string[] = []): readonly string[] {
   return [...previous, value];
 }
 
