@@ -4,6 +4,7 @@ import { compileIntegrand, output, type SpectralPoint } from '../../src/ray/inte
 import { findBreaks } from '../../src/ray/path.ts';
 import { rayGeometry } from '../../src/ray/trace.ts';
 import { brightnessPerKpc, intrinsicPolarization, wavelengthSquared } from '../../src/ray/synchrotron.ts';
+import type { RayResult } from '../../src/ray/types.ts';
 import type { Scene } from '../../src/scene/types.ts';
 
 /** What one ray brings by brute force, per frequency, Jy/sr; depth in rad m^-2. */
@@ -92,4 +93,54 @@ export function denseRays(scene: Scene, spectrum: readonly SpectralPoint[], nort
       depth: phi,
     };
   });
+}
+
+/** Errors of rays on the scale of physics.md section 3: the larger of those of I, Q and U. */
+export interface Miss {
+  readonly error: number;
+  readonly ray: number;
+  readonly frequencyHz: number;
+}
+
+/**
+ * The largest difference of given rays from brute force, over all frequencies. Rays whose brute
+ * force has not settled to `settled` on that scale, though its panels were halved, are left out.
+ */
+export function largestMiss(
+  scene: Scene,
+  spectrum: readonly SpectralPoint[],
+  [north, east]: readonly [readonly number[], readonly number[]],
+  given: Pick<RayResult, 'I' | 'Q' | 'U'>,
+  { panelKpc = 0.06, settled = 1e-6 } = {},
+): Miss & { readonly unsettled: number } {
+  const rays = north.length;
+  const coarse = denseRays(scene, spectrum, north, east, panelKpc);
+  const fine = denseRays(scene, spectrum, north, east, panelKpc / 1.6);
+  const ours = north.map((_, ray): DenseRay => {
+    const [I, Q, U] = [given.I, given.Q, given.U].map((list) => spectrum.map((_, f) => list[f * rays + ray]));
+    return { I, Q, U, depth: NaN };
+  });
+  const scales = spectrum.map((_, f) => {
+    const I = Math.max(...fine.map((ray) => ray.I[f]));
+    return { I, P: Math.max(1e-3 * I, ...fine.map((ray) => Math.hypot(ray.Q[f], ray.U[f]))) };
+  });
+  const difference = (a: DenseRay, b: DenseRay, f: number): number =>
+    Math.max(Math.abs(a.I[f] - b.I[f]) / scales[f].I, Math.abs(a.Q[f] - b.Q[f]) / scales[f].P, Math.abs(a.U[f] - b.U[f]) / scales[f].P);
+  const apart = (a: DenseRay, b: DenseRay): number => Math.max(...spectrum.map((_, f) => difference(a, b, f)));
+  let [worst, unsettled]: [Miss, number] = [{ error: 0, ray: 0, frequencyHz: spectrum[0].frequencyHz }, 0];
+  for (let ray = 0; ray < rays; ray++) {
+    let [before, after] = [coarse[ray], fine[ray]];
+    for (let panel = panelKpc / 2; apart(before, after) > settled && panel > panelKpc / 100; panel /= 2) {
+      [before, after] = [after, denseRays(scene, spectrum, [north[ray]], [east[ray]], panel / 2)[0]];
+    }
+    if (apart(before, after) > settled) {
+      unsettled++;
+      continue;
+    }
+    spectrum.forEach(({ frequencyHz }, f) => {
+      const error = difference(ours[ray], after, f);
+      if (!(error <= worst.error)) worst = { error, ray, frequencyHz };
+    });
+  }
+  return { ...worst, unsettled };
 }
