@@ -42,11 +42,21 @@ export function buildFormula(graph: Graph, text: string, scope: Scope): NodeId {
         }
         return call(graph, tree.name, tree.args.map(build));
       case 'operation':
-        return operate(graph, tree, tree.args.map(build));
+        return buildChain(tree);
     }
+  };
+  // Walks down the left operands of a + b + c … in a loop: a long sum is deep only to the left.
+  const buildChain = (top: Operation): NodeId => {
+    const chain = [top];
+    for (let left = top.args[0]; left.kind === 'operation'; left = left.args[0]) chain.push(left);
+    let value = build(chain[chain.length - 1].args[0]);
+    for (const tree of chain.reverse()) value = operate(graph, tree, [value, ...tree.args.slice(1).map(build)]);
+    return value;
   };
   return build(parseFormula(text));
 }
+
+type Operation = Tree & { readonly kind: 'operation' };
 
 function call(graph: Graph, name: string, args: readonly NodeId[]): NodeId {
   if (name === 'sqrt') return graph.power(args[0], 0.5);
@@ -56,7 +66,7 @@ function call(graph: Graph, name: string, args: readonly NodeId[]): NodeId {
   return graph.unary(name as UnaryName, args[0]);
 }
 
-function operate(graph: Graph, tree: Tree & { kind: 'operation' }, [a, b]: readonly NodeId[]): NodeId {
+function operate(graph: Graph, tree: Operation, [a, b]: readonly NodeId[]): NodeId {
   switch (tree.operator) {
     case '+':
       return graph.add(a, b);

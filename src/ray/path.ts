@@ -14,7 +14,7 @@ export const mostBreaks = 128;
 /** Breaks closer than this share of the path are one. */
 export const coincidence = 1e-12;
 /** Heights, as shares of the volume's, at which first panels end. */
-export const gradedShares = [0.1, 0.4] as const;
+export const gradedShares = [0.25] as const;
 /** Rays that pass the axis closer than this share of the volume's radius break where they are closest to it. */
 export const closeToAxis = 0.15;
 /**

@@ -51,8 +51,7 @@ export const deepestSplit = 48;
  * small tolerances, where they fall evenly, less of that is left.
  */
 export function panelLimit(tolerance: number): number {
-  const root = Math.sqrt(Math.sqrt(tolerance / 1e-4));
-  return tolerance * Math.min(1, root * Math.sqrt(root));
+  return tolerance * Math.max(0.013, 20 * Math.min(1, tolerance / 1e-4));
 }
 
 /** Polarization from behind a panel, net of its own rotation, over the scale of P: a bound. */
@@ -178,7 +177,7 @@ export class RayTracer {
     const errorPhi = path * meanError(depth.tail, depth.decay);
     for (const k of this.tested) {
       const total = this.emit(k);
-      if (this.mayHide(k, half, limit * scaleP[k])) return false;
+      if (this.mayHide(k, half, tolerance * scaleP[k])) return false;
       const { tail, decay } = tailOf(total);
       const errorI = (path * meanError(tail, decay)) / scaleI[k];
       if (errorI > limit) return false;

@@ -71,6 +71,7 @@ export class WasmTransfer {
       [layout.cosI, geometry.cosI],
       [layout.radius, geometry.radiusKpc],
       [layout.height, geometry.heightKpc],
+      [layout.tolerance, accuracy.tolerance],
       [layout.limit, panelLimit(accuracy.tolerance)],
     ] as const;
     for (const [cell, value] of cells) numbers[cell.address / 8] = value;

@@ -1,0 +1,142 @@
+import type { Scene } from '../scene/types.ts';
+import { output, type SpectralPoint } from './integrand.ts';
+import { findBreaks, mostBreaks } from './path.ts';
+import { panelNodes, panelRule } from './panel.ts';
+import { exactSineCosine } from './scene-graph.ts';
+import { wavelengthSquared } from './synchrotron.ts';
+import { makeRayEngine, rayGeometry } from './trace.ts';
+import type { RayBundle } from './types.ts';
+
+/** Where along one ray the light comes from: `count` pieces from the observer to the far end. */
+export interface OriginPieces {
+  readonly count: number;
+  /** Height of each piece, kpc; positive along the spin. */
+  readonly z: Float64Array;
+  /** Net share of each piece at each frequency, w ds, [frequency][piece]; may be negative. Its sum is |P|, its unit free. */
+  readonly shares: readonly Float64Array[];
+  /** What each frequency's pieces would give if all were in phase and undamped: integral of |j_P| ds in that unit. */
+  readonly emitted: Float64Array;
+}
+
+/** Panels at least in a stretch of smooth integrand, and turn of the angle 2 chi in a panel at most, rad. */
+const leastPanels = 4;
+const turnOfPanel = 0.7;
+const mostPanels = 400;
+
+/**
+ * Walks the rays of a bundle and hands the net share of every piece of each to `take`: with chi the
+ * final angle, w(s) = Re[j_P e^{2i(chi0 + lambda^2 phi - chi)} e^{-2 lambda^4 Sigma}] (physics.md section
+ * 5, own definition). The pieces are used again for the next ray. A foreground turns all alike and is
+ * left out; no beam.
+ */
+export function walkOrigins(scene: Scene, bundle: RayBundle, spectrum: readonly SpectralPoint[], take: (ray: number, pieces: OriginPieces) => void): void {
+  const { integrand, kernel } = makeRayEngine(scene, spectrum, 'javascript');
+  const inputs = integrand.inputs(scene);
+  const geometry = rayGeometry(scene, inputs.edges);
+  const { sinI, cosI, heightKpc } = geometry;
+  const [sinPA, cosPA] = exactSineCosine(scene.galaxy.positionAngle);
+  const squares = spectrum.map(({ frequencyHz }) => wavelengthSquared(frequencyHz));
+  const longest = Math.max(...squares);
+  const breaks = new Float64Array(mostBreaks);
+  const lanes = [0, 1, 2].map(() => new Float64Array(panelNodes));
+  const out = integrand.program.outputs.map(() => new Float64Array(panelNodes));
+  const most = mostBreaks * mostPanels * panelNodes;
+  let z = new Float64Array(4096);
+  let cosine = spectrum.map(() => new Float64Array(4096));
+  let sine = spectrum.map(() => new Float64Array(4096));
+  const emitted = new Float64Array(spectrum.length);
+  const evaluate = (major: number, minor: number, centre: number, half: number): void => {
+    for (let i = 0; i < panelNodes; i++) {
+      const s = centre + half * panelRule.nodes[i];
+      lanes[0][i] = major;
+      lanes[1][i] = minor * cosI - s * sinI;
+      lanes[2][i] = minor * sinI + s * cosI;
+    }
+    kernel().evaluate(panelNodes, inputs.parameters, lanes, out, inputs.tables);
+  };
+  for (let ray = 0; ray < bundle.northKpc.length; ray++) {
+    const [north, east] = [bundle.northKpc[ray], bundle.eastKpc[ray]];
+    const [major, minor] = [north * cosPA + east * sinPA, east * cosPA - north * sinPA];
+    const intervals = findBreaks(geometry, major, minor, breaks);
+    let count = 0;
+    let [depth, variance] = [0, 0];
+    emitted.fill(0);
+    for (let k = intervals - 1; k > 0; k--) {
+      const [far, near] = [breaks[k - 1], breaks[k]];
+      const panels = panelsOf(near - far, heightKpc, evaluate, major, minor, (far + near) / 2, out[output.faraday], longest);
+      const half = (near - far) / panels / 2;
+      for (let panel = 0; panel < panels; panel++) {
+        evaluate(major, minor, near - (2 * panel + 1) * half, half);
+        if (count + panelNodes > z.length) {
+          if (count >= most) throw new Error('A ray has more pieces than there can be.');
+          z = grown(z);
+          cosine = cosine.map(grown);
+          sine = sine.map(grown);
+        }
+        let [wholeDepth, wholeVariance] = [0, 0];
+        for (let i = 0; i < panelNodes; i++) {
+          let [phi, sigma] = [depth, variance];
+          for (let j = 0; j < panelNodes; j++) {
+            phi += half * panelRule.toNearEnd[i * panelNodes + j] * out[output.faraday][j];
+            sigma += half * panelRule.toNearEnd[i * panelNodes + j] * out[output.dispersion][j];
+          }
+          wholeDepth += half * panelRule.weights[i] * out[output.faraday][i];
+          wholeVariance += half * panelRule.weights[i] * out[output.dispersion][i];
+          z[count + i] = lanes[2][i];
+          const [q, u] = [out[output.cosine][i], out[output.sine][i]];
+          for (let f = 0; f < squares.length; f++) {
+            const size = half * panelRule.weights[i] * out[output.firstGroup + integrand.groupOf[f]][i];
+            emitted[f] += size * Math.hypot(q, u);
+            const damped = size * Math.exp(-2 * squares[f] * squares[f] * sigma);
+            const angle = 2 * squares[f] * phi;
+            const [c, s] = [damped * Math.cos(angle), damped * Math.sin(angle)];
+            cosine[f][count + i] = c * q - s * u;
+            sine[f][count + i] = s * q + c * u;
+          }
+        }
+        count += panelNodes;
+        depth += wholeDepth;
+        variance += wholeVariance;
+      }
+    }
+    take(ray, { count, z, shares: netShares(cosine, sine, count), emitted });
+  }
+}
+
+/** Panels for a stretch: fine in height, and so that the longest wavelength turns little within each. */
+function panelsOf(
+  length: number,
+  heightKpc: number,
+  evaluate: (major: number, minor: number, centre: number, half: number) => void,
+  major: number,
+  minor: number,
+  centre: number,
+  faraday: Float64Array,
+  longest: number,
+): number {
+  evaluate(major, minor, centre, length / 2);
+  let turn = 0;
+  for (let i = 0; i < panelNodes; i++) turn += (length / 2) * panelRule.weights[i] * Math.abs(faraday[i]) * 2 * longest;
+  return Math.min(mostPanels, Math.max(leastPanels, Math.ceil((16 * length) / heightKpc), Math.ceil(turn / turnOfPanel)));
+}
+
+/** The part of every piece along the final angle; written over the cosines. */
+function netShares(cosine: readonly Float64Array[], sine: readonly Float64Array[], count: number): readonly Float64Array[] {
+  cosine.forEach((q, f) => {
+    let [sumQ, sumU] = [0, 0];
+    for (let k = 0; k < count; k++) {
+      sumQ += q[k];
+      sumU += sine[f][k];
+    }
+    const P = Math.hypot(sumQ, sumU);
+    const [x, y] = P > 0 ? [sumQ / P, sumU / P] : [1, 0];
+    for (let k = 0; k < count; k++) q[k] = q[k] * x + sine[f][k] * y;
+  });
+  return cosine;
+}
+
+function grown(values: Float64Array): Float64Array<ArrayBuffer> {
+  const larger = new Float64Array(2 * values.length);
+  larger.set(values);
+  return larger;
+}
