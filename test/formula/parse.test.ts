@@ -114,8 +114,10 @@ test('nesting stops at 100 levels, well before the stack does', () => {
 });
 
 test('a long flat formula is no deep one', () => {
-  const text = Array.from({ length: 2000 }, () => 'x').join('+');
-  expect(evaluateFormula(text, { x: 0.5 })).toBe(1000);
+  const chain = (sign: string): string => Array.from({ length: 5000 }, () => 'x').join(sign);
+  expect(evaluateFormula(chain('+'), { x: 0.5 })).toBe(2500);
+  expect(evaluateFormula(chain('*'), { x: 1 })).toBe(1);
+  expect(evaluateFormula(chain('-'), { x: 0.5 })).toBe(-2499);
   expect(() => parseFormula('x+'.repeat(5000) + 'x')).toThrow(/10001 characters, at most 10000/);
 });
 
