@@ -1,6 +1,6 @@
 import { sumsOfTwo, laws } from '../measure/laws/index.ts';
 import type { DiscOrientation } from '../measure/disc.ts';
-import type { Beam } from '../scene/types.ts';
+import type { Beam, Scene } from '../scene/types.ts';
 import { InputError } from '../units/input-error.ts';
 import { parseQuantity } from '../units/quantity.ts';
 import { loadScene } from './load-scene.ts';
@@ -31,6 +31,7 @@ export interface MeasureFlags {
   readonly laws: 'none' | 'integrated' | 'sectors' | 'pixels';
   readonly sums?: boolean;
   readonly axis?: string;
+  readonly origin?: boolean;
   readonly memory: string;
   readonly out: string;
   readonly json?: boolean;
@@ -104,6 +105,12 @@ export function orientationOf(flags: MeasureFlags): DiscOrientation & { readonly
     distanceKpc,
     ...(centre && { centre: { raDeg: centre[0], decDeg: centre[1] } }),
   };
+}
+
+/** The scene whose layers are asked for. */
+export function originScene({ galaxy }: MeasureFlags): Scene {
+  if (galaxy === undefined) throw new InputError('the layers seen are those of a scene: give --galaxy SCENE', { flag: '--origin' });
+  return loadScene(galaxy, []).scene;
 }
 
 /** The laws to fit to sectors and integrated light. */

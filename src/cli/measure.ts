@@ -19,10 +19,11 @@ import { inDegrees } from '../sky/derived.ts';
 import { arcsec } from '../sky/grid.ts';
 import { InputError } from '../units/input-error.ts';
 import { addDepthFiles, findDepths, largeDepths, peakBand } from './measure-depths.ts';
-import { depthRange, flagBeam, flagList, flagNumber, flagQuantity, lawsOf, oneOrMore, orientationOf, type MeasureFlags } from './measure-flags.ts';
+import { depthRange, flagBeam, flagList, flagNumber, flagQuantity, lawsOf, oneOrMore, orientationOf, originScene, type MeasureFlags } from './measure-flags.ts';
 import { openLargeMaps, readMaps, type LargeMaps, type MapData } from './measure-input.ts';
 import { lawPlot, profilePlot, rotationPlot, spectrumPlot } from './measure-plots.ts';
 import { changeOfGradient, fieldPitches, fitRegionLaws, measureBand, regionRotation, ringHarmonics, type MeasuredBand, type RegionLaws } from './measure-run.ts';
+import { originCsv } from './measure-origin.ts';
 import { measureSummary } from './measure-summary.ts';
 import { lawsCsv, profilesCsv } from './measure-tables.ts';
 import { OutputFolder } from './output-folder.ts';
@@ -58,6 +59,7 @@ export function addMeasure(program: Command): void {
     .option('--thermal-at <frequency>', 'frequency of the thermal share, scaled from there as nu^-0.1 against nu^-alpha (default: the same at all)')
     .addOption(new Option('--laws <where>', 'where laws of P(lambda^2) are fitted').choices(['none', 'integrated', 'sectors', 'pixels']).default('sectors'))
     .option('--sums', 'sums of two laws too, in sectors and integrated light')
+    .option('--origin', 'the layers of the scene that each band sees, by region: heights, near and far side, cancelled share (needs --galaxy)')
     .option('--axis <angle>', 'axis of the RM gradient, north through east (default: the major axis)')
     .option('--memory <megabytes>', 'cubes of Q and U that would take more are read by rows, without laws', '4000')
     .option('--out <dir>', 'folder for the results, made where missing', 'out')
@@ -84,6 +86,7 @@ function checkedFlags(flags: MeasureFlags) {
     firstAzimuth: flagQuantity('first-sector', flags.firstSector, 'rad'),
     axis: flags.axis === undefined ? undefined : flagQuantity('axis', flags.axis, 'rad'),
     depths: flags.depths === undefined ? undefined : depthRange(flags.depths),
+    scene: flags.origin ? originScene(flags) : undefined,
     memoryBytes: 1e6 * flagNumber('memory', flags.memory, 1, 1e6),
     thermalAtHz: flags.thermalAt === undefined ? undefined : flagQuantity('thermal-at', flags.thermalAt, 'Hz'),
   };
@@ -141,6 +144,10 @@ async function measureMaps(inputs: readonly string[], flags: MeasureFlags, asked
     const meanThermal = (frequencyHz: number): number => meanOver(layout, thermal, frequencyHz);
     folder.add('profiles.csv', profilesCsv(data, layout, bands, rotation, pitches, { thermal: meanThermal, spectralIndex: asked.spectralIndex, meta }));
     if (fits.length > 0) folder.add('laws.csv', lawsCsv(layout, fits, meta));
+    if (asked.scene) {
+      const { onProgress } = watch('layers seen', 'rays');
+      folder.add('origin.csv', originCsv(asked.scene, data, layout, onProgress, meta));
+    }
     addPlots(folder, data, layout, bands, maps, rotation, large ? undefined : plan, fits);
     const quantities = [
       ...bands.map((band) => ({ name: `P ${band.band.name}`, values: band.regions.map(({ P }) => P.value), errors: band.regions.map(({ P }) => P.error) })),

@@ -86,12 +86,13 @@ print(json.dumps(dict(units=[str(t[c].unit) for c in ('RM','P','azimuth','inner'
       writeFileSync(join(folder, 's.yaml'), smallScene);
       expect(gyrelight(['map', 's.yaml', '--out', 'maps', '--quiet'], folder).status).toBe(0);
       const files = ['low', 'high'].flatMap((band) => ['I', 'Q', 'U'].map((stokes) => `maps/${stokes}-${band}.fits`));
-      const { status, stdout } = gyrelight(['measure', ...files, '--galaxy', 's.yaml', '--laws', 'pixels', '--radii', '4 kpc,5 kpc', '--sectors', '4', '--thermal-fraction', '0.1', '--thermal-at', '1.4 GHz', '--deconvolve', '--json', '--out', 'm'], folder);
+      const { status, stdout } = gyrelight(['measure', ...files, '--galaxy', 's.yaml', '--laws', 'pixels', '--radii', '4 kpc,5 kpc', '--sectors', '4', '--thermal-fraction', '0.1', '--thermal-at', '1.4 GHz', '--deconvolve', '--origin', '--json', '--out', 'm'], folder);
       expect(status).toBe(0);
       const summary = JSON.parse(stdout) as Summary;
       expect(summary.layout).toBe('rings');
       expect(summary.integratedLaws.length).toBeGreaterThan(5);
       expect(namesIn(join(folder, 'm', 'laws'))).toContain('best.fits');
+      expect(readFileSync(join(folder, 'm', 'origin.csv'), 'utf8')).toMatch(/^low,1400000000,4,5,0,nan,-?\d/m);
     });
   });
 
@@ -136,6 +137,7 @@ print(json.dumps(dict(units=[str(t[c].unit) for c in ('RM','P','azimuth','inner'
       const cases: readonly (readonly [readonly string[], RegExp])[] = [
         [[Q, U], /--inclination.*not known/],
         [[Q, U, '--galaxy', 's.yaml', '--distance', '3 Mpc'], /leave --distance out/],
+        [[Q, U, ...lies, '--origin'], /--origin: .*--galaxy SCENE/],
         [[Q, '--galaxy', 's.yaml'], /no Stokes U goes with it/],
         [[Q, U, 'maps/U-low.fits', '--galaxy', 's.yaml'], /given twice/],
         [[Q, 'nowhere.fits', '--galaxy', 's.yaml'], /no such file/],

@@ -1,0 +1,39 @@
+import { writeCsv } from '../files/csv-write.ts';
+import type { Layout } from '../measure/layout.ts';
+import { originProfiles } from '../measure/origin-profile.ts';
+import type { Scene } from '../scene/types.ts';
+import { offsetsKpc } from '../sky/grid.ts';
+import type { MapData } from './measure-input.ts';
+
+/** The layers that every band of the maps sees in every region of a scene; one row a band and region. */
+export function originCsv(scene: Scene, data: MapData, layout: Layout, onRay: (done: number, total: number) => void, meta: Readonly<Record<string, string | number>>): string {
+  const { wcs, nx, ny } = data.frame;
+  const bundle = offsetsKpc(wcs, nx, ny, scene.galaxy.distanceKpc, scene.galaxy.centre);
+  const spectrum = data.bands.map(({ channels }) => {
+    const frequencyHz = (channels[0].frequencyHz + channels[channels.length - 1].frequencyHz) / 2;
+    return { frequencyHz, centreHz: frequencyHz };
+  });
+  const layers = originProfiles(scene, bundle, spectrum, layout.regionOf, layout.regions.length, onRay);
+  const rows = data.bands.flatMap((band, f) => layout.regions.map((region, k) => ({ band, region, frequencyHz: spectrum[f].frequencyHz, layer: layers[k][f] })));
+  const column = (pick: (row: (typeof rows)[number]) => number): number[] => rows.map(pick);
+  const degrees = 180 / Math.PI;
+  return writeCsv(
+    [
+      { name: 'band', type: 'string', values: rows.map(({ band }) => band.name) },
+      { name: 'frequency', unit: 'Hz', type: 'float64', values: column(({ frequencyHz }) => frequencyHz) },
+      { name: 'inner', unit: 'kpc', type: 'float64', values: column(({ region }) => region.innerKpc) },
+      { name: 'outer', unit: 'kpc', type: 'float64', values: column(({ region }) => region.outerKpc) },
+      { name: 'azimuth', unit: 'deg', type: 'float64', values: column(({ region }) => region.azimuth * degrees) },
+      { name: 'across', unit: 'kpc', type: 'float64', values: column(({ region }) => region.alongKpc) },
+      { name: 'median', unit: 'kpc', type: 'float64', values: column(({ layer }) => layer.medianKpc), description: 'height below which half of the net share seen arises; positive along the spin; no beam' },
+      { name: 'low', unit: 'kpc', type: 'float64', values: column(({ layer }) => layer.lowKpc), description: '16 % point' },
+      { name: 'high', unit: 'kpc', type: 'float64', values: column(({ layer }) => layer.highKpc), description: '84 % point' },
+      { name: 'mean', unit: 'kpc', type: 'float64', values: column(({ layer }) => layer.meanKpc), description: 'mean height, negative shares counted' },
+      { name: 'near', type: 'float64', values: column(({ layer }) => layer.nearShare), description: 'share from before the plane of the disc' },
+      { name: 'far', type: 'float64', values: column(({ layer }) => layer.farShare), description: 'share from behind it' },
+      { name: 'cancelled', type: 'float64', values: column(({ layer }) => layer.cancelledShare), description: 'part of all shares that others cancel' },
+      { name: 'rays', type: 'int64', values: column(({ layer }) => layer.rays), description: 'pixels that count' },
+    ],
+    meta,
+  );
+}

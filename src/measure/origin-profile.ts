@@ -1,0 +1,105 @@
+import type { SpectralPoint } from '../ray/integrand.ts';
+import { walkOrigins, type OriginPieces } from '../ray/origin.ts';
+import type { RayBundle } from '../ray/types.ts';
+import type { Scene } from '../scene/types.ts';
+
+/** Which layer is seen at one frequency: of one ray, or of a region (physics.md section 5, own definition). */
+export interface OriginLayer {
+  /** Points of the cumulative net share in z, negative shares left out, kpc: 16, 50 and 84 %. */
+  readonly lowKpc: number;
+  readonly medianKpc: number;
+  readonly highKpc: number;
+  /** Integral of z w over that of w, kpc: with the negative shares, so that it may lie outside the layer. */
+  readonly meanKpc: number;
+  /** Part of the positive shares from the half of the volume before the plane z = 0, and from behind it; NaN edge-on. */
+  readonly nearShare: number;
+  readonly farShare: number;
+  /** Part of all shares, by size, that others cancel. */
+  readonly cancelledShare: number;
+  /** Rays that count: those whose |P| is at least 1 % of what they emit. */
+  readonly rays: number;
+}
+
+const smallestVisible = 1e-2;
+const bins = 2000;
+
+/** Sums from which a layer follows; positive shares by height. */
+interface LayerSums {
+  readonly positive: Float64Array;
+  sum: number;
+  heightSum: number;
+  negative: number;
+  near: number;
+  rays: number;
+}
+
+/**
+ * The layers seen in regions of a sky at each of several frequencies, result[region][frequency]:
+ * net shares of all rays of a region added (each along its own final angle; no beam). `regionOf` holds
+ * each ray's region, 0 to count - 1, or -1. NaN where no ray counts. `onRay` is told of every ray done.
+ */
+export function originProfiles(
+  scene: Scene,
+  bundle: RayBundle,
+  spectrum: readonly SpectralPoint[],
+  regionOf: ArrayLike<number>,
+  count: number,
+  onRay?: (done: number, total: number) => void,
+): OriginLayer[][] {
+  const { heightKpc } = scene.galaxy.volume;
+  // Edge-on, a ray lies all on one side: no half is before the plane.
+  const cos = Math.cos(scene.galaxy.inclination);
+  const near = Math.abs(cos) < 1e-9 ? NaN : Math.sign(cos);
+  const sums = Array.from({ length: count }, () => spectrum.map((): LayerSums => ({ positive: new Float64Array(bins), sum: 0, heightSum: 0, negative: 0, near: 0, rays: 0 })));
+  const wanted = Array.from({ length: bundle.northKpc.length }, (_, ray) => ray).filter((ray) => regionOf[ray] >= 0 && Number.isFinite(bundle.northKpc[ray] + bundle.eastKpc[ray]));
+  const some = { northKpc: Float64Array.from(wanted, (ray) => bundle.northKpc[ray]), eastKpc: Float64Array.from(wanted, (ray) => bundle.eastKpc[ray]) };
+  walkOrigins(scene, some, spectrum, (ray, pieces) => {
+    sums[regionOf[wanted[ray]]].forEach((layer, f) => addRay(layer, pieces, f, heightKpc, near));
+    onRay?.(ray + 1, wanted.length);
+  });
+  return sums.map((layers) => layers.map((layer) => layerOf(layer, heightKpc)));
+}
+
+function addRay(layer: LayerSums, { count, z, shares, emitted }: OriginPieces, frequency: number, heightKpc: number, near: number): void {
+  const w = shares[frequency];
+  let P = 0;
+  for (let k = 0; k < count; k++) P += w[k];
+  if (!(P > 0) || P < smallestVisible * emitted[frequency]) return;
+  for (let k = 0; k < count; k++) {
+    layer.sum += w[k];
+    layer.heightSum += w[k] * z[k];
+    if (w[k] < 0) layer.negative -= w[k];
+    else {
+      const bin = Math.floor(((z[k] + heightKpc) / (2 * heightKpc)) * bins);
+      layer.positive[Math.min(Math.max(bin, 0), bins - 1)] += w[k];
+      if (Number.isNaN(near) || near * z[k] > 0) layer.near += Number.isNaN(near) ? NaN : w[k];
+    }
+  }
+  layer.rays++;
+}
+
+function layerOf({ positive, sum, heightSum, negative, near, rays }: LayerSums, heightKpc: number): OriginLayer {
+  const total = positive.reduce((all, value) => all + value, 0);
+  if (rays === 0 || total === 0) return { lowKpc: NaN, medianKpc: NaN, highKpc: NaN, meanKpc: NaN, nearShare: NaN, farShare: NaN, cancelledShare: NaN, rays };
+  const at = (share: number): number => {
+    let below = 0;
+    for (let bin = 0; bin < bins; bin++) {
+      if (below + positive[bin] >= share * total) {
+        const inside = positive[bin] > 0 ? (share * total - below) / positive[bin] : 0;
+        return heightKpc * ((2 * (bin + inside)) / bins - 1);
+      }
+      below += positive[bin];
+    }
+    return heightKpc;
+  };
+  return {
+    lowKpc: at(0.16),
+    medianKpc: at(0.5),
+    highKpc: at(0.84),
+    meanKpc: heightSum / sum,
+    nearShare: near / total,
+    farShare: 1 - near / total,
+    cancelledShare: negative / (negative + total),
+    rays,
+  };
+}

@@ -1,0 +1,106 @@
+import { expect, test } from 'vitest';
+import { localBackend } from '../../src/ray/job.ts';
+import { intrinsicPolarization } from '../../src/ray/synchrotron.ts';
+import { parseScene } from '../../src/scene/parse-scene.ts';
+import type { Scene } from '../../src/scene/types.ts';
+import { planDepths } from '../../src/sky/depth-spectrum.ts';
+import { lambda2M2 } from '../../src/sky/wavelength.ts';
+import { depthSearch, fitRotationMeasure } from '../../src/sky/rotation-measure.ts';
+import { relativeError } from '../sky/compare.ts';
+import { ringLight } from './ring-light.ts';
+
+const radian = Math.PI / 180;
+
+/**
+ * Formulas of azimuthal patterns recomputed with numpy (Krause 1990; Sofue et al. 1986; Burn 1966 for
+ * the half; from memory): i = 30 deg, p = -20 deg, beta = 40 deg. B_parallel/B, RM of a source behind a
+ * layer of 1 kpc with n_e = 0.03, B = 5 and of the layer itself, and B_perp/B.
+ */
+const published = {
+  parallel: { azimuthDeg: [0, 70, 160, 250], value: [-0.46984631039295405, 0, 0.5, 0] },
+  rotation: { behind: 70.31270335290867, mixed: 35.156351676454335 },
+  bisymmetric: { azimuthDeg: [0, 10, 100], value: [0.7198463103929543, 0.75, -0.25] },
+  across: { azimuthDeg: [-20, 70, 0], value: [0.8660254037844387, 1, 0.8827482339886769] },
+} as const;
+
+/** A layer 1 kpc thick of a planar field of constant strength 5 uG, pitch -20 deg, times a factor of azimuth. */
+function layer(electrons: number, factor = '1', index = 2.6, random = 0): Scene {
+  return parseScene(
+    `gyrelight: 1
+galaxy: {distance: 10 Mpc, inclination: 30 deg, positionAngle: 0 deg, volume: {radius: 400 kpc, height: 2 kpc}}
+field:
+  - {model: formula, name: planar, parameters: {B: 5 uG, p: -20 deg, b: 40 deg}, field: {x: "B*(${factor})*(sin(p)*cos(phi) - cos(p)*sin(phi))", y: "B*(${factor})*(sin(p)*sin(phi) + cos(p)*cos(phi))", z: "0*B"}}
+thermalElectrons: [{model: slab, density: ${electrons} cm^-3, halfThickness: 0.5 kpc}]
+cosmicRays: {index: ${index}, layers: [{model: slab, normalisation: 1e-5 cm^-3, halfThickness: 0.5 kpc}]}
+${random > 0 ? `turbulence: {unresolved: {rms: ${random} uG, cell: 0.05 kpc}}\n` : ''}observation: {image: {pixels: 3, pixel: 1 kpc}, bands: [{name: L, at: [1.4 GHz]}]}
+numerics: {tolerance: 1e-8}
+`,
+    'layer.scene.yaml',
+  );
+}
+
+/** Far out the azimuth does not change along the ray: 0.3 kpc in 300 kpc. */
+const radiusKpc = 300;
+
+async function rotations(scene: Scene, azimuthDeg: readonly number[]): Promise<number[]> {
+  const frequencies = [8e9, 9e9, 10e9];
+  const azimuths = azimuthDeg.map((value) => value * radian);
+  const { Q, U } = await ringLight(scene, radiusKpc, azimuths, frequencies);
+  const search = depthSearch(frequencies.map(lambda2M2), 1000);
+  return azimuths.map((_, k) => {
+    const pick = (planes: Float64Array): number[] => frequencies.map((__, f) => planes[f * azimuths.length + k]);
+    return fitRotationMeasure(search, pick(Q), pick(U), [0, 0, 0])?.rm ?? NaN;
+  });
+}
+
+test('an axisymmetric spiral: RM is that of the formula, half where emission and rotation mix', async () => {
+  const rm = await rotations(layer(0.03), published.parallel.azimuthDeg);
+  rm.forEach((value, k) => {
+    // RM = amplitude * B_parallel/(B sin i); a mid-plane azimuth holds to 1e-3 along the ray.
+    const expected = (published.rotation.mixed * published.parallel.value[k]) / Math.sin(30 * radian);
+    expect(Math.abs(value - expected)).toBeLessThan(2e-3 * published.rotation.mixed);
+  });
+  const azimuth = 160 * radian;
+  const bundle = { northKpc: Float64Array.of(radiusKpc * Math.cos(azimuth)), eastKpc: Float64Array.of(radiusKpc * Math.sin(azimuth) * Math.cos(30 * radian)) };
+  const { faradayDepth } = await localBackend()({ scene: layer(0.03), spectrum: [{ frequencyHz: 1e10, centreHz: 1e10 }], bundle });
+  expect(relativeError(faradayDepth[0], published.rotation.behind)).toBeLessThan(2e-3);
+});
+
+test('a bisymmetric spiral has two periods and an offset', async () => {
+  const rm = await rotations(layer(0.03, 'cos(phi - b)'), published.bisymmetric.azimuthDeg);
+  const amplitude = -published.rotation.mixed;
+  rm.forEach((value, k) => expect(Math.abs(value - amplitude * published.bisymmetric.value[k])).toBeLessThan(4e-3 * published.rotation.mixed));
+});
+
+test('polarized intensity is brightest near the minor axis, as B_perp^((p+1)/2)', async () => {
+  const azimuths = published.across.azimuthDeg.map((value) => value * radian);
+  const { Q, U } = await ringLight(layer(0), radiusKpc, azimuths, [5e9]);
+  const P = Q.map((q, k) => Math.hypot(q, U[k]));
+  // gamma = 2.6: exponent 1.8; the path is as long everywhere.
+  published.across.value.forEach((value, k) => expect(relativeError(P[k] / P[1], value ** 1.8)).toBeLessThan(2e-3));
+});
+
+test('isotropic turbulence depolarizes at all wavelengths: 1/(1 + 2 q^2/3) for emission like B_perp^2', async () => {
+  // Burn 1966; Sokoloff et al. 1998: q = b/B_perp, b the three-dimensional rms; published values for q = 1, 2, 0.5.
+  for (const [q, expected] of [[1, 0.6], [2, 0.27272727272727276], [0.5, 0.8571428571428571]]) {
+    // At azimuth 70 deg the whole field of 5 uG lies across the line of sight; rms of one component b/sqrt 3.
+    const scene = layer(0, '1', 3, (5 * q) / Math.sqrt(3));
+    const azimuth = 70 * radian;
+    const bundle = { northKpc: Float64Array.of(radiusKpc * Math.cos(azimuth)), eastKpc: Float64Array.of(radiusKpc * Math.sin(azimuth) * Math.cos(30 * radian)) };
+    const { I, Q, U } = await localBackend()({ scene, spectrum: [{ frequencyHz: 5e9, centreHz: 5e9 }], bundle });
+    // The azimuth changes by 1e-3 along the ray: 1e-6 of B_perp^2.
+    expect(relativeError(Math.hypot(Q[0], U[0]) / I[0] / intrinsicPolarization(3), expected)).toBeLessThan(1e-5);
+  }
+});
+
+test('uniform coverage of lambda^2: width 3.791/span, largest depth 1.895/channel, scale pi/lambda_min^2', () => {
+  // Brentjens & de Bruyn 2005 print 2 sqrt 3 and sqrt 3 (8.6 % small); the numerical values, Schnitzeler et al. 2009.
+  const count = 4000;
+  const [low, high] = [0.02, 0.09];
+  const lambda2 = Array.from({ length: count }, (_, k) => low + ((high - low) * (k + 0.5)) / count);
+  const plan = planDepths(lambda2.map((square) => ({ frequencyHz: 299792458 / Math.sqrt(square), widthHz: 0 })), new Float64Array(count));
+  // A sum of 4000 against the integral: 1e-7.
+  expect(relativeError(plan.resolution * (high - low), 3.7909885340679623)).toBeLessThan(1e-6);
+  expect(relativeError((plan.largestDepth * (high - low)) / count, 1.8954942670339812)).toBeLessThan(1e-6);
+  expect(relativeError(plan.largestScale * lambda2[0], Math.PI)).toBeLessThan(1e-12);
+});
