@@ -3,6 +3,7 @@ import { InputError } from '../units/input-error.ts';
 import { addCheck } from './check.ts';
 import { addCompare } from './compare.ts';
 import { addFit } from './fit.ts';
+import { addForecast } from './forecast.ts';
 import { addMap } from './map.ts';
 import { addMeasure } from './measure.ts';
 import { addOrient } from './orient.ts';
@@ -20,7 +21,7 @@ function makeProgram(): Command {
     .version(version)
     .exitOverride()
     .configureOutput({ writeErr: () => undefined });
-  for (const add of [addMap, addCompare, addRank, addFit, addMeasure, addCheck, addProbe, addOrient]) add(program);
+  for (const add of [addMap, addCompare, addRank, addFit, addForecast, addMeasure, addCheck, addProbe, addOrient]) add(program);
   for (const command of program.commands) command.exitOverride().configureOutput({ writeErr: () => undefined });
   return program;
 }

@@ -96,7 +96,7 @@ function guideLower(parameters: readonly FreeParameter[], values: ArrayLike<numb
 }
 
 /** ln of the prior's density on the scale of a fit, normalised within the bounds. */
-function logPriorNormalised(parameters: readonly FreeParameter[], scaled: ArrayLike<number>): number {
+export function logPriorNormalised(parameters: readonly FreeParameter[], scaled: ArrayLike<number>): number {
   let sum = 0;
   for (let j = 0; j < parameters.length; j++) {
     const [lower, upper] = scaledBounds(parameters[j]);

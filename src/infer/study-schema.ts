@@ -61,6 +61,31 @@ const hypothesis = keys({
   derived: z.record(z.string(), derivedFormula, { error: ({ input }) => `${quoteValue(input)} is given where names with formulas are wanted` }).default({}),
 });
 
+const candidateBeam = keys({ major: limited(sceneLimits.beamMajor), minor: limited(sceneLimits.beamMinor), angle: limited(sceneLimits.beamAngle) }).optional();
+const bandNoise = words('an rms such as 20 uJy/beam');
+const bandTime = plainNumber({ unit: '', min: 0, max: 1e6, above: true }, 'observing time over that in which the noise is reached').default(1);
+const candidate = keys({
+  name: words('a name').optional(),
+  at: listOf(limited(sceneLimits.frequency), 'frequencies', 1, MAX_FILES).optional(),
+  from: limited(sceneLimits.frequency).optional(),
+  to: limited(sceneLimits.frequency).optional(),
+  channels: plainNumber({ unit: '', min: 1, max: 10_000, whole: true }).optional(),
+  width: limited(sceneLimits.width).optional(),
+  noise: bandNoise,
+  beam: candidateBeam,
+  time: bandTime,
+});
+/** One frequency after the other, equally spaced in its logarithm. */
+const scan = keys({
+  from: limited(sceneLimits.frequency),
+  to: limited(sceneLimits.frequency),
+  steps: plainNumber({ unit: '', min: 2, max: 200, whole: true }),
+  width: limited(sceneLimits.width).optional(),
+  noise: bandNoise,
+  beam: candidateBeam,
+  time: bandTime,
+});
+
 /** The study file: see architecture.md, "Files". */
 export const studySchema = keys({
   'gyrelight-study': z.literal(1),
@@ -68,6 +93,7 @@ export const studySchema = keys({
   data: listOf(dataEntry, 'data entries', 1, MAX_ENTRIES),
   hypotheses: listOf(hypothesis, 'hypotheses', 1, MAX_HYPOTHESES),
   method: method.default('least-squares'),
+  forecast: keys({ bands: listOf(candidate, 'bands', 1, MAX_ENTRIES).optional(), scan: scan.optional() }).optional(),
   foreground: z.union([z.literal('fixed'), prior], { error: ({ input }) => `${quoteValue(input)} is given where \`fixed\` or a prior such as {normal: [0 rad/m^2, 20 rad/m^2]} is wanted` }).optional(),
   calibration: z.record(z.string(), prior, { error: ({ input }) => `${quoteValue(input)} is given where frequencies with priors are wanted, such as {1.4 GHz: {normal: [1, 0.05]}}` }).default({}),
   seed: plainNumber({ unit: '', min: 0, max: Number.MAX_SAFE_INTEGER, whole: true }).default(1),

@@ -1,4 +1,5 @@
 import type { Beam } from '../scene/types.ts';
+import type { Channel } from '../sky/types.ts';
 import type { Place } from '../units/input-error.ts';
 import type { Prior } from './prior.ts';
 import type { StokesQuantity } from './types.ts';
@@ -91,6 +92,17 @@ export type Method = 'least-squares' | 'walkers' | 'nested';
 /** The prior of the foreground's depth; `place` is missing where it is the default. */
 export type ForegroundText = Pick<FreeText, 'kind' | 'values' | 'place'> | 'default';
 
+/** A band that could be observed, on the grid of the data. */
+export interface CandidateBand {
+  readonly name: string;
+  readonly channels: readonly Channel[];
+  readonly beam?: Beam;
+  /** rms of Q and U per channel. */
+  readonly noise: PlacedText;
+  /** Observing time over that in which the noise is reached: noise falls as 1/sqrt. */
+  readonly time: number;
+}
+
 /** A checked study file. */
 export interface Study {
   readonly title: string;
@@ -98,6 +110,8 @@ export interface Study {
   readonly others: readonly OtherEntry[];
   readonly hypotheses: readonly Hypothesis[];
   readonly method: Method;
+  /** Bands between which `forecast` chooses; none where the study has none. */
+  readonly candidates: readonly CandidateBand[];
   /** Prior of the foreground's Faraday depth where a hypothesis does not free it; undefined: held fixed. */
   readonly foreground?: ForegroundText;
   /** Prior of one factor a band, on the model. */

@@ -3,7 +3,8 @@ import { checkVersion, checkYaml, placeAt, readYaml } from '../units/yaml-input.
 import type { YamlInput, YamlPath } from '../units/yaml-input.ts';
 import type { z } from 'zod';
 import { studySchema } from './study-schema.ts';
-import type { DataEntry, FormulaText, FreeText, Hypothesis, OtherEntry, PlacedText, Study } from './study-types.ts';
+import type { Channel } from '../sky/types.ts';
+import type { CandidateBand, DataEntry, FormulaText, FreeText, Hypothesis, OtherEntry, PlacedText, Study } from './study-types.ts';
 import type { StokesQuantity } from './types.ts';
 
 type StudyFile = z.output<typeof studySchema>;
@@ -30,6 +31,7 @@ export function parseStudy(text: string, fileName: string): Study {
     others: file.data.flatMap((entry, k) => (isOther(entry) ? [readOtherEntry(input, entry, k)] : [])),
     hypotheses,
     method: file.method,
+    candidates: readCandidates(input, file.forecast),
     ...readForeground(input, file.foreground),
     calibration: Object.entries(file.calibration).map(([band, prior]) => readPrior(input, ['calibration'], band, prior)),
     seed: file.seed,
@@ -145,6 +147,40 @@ function readPrior(input: YamlInput, path: YamlPath, name: string, prior: FilePr
 function kindOf(prior: FilePrior): FreeText['kind'] {
   if (Array.isArray(prior)) return 'uniform';
   return 'normal' in prior ? 'normal' : 'logUniform' in prior ? 'logUniform' : 'isotropic';
+}
+
+function readCandidates(input: YamlInput, forecast: StudyFile['forecast']): CandidateBand[] {
+  if (!forecast) return [];
+  const beamOf = (beam: NonNullable<typeof forecast.scan>['beam']): Pick<CandidateBand, 'beam'> =>
+    beam ? { beam: { majorArcsec: beam.major, minorArcsec: beam.minor, angle: beam.angle } } : {};
+  const listed = (forecast.bands ?? []).map((band, k): CandidateBand => {
+    const path: YamlPath = ['forecast', 'bands', k];
+    const channels = candidateChannels(band, () => {
+      throw new InputError('a band needs `at: [1.4 GHz, ...]`, or `from`, `to` (above `from`) and `channels`', placeAt(input, path));
+    });
+    return { name: band.name ?? gigahertz(channels), channels, noise: { text: band.noise, place: placeAt(input, [...path, 'noise']) }, time: band.time, ...beamOf(band.beam) };
+  });
+  const { scan } = forecast;
+  if (!scan) return listed;
+  const scanned = Array.from({ length: scan.steps }, (_, k): CandidateBand => {
+    const channels = [{ frequencyHz: scan.from * (scan.to / scan.from) ** (k / (scan.steps - 1)), widthHz: scan.width ?? 0 }];
+    return { name: gigahertz(channels), channels, noise: { text: scan.noise, place: placeAt(input, ['forecast', 'scan', 'noise']) }, time: scan.time, ...beamOf(scan.beam) };
+  });
+  return [...listed, ...scanned];
+}
+
+type FileCandidate = NonNullable<NonNullable<StudyFile['forecast']>['bands']>[number];
+
+function candidateChannels({ at, from, to, channels, width }: FileCandidate, refuse: () => never): Channel[] {
+  if (at) return from === undefined && to === undefined && channels === undefined ? at.map((frequencyHz) => ({ frequencyHz, widthHz: width ?? 0 })) : refuse();
+  if (from === undefined || to === undefined || channels === undefined || width !== undefined || !(to > from)) return refuse();
+  const widthHz = (to - from) / channels;
+  return Array.from({ length: channels }, (_, k) => ({ frequencyHz: from + (k + 0.5) * widthHz, widthHz }));
+}
+
+function gigahertz(channels: readonly Channel[]): string {
+  const frequencies = channels.map(({ frequencyHz }) => frequencyHz);
+  return `${Number(((Math.min(...frequencies) + Math.max(...frequencies)) / 2e9).toPrecision(4))} GHz`;
 }
 
 function readForeground(input: YamlInput, given: StudyFile['foreground']): Pick<Study, 'foreground'> {

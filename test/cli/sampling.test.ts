@@ -51,7 +51,7 @@ it('rank with nested sampling: Δ ln Z, a sentence per pair, posterior tables an
 it('fit, killed with -9 and resumed, gives the same posterior bit for bit', async () => {
   await inFolderAsync(async (folder) => {
     prepare(folder);
-    const command = ['fit', 'a.study.yaml', '--hypothesis', 'halo', '--out', 'f', ...flags, '--live', '120'];
+    const command = ['fit', 'a.study.yaml', '--hypothesis', 'halo', '--out', 'f', ...flags, '--live', '60'];
     const child = spawn(process.execPath, [repository('dist/gyrelight.js'), ...command], { cwd: folder, stdio: 'ignore' });
     const ended = new Promise((resolve) => child.on('exit', resolve));
     // As soon as a checkpoint of the sampler is there.
@@ -65,6 +65,24 @@ it('fit, killed with -9 and resumed, gives the same posterior bit for bit', asyn
     const table = (out: string): string => readFileSync(join(folder, out, 'posterior/posterior.csv'), 'utf8');
     expect(table('f')).toBe(table('g'));
     expect(namesIn(join(folder, 'f/unfinished'))).toEqual([]);
+  });
+});
+
+it('forecast weighs candidate bands: a figure, a table, a sentence', () => {
+  inFolder((folder) => {
+    prepare(folder);
+    writeFileSync(join(folder, 'b.study.yaml'), `${study}forecast: {bands: [{name: S, at: [2.2 GHz], noise: 20 uJy/beam, beam: {major: 120 arcsec, minor: 120 arcsec, angle: 0 deg}}, {name: weak, at: [2.2 GHz], noise: 20 Jy/beam, beam: {major: 120 arcsec, minor: 120 arcsec, angle: 0 deg}}]}\n`);
+    const { status, stdout } = gyrelight(['forecast', 'b.study.yaml', '--out', 'w', '--json', ...flags], folder);
+    expect(status).toBe(0);
+    const { verdict, bands } = JSON.parse(stdout) as { verdict: string; bands: { band: string | null; outlooks: { deltaLogEvidence: number }[] }[] };
+    expect(verdict).toMatch(/^S would tell "halo" from "weaker halo" best/);
+    const worth = bands.map(({ outlooks }) => outlooks[0].deltaLogEvidence);
+    // A band with hopeless noise adds nothing to none; a good one does.
+    expect(bands.map(({ band }) => band)).toEqual([null, 'S', 'weak']);
+    expect(Math.abs(worth[2] / worth[0] - 1)).toBeLessThan(1e-3);
+    expect(worth[1]).toBeGreaterThan(1.2 * worth[0]);
+    expect(namesIn(join(folder, 'w'))).toEqual(['forecast.csv', 'forecast.json', 'forecast.svg']);
+    expect(gyrelight(['forecast', 'a.study.yaml', ...flags], folder).stderr).toMatch(/no `forecast: \{bands/);
   });
 });
 
