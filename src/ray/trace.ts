@@ -6,7 +6,7 @@ import { compileIntegrand, tableShape, type Integrand, type SpectralPoint } from
 import type { RayGeometry } from './path.ts';
 import { exactSineCosine } from './scene-graph.ts';
 import { brightnessPerKpc, intrinsicPolarization, wavelengthSquared } from './synchrotron.ts';
-import { makeRaySums, RayTracer, type Accuracy, type RaySums } from './transfer.ts';
+import { makeRaySums, RayTracer, statedError, type Accuracy, type RaySums } from './transfer.ts';
 import type { RayBundle, RayResult } from './types.ts';
 import { WasmTransfer } from './wasm-tracer.ts';
 
@@ -121,7 +121,7 @@ export function traceRays(engine: RayEngine, scene: Scene, bundle: RayBundle, sc
       result.heightQ[at] = polarized * (cosine * sums.heightCosine[k] - sine * sums.heightSine[k]);
       result.heightU[at] = polarized * (sine * sums.heightCosine[k] + cosine * sums.heightSine[k]);
       result.emittedP[at] = polarized * sums.emitted[k];
-      result.error[k] = Math.max(result.error[k], sums.error[k]);
+      result.error[k] = Math.max(result.error[k], statedError(accuracy.tolerance, sums.error[k]));
     }
     result.faradayDepth[ray] = sums.faradayDepth;
     samples += sums.samples;

@@ -51,7 +51,17 @@ export const deepestSplit = 48;
  * small tolerances, where they fall evenly, less of that is left.
  */
 export function panelLimit(tolerance: number): number {
-  return tolerance * Math.max(0.013, 20 * Math.min(1, tolerance / 1e-4));
+  return tolerance * Math.max(0.013, 10 * Math.min(1, tolerance / 1e-4));
+}
+
+/**
+ * The error to be stated for a ray whose panels' estimates add up to `estimate`. Estimates lie above
+ * true errors in the proportion of `panelLimit` to the tolerance and more: rays of dozens of panels,
+ * each at its limit, were found within a third of the tolerance of dense quadrature
+ * (test/ray/promise.test.ts), so that one such panel counts for an eighth.
+ */
+export function statedError(tolerance: number, estimate: number): number {
+  return (estimate * tolerance) / panelLimit(tolerance) / 8;
 }
 
 /** Polarization from behind a panel, net of its own rotation, over the scale of P: a bound. */
