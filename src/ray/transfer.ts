@@ -73,6 +73,8 @@ export const mostBehind = 10;
 export const fastestDecay = 0.03;
 /** Keeps ratios of coefficients finite. */
 export const tiniest = 1e-300;
+/** Emission that a panel may hide between its nodes, over the tolerance. */
+export const mostHidden = 0.1;
 /** Largest turn or damping exponent across a panel that its nodes are trusted to notice. */
 export const mostPerPanel = 12;
 
@@ -187,7 +189,7 @@ export class RayTracer {
     const errorPhi = path * meanError(depth.tail, depth.decay);
     for (const k of this.tested) {
       const total = this.emit(k);
-      if (this.mayHide(k, half, tolerance * scaleP[k])) return false;
+      if (this.mayHide(k, half, mostHidden * tolerance * scaleP[k])) return false;
       const { tail, decay } = tailOf(total);
       const errorI = (path * meanError(tail, decay)) / scaleI[k];
       if (errorI > limit) return false;

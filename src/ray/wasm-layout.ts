@@ -44,8 +44,8 @@ export interface TransferLayout {
   readonly cosI: Cell;
   readonly radius: Cell;
   readonly height: Cell;
-  /** The tolerance, and the largest error that a panel may be estimated to have. */
-  readonly tolerance: Cell;
+  /** Emission that a panel may hide over the scale of P, and the largest error that a panel may be estimated to have. */
+  readonly hidden: Cell;
   readonly limit: Cell;
   readonly major: Cell;
   /** Heights and depths of the ray where s = 0: minor sin i, minor cos i. */
@@ -99,7 +99,7 @@ export function layOut(module: ModuleWriter, groups: number): TransferLayout {
     cosI: cell(),
     radius: cell(),
     height: cell(),
-    tolerance: cell(),
+    hidden: cell(),
     limit: cell(),
     major: cell(),
     minor: cell(),

@@ -46,7 +46,7 @@ export function writeIsResolved(context: TransferContext): Resolve {
       }
       const [turn, damping] = [w.let(record(spectrumRecord.turn)), w.let(record(spectrumRecord.damping))];
       const [scaleI, scaleP] = [w.let(record(spectrumRecord.scaleI)), w.let(record(spectrumRecord.scaleP))];
-      refuseHidden(w, layout, { path, turn, damping, largestPhi, largestDispersion, emission: group.size, limit: f.multiply(layout.tolerance.get(), scaleP), hasDispersion: structure.hasDispersion });
+      refuseHidden(w, layout, { path, turn, damping, largestPhi, largestDispersion, emission: group.size, limit: f.multiply(layout.hidden.get(), scaleP), hasDispersion: structure.hasDispersion });
       const errorI = w.let(f.divide(group.error, scaleI));
       w.when(f.greaterThan(errorI, limit), () => w.leave(no));
       w.run(rotate, turn, damping, int.constant(emission), int.constant(rotated[slot]));
