@@ -77,7 +77,11 @@ export function startingValues(search: LawSearch, { q, u }: Pick<FractionSpectru
   const order = Array.from(gains.keys()).sort((a, b) => gains[b] - gains[a]);
   // Half of them at local maxima; the others where a valley hides one from the lattice.
   const isAllowed = (point: number): boolean => gains[point] >= 0 || point === order[0];
-  const peaks = order.filter((point) => isAllowed(point) && neighbours(axes, point).every((other) => gains[other] <= gains[point])).slice(0, Math.ceil(most / 2));
+  const peaks: number[] = [];
+  for (const point of order) {
+    if (peaks.length >= most / 2 || !isAllowed(point)) break;
+    if (neighbours(axes, point).every((other) => gains[other] <= gains[point])) peaks.push(point);
+  }
   const chosen = new Set(peaks);
   const taken = new Set(peaks.flatMap((point) => [point, ...neighbours(axes, point)]));
   for (const point of order) {

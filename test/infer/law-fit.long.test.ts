@@ -8,9 +8,8 @@ import { allLaws, drawPulls } from './law-draws.ts';
 const draws = 1000;
 const sigma = 0.002;
 
-test.each(allLaws.map((law) => [law.name, law] as const))('%s: no bias from noise, and right errors', async (name, law) => {
-  const { mean, width, chi2 } = await drawPulls(law, sigma, draws);
-  console.log(name, mean.map((v) => v.toFixed(2)).join(' '), '|', width.map((v) => v.toFixed(2)).join(' '), chi2.toFixed(3));
+test.each(allLaws.map((law) => [law.name, law] as const))('%s: no bias from noise, and right errors', async (_, law) => {
+  const { mean, width } = await drawPulls(law, sigma, draws);
   for (const value of mean) expect(Math.abs(value)).toBeLessThan(4 / Math.sqrt(draws));
   for (const value of width) expect(Math.abs(value - 1)).toBeLessThan(0.1);
-}, 600_000);
+}, 1_800_000);
