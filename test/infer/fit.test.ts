@@ -129,8 +129,8 @@ describe('fitModel', () => {
     const a = await fitModel(await requestFor(noise, { onProgress: ({ stage, step, steps }) => stages.push(`${stage} ${step}/${steps}`) }));
     const b = await fitModel(await requestFor(noise));
     expect(a).toEqual(b);
-    expect(stages.slice(0, 5)).toEqual([1, 2, 3, 4, 5].map((k) => `starts ${k}/5`));
-    expect(stages[5]).toBe('descent 1/1');
+    expect(stages.slice(0, 6)).toEqual([1, 2, 3, 4, 5, 6].map((k) => `starts ${k}/6`));
+    expect(stages[6]).toBe('descent 1/1');
     const stop = new AbortController();
     const reason = new Error('enough');
     const onProgress = (): void => stop.abort(reason);
