@@ -3,6 +3,7 @@ import type { RayResult } from '../ray/types.ts';
 import type { Scene } from '../scene/types.ts';
 import { applyBeam, beamMargin } from './beam.ts';
 import { foregroundDepths, largestForeground, turnByForeground } from './foreground.ts';
+import { traceFaintToo } from './faint-rays.ts';
 import { cropCube, cropPlanes, gridFromScene, gridOffsetsKpc, growGrid, wcsFromGrid } from './grid.ts';
 import { refuseTooLarge } from './memory.ts';
 import { addNoise } from './noise.ts';
@@ -49,7 +50,7 @@ export async function observe(scene: Scene, backend: RayBackend, watch: Watch = 
   const foreground = foregroundDepths(scene, wcsFromGrid(wide), wide.nx, wide.ny);
   const plan = planSpectrum(scene, bundle, bands, { foreground: largestForeground(foreground) });
   refuseTooLarge({ ...size, frequencies: plan.spectrum.length });
-  const rays = await backend({ scene, spectrum: plan.spectrum, bundle }, watch);
+  const rays = await traceFaintToo(backend, { scene, spectrum: plan.spectrum, bundle }, watch);
   turnScreen(foreground, plan, rays);
   const cubes = plan.bands.map((band) => {
     const sharp: StokesCube = {

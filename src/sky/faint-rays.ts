@@ -1,0 +1,49 @@
+import type { RayBackend, RayJob, Watch } from '../ray/job.ts';
+import type { RayBundle, RayResult } from '../ray/types.ts';
+
+/** Rays fainter than this share of the brightest are followed again on a scale of their own. */
+const faintShare = 1e-2;
+/** Rounds of that: down to 1e-6 of the brightest. */
+const mostRounds = 3;
+const arrays = ['I', 'Q', 'U', 'heightQ', 'heightU', 'emittedP'] as const;
+
+/**
+ * Follows rays so that faint ones are exact beside themselves too, and not only beside the map's
+ * brightest: their heights of origin, angles and fractions are shown like any other. Rays below a
+ * hundredth of the brightest are followed once more among themselves, and so on.
+ */
+export async function traceFaintToo(backend: RayBackend, job: RayJob, watch: Watch): Promise<RayResult> {
+  const result = await backend(job, watch);
+  let samples = result.samples;
+  let indices: Int32Array = Int32Array.from(result.faradayDepth.keys());
+  for (let round = 0; round < mostRounds; round++) {
+    const faint = faintOf(result, indices);
+    if (faint.length === 0) break;
+    const again = await backend({ ...job, bundle: pick(job.bundle, faint) }, { signal: watch.signal });
+    replace(result, again, faint, job.spectrum.length);
+    samples += again.samples;
+    indices = faint;
+  }
+  return { ...result, samples };
+}
+
+/** Those of `indices` whose first frequency is faint beside the brightest among them, but not dark. */
+function faintOf({ I }: RayResult, indices: Int32Array): Int32Array {
+  const brightest = indices.reduce((most, index) => Math.max(most, I[index]), 0);
+  return indices.filter((index) => I[index] > 0 && I[index] < faintShare * brightest);
+}
+
+function pick({ northKpc, eastKpc }: RayBundle, indices: Int32Array): RayBundle {
+  const at = (offsets: Float64Array): Float64Array => Float64Array.from(indices, (index) => offsets[index]);
+  return { northKpc: at(northKpc), eastKpc: at(eastKpc) };
+}
+
+function replace(whole: RayResult, part: RayResult, indices: Int32Array, frequencies: number): void {
+  const rays = whole.faradayDepth.length;
+  indices.forEach((index, k) => {
+    whole.faradayDepth[index] = part.faradayDepth[k];
+    for (const name of arrays) {
+      for (let frequency = 0; frequency < frequencies; frequency++) whole[name][frequency * rays + index] = part[name][frequency * indices.length + k];
+    }
+  });
+}
