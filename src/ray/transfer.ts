@@ -46,13 +46,30 @@ const n = panelNodes;
 /** Bisections of one interval. */
 export const deepestSplit = 48;
 /**
- * Largest error that one panel may be estimated to have. Panels' errors rarely add up and the
- * estimates are far too large where coefficients fall ever faster, as they do in wide panels; at
- * small tolerances, where they fall evenly, less of that is left.
+ * Largest error that one panel may be estimated to have, over the tolerance. Panels' errors rarely
+ * add up and the estimates are far too large where coefficients fall ever faster, as they do in
+ * wide panels; at small tolerances, where they fall evenly, less of that is left.
  */
-export function panelLimit(tolerance: number): number {
-  return tolerance * Math.max(0.013, 10 * Math.min(1, tolerance / 1e-4));
+function looseness(tolerance: number): number {
+  return Math.max(0.013, 3 * Math.min(1, tolerance / 1e-4));
 }
+
+/** Largest error that one panel may be estimated to have. */
+export function panelLimit(tolerance: number): number {
+  return tolerance * looseness(tolerance);
+}
+
+/**
+ * Share of the tail that a panel with a valley is estimated to be wrong by at least. Where the
+ * field across the line of sight vanishes, B^q has a kink: coefficients stop falling, and the true
+ * error is up to a tenth of the tail; this keeps it below a third of the tolerance.
+ */
+export function valleyShare(tolerance: number): number {
+  return looseness(tolerance) / 3;
+}
+
+/** Emission between the nodes of a panel that falls below this share of that on either side is a valley. */
+export const valleyDepth = 0.8;
 
 /**
  * The error to be stated for a ray whose panels' estimates add up to `estimate`. Estimates lie above
@@ -186,12 +203,12 @@ export class RayTracer {
     const limit = panelLimit(tolerance);
     const path = 2 * half;
     const depth = tailOf(this.out[output.faraday]);
-    const errorPhi = path * meanError(depth.tail, depth.decay);
+    const errorPhi = path * meanError(depth, 0);
     for (const k of this.tested) {
       const total = this.emit(k);
       if (this.mayHide(k, half, mostHidden * tolerance * scaleP[k])) return false;
-      const { tail, decay } = tailOf(total);
-      const errorI = (path * meanError(tail, decay)) / scaleI[k];
+      const least = hasValley(total) ? valleyShare(tolerance) : 0;
+      const errorI = (path * meanError(tailOf(total), least)) / scaleI[k];
       if (errorI > limit) return false;
       this.rotate(k);
       const turn = 2 * this.wavelengthM2[k];
@@ -199,7 +216,7 @@ export class RayTracer {
       // Depth errors at the nodes beat with the emission; at the far end they turn all that lies behind.
       const coupled = polarized.tail * turn * half * depth.tail * 0.1;
       const behind = turn * errorPhi * Math.min(scaleI[k], mostBehind * scaleP[k]);
-      const errorP = (path * (meanError(polarized.tail, polarized.decay) + coupled) + behind) / scaleP[k];
+      const errorP = (path * (meanError(polarized, least) + coupled) + behind) / scaleP[k];
       if (errorP > limit) return false;
       this.pending[k] = Math.max(errorI, errorP);
     }
@@ -280,11 +297,16 @@ export class RayTracer {
   }
 }
 
+interface Tail {
+  readonly tail: number;
+  readonly decay: number;
+}
+
 /**
  * Sizes of the Legendre coefficients 6 and 7 of one or two functions at the nodes, and by which
  * factor coefficients fall in two degrees: the larger of the last two such factors, at most 1.
  */
-function tailOf(values: Float64Array, others?: Float64Array): { readonly tail: number; readonly decay: number } {
+function tailOf(values: Float64Array, others?: Float64Array): Tail {
   const [last, middle, first] = [pairSize(6, values, others), pairSize(4, values, others), pairSize(2, values, others)];
   const decay = Math.max(last / Math.max(middle, tiniest), middle / Math.max(first, tiniest));
   return { tail: last, decay: Math.min(Math.max(decay, fastestDecay), 1) };
@@ -304,10 +326,23 @@ function coefficient(degree: number, values: Float64Array): number {
 /**
  * Error of the mean over a panel: the rule is exact to degree 15, so coefficients that fall by
  * `decay` in two degrees leave tail · decay^4.75 of those at 16 and beyond. A lower power is safe
- * where they fall unevenly (null rules: Berntsen & Espelid 1991).
+ * where they fall unevenly (null rules: Berntsen & Espelid 1991). `least` is the least share of
+ * the tail that is believed.
  */
-function meanError(tail: number, decay: number): number {
-  return tail * decay * decay * decay;
+function meanError({ tail, decay }: Tail, least: number): number {
+  return tail * Math.max(decay * decay * decay, least);
+}
+
+/** Whether values fall between the ends of a panel and rise again, to less than `valleyDepth` of both sides. */
+function hasValley(values: Float64Array): boolean {
+  let behind = 0;
+  for (let i = 1; i < n - 1; i++) {
+    behind = Math.max(behind, values[i - 1]);
+    let ahead = 0;
+    for (let j = i + 1; j < n; j++) ahead = Math.max(ahead, values[j]);
+    if (values[i] < valleyDepth * Math.min(behind, ahead)) return true;
+  }
+  return false;
 }
 
 function largest(values: Float64Array): number {

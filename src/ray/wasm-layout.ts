@@ -47,6 +47,7 @@ export interface TransferLayout {
   /** Emission that a panel may hide over the scale of P, and the largest error that a panel may be estimated to have. */
   readonly hidden: Cell;
   readonly limit: Cell;
+  readonly valleyShare: Cell;
   readonly major: Cell;
   /** Heights and depths of the ray where s = 0: minor sin i, minor cos i. */
   readonly minor: Cell;
@@ -101,6 +102,7 @@ export function layOut(module: ModuleWriter, groups: number): TransferLayout {
     height: cell(),
     hidden: cell(),
     limit: cell(),
+    valleyShare: cell(),
     major: cell(),
     minor: cell(),
     minorSin: cell(),

@@ -1,7 +1,7 @@
 import { float as f, int, vector as v, type Float, type Int, type Vector } from '../formula/wasm/code.ts';
 import type { FunctionWriter } from '../formula/wasm/function.ts';
 import { panelNodes } from './panel.ts';
-import { fastestDecay, tiniest } from './transfer.ts';
+import { fastestDecay, tiniest, valleyDepth } from './transfer.ts';
 import type { TransferLayout } from './wasm-layout.ts';
 
 export const zero = int.constant(0);
@@ -59,9 +59,22 @@ function pairSizes(w: FunctionWriter, { legendrePairs }: TransferLayout, address
   });
 }
 
-/** Error of the mean over a panel: `meanError` of transfer.ts. */
-export function meanError(w: FunctionWriter, { tail, decay }: Tail): Float {
-  return w.let(f.multiply(f.multiply(tail, decay), f.multiply(decay, decay)));
+/** Error of the mean over a panel, at least this share of the tail: `meanError` of transfer.ts. */
+export function meanError(w: FunctionWriter, { tail, decay }: Tail, least = f.constant(0)): Float {
+  return w.let(f.multiply(tail, f.max(f.multiply(f.multiply(decay, decay), decay), least)));
+}
+
+/** Whether values at the nodes have a valley: `hasValley` of transfer.ts. */
+export function hasValley(w: FunctionWriter, values: NodeValues): Int {
+  const numbers = values.flatMap((pair) => [w.let(v.lane(pair, 0)), w.let(v.lane(pair, 1))]);
+  const largestUpTo = (list: readonly Float[]): Float[] => {
+    let size = f.constant(0);
+    return list.map((value) => (size = w.let(f.max(size, value))));
+  };
+  const behind = largestUpTo(numbers);
+  const ahead = largestUpTo([...numbers].reverse()).reverse();
+  const valleys = numbers.slice(1, -1).map((value, k) => f.less(value, f.multiply(f.constant(valleyDepth), f.min(behind[k], ahead[k + 2]))));
+  return valleys.reduce((any, valley) => int.or(any, valley));
 }
 
 /** Largest size among the values of some functions. */

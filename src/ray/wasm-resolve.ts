@@ -5,7 +5,7 @@ import type { Callee } from '../formula/wasm/module.ts';
 import { writeRotate } from './wasm-rotate.ts';
 import { mostBehind, mostPerPanel } from './transfer.ts';
 import { emissionBytes, spectrumRecord, type TransferContext, type TransferLayout } from './wasm-layout.ts';
-import { largest, loadNodes, measureTail, meanError, nodeBytes, zero } from './wasm-nodes.ts';
+import { hasValley, largest, loadNodes, measureTail, meanError, nodeBytes, zero } from './wasm-nodes.ts';
 
 /** The test of a panel, and what it leaves behind for those that it accepts. */
 export interface Resolve {
@@ -34,14 +34,17 @@ export function writeIsResolved(context: TransferContext): Resolve {
     const errorPhi = w.let(f.multiply(path, meanError(w, depth)));
     const largestDispersion = structure.hasDispersion ? largest(w, loadNodes(w, layout.dispersion)) : f.constant(0);
     const limit = layout.limit.get();
-    const groups = new Map<number, { readonly size: Float; readonly error: Float }>();
+    const groups = new Map<number, { readonly size: Float; readonly least: Float; readonly error: Float }>();
     const pending = structure.tested.map((k, slot) => {
       const record = (offset: number): Float => f.load(zero, spectrum + spectrumRecord.bytes * k + offset);
       const emission = layout.emission + emissionBytes * structure.groupOf[k];
       let group = groups.get(structure.groupOf[k]);
       if (!group) {
-        const size = largest(w, loadNodes(w, emission));
-        group = { size, error: w.let(f.multiply(path, meanError(w, measureTail(w, layout, int.constant(emission))))) };
+        const values = loadNodes(w, emission);
+        const least = w.variable('f64', f.constant(0));
+        w.when(hasValley(w, values), () => least.set(layout.valleyShare.get()));
+        const error = w.let(f.multiply(path, meanError(w, measureTail(w, layout, int.constant(emission)), least)));
+        group = { size: largest(w, values), least, error };
         groups.set(structure.groupOf[k], group);
       }
       const [turn, damping] = [w.let(record(spectrumRecord.turn)), w.let(record(spectrumRecord.damping))];
@@ -53,7 +56,7 @@ export function writeIsResolved(context: TransferContext): Resolve {
       const polarized = measureTail(w, layout, int.constant(rotated[slot]), int.constant(rotated[slot] + nodeBytes));
       const coupled = f.multiply(f.multiply(f.multiply(f.multiply(polarized.tail, turn), half), depth.tail), f.constant(0.1));
       const behind = f.multiply(f.multiply(turn, errorPhi), f.min(scaleI, f.multiply(f.constant(mostBehind), scaleP)));
-      const errorP = w.let(f.divide(f.add(f.multiply(path, f.add(meanError(w, polarized), coupled)), behind), scaleP));
+      const errorP = w.let(f.divide(f.add(f.multiply(path, f.add(meanError(w, polarized, group.least), coupled)), behind), scaleP));
       w.when(f.greaterThan(errorP, limit), () => w.leave(no));
       return w.let(f.max(errorI, errorP));
     });

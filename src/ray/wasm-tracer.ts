@@ -1,7 +1,7 @@
 import { ensureMemory, placeTables } from '../formula/wasm/kernel.ts';
 import type { Integrand, IntegrandInputs } from './integrand.ts';
 import type { RayGeometry } from './path.ts';
-import { mostHidden, panelLimit, testedFrequencies, type Accuracy, type RaySums } from './transfer.ts';
+import { mostHidden, panelLimit, testedFrequencies, type Accuracy, type RaySums, valleyShare } from './transfer.ts';
 import { resultsPerFrequency, spectrumRecord } from './wasm-layout.ts';
 import { writeTransfer, type TransferModule } from './wasm-transfer.ts';
 
@@ -73,6 +73,7 @@ export class WasmTransfer {
       [layout.height, geometry.heightKpc],
       [layout.hidden, mostHidden * accuracy.tolerance],
       [layout.limit, panelLimit(accuracy.tolerance)],
+      [layout.valleyShare, valleyShare(accuracy.tolerance)],
     ] as const;
     for (const [cell, value] of cells) numbers[cell.address / 8] = value;
     this.wavelengthM2.forEach((square, k) => {
