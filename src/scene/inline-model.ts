@@ -102,11 +102,11 @@ function checkName(input: YamlInput, name: string, path: YamlPath, taken: readon
   throw new InputError(`the name "${name}" already means something else in formulas`, placeAt(input, path));
 }
 
-/** Edges as formulas in kpc: "1.5 kpc" becomes a number, anything else is a formula of parameters. */
+/** Edges as formulas in kpc, numbers included: "1500 pc" becomes 1.5, anything else is a formula of parameters. */
 function readEdges(input: YamlInput, given: ModelEdges, path: YamlPath): ModelEdges {
   const read = (axis: 'z' | 'r'): string[] =>
     (given[axis] ?? []).map((text, index) => {
-      const isQuantity = /^\s*[+-]?[\d.]+(e[+-]?\d+)?(\s*$|\s+[A-Za-z])/i.test(text);
+      const isQuantity = /^\s*[+-]?[\d.]+(e[+-]?\d+)?\s+[A-Za-z]/i.test(text);
       return isQuantity ? String(placed(input, [...path, 'edges', axis, index], () => parseQuantity(text, 'kpc'))) : text;
     });
   return { ...(given.z && { z: read('z') }), ...(given.r && { r: read('r') }) };

@@ -81,6 +81,12 @@ describe('the full scene', () => {
     expect(parse(spoil(29, '').replace(/^.*beam:.*$/m, '  noise: 2 MJy/sr')).observation.noise).toBe(2e6);
   });
 
+  // Inside formulas lengths are kpc, and an edge is a formula: a bare number is kpc there.
+  test('edges as bare numbers, in kpc', () => {
+    const text = spoil(13, '  - {model: formula, name: mine, field: {x: "1"}, edges: {z: [0.5, -0.5], r: ["500 pc"]}}');
+    expect(parse(text).field.find(({ name }) => name === 'mine')?.model.edges).toEqual({ z: ['0.5', '-0.5'], r: ['0.5'] });
+  });
+
   test('a density by formula, with definitions and cylindrical edges', () => {
     const text = spoil(15, '  - {model: formula, name: warm, parameters: {density: 0.02 cm^-3, h: 1 kpc}, define: {u: "z/h"}, density: "abs(u) < 1 ? density : 0", edges: {z: [h, -h], r: [500 pc]}}');
     expect(parse(text).thermalElectrons[0].model).toMatchObject({ kind: 'density', define: { u: 'z/h' }, edges: { z: ['h', '-h'], r: ['0.5'] } });
@@ -121,7 +127,7 @@ describe('what is refused, word for word', () => {
     [13, '  - {model: formula, name: mine, parameters: {q: 20 parsecs}, potential: {phi: "q*r"}}', '13:50: unknown unit "parsecs"'],
     [13, '  - {model: formula, name: mine, parameters: {pi: 20 kpc}, potential: {phi: "pi*r"}}', '13:51: the name "pi" already means something else in formulas'],
     [13, '  - {model: formula, name: mine, parameters: {q: 20}, density: "q"}', '13:64: a field has no "density": give "potential", "euler" or "field"'],
-    [13, '  - {model: formula, name: mine, field: {x: "1"}, edges: {z: [2]}}', '13:63: "2" has no unit: a length is wanted, such as "2 kpc"'],
+    [13, '  - {model: formula, name: mine, field: {x: "1"}, edges: {z: [2 uG]}}', '13:63: "2 uG" is a magnetic field: a length is wanted, such as "2 kpc"'],
     [13, '  - {model: formula, name: mine, field: {x: "1"}, edges: {z: [r]}}', '13:63: the edge "r" is no formula of parameters alone'],
     [13, '  - {model: formula, name: mine, field: {x: "1"}, heightIndex: 1, heightAt: 1 GHz}', '13:51: field.mine: unknown key "heightIndex"'],
     [17, '  index: 1', '17:10: cosmicRays.index: 1 is not allowed: more than 1 and at most 5'],
