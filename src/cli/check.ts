@@ -1,5 +1,6 @@
 import type { Command } from 'commander';
-import { readText } from '../files/node-io.ts';
+import { filesBeside, readText } from '../files/node-io.ts';
+import { loadData } from '../files/load-data.ts';
 import { parseStudy } from '../infer/study.ts';
 import { checkModel } from '../model/check-model.ts';
 import { parseModelFile } from '../model/model-file.ts';
@@ -12,7 +13,6 @@ import { readYaml } from '../units/yaml-input.ts';
 import { internalUnit } from '../model/parameters.ts';
 import { gatherAssumptions } from './assumptions.ts';
 import { prepareHypothesis } from './hypothesis-run.ts';
-import { loadData } from './load-data.ts';
 import { loadScene } from './load-scene.ts';
 import { addSceneFlags, overridesOf, type CommonFlags } from './run-context.ts';
 
@@ -102,7 +102,7 @@ function checkModelFile(file: string, text: string): CheckReport {
 
 function checkStudy(file: string, text: string, flags: CommonFlags): CheckReport {
   const study = parseStudy(text, file);
-  const { data, notes } = loadData(study.data, file, study.others);
+  const { data, notes } = loadData(study.data, filesBeside(file), study.others);
   const lines = [`${file}: a study, "${study.title}"`];
   for (const band of data.bands) lines.push(`  data     ${band.name}: ${band.channels.map((channel) => `${(channel.frequencyHz / 1e9).toPrecision(6)} GHz`).join(', ')}`);
   for (const sentence of gatherAssumptions([...data.assumptions, ...notes])) lines.push(`  assumed  ${sentence}`);

@@ -1,7 +1,8 @@
 import type { Command } from 'commander';
 import { comparisonOverview, measureOnData } from '../figure/comparison.ts';
 import { overviewSvg } from '../figure/overview.ts';
-import { readBytes, readText } from '../files/node-io.ts';
+import { filesBeside, readBytes, readText } from '../files/node-io.ts';
+import { loadData } from '../files/load-data.ts';
 import { readFits } from '../files/fits-read.ts';
 import { skyImageFromFits } from '../files/sky-fits-read.ts';
 import { writeCsv } from '../files/csv-write.ts';
@@ -16,7 +17,6 @@ import type { DataSet } from '../infer/types.ts';
 import type { Sector } from '../measure/rings.ts';
 import { InputError } from '../units/input-error.ts';
 import { gatherAssumptions } from './assumptions.ts';
-import { loadData } from './load-data.ts';
 import { loadScene } from './load-scene.ts';
 import { bandFileName, OutputFolder } from './output-folder.ts';
 import { ringOf } from './ring-flag.ts';
@@ -79,8 +79,8 @@ async function compare(path: string, files: readonly string[], flags: CompareFla
 
 /** Data from FITS files whose headers say what they are, or from a study. */
 function readData(files: readonly string[], flags: CompareFlags): ReturnType<typeof loadData> {
-  if (files.length === 1 && /\.ya?ml$/i.test(files[0])) return loadData(parseStudy(readText(files[0]), files[0]).data, files[0]);
-  return loadData(files.flatMap((file) => entriesOf(file, flags)), './');
+  if (files.length === 1 && /\.ya?ml$/i.test(files[0])) return loadData(parseStudy(readText(files[0]), files[0]).data, filesBeside(files[0]));
+  return loadData(files.flatMap((file) => entriesOf(file, flags)), filesBeside('./'));
 }
 
 /** One entry per Stokes plane of a file that can be compared. */

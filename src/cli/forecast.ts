@@ -10,7 +10,8 @@ import type { CandidateBand } from '../infer/study-types.ts';
 import type { DataSet } from '../infer/types.ts';
 import { convertQuantity } from '../units/quantity.ts';
 import { InputError } from '../units/input-error.ts';
-import { forwardOf, type FittedRun } from './hypothesis-run.ts';
+import { forwardOf } from '../infer/hypothesis.ts';
+import type { FittedRun } from './hypothesis-run.ts';
 import { OutputFolder } from './output-folder.ts';
 import { durationText } from './progress.ts';
 import { addStudyFlags } from './rank.ts';
@@ -101,7 +102,7 @@ function pairOf(runs: readonly FittedRun[], { likelihood, file }: LoadedStudy, {
 async function outlookOf(first: FittedRun, second: FittedRun, candidate: CandidateBand | undefined, planned: DataSet, context: RunContext): Promise<Outlook> {
   const likelihood = makeLikelihood(planned);
   const [a, b] = [first, second].map(({ prepared, fit }): ForecastHypothesis => ({
-    parameters: prepared.parameters, values: fit.values, forward: forwardOf(prepared, planned, context),
+    parameters: prepared.parameters, values: fit.values, forward: forwardOf(prepared, planned, context.pool.backend),
   }));
   const ifFirst = await expectedEvidence(a, b, likelihood, context.signal);
   const ifSecond = await expectedEvidence(b, a, likelihood, context.signal);

@@ -3,15 +3,8 @@ import type { Provenance } from '../files/fits-scene.ts';
 import { sha256OfText } from '../files/sha256.ts';
 import { measureOnData, type Measured } from '../figure/comparison.ts';
 import { correlations, fitModel, type Fit } from '../infer/fit.ts';
-import { resolveFree } from '../infer/free-parameters.ts';
 import { chiSquared, logLikelihood, type Likelihood } from '../infer/likelihood.ts';
-import type { FreeParameter } from '../infer/prior.ts';
-import type { ForwardModel } from '../infer/forward.ts';
-import { calibrationParameters, foregroundNuisance, withCalibration } from '../infer/nuisances.ts';
-import { makeJointModel } from '../infer/joint-model.ts';
-import { sceneWith, type SceneOf } from '../infer/sky-model.ts';
-import { compileTie, followTies, type Tie } from '../infer/ties.ts';
-import { refuseNoOverlap } from '../infer/overlap.ts';
+import { forwardOf, freeHypothesis, type FreeHypothesis } from '../infer/hypothesis.ts';
 import type { Hypothesis, Study } from '../infer/study-types.ts';
 import type { DataSet } from '../infer/types.ts';
 import type { Ring } from '../measure/ring-profile.ts';
@@ -24,17 +17,10 @@ import { InputError } from '../units/input-error.ts';
 import { loadScene } from './load-scene.ts';
 import type { RunContext } from './run-context.ts';
 
-/** A hypothesis ready to be fitted: its scene and what is free in it. */
-export interface PreparedHypothesis {
-  readonly name: string;
+/** A hypothesis ready to be fitted, with the scene's file. */
+export interface PreparedHypothesis extends FreeHypothesis {
   readonly sceneFile: string;
-  readonly scene: Scene;
   readonly provenance: Provenance;
-  readonly parameters: readonly FreeParameter[];
-  /** Numbers that follow from the free ones, in the scene and in the posterior only. */
-  readonly ties: readonly Tie[];
-  readonly derived: readonly Tie[];
-  readonly sceneOf: SceneOf;
 }
 
 /** A fitted hypothesis with its best scene and maps. */
@@ -55,29 +41,13 @@ export function prepareHypothesis(
 ): PreparedHypothesis {
   const sceneFile = resolve(dirname(studyFile), hypothesis.scene);
   const { scene, provenance } = placed(hypothesis, () => loadScene(sceneFile, overrides));
-  placed(hypothesis, () => refuseNoOverlap(data, scene.galaxy));
-  const turned = data.planes.some(({ quantity }) => quantity !== 'I') || (data.others?.length ?? 0) > 0;
-  const named = [...hypothesis.free.map(({ path }) => path), ...hypothesis.tied.map((tie) => tie.name)];
-  const foreground = foregroundNuisance(turned ? study.foreground : undefined, scene, named, hypothesis.place);
-  const ofScene = resolveFree([...hypothesis.free, ...(foreground ? [foreground] : [])], scene);
-  const parameters = [...ofScene, ...calibrationParameters(study.calibration, data.bands)];
-  const ties = hypothesis.tied.map((tie) => compileTie(tie, scene));
-  const paths = ofScene.map(({ path }) => path);
-  const sceneOf: SceneOf = (values) => followTies(sceneWith(scene, paths, values), ties);
-  placed(hypothesis, () => followTies(scene, ties));
-  const derived = hypothesis.derived.map((one) => compileTie(one, scene));
-  return { name: hypothesis.name, sceneFile, scene, provenance, parameters, ties, derived, sceneOf };
+  return { ...freeHypothesis(hypothesis, study, scene, data), sceneFile, provenance };
 }
 
 /** How hard a fit looks for the lowest χ². */
 export interface FitEffort {
   readonly starts: number;
   readonly descents: number;
-}
-
-/** The model of the data that a hypothesis makes. */
-export function forwardOf({ scene, sceneOf, parameters }: PreparedHypothesis, data: DataSet, context: RunContext): ForwardModel {
-  return withCalibration(makeJointModel(data, scene, sceneOf, context.pool.backend), data, parameters);
 }
 
 /** Fits one hypothesis; `known` is the fit of an earlier, interrupted run. */
@@ -92,7 +62,7 @@ export async function fitHypothesis(
   known?: Pick<Fit, 'values' | 'errors' | 'covariance' | 'atBound' | 'converged' | 'evaluations'>,
 ): Promise<Fit> {
   const { parameters } = prepared;
-  const forward = forwardOf(prepared, data, context);
+  const forward = forwardOf(prepared, data, context.pool.backend);
   if (known) {
     const residuals = likelihood.residuals(await forward(known.values, context.signal));
     return { ...known, chi2: chiSquared(residuals), priorChi2: 0, logLikelihood: logLikelihood(likelihood, residuals), residuals, descents: [] };
@@ -114,7 +84,7 @@ export async function fitHypothesis(
 /** The best scene of a fit, its maps on the data's grid, and what is measured on them. */
 export async function finishHypothesis(prepared: PreparedHypothesis, fit: Fit, data: DataSet, ring: Ring, context: RunContext): Promise<FittedRun> {
   const bestScene = prepared.sceneOf(fit.values);
-  const planes = await forwardOf(prepared, data, context)(fit.values, context.signal);
+  const planes = await forwardOf(prepared, data, context.pool.backend)(fit.values, context.signal);
   const ofScene = prepared.parameters.filter(({ calibrationBand }) => calibrationBand === undefined);
   const changed = [...ofScene.map(({ path }) => path), ...prepared.ties.map(({ name: path }) => path)];
   const overrides = changed.map((path): Override => {

@@ -7,7 +7,8 @@ import { drawPosterior, summarisePosterior, type Posterior } from '../infer/post
 import type { DataSet } from '../infer/types.ts';
 import type { Ring } from '../measure/ring-profile.ts';
 import { convertQuantity } from '../units/quantity.ts';
-import { forwardOf, type FittedRun } from './hypothesis-run.ts';
+import { forwardOf } from '../infer/hypothesis.ts';
+import type { FittedRun } from './hypothesis-run.ts';
 import type { OutputFolder } from './output-folder.ts';
 import type { RunContext } from './run-context.ts';
 import { version } from './version.ts';
@@ -24,7 +25,7 @@ const predictiveDraws = 40;
 
 /** Profiles round the ring of models drawn from a posterior. */
 export async function predictProfiles(run: FittedRun, posterior: Posterior, data: DataSet, ring: Ring, seed: number, context: RunContext): Promise<readonly Measured[]> {
-  const forward = forwardOf(run.prepared, data, context);
+  const forward = forwardOf(run.prepared, data, context.pool.backend);
   const drawn: Measured[] = [];
   for (const [k, values] of drawPosterior(posterior, predictiveDraws, seed).entries()) {
     const scene = run.prepared.sceneOf(values);

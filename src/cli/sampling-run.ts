@@ -5,7 +5,8 @@ import type { Likelihood } from '../infer/likelihood.ts';
 import { samplePosterior, type Posterior, type SamplingEffort, type SamplingState } from '../infer/posterior.ts';
 import type { DataSet } from '../infer/types.ts';
 import { InputError } from '../units/input-error.ts';
-import { forwardOf, type FittedRun } from './hypothesis-run.ts';
+import { forwardOf } from '../infer/hypothesis.ts';
+import type { FittedRun } from './hypothesis-run.ts';
 import type { RunContext } from './run-context.ts';
 
 /** Checkpoints of sampling runs that are not finished, one file each, written whole or not at all. */
@@ -49,7 +50,7 @@ export async function sampleHypothesis(
   return samplePosterior({
     method,
     parameters: run.prepared.parameters,
-    forward: forwardOf(run.prepared, data, context),
+    forward: forwardOf(run.prepared, data, context.pool.backend),
     likelihood,
     fit: run.fit,
     seed,

@@ -1,4 +1,5 @@
-import { readText } from '../files/node-io.ts';
+import { filesBeside, readText } from '../files/node-io.ts';
+import { loadData } from '../files/load-data.ts';
 import { sha256OfText } from '../files/sha256.ts';
 import type { Likelihood } from '../infer/likelihood.ts';
 import { jointLikelihood } from '../infer/other-data.ts';
@@ -10,7 +11,6 @@ import { InputError, nearestHint } from '../units/input-error.ts';
 import { gatherAssumptions } from './assumptions.ts';
 import { FitStore } from './fit-store.ts';
 import { finishHypothesis, fitHypothesis, fitKey, prepareHypothesis, type PreparedHypothesis } from './hypothesis-run.ts';
-import { loadData } from './load-data.ts';
 import { predictProfiles, type SampledRun } from './posterior-files.ts';
 import { ringOf } from './ring-flag.ts';
 import { overridesOf, sayWords, withRunContext, type CommonFlags } from './run-context.ts';
@@ -40,7 +40,7 @@ export interface LoadedStudy {
 export function loadStudy(file: string, flags: StudyFlags, only?: string): LoadedStudy {
   const text = readText(file);
   const study = parseStudy(text, file);
-  const { data, notes } = loadData(study.data, file, study.others);
+  const { data, notes } = loadData(study.data, filesBeside(file), study.others);
   const overrides = overridesOf({ set: flags.set });
   const wanted = only === undefined ? study.hypotheses : study.hypotheses.filter(({ name }) => name === only);
   if (wanted.length === 0) {

@@ -1,7 +1,8 @@
 import { randomUUID } from 'node:crypto';
 import { closeSync, fsyncSync, mkdirSync, openSync, readdirSync, readFileSync, renameSync, rmSync, writeSync } from 'node:fs';
-import { basename, dirname, join } from 'node:path';
+import { basename, dirname, join, resolve } from 'node:path';
 import { InputError, nearestHint } from '../units/input-error.ts';
+import type { FileSource } from './load-data.ts';
 
 /** The bytes of a file. Throws InputError where it is missing (with the nearest name beside it) or cannot be read. */
 export function readBytes(path: string): Uint8Array {
@@ -21,6 +22,12 @@ export function readText(path: string): string {
   } catch {
     throw new InputError('the file is no UTF-8 text', { file: path });
   }
+}
+
+/** Files named relative to the folder of `baseFile`. */
+export function filesBeside(baseFile: string): FileSource {
+  const folder = dirname(baseFile);
+  return { bytes: (file) => readBytes(resolve(folder, file)), text: (file) => readText(resolve(folder, file)) };
 }
 
 /**

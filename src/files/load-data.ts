@@ -1,14 +1,20 @@
-import { dirname, resolve } from 'node:path';
-import { csvNumbers, parseCsv } from '../files/csv-parse.ts';
-import { readBytes, readText } from '../files/node-io.ts';
-import { readFits } from '../files/fits-read.ts';
-import { skyImageFromFits } from '../files/sky-fits-read.ts';
 import { makeDataSet, type LoadedEntry } from '../infer/dataset.ts';
 import type { ReadMap } from '../infer/map-facts.ts';
 import { readOther, type LoadedOther, type ReadTable } from '../infer/read-other.ts';
 import type { DataEntry, OtherEntry } from '../infer/study-types.ts';
 import type { DataSet } from '../infer/types.ts';
 import { InputError } from '../units/input-error.ts';
+import { csvNumbers, parseCsv } from './csv-parse.ts';
+import { readFits } from './fits-read.ts';
+import { skyImageFromFits } from './sky-fits-read.ts';
+
+/** Where a study's files are: beside it on disk, or among those dropped on the page. */
+export interface FileSource {
+  /** Throws InputError where there is no such file. */
+  readonly bytes: (file: string) => Uint8Array;
+  /** The same as UTF-8 text. */
+  readonly text: (file: string) => string;
+}
 
 /** A data set read from files, with what their readers assumed, a plain sentence each. */
 export interface LoadedData {
@@ -16,13 +22,11 @@ export interface LoadedData {
   readonly notes: readonly string[];
 }
 
-/** Reads a study's data entries; files are found beside `baseFile`. Throws InputError for what is wrong. */
-export function loadData(entries: readonly DataEntry[], baseFile: string, others: readonly OtherEntry[] = []): LoadedData {
+/** Reads a study's data entries from `source`. Throws InputError for what is wrong. */
+export function loadData(entries: readonly DataEntry[], source: FileSource, others: readonly OtherEntry[] = []): LoadedData {
   const notes: string[] = [];
-  const folder = dirname(baseFile);
   const read = (file: string, entry: DataEntry): ReadMap => {
-    const path = resolve(folder, file);
-    const image = placed(entry, () => skyImageFromFits(readFits(readBytes(path), file), file, overridesOf(entry)));
+    const image = placed(entry, () => skyImageFromFits(readFits(source.bytes(file), file), file, overridesOf(entry)));
     notes.push(...image.notes.map((note) => `${file}: ${note}`));
     return { ...image, file };
   };
@@ -38,7 +42,7 @@ export function loadData(entries: readonly DataEntry[], baseFile: string, others
   const loadedOthers = others.map((entry): LoadedOther =>
     entry.kind === 'map'
       ? { entry, map: otherMap(entry.file, entry), ...(entry.mask !== undefined && { mask: otherMap(entry.mask, { ...entry, frequencyHz: undefined }) }) }
-      : { entry, table: tableOf(resolve(folder, entry.file), entry) },
+      : { entry, table: tableOf(source, entry) },
   );
   const maps = loaded.length > 0 ? makeDataSet(loaded) : emptyDataSet(loadedOthers);
   const assumptions: string[] = [];
@@ -55,9 +59,9 @@ function emptyDataSet(others: readonly LoadedOther[]): DataSet {
   return { axes: { wcs, nx, ny }, unit: unit === 'Jy/sr' ? 'Jy/sr' : 'Jy/beam', bands: [], planes: [], assumptions: [] };
 }
 
-function tableOf(path: string, entry: OtherEntry): ReadTable {
+function tableOf(source: FileSource, entry: OtherEntry): ReadTable {
   return placed(entry, () => {
-    const table = parseCsv(readText(path), entry.file);
+    const table = parseCsv(source.text(entry.file), entry.file);
     return { file: entry.file, rows: table.rows.length, units: table.units, column: (name) => csvNumbers(table, name) };
   });
 }

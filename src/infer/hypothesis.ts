@@ -1,0 +1,56 @@
+import type { RayBackend } from '../ray/job.ts';
+import type { Scene } from '../scene/types.ts';
+import { InputError } from '../units/input-error.ts';
+import type { ForwardModel } from './forward.ts';
+import { resolveFree } from './free-parameters.ts';
+import { makeJointModel } from './joint-model.ts';
+import { calibrationParameters, foregroundNuisance, withCalibration } from './nuisances.ts';
+import { refuseNoOverlap } from './overlap.ts';
+import type { FreeParameter } from './prior.ts';
+import { sceneWith, type SceneOf } from './sky-model.ts';
+import type { Hypothesis, Study } from './study-types.ts';
+import { compileTie, followTies, type Tie } from './ties.ts';
+import type { DataSet } from './types.ts';
+
+/** A hypothesis with its scene and all that is free in it. */
+export interface FreeHypothesis {
+  readonly name: string;
+  readonly scene: Scene;
+  readonly parameters: readonly FreeParameter[];
+  /** Numbers that follow from the free ones, in the scene and in the posterior only. */
+  readonly ties: readonly Tie[];
+  readonly derived: readonly Tie[];
+  readonly sceneOf: SceneOf;
+}
+
+/**
+ * The free parameters of a hypothesis: its own, the foreground's depth and factors of calibration.
+ * Throws InputError, placed at the hypothesis, where one does not fit the scene or the data lie elsewhere.
+ */
+export function freeHypothesis(hypothesis: Hypothesis, study: Pick<Study, 'foreground' | 'calibration'>, scene: Scene, data: DataSet): FreeHypothesis {
+  placed(hypothesis, () => refuseNoOverlap(data, scene.galaxy));
+  const turned = data.planes.some(({ quantity }) => quantity !== 'I') || (data.others?.length ?? 0) > 0;
+  const named = [...hypothesis.free.map(({ path }) => path), ...hypothesis.tied.map((tie) => tie.name)];
+  const foreground = foregroundNuisance(turned ? study.foreground : undefined, scene, named, hypothesis.place);
+  const ofScene = resolveFree([...hypothesis.free, ...(foreground ? [foreground] : [])], scene);
+  const parameters = [...ofScene, ...calibrationParameters(study.calibration, data.bands)];
+  const ties = hypothesis.tied.map((tie) => compileTie(tie, scene));
+  const paths = ofScene.map(({ path }) => path);
+  const sceneOf: SceneOf = (values) => followTies(sceneWith(scene, paths, values), ties);
+  placed(hypothesis, () => followTies(scene, ties));
+  const derived = hypothesis.derived.map((one) => compileTie(one, scene));
+  return { name: hypothesis.name, scene, parameters, ties, derived, sceneOf };
+}
+
+/** The model of the data that a hypothesis makes. */
+export function forwardOf({ scene, sceneOf, parameters }: FreeHypothesis, data: DataSet, backend: RayBackend): ForwardModel {
+  return withCalibration(makeJointModel(data, scene, sceneOf, backend), data, parameters);
+}
+
+function placed<T>({ place }: Hypothesis, work: () => T): T {
+  try {
+    return work();
+  } catch (error) {
+    throw error instanceof InputError ? error.at(place) : error;
+  }
+}
