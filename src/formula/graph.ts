@@ -124,7 +124,9 @@ export class Graph {
     if (kept.length === 1 && constant === 0) return this.scale(kept[0][1], kept[0][0]);
     const sorted = kept.map(([id, coefficient]): Term => [coefficient, id]);
     const varying = sorted.some(([, id]) => this.varying[id]);
-    return this.intern({ kind: 'sum', constant, terms: sorted }, `s${constant};${sorted.join(';')}`, varying);
+    let key = `s${constant}`;
+    for (const [coefficient, id] of sorted) key += `;${coefficient},${id}`;
+    return this.intern({ kind: 'sum', constant, terms: sorted }, key, varying);
   }
 
   /** c - c·e^w becomes -c·expm1(w), which keeps its digits where w → 0. */
@@ -176,25 +178,32 @@ export class Graph {
   }
 
   private product(coefficient: number, factors: readonly Factor[]): NodeId {
-    const merged = new Map<NodeId, number>();
+    const merged: [id: NodeId, exponent: number][] = [];
     let scale = coefficient;
+    // Few factors: a search through a list is quicker than a map.
     const collect = (id: NodeId, exponent: number): void => {
-      merged.set(id, (merged.get(id) ?? 0) + exponent);
+      const found = merged.find((factor) => factor[0] === id);
+      if (found) found[1] += exponent;
+      else merged.push([id, exponent]);
     };
     for (const [id, exponent] of factors) collect(id, exponent);
     // A product raised to what has become a whole power is multiplied out.
-    for (const [id, exponent] of [...merged]) {
+    const wholes = merged.filter(([id, exponent]) => this.nodes[id].kind === 'product' && Number.isInteger(exponent));
+    for (const whole of wholes) {
+      const [id, exponent] = whole;
       const node = this.nodes[id];
-      if (node.kind !== 'product' || !Number.isInteger(exponent)) continue;
-      merged.delete(id);
+      if (node.kind !== 'product') continue;
+      whole[1] = 0;
       scale *= Math.pow(node.coefficient, exponent);
       for (const [inner, innerExponent] of node.factors) collect(inner, innerExponent * exponent);
     }
-    const kept = [...merged].filter(([, exponent]) => exponent !== 0).sort((a, b) => a[0] - b[0]);
+    const kept = merged.filter(([, exponent]) => exponent !== 0).sort((a, b) => a[0] - b[0]);
     if (kept.length === 0 || scale === 0) return this.constant(scale);
     if (scale === 1 && kept.length === 1 && kept[0][1] === 1) return kept[0][0];
     const varying = kept.some(([id]) => this.varying[id]);
-    return this.intern({ kind: 'product', coefficient: scale, factors: kept }, `m${scale};${kept.join(';')}`, varying);
+    let key = `m${scale}`;
+    for (const [id, exponent] of kept) key += `;${id},${exponent}`;
+    return this.intern({ kind: 'product', coefficient: scale, factors: kept }, key, varying);
   }
 
   unary(name: UnaryName, argument: NodeId): NodeId {

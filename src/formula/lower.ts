@@ -55,6 +55,7 @@ class Lowering {
   private readonly lowered = new Map<NodeId, Value>();
   private readonly parameters: string[] = [];
   private readonly tables: string[] = [];
+  private readonly itemValues: Value[] = [];
   private shared: SharedFactors = { items: [], products: new Map() };
 
   constructor(
@@ -157,9 +158,12 @@ class Lowering {
   }
 
   private item(index: number): Value {
+    const known = this.itemValues[index];
+    if (known !== undefined) return known;
     const item = this.shared.items[index];
-    if (item.kind === 'power') return this.power(this.lower(item.factor[0]), item.factor[1]);
-    return this.multiply(this.item(item.first), this.item(item.second));
+    const value = item.kind === 'power' ? this.power(this.lower(item.factor[0]), item.factor[1]) : this.multiply(this.item(item.first), this.item(item.second));
+    this.itemValues[index] = value;
+    return value;
   }
 
   /** base^exponent: whole and half powers by multiplication, one division a base. */
@@ -188,13 +192,31 @@ class Lowering {
   }
 
   private emit(instruction: Instruction, varying = operandsOf(instruction).some((value) => this.varying[value])): Value {
-    const key = JSON.stringify(instruction, (_, value) => (Object.is(value, -0) ? '-0' : typeof value === 'number' && !Number.isFinite(value) ? String(value) : value));
+    const key = keyOf(instruction);
     const found = this.known.get(key);
     if (found !== undefined) return found;
     const value = this.instructions.push(instruction) - 1;
     this.varying.push(varying);
     this.known.set(key, value);
     return value;
+  }
+}
+
+/** Equal for equal instructions only. */
+function keyOf(instruction: Instruction): string {
+  switch (instruction.op) {
+    case 'constant':
+      return Object.is(instruction.value, -0) ? 'constant -0' : `constant ${instruction.value}`;
+    case 'parameter':
+    case 'lane':
+      return `${instruction.op} ${instruction.index}`;
+    case 'table':
+      return `table ${instruction.table} ${instruction.order} ${instruction.argument}`;
+    case 'unary':
+    case 'binary':
+      return `${instruction.name} ${operandsOf(instruction).join(' ')}`;
+    default:
+      return `${instruction.op} ${operandsOf(instruction).join(' ')}`;
   }
 }
 

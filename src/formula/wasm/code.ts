@@ -1,13 +1,15 @@
+import type { ByteSink } from './byte-sink.ts';
 import { instructions } from './instructions.ts';
-import { signed, unsigned } from './leb128.ts';
+import { signed, signedLong, unsigned } from './leb128.ts';
 
 /** Types of a value in WebAssembly; `v128` always holds two numbers of 64 bits here. */
 export type ValueType = 'i32' | 'i64' | 'f64' | 'v128';
 
-/** Instructions that leave one value of a type: what an expression is written from. */
+/** Instructions that leave one value of a type: those of the operands, then its own. */
 export interface Code<T extends ValueType> {
   readonly type: T;
-  readonly bytes: readonly number[];
+  readonly operands: readonly Code<ValueType>[];
+  readonly instruction: readonly number[];
 }
 
 /** Two numbers side by side. */
@@ -19,10 +21,22 @@ export type Int = Code<'i32'>;
 /** A whole number of 64 bits. */
 export type Long = Code<'i64'>;
 
-/** Glues operands, an instruction and its immediate values to one expression. */
-function join<T extends ValueType>(type: T, operands: readonly Code<ValueType>[], instruction: readonly number[], immediates: readonly number[] = []): Code<T> {
-  const bytes = ([] as number[]).concat(...operands.map((operand) => operand.bytes), instruction, immediates);
-  return { type, bytes };
+const nothing: readonly never[] = [];
+
+/** Code without operands. */
+export function leaf<T extends ValueType>(type: T, instruction: readonly number[]): Code<T> {
+  return { type, operands: nothing, instruction };
+}
+
+/** Writes an expression's bytes in order. */
+export function writeCode(sink: ByteSink, code: Code<ValueType>): void {
+  for (const operand of code.operands) writeCode(sink, operand);
+  sink.append(code.instruction);
+}
+
+/** Joins operands, an instruction and its immediate values to one expression. */
+function join<T extends ValueType>(type: T, operands: readonly Code<ValueType>[], instruction: readonly number[], immediates: readonly number[] = nothing): Code<T> {
+  return { type, operands, instruction: immediates.length === 0 ? instruction : [...instruction, ...immediates] };
 }
 
 type Monadic<A extends ValueType, T extends ValueType> = (a: Code<A>) => Code<T>;
@@ -50,7 +64,7 @@ export const vector = {
   /** The same pattern of 64 bits in both lanes. */
   constant: (bits: bigint): Vector => {
     const half = new Uint8Array(BigUint64Array.of(bits).buffer);
-    return { type: 'v128', bytes: [...instructions['v128.const'], ...half, ...half] };
+    return leaf('v128', [...instructions['v128.const'], ...half, ...half]);
   },
   /** One number of 64 bits from memory in both lanes. */
   loadSplat: (address: Int, offset = 0): Vector => join('v128', [address], instructions['v128.load64_splat'], memoryArguments(3, offset)),
@@ -105,7 +119,7 @@ export const vector = {
 
 /** Operations on one number. */
 export const float = {
-  constant: (value: number): Float => ({ type: 'f64', bytes: [...instructions['f64.const'], ...new Uint8Array(new Float64Array([value]).buffer)] }),
+  constant: (value: number): Float => leaf('f64', [...instructions['f64.const'], ...new Uint8Array(new Float64Array([value]).buffer)]),
   load: (address: Int, offset = 0): Float => join('f64', [address], instructions['f64.load'], memoryArguments(3, offset)),
   add: floats('f64.add'),
   subtract: floats('f64.sub'),
@@ -129,7 +143,7 @@ export const float = {
 
 /** Operations on whole numbers of 32 bits. */
 export const int = {
-  constant: (value: number): Int => ({ type: 'i32', bytes: [...instructions['i32.const'], ...signed(BigInt(value))] }),
+  constant: (value: number): Int => leaf('i32', [...instructions['i32.const'], ...signed(value)]),
   load: (address: Int, offset = 0): Int => join('i32', [address], instructions['i32.load'], memoryArguments(2, offset)),
   add: ints('i32.add'),
   subtract: ints('i32.sub'),
@@ -147,7 +161,7 @@ export const int = {
 
 /** Operations on whole numbers of 64 bits. */
 export const long = {
-  constant: (value: bigint): Long => ({ type: 'i64', bytes: [...instructions['i64.const'], ...signed(BigInt.asIntN(64, value))] }),
+  constant: (value: bigint): Long => leaf('i64', [...instructions['i64.const'], ...signedLong(BigInt.asIntN(64, value))]),
   load32: (address: Int, offset = 0): Long => join('i64', [address], instructions['i64.load32_u'], memoryArguments(2, offset)),
   add: longs('i64.add'),
   subtract: longs('i64.sub'),

@@ -1,4 +1,5 @@
-import { int, vector, type Code, type Int, type ValueType, type Vector } from './code.ts';
+import { ByteSink } from './byte-sink.ts';
+import { int, leaf, vector, writeCode, type Code, type Int, type ValueType, type Vector } from './code.ts';
 import { instructions } from './instructions.ts';
 import { unsigned } from './leb128.ts';
 import type { Callee, ModuleWriter } from './module.ts';
@@ -17,9 +18,12 @@ const stores: Readonly<Record<'i32' | 'f64' | 'v128', readonly number[]>> = {
 
 const control = { block: 0x02, loop: 0x03, if: 0x04, else: 0x05, end: 0x0b, br: 0x0c, brIf: 0x0d, return: 0x0f, call: 0x10, localGet: 0x20, localSet: 0x21, none: 0x40 } as const;
 
+/** Most numbers are coefficients that functions share. */
+const constants = new Map<number | string, Vector>();
+
 /** The body of one function as it is being written, statement by statement. */
 export class FunctionWriter {
-  private readonly body: number[] = [];
+  private readonly body = new ByteSink();
   private readonly locals: ValueType[] = [];
 
   constructor(
@@ -28,14 +32,14 @@ export class FunctionWriter {
   ) {}
 
   parameter<T extends ValueType>(index: number, type: T): Code<T> {
-    return { type, bytes: [control.localGet, ...unsigned(index)] };
+    return leaf(type, [control.localGet, ...unsigned(index)]);
   }
 
   /** Computes a value now and names it: the code returned reads it again. */
   let<T extends ValueType>(value: Code<T>): Code<T> {
-    const variable = this.variable(value.type);
-    variable.set(value);
-    return { type: value.type, bytes: variable.bytes };
+    const index = this.addLocal(value.type);
+    this.assign(value, index);
+    return leaf(value.type, [control.localGet, ...index]);
   }
 
   /**
@@ -51,40 +55,47 @@ export class FunctionWriter {
 
   /** A new local, zero at first. */
   variable<T extends ValueType>(type: T, start?: Code<T>): Variable<T> {
-    const index = unsigned(this.parameters.length + this.locals.push(type) - 1);
-    const variable = {
-      type,
-      bytes: [control.localGet, ...index],
-      set: (value: Code<T>): void => this.push(value.bytes, [control.localSet, ...index]),
-    };
-    if (start) variable.set(start);
-    return variable;
+    const index = this.addLocal(type);
+    if (start) this.assign(start, index);
+    return { ...leaf(type, [control.localGet, ...index]), set: (value: Code<T>): void => this.assign(value, index) };
+  }
+
+  /** A new local's index, encoded. */
+  private addLocal(type: ValueType): readonly number[] {
+    return unsigned(this.parameters.length + this.locals.push(type) - 1);
+  }
+
+  private assign(value: Code<ValueType>, index: readonly number[]): void {
+    this.push(value, [control.localSet, ...index]);
   }
 
   /** A number in both lanes. */
   constant(value: number): Vector {
-    return vector.constant(bitsOf(value));
+    const key = Object.is(value, -0) ? '-0' : value;
+    let code = constants.get(key);
+    if (!code) constants.set(key, (code = vector.constant(bitsOf(value))));
+    return code;
   }
 
   store(address: Int, offset: number, value: Code<'i32' | 'f64' | 'v128'>): void {
-    this.push(address.bytes, value.bytes, stores[value.type], unsigned(offset));
+    this.push(address, value, stores[value.type], unsigned(offset));
   }
 
   /** Calls a function of one result. */
   call<T extends ValueType>(callee: Callee, type: T, ...values: readonly Code<ValueType>[]): Code<T> {
-    return { type, bytes: [...values.flatMap((value) => value.bytes), control.call, ...unsigned(callee.index)] };
+    return { type, operands: values, instruction: [control.call, ...unsigned(callee.index)] };
   }
 
   /** Calls a function for what it does, or for two results, which are named. */
   run(callee: Callee, ...values: readonly Code<ValueType>[]): readonly Code<ValueType>[] {
     const results = callee.results.map((type) => this.variable(type));
-    this.push(...values.map((value) => value.bytes), [control.call, ...unsigned(callee.index)]);
-    for (const result of [...results].reverse()) this.push([control.localSet, ...result.bytes.slice(1)]);
+    this.push(...values, [control.call, ...unsigned(callee.index)]);
+    for (const result of [...results].reverse()) this.push([control.localSet, ...result.instruction.slice(1)]);
     return results;
   }
 
   when(condition: Int, then: () => void, otherwise?: () => void): void {
-    this.push(condition.bytes, [control.if, control.none]);
+    this.push(condition, [control.if, control.none]);
     then();
     if (otherwise) {
       this.push([control.else]);
@@ -95,7 +106,7 @@ export class FunctionWriter {
 
   /** Runs `step` while the condition, evaluated before every turn, holds. */
   repeatWhile(condition: () => Int, step: () => void): void {
-    this.push([control.block, control.none, control.loop, control.none], condition().bytes, [...instructions['i32.eqz'], control.brIf, 1]);
+    this.push([control.block, control.none, control.loop, control.none], condition(), [...instructions['i32.eqz'], control.brIf, 1]);
     step();
     this.push([control.br, 0, control.end, control.end]);
   }
@@ -106,29 +117,38 @@ export class FunctionWriter {
     this.push([control.loop, control.none]);
     step(index);
     index.set(int.add(index, int.constant(by)));
-    this.push(int.less(index, to).bytes, [control.brIf, 0, control.end]);
+    this.push(int.less(index, to), [control.brIf, 0, control.end]);
   }
 
   /** Leaves the function with these results. */
   leave(...results: readonly Code<ValueType>[]): void {
-    this.push(...results.map((result) => result.bytes), [control.return]);
+    this.push(...results, [control.return]);
   }
 
   /** The function's bytes in the code section; the last statement must have been `leave`, or there are no results. */
-  finish(): number[] {
+  finish(): Uint8Array {
     const groups: [count: number, type: ValueType][] = [];
     for (const type of this.locals) {
       const last = groups.at(-1);
       if (last && last[1] === type) last[0]++;
       else groups.push([1, type]);
     }
-    const head = unsigned(groups.length).concat(...groups.map(([count, type]) => [...unsigned(count), typeCodes[type]]));
-    const bytes = head.concat(this.body, [control.end]);
-    return unsigned(bytes.length).concat(bytes);
+    this.push([control.end]);
+    const [head, body] = [new ByteSink(), this.body.bytes()];
+    head.append(unsigned(groups.length));
+    for (const [count, type] of groups) head.append([...unsigned(count), typeCodes[type]]);
+    const whole = new ByteSink();
+    whole.append(unsigned(head.bytes().length + body.length));
+    whole.append(head.bytes());
+    whole.append(body);
+    return whole.bytes();
   }
 
-  private push(...parts: readonly (readonly number[])[]): void {
-    for (const part of parts) this.body.push(...part);
+  private push(...parts: readonly (Code<ValueType> | readonly number[])[]): void {
+    for (const part of parts) {
+      if ('instruction' in part) writeCode(this.body, part);
+      else this.body.append(part);
+    }
   }
 }
 

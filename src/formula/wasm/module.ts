@@ -1,3 +1,4 @@
+import { ByteSink } from './byte-sink.ts';
 import { int, type ValueType } from './code.ts';
 import { unsigned } from './leb128.ts';
 import { FunctionWriter } from './function.ts';
@@ -18,7 +19,7 @@ const pageBytes = 65536;
  */
 export class ModuleWriter {
   private readonly types = new Map<string, number>();
-  private readonly functions: { readonly type: number; body: readonly number[] }[] = [];
+  private readonly functions: { readonly type: number; body: Uint8Array }[] = [];
   private readonly shared = new Map<string, Callee>();
   private readonly exports: { readonly name: string; readonly index: number }[] = [];
   private readonly data: { readonly address: number; readonly bytes: Uint8Array }[] = [];
@@ -70,17 +71,16 @@ export class ModuleWriter {
     const text = (name: string): number[] => [...unsigned(name.length), ...Array.from(name, (letter) => letter.charCodeAt(0))];
     const memoryIndex = 0;
     const exports = [[...text('memory'), 2, memoryIndex], ...this.exports.map(({ name, index }) => [...text(name), 0, ...unsigned(index)])];
-    const segments = this.data.map(({ address, bytes }) => [0, ...int.constant(address).bytes, 0x0b, ...unsigned(bytes.length), ...bytes]);
-    return Uint8Array.from(
-      [0x00, 0x61, 0x73, 0x6d, 1, 0, 0, 0].concat(
-        section(1, [...this.types.keys()].map((key) => JSON.parse(key) as number[])),
-        section(3, this.functions.map(({ type }) => unsigned(type))),
-        section(5, [[0, ...unsigned(pages)]]),
-        section(7, exports),
-        section(10, this.functions.map(({ body }) => body)),
-        section(11, segments),
-      ),
-    );
+    const segments = this.data.map(({ address, bytes }) => [0, ...int.constant(address).instruction, 0x0b, ...unsigned(bytes.length), ...bytes]);
+    const sink = new ByteSink();
+    sink.append([0x00, 0x61, 0x73, 0x6d, 1, 0, 0, 0]);
+    writeSection(sink, 1, [...this.types.keys()].map((key) => JSON.parse(key) as number[]));
+    writeSection(sink, 3, this.functions.map(({ type }) => unsigned(type)));
+    writeSection(sink, 5, [[0, ...unsigned(pages)]]);
+    writeSection(sink, 7, exports);
+    writeSection(sink, 10, this.functions.map(({ body }) => body));
+    writeSection(sink, 11, segments);
+    return sink.bytes();
   }
 
   private place(bytes: Uint8Array): number {
@@ -99,7 +99,9 @@ export class ModuleWriter {
   }
 }
 
-function section(id: number, items: readonly (readonly number[])[]): number[] {
-  const content = unsigned(items.length).concat(...items);
-  return [id, ...unsigned(content.length)].concat(content);
+function writeSection(sink: ByteSink, id: number, items: readonly ArrayLike<number>[]): void {
+  const count = unsigned(items.length);
+  const length = items.reduce((sum, item) => sum + item.length, count.length);
+  sink.append([id, ...unsigned(length), ...count]);
+  for (const item of items) sink.append(item);
 }
