@@ -71,6 +71,15 @@ function derivative(graph: Graph, id: NodeId, leaf: NodeId, of: (id: NodeId) => 
       const inner = of(node.argument);
       return inner === zero ? zero : graph.multiply(graph.table(node.table, node.order + 1, node.argument), inner);
     }
+    case 'grid': {
+      const parts = node.coordinates.map((coordinate, axis) => {
+        const inner = of(coordinate);
+        if (inner === zero) return zero;
+        const orders = node.orders.map((order, k) => (k === axis ? order + 1 : order));
+        return graph.multiply(graph.grid(node.grid, orders, node.coordinates), inner);
+      });
+      return graph.add(...parts);
+    }
   }
 }
 

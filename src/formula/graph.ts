@@ -1,3 +1,4 @@
+import { highestOrder } from '../math/spline-grid.ts';
 import { binaryFunctions, unaryFunctions, type BinaryName, type UnaryName } from './functions.ts';
 
 /** Index of a node in its graph; arguments always have smaller indices. */
@@ -22,7 +23,8 @@ export type GraphNode =
   | { readonly kind: 'unary'; readonly name: UnaryName; readonly argument: NodeId }
   | { readonly kind: 'binary'; readonly name: BinaryName; readonly left: NodeId; readonly right: NodeId }
   | { readonly kind: 'select'; readonly condition: NodeId; readonly yes: NodeId; readonly no: NodeId }
-  | { readonly kind: 'table'; readonly table: string; readonly order: number; readonly argument: NodeId };
+  | { readonly kind: 'table'; readonly table: string; readonly order: number; readonly argument: NodeId }
+  | { readonly kind: 'grid'; readonly grid: string; readonly orders: readonly number[]; readonly coordinates: readonly NodeId[] };
 
 /**
  * A hash-consed expression graph: equal expressions are one node. Variables differ from sample
@@ -68,6 +70,8 @@ export class Graph {
       case 'unary':
       case 'table':
         return [node.argument];
+      case 'grid':
+        return node.coordinates;
       case 'binary':
         return [node.left, node.right];
       case 'select':
@@ -232,6 +236,16 @@ export class Graph {
   /** Value (order 0) or derivative of a function tabulated on [0, 1], filled in at run time. */
   table(table: string, order: number, argument: NodeId): NodeId {
     return this.intern({ kind: 'table', table, order, argument }, `t${table};${order};${argument}`, this.varying[argument]);
+  }
+
+  /**
+   * Value (orders 0) or derivatives of a function given on a grid that is filled in at run time, at
+   * two or three coordinates counted in samples.
+   */
+  grid(grid: string, orders: readonly number[], coordinates: readonly NodeId[]): NodeId {
+    if (orders.some((order) => order > highestOrder)) return this.constant(0);
+    const varying = coordinates.some((id) => this.varying[id]);
+    return this.intern({ kind: 'grid', grid, orders, coordinates }, `g${grid};${orders.join()};${coordinates.join()}`, varying);
   }
 
   private intern(node: GraphNode, key: string, varying: boolean): NodeId {

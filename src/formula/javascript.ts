@@ -1,12 +1,13 @@
 import { binaryFunctions, unaryFunctions } from './functions.ts';
 import type { Instruction, Program } from './lower.ts';
+import { evaluateGrid, type SplineGrid } from '../math/spline-grid.ts';
 import { evaluateTable, type Table } from '../math/table.ts';
 
 /** A program made into a function: the oracle of the other back ends, and their fallback. */
 export interface Kernel {
   /**
    * Evaluates `count` samples: lanes[l][k] in, outputs[o][k] out. Parameters in the order of
-   * `program.parameters`, tables in that of `program.tables`.
+   * `program.parameters`, tables in that of `program.tables`, grids in that of `program.grids`.
    */
   evaluate(
     count: number,
@@ -14,6 +15,7 @@ export interface Kernel {
     lanes: readonly Float64Array[],
     outputs: readonly Float64Array[],
     tables: readonly Table[],
+    grids?: readonly SplineGrid[],
   ): void;
 }
 
@@ -23,6 +25,7 @@ type Generated = (
   lanes: readonly Float64Array[],
   outputs: readonly Float64Array[],
   tables: readonly Table[],
+  grids: readonly SplineGrid[],
   functions: Record<string, unknown>,
 ) => void;
 
@@ -42,7 +45,7 @@ export function compileJavaScript(program: Program): Kernel {
   const stores = program.outputs.map((value, index) => `o${index}[k] = v${value};`);
   const text = [
     '"use strict";',
-    'const { erf, incompleteGamma2, evaluateTable } = functions;',
+    'const { erf, incompleteGamma2, evaluateTable, evaluateGrid } = functions;',
     ...program.lanes.map((_, index) => `const l${index} = lanes[${index}];`),
     ...program.outputs.map((_, index) => `const o${index} = outputs[${index}];`),
     ...before,
@@ -51,10 +54,10 @@ export function compileJavaScript(program: Program): Kernel {
     ...stores,
     '}',
   ].join('\n');
-  const generated = new Function('count', 'parameters', 'lanes', 'outputs', 'tables', 'functions', text) as Generated;
-  const functions = { erf: unaryFunctions.erf, incompleteGamma2: unaryFunctions.incompleteGamma2, evaluateTable };
+  const generated = new Function('count', 'parameters', 'lanes', 'outputs', 'tables', 'grids', 'functions', text) as Generated;
+  const functions = { erf: unaryFunctions.erf, incompleteGamma2: unaryFunctions.incompleteGamma2, evaluateTable, evaluateGrid };
   return {
-    evaluate: (count, parameters, lanes, outputs, tables) => generated(count, parameters, lanes, outputs, tables, functions),
+    evaluate: (count, parameters, lanes, outputs, tables, grids = []) => generated(count, parameters, lanes, outputs, tables, grids, functions),
   };
 }
 
@@ -87,6 +90,8 @@ function expression(instruction: Instruction): string {
       return `v${instruction.condition} !== 0 ? v${instruction.yes} : v${instruction.no}`;
     case 'table':
       return `evaluateTable(tables[${instruction.table}], ${instruction.order}, v${instruction.argument})`;
+    case 'grid':
+      return `evaluateGrid(grids[${instruction.grid}], [${instruction.orders.join()}], ${instruction.coordinates.map((value) => `v${value}`).join()})`;
   }
 }
 
@@ -101,9 +106,9 @@ function numberText(value: number): string {
 }
 
 /** Evaluates a program step by step, without generating code: slow, for single points and tests. */
-export function interpretProgram(program: Program, parameters: Float64Array, lanes: readonly number[], tables: readonly Table[] = []): number[] {
+export function interpretProgram(program: Program, parameters: Float64Array, lanes: readonly number[], tables: readonly Table[] = [], grids: readonly SplineGrid[] = []): number[] {
   const values: number[] = [];
-  for (const instruction of program.instructions) values.push(interpretInstruction(instruction, values, parameters, lanes, tables));
+  for (const instruction of program.instructions) values.push(interpretInstruction(instruction, values, parameters, lanes, tables, grids));
   return program.outputs.map((value) => values[value]);
 }
 
@@ -114,6 +119,7 @@ export function interpretInstruction(
   parameters: Float64Array,
   lanes: readonly number[],
   tables: readonly Table[],
+  grids: readonly SplineGrid[] = [],
 ): number {
   switch (instruction.op) {
     case 'constant':
@@ -142,5 +148,9 @@ export function interpretInstruction(
       return v[instruction.condition] !== 0 ? v[instruction.yes] : v[instruction.no];
     case 'table':
       return evaluateTable(tables[instruction.table], instruction.order, v[instruction.argument]);
+    case 'grid': {
+      const [first, second, third] = instruction.coordinates.map((value) => v[value]);
+      return evaluateGrid(grids[instruction.grid], instruction.orders, first, second, third);
+    }
   }
 }

@@ -15,7 +15,8 @@ export type Instruction =
   | { readonly op: 'unary'; readonly name: UnaryName; readonly argument: Value }
   | { readonly op: 'binary'; readonly name: BinaryName; readonly left: Value; readonly right: Value }
   | { readonly op: 'select'; readonly condition: Value; readonly yes: Value; readonly no: Value }
-  | { readonly op: 'table'; readonly table: number; readonly order: number; readonly argument: Value };
+  | { readonly op: 'table'; readonly table: number; readonly order: number; readonly argument: Value }
+  | { readonly op: 'grid'; readonly grid: number; readonly orders: readonly number[]; readonly coordinates: readonly Value[] };
 
 /** A straight-line program: what it takes, its steps, and which values it gives. */
 export interface Program {
@@ -24,6 +25,7 @@ export interface Program {
   /** Names of the per-sample inputs, by index. */
   readonly lanes: readonly string[];
   readonly tables: readonly string[];
+  readonly grids: readonly string[];
   readonly instructions: readonly Instruction[];
   /** Per instruction: whether it differs between samples; the others are computed once a call. */
   readonly varying: readonly boolean[];
@@ -56,6 +58,7 @@ class Lowering {
   private readonly parameters: string[] = [];
   private readonly tables: string[] = [];
   private readonly itemValues: Value[] = [];
+  private readonly grids: string[] = [];
   private shared: SharedFactors = { items: [], products: new Map() };
 
   constructor(
@@ -71,6 +74,7 @@ class Lowering {
       parameters: this.parameters,
       lanes: this.lanes,
       tables: this.tables,
+      grids: this.grids,
       instructions: this.instructions,
       varying: this.varying,
       outputs: values,
@@ -112,6 +116,10 @@ class Lowering {
       }
       case 'table':
         return this.emit({ op: 'table', table: indexIn(this.tables, node.table), order: node.order, argument: this.lower(node.argument) });
+      case 'grid': {
+        const coordinates = node.coordinates.map((coordinate) => this.lower(coordinate));
+        return this.emit({ op: 'grid', grid: indexIn(this.grids, node.grid), orders: node.orders, coordinates });
+      }
     }
   }
 
@@ -238,6 +246,8 @@ export function operandsOf(instruction: Instruction): readonly Value[] {
     case 'unary':
     case 'table':
       return [instruction.argument];
+    case 'grid':
+      return instruction.coordinates;
     case 'select':
       return [instruction.condition, instruction.yes, instruction.no];
   }

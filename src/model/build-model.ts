@@ -17,6 +17,8 @@ export interface ModelUse {
   readonly parameters: ReadonlyMap<string, NodeId>;
   /** The option chosen for each choice. */
   readonly choices: Readonly<Record<string, string>>;
+  /** What the component's grids are known by: `path`/name. */
+  readonly path?: string;
 }
 
 /** The field of a model, uG, as Cartesian components in the galaxy frame. */
@@ -76,14 +78,18 @@ function isCartesian(components: Readonly<Record<string, string>>): boolean {
   return 'x' in components || 'y' in components;
 }
 
-/** Coordinates, then options and choices, then parameters, then the model's own definitions. */
-function scopeOf(graph: Graph, { model, parameters, choices }: ModelUse): Scope {
+/** Coordinates, then options and choices, then parameters, then grids, then the model's own definitions. */
+function scopeOf(graph: Graph, { model, parameters, choices, path = '' }: ModelUse): Scope {
   const scope = new Map<string, NodeId>(Object.entries(coordinatesOf(graph)));
   for (const choice of model.choices) {
     for (const [option, value] of Object.entries(choice.options)) scope.set(option, graph.constant(value));
   }
   for (const choice of model.choices) scope.set(choice.name, graph.constant(choice.options[choices[choice.name]]));
   for (const [name, node] of parameters) scope.set(name, node);
+  for (const [name, coordinates] of Object.entries(model.grids ?? {})) {
+    const nodes = coordinates.map((text) => buildFormula(graph, text, scope));
+    scope.set(name, graph.grid(`${path}/${name}`, nodes.map(() => 0), nodes));
+  }
   for (const [name, text] of Object.entries(model.define)) scope.set(name, buildFormula(graph, text, scope));
   return scope;
 }

@@ -71,6 +71,11 @@ export interface Model {
   readonly choices: readonly ModelChoice[];
   /** Named sub-expressions, in order; each may use those before it. */
   readonly define: Readonly<Record<string, string>>;
+  /**
+   * Functions that are read on grids: the name that formulas use → two or three formulas of where to
+   * read, counted in samples. The numbers come with the component; models of files have none.
+   */
+  readonly grids?: Readonly<Record<string, readonly string[]>>;
   readonly formulas: ModelFormulas;
   readonly edges: ModelEdges;
   readonly checks: readonly ModelCheck[];

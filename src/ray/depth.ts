@@ -17,7 +17,7 @@ const panelsPerInterval = 4;
 export function findLargestDepth(scene: Scene, bundle: RayBundle, quantile = 1): number {
   const { integrand, kernel } = makeRayEngine(scene, [{ frequencyHz: 1e9, centreHz: 1e9 }]);
   const inputs = integrand.inputs(scene);
-  const geometry = rayGeometry(scene, inputs.edges);
+  const geometry = rayGeometry(scene, inputs);
   const [sinPA, cosPA] = exactSineCosine(scene.galaxy.positionAngle);
   const breaks = new Float64Array(128);
   const lanes = [0, 1, 2].map(() => new Float64Array(panelNodes));
@@ -29,8 +29,9 @@ export function findLargestDepth(scene: Scene, bundle: RayBundle, quantile = 1):
     const count = findBreaks(geometry, major, minor, breaks);
     let depth = 0;
     for (let k = 1; k < count; k++) {
-      const half = (breaks[k] - breaks[k - 1]) / panelsPerInterval / 2;
-      for (let panel = 0; panel < panelsPerInterval; panel++) {
+      const panels = Math.max(panelsPerInterval, Math.ceil((breaks[k] - breaks[k - 1]) / geometry.longestPanelKpc));
+      const half = (breaks[k] - breaks[k - 1]) / panels / 2;
+      for (let panel = 0; panel < panels; panel++) {
         const centre = breaks[k - 1] + (2 * panel + 1) * half;
         for (let i = 0; i < panelNodes; i++) {
           const s = centre + half * panelRule.nodes[i];
@@ -38,7 +39,7 @@ export function findLargestDepth(scene: Scene, bundle: RayBundle, quantile = 1):
           lanes[1][i] = minor * geometry.cosI - s * geometry.sinI;
           lanes[2][i] = minor * geometry.sinI + s * geometry.cosI;
         }
-        kernel().evaluate(panelNodes, inputs.parameters, lanes, out, inputs.tables);
+        kernel().evaluate(panelNodes, inputs.parameters, lanes, out, inputs.tables, inputs.grids);
         for (let i = 0; i < panelNodes; i++) depth += half * panelRule.weights[i] * Math.abs(out[output.faraday][i]);
       }
     }

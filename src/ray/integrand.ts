@@ -2,9 +2,11 @@ import { interpretProgram } from '../formula/javascript.ts';
 import { Graph, type NodeId } from '../formula/graph.ts';
 import { lowerGraph, type Program } from '../formula/lower.ts';
 import { coordinateSubstitution } from '../formula/vector-calculus.ts';
+import type { SplineGrid } from '../math/spline-grid.ts';
 import type { Table } from '../math/table.ts';
 import type { Scene } from '../scene/types.ts';
 import { riceTables, riceTableShape } from './rice.ts';
+import { sceneGrids } from './grids.ts';
 import { parameterValues, SceneGraph, smallestFieldSquared } from './scene-graph.ts';
 import { faradayDepthPerKpc } from './synchrotron.ts';
 
@@ -20,13 +22,16 @@ export interface Integrand {
   readonly groupOf: readonly number[];
   readonly groups: number;
   readonly hasDispersion: boolean;
-  /** Run-time values for a scene of the same structure: parameters of `program`, tables, edges. */
+  /** Run-time values for a scene of the same structure: parameters of `program`, tables, grids, edges. */
   inputs(scene: Scene): IntegrandInputs;
 }
 
 export interface IntegrandInputs {
   readonly parameters: Float64Array;
   readonly tables: readonly Table[];
+  readonly grids: readonly SplineGrid[];
+  /** Length of a panel at most, kpc, for the sake of the grids. */
+  readonly longestPanelKpc: number;
   /** Heights and radii (kpc) where rays must break their panels, beside the plane and the axis. */
   readonly edges: { readonly zKpc: readonly number[]; readonly rKpc: readonly number[] };
 }
@@ -113,7 +118,18 @@ function integrandInputs(program: Program, scene: Scene, groupFrequenciesHz: rea
   });
   const rice = riceTables(scene.cosmicRays.index);
   const tables = program.tables.map((name) => (name === 'riceTotal' ? rice.total : rice.aligned));
-  return { parameters, tables, edges: edgeValues(scene, values) };
+  return { parameters, tables, ...gridInputs(program, scene), edges: edgeValues(scene, values) };
+}
+
+/** The grids that a program reads, and how long panels may be beside them. */
+export function gridInputs(program: Program, scene: Scene): Pick<IntegrandInputs, 'grids' | 'longestPanelKpc'> {
+  const known = sceneGrids(scene);
+  const used = program.grids.map((name) => {
+    const grid = known.get(name);
+    if (!grid) throw new Error(`the grid ${name} has no data`);
+    return grid;
+  });
+  return { grids: used.map(({ grid }) => grid), longestPanelKpc: Math.min(Infinity, ...used.map(({ panelKpc }) => panelKpc)) };
 }
 
 /** Evaluates the declared edges, which depend on parameters alone. */

@@ -32,8 +32,8 @@ const mostPanels = 400;
 export function walkOrigins(scene: Scene, bundle: RayBundle, spectrum: readonly SpectralPoint[], take: (ray: number, pieces: OriginPieces) => void): void {
   const { integrand, kernel } = makeRayEngine(scene, spectrum, 'javascript');
   const inputs = integrand.inputs(scene);
-  const geometry = rayGeometry(scene, inputs.edges);
-  const { sinI, cosI, heightKpc } = geometry;
+  const geometry = rayGeometry(scene, inputs);
+  const { sinI, cosI, heightKpc, longestPanelKpc } = geometry;
   const [sinPA, cosPA] = exactSineCosine(scene.galaxy.positionAngle);
   const squares = spectrum.map(({ frequencyHz }) => wavelengthSquared(frequencyHz));
   const longest = Math.max(...squares);
@@ -52,7 +52,7 @@ export function walkOrigins(scene: Scene, bundle: RayBundle, spectrum: readonly 
       lanes[1][i] = minor * cosI - s * sinI;
       lanes[2][i] = minor * sinI + s * cosI;
     }
-    kernel().evaluate(panelNodes, inputs.parameters, lanes, out, inputs.tables);
+    kernel().evaluate(panelNodes, inputs.parameters, lanes, out, inputs.tables, inputs.grids);
   };
   for (let ray = 0; ray < bundle.northKpc.length; ray++) {
     const [north, east] = [bundle.northKpc[ray], bundle.eastKpc[ray]];
@@ -63,7 +63,7 @@ export function walkOrigins(scene: Scene, bundle: RayBundle, spectrum: readonly 
     emitted.fill(0);
     for (let k = intervals - 1; k > 0; k--) {
       const [far, near] = [breaks[k - 1], breaks[k]];
-      const panels = panelsOf(near - far, heightKpc, evaluate, major, minor, (far + near) / 2, out[output.faraday], longest);
+      const panels = panelsOf(near - far, Math.min(heightKpc / 16, longestPanelKpc), evaluate, major, minor, (far + near) / 2, out[output.faraday], longest);
       const half = (near - far) / panels / 2;
       for (let panel = 0; panel < panels; panel++) {
         evaluate(major, minor, near - (2 * panel + 1) * half, half);
@@ -106,7 +106,7 @@ export function walkOrigins(scene: Scene, bundle: RayBundle, spectrum: readonly 
 /** Panels for a stretch: fine in height, and so that the longest wavelength turns little within each. */
 function panelsOf(
   length: number,
-  heightKpc: number,
+  longestKpc: number,
   evaluate: (major: number, minor: number, centre: number, half: number) => void,
   major: number,
   minor: number,
@@ -117,7 +117,7 @@ function panelsOf(
   evaluate(major, minor, centre, length / 2);
   let turn = 0;
   for (let i = 0; i < panelNodes; i++) turn += (length / 2) * panelRule.weights[i] * Math.abs(faraday[i]) * 2 * longest;
-  return Math.min(mostPanels, Math.max(leastPanels, Math.ceil((16 * length) / heightKpc), Math.ceil(turn / turnOfPanel)));
+  return Math.min(mostPanels, Math.max(leastPanels, Math.ceil(length / longestKpc), Math.ceil(turn / turnOfPanel)));
 }
 
 /** The part of every piece along the final angle; written over the cosines. */

@@ -7,6 +7,8 @@ export interface RayGeometry {
   readonly radiusKpc: number;
   readonly heightKpc: number;
   readonly edges: IntegrandInputs['edges'];
+  /** Length of a panel at most, so that no structure of a gridded field is stepped over. */
+  readonly longestPanelKpc: number;
 }
 
 /** Most breaks of one ray. */

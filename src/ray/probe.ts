@@ -5,6 +5,7 @@ import { coordinatesOf, coordinateSubstitution, jacobian, type Vector } from '..
 import { randomStream } from '../math/random.ts';
 import { buildField, isSolenoidalByConstruction } from '../model/build-model.ts';
 import type { Component, Scene } from '../scene/types.ts';
+import { gridInputs } from './integrand.ts';
 import { parameterValues, placedComponents, SceneGraph } from './scene-graph.ts';
 
 /** Points in the galaxy frame, kpc. */
@@ -109,7 +110,7 @@ function evaluateNodes(graph: Graph, nodes: readonly NodeId[], scene: Scene, { x
   const values = parameterValues(scene, []);
   const parameters = Float64Array.from(program.parameters, (name) => values.get(name) ?? NaN);
   const columns = nodes.map(() => new Float64Array(x.length));
-  compileJavaScript(program).evaluate(x.length, parameters, [x, y, z], columns, []);
+  compileJavaScript(program).evaluate(x.length, parameters, [x, y, z], columns, [], gridInputs(program, scene).grids);
   return columns;
 }
 

@@ -109,7 +109,7 @@ export class SceneGraph {
     const parameters = new Map(
       Object.keys(component.parameters).map((name) => [name, isUnused(component, name) ? this.graph.constant(0) : this.graph.parameter(`${path}/${name}`)]),
     );
-    return { model: component.model, parameters, choices: component.choices };
+    return { model: component.model, parameters, choices: component.choices, path };
   }
 
   /** Edges declared by every component, as nodes of parameters alone. */

@@ -2,7 +2,7 @@ import { compileJavaScript, type Kernel } from '../formula/javascript.ts';
 import { hasWasmSimd } from '../formula/wasm/available.ts';
 import { compileWasm } from '../formula/wasm/kernel.ts';
 import type { Scene } from '../scene/types.ts';
-import { compileIntegrand, tableShape, type Integrand, type SpectralPoint } from './integrand.ts';
+import { compileIntegrand, tableShape, type Integrand, type IntegrandInputs, type SpectralPoint } from './integrand.ts';
 import type { RayGeometry } from './path.ts';
 import { exactSineCosine } from './scene-graph.ts';
 import { brightnessPerKpc, intrinsicPolarization, wavelengthSquared } from './synchrotron.ts';
@@ -130,11 +130,11 @@ export function traceRays(engine: RayEngine, scene: Scene, bundle: RayBundle, sc
   return { ...result, samples };
 }
 
-/** How a scene's galaxy is turned and bounded, with the edges its components declare. */
-export function rayGeometry(scene: Scene, edges: RayGeometry['edges']): RayGeometry {
+/** How a scene's galaxy is turned and bounded, and where its integrand wants panels to end. */
+export function rayGeometry(scene: Scene, { edges, longestPanelKpc }: Pick<IntegrandInputs, 'edges' | 'longestPanelKpc'>): RayGeometry {
   const [sinI, cosI] = exactSineCosine(scene.galaxy.inclination);
   const { radiusKpc, heightKpc } = scene.galaxy.volume;
-  return { sinI, cosI, radiusKpc, heightKpc, edges };
+  return { sinI, cosI, radiusKpc, heightKpc, edges, longestPanelKpc };
 }
 
 function followAll(
@@ -146,7 +146,7 @@ function followAll(
   take: (index: number, sums: RaySums) => void,
 ): void {
   const inputs = engine.integrand.inputs(scene);
-  const geometry = rayGeometry(scene, inputs.edges);
+  const geometry = rayGeometry(scene, inputs);
   const [sinPA, cosPA] = exactSineCosine(scene.galaxy.positionAngle);
   const sums = makeRaySums(engine.spectrum.length);
   const place = (index: number): readonly [major: number, minor: number] => {

@@ -139,7 +139,15 @@ export class RayTracer {
     const count = findBreaks(this.geometry, majorKpc, minorKpc, this.breaks);
     this.nearPhi = 0;
     this.nearSigma = 0;
-    for (let k = count - 1; k > 0; k--) this.interval(this.breaks[k - 1], this.breaks[k], majorKpc, minorKpc, sums);
+    for (let k = count - 1; k > 0; k--) {
+      const [from, to] = [this.breaks[k - 1], this.breaks[k]];
+      const pieces = Math.max(1, Math.ceil((to - from) / this.geometry.longestPanelKpc));
+      for (let near = to, piece = pieces - 1; piece >= 0; piece--) {
+        const far = from + ((to - from) * piece) / pieces;
+        this.interval(far, near, majorKpc, minorKpc, sums);
+        near = far;
+      }
+    }
     sums.faradayDepth = this.nearPhi;
   }
 
@@ -181,7 +189,7 @@ export class RayTracer {
       y[i] = minor * cosI - s * sinI;
       z[i] = minor * sinI + s * cosI;
     }
-    this.kernel.evaluate(n, this.inputs.parameters, this.lanes, out, this.inputs.tables);
+    this.kernel.evaluate(n, this.inputs.parameters, this.lanes, out, this.inputs.tables, this.inputs.grids);
     const faraday = out[output.faraday];
     const dispersion = out[output.dispersion];
     const { toNearEnd } = panelRule;

@@ -44,6 +44,7 @@ export interface TransferLayout {
   readonly cosI: Cell;
   readonly radius: Cell;
   readonly height: Cell;
+  readonly longestPanel: Cell;
   /** Emission that a panel may hide over the scale of P, and the largest error that a panel may be estimated to have. */
   readonly hidden: Cell;
   readonly limit: Cell;
@@ -100,6 +101,7 @@ export function layOut(module: ModuleWriter, groups: number): TransferLayout {
     cosI: cell(),
     radius: cell(),
     height: cell(),
+    longestPanel: cell(),
     hidden: cell(),
     limit: cell(),
     valleyShare: cell(),

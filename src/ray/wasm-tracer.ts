@@ -1,4 +1,6 @@
-import { ensureMemory, placeTables } from '../formula/wasm/kernel.ts';
+import { placeGrids, type PlacedGrids } from '../formula/wasm/grid.ts';
+import { placeTables } from '../formula/wasm/kernel.ts';
+import { ensureMemory } from '../formula/wasm/memory.ts';
 import type { Integrand, IntegrandInputs } from './integrand.ts';
 import type { RayGeometry } from './path.ts';
 import { mostHidden, panelLimit, testedFrequencies, type Accuracy, type RaySums, valleyShare } from './transfer.ts';
@@ -12,6 +14,7 @@ const raysPerCall = 256;
 export class WasmTransfer {
   private readonly module: TransferModule;
   private readonly memory: WebAssembly.Memory;
+  private readonly placedGrids: PlacedGrids = new Map();
   private readonly run: (rays: number, results: number, count: number) => void;
 
   constructor(
@@ -52,6 +55,7 @@ export class WasmTransfer {
     const { memory, module } = this;
     const { layout, placed } = module;
     let free = placeTables(memory, placed.tables, placed.tableOrders, inputs.tables, module.heapStart);
+    free = placeGrids(memory, placed.grids, inputs.grids, free, this.placedGrids);
     const edges = [
       [layout.zEdges, geometry.edges.zKpc],
       [layout.rEdges, geometry.edges.rKpc],
@@ -71,6 +75,7 @@ export class WasmTransfer {
       [layout.cosI, geometry.cosI],
       [layout.radius, geometry.radiusKpc],
       [layout.height, geometry.heightKpc],
+      [layout.longestPanel, geometry.longestPanelKpc],
       [layout.hidden, mostHidden * accuracy.tolerance],
       [layout.limit, panelLimit(accuracy.tolerance)],
       [layout.valleyShare, valleyShare(accuracy.tolerance)],

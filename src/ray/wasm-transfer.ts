@@ -123,7 +123,7 @@ interface FollowParts {
 
 /** Exported (rays, results, count): follows rays, pairs of f64 major and minor, one after the other. */
 function writeFollow(module: ModuleWriter, layout: TransferLayout, { prepare, findBreaks, interval, sums, resultLength }: FollowParts): void {
-  const { major, minor, minorSin, minorCos, sinI, cosI, nearPhi, nearSigma, samples, breaks, breakCount } = layout;
+  const { major, minor, minorSin, minorCos, sinI, cosI, nearPhi, nearSigma, samples, breaks, breakCount, longestPanel } = layout;
   module.define(
     ['i32', 'i32', 'i32'],
     [],
@@ -142,7 +142,17 @@ function writeFollow(module: ModuleWriter, layout: TransferLayout, { prepare, fi
         const k = w.variable('i32', int.subtract(breakCount.get(), int.constant(1)));
         w.repeatWhile(() => int.greaterThan(k, zero), () => {
           const address: Int = int.shiftLeft(k, int.constant(3));
-          w.run(interval, f.load(int.subtract(address, int.constant(8)), breaks), f.load(address, breaks));
+          const [from, to] = [w.let(f.load(int.subtract(address, int.constant(8)), breaks)), w.let(f.load(address, breaks))];
+          const length = w.let(f.subtract(to, from));
+          const pieces = w.let(f.max(f.constant(1), f.ceil(f.divide(length, longestPanel.get()))));
+          const piece = w.variable('f64', pieces);
+          const near = w.variable('f64', to);
+          w.repeatWhile(() => f.greaterThan(piece, f.constant(0)), () => {
+            piece.set(f.subtract(piece, f.constant(1)));
+            const far = w.let(f.add(from, f.divide(f.multiply(length, piece), pieces)));
+            w.run(interval, far, near);
+            near.set(far);
+          });
           k.set(int.subtract(k, int.constant(1)));
         });
         w.run(sums.write, results);

@@ -1,3 +1,4 @@
+import type { SplineGrid } from '../math/spline-grid.ts';
 import type { Model } from '../model/types.ts';
 
 /**
@@ -9,6 +10,15 @@ export interface Component {
   readonly model: Model;
   readonly parameters: Readonly<Record<string, number>>;
   readonly choices: Readonly<Record<string, string>>;
+  /** What the model reads on grids, by the names that its `grids` have. */
+  readonly grids?: Readonly<Record<string, GriddedFunction>>;
+}
+
+/** Numbers on a grid, and how fine rays must sample it. */
+export interface GriddedFunction {
+  readonly grid: SplineGrid;
+  /** Length of a panel of a ray at most, kpc, so that no structure is stepped over. */
+  readonly panelKpc: number;
 }
 
 /** A layer of cosmic-ray electrons: a density model whose `density` is C (cm^-3, per unit gamma^-p). */

@@ -39,7 +39,7 @@ export function denseRays(scene: Scene, spectrum: readonly SpectralPoint[], nort
   const integrand = compileIntegrand(scene, spectrum);
   const kernel = compileJavaScript(integrand.program);
   const inputs = integrand.inputs(scene);
-  const geometry = rayGeometry(scene, inputs.edges);
+  const geometry = rayGeometry(scene, inputs);
   const { sinI, cosI } = geometry;
   const pa = scene.galaxy.positionAngle;
   const squares = spectrum.map(({ frequencyHz }) => wavelengthSquared(frequencyHz));
@@ -63,7 +63,7 @@ export function denseRays(scene: Scene, spectrum: readonly SpectralPoint[], nort
           lanes[1][i] = minor * cosI - s * sinI;
           lanes[2][i] = minor * sinI + s * cosI;
         }
-        kernel.evaluate(n, inputs.parameters, lanes, out, inputs.tables);
+        kernel.evaluate(n, inputs.parameters, lanes, out, inputs.tables, inputs.grids);
         for (let i = 0; i < n; i++) {
           let [depth, variance] = [phi, sigma];
           for (let j = 0; j < n; j++) {

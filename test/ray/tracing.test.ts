@@ -154,7 +154,7 @@ test('declared edges of a formula are breaks of every ray, so that jumps cost no
   const without = sceneOf({ ...parts, layers: [density('')] });
   const [a, b] = [withEdges, without].map((scene) => follow(scene, frequencies(1.4e9), north, east));
   // The chord through both steps in closed form: brightness over that of the central ray.
-  const { sinI, cosI } = rayGeometry(withEdges, { zKpc: [], rKpc: [] });
+  const { sinI, cosI } = rayGeometry(withEdges, { edges: { zKpc: [], rKpc: [] }, longestPanelKpc: Infinity });
   const pa = (25 * Math.PI) / 180;
   const lengths = north.map((n, k) => {
     const [major, minor] = [n * Math.cos(pa) + east[k] * Math.sin(pa), east[k] * Math.cos(pa) - n * Math.sin(pa)];
@@ -173,7 +173,7 @@ test('declared edges of a formula are breaks of every ray, so that jumps cost no
 });
 
 test('breaks rise, lie within the volume and hold every declared edge that a ray crosses', () => {
-  const geometry = { sinI: Math.sin(1), cosI: Math.cos(1), radiusKpc: 10, heightKpc: 4, edges: { zKpc: [1.5, -0.5, 99], rKpc: [3, 50] } };
+  const geometry = { sinI: Math.sin(1), cosI: Math.cos(1), radiusKpc: 10, heightKpc: 4, longestPanelKpc: Infinity, edges: { zKpc: [1.5, -0.5, 99], rKpc: [3, 50] } };
   const breaks = new Float64Array(128);
   const count = findBreaks(geometry, 2, 0.7, breaks);
   const list = [...breaks.slice(0, count)];
@@ -187,7 +187,7 @@ test('breaks rise, lie within the volume and hold every declared edge that a ray
 });
 
 test('many edges do not overflow, and edges that coincide are one', () => {
-  const geometry = { sinI: 0.6, cosI: 0.8, radiusKpc: 10, heightKpc: 4, edges: { zKpc: Array.from({ length: 300 }, (_, k) => k / 100), rKpc: [] } };
+  const geometry = { sinI: 0.6, cosI: 0.8, radiusKpc: 10, heightKpc: 4, longestPanelKpc: Infinity, edges: { zKpc: Array.from({ length: 300 }, (_, k) => k / 100), rKpc: [] } };
   const breaks = new Float64Array(128);
   expect(findBreaks(geometry, 1, 1, breaks)).toBeLessThanOrEqual(128);
   const twice = { ...geometry, edges: { zKpc: [1, 1, 1 + 1e-14], rKpc: [] } };

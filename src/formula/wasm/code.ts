@@ -68,6 +68,9 @@ export const vector = {
   },
   /** One number of 64 bits from memory in both lanes. */
   loadSplat: (address: Int, offset = 0): Vector => join('v128', [address], instructions['v128.load64_splat'], memoryArguments(3, offset)),
+  /** Two numbers of 32 bits from memory. */
+  loadSingles: (address: Int, offset = 0): Vector =>
+    join('v128', [join('v128', [address], instructions['v128.load64_zero'], memoryArguments(2, offset))], instructions['f64x2.promote_low_f32x4']),
   splat: monadic<'f64', 'v128'>('v128', 'f64x2.splat'),
   splatLong: monadic<'i64', 'v128'>('v128', 'i64x2.splat'),
   lane: (a: Vector, lane: 0 | 1): Float => join('f64', [a], instructions['f64x2.extract_lane'], [lane]),
@@ -130,6 +133,10 @@ export const float = {
   abs: monadic<'f64', 'f64'>('f64', 'f64.abs'),
   negate: monadic<'f64', 'f64'>('f64', 'f64.neg'),
   sqrt: monadic<'f64', 'f64'>('f64', 'f64.sqrt'),
+  floor: monadic<'f64', 'f64'>('f64', 'f64.floor'),
+  ceil: monadic<'f64', 'f64'>('f64', 'f64.ceil'),
+  /** The whole number below in size, 0 for no number. */
+  toInt: monadic<'f64', 'i32'>('i32', 'i32.trunc_sat_f64_s'),
   fromLong: monadic<'i64', 'f64'>('f64', 'f64.convert_i64_s'),
   toLong: monadic<'f64', 'i64'>('i64', 'i64.trunc_f64_s'),
   fromBits: monadic<'i64', 'f64'>('f64', 'f64.reinterpret_i64'),

@@ -2,6 +2,8 @@ import type { Table } from '../../math/table.ts';
 import type { Kernel } from '../javascript.ts';
 import type { Program } from '../lower.ts';
 import { int, vector as v } from './code.ts';
+import { placeGrids, type PlacedGrids } from './grid.ts';
+import { ensureMemory } from './memory.ts';
 import { ModuleWriter } from './module.ts';
 import { placeProgram } from './program.ts';
 import type { TableShape } from './table.ts';
@@ -34,9 +36,11 @@ export function compileWasm(program: Program, shape: TableShape = { pieces: 32, 
   const instance = new WebAssembly.Instance(new WebAssembly.Module(module.encode()));
   const memory = instance.exports.memory as WebAssembly.Memory;
   const evaluate = instance.exports.evaluate as (count: number) => void;
+  const placedGrids: PlacedGrids = new Map();
   return {
-    evaluate: (count, parameters, lanesIn, outputsOut, tables) => {
-      placeTables(memory, placed.tables, placed.tableOrders, tables, module.heapStart);
+    evaluate: (count, parameters, lanesIn, outputsOut, tables, grids = []) => {
+      const free = placeTables(memory, placed.tables, placed.tableOrders, tables, module.heapStart);
+      placeGrids(memory, placed.grids, grids, free, placedGrids);
       const numbers = new Float64Array(memory.buffer);
       numbers.set(parameters.subarray(0, program.parameters.length), placed.parameters / 8);
       for (let from = 0; from < count; from += chunk) {
@@ -62,10 +66,4 @@ export function placeTables(memory: WebAssembly.Memory, pointers: number, orders
     }
   }
   return free;
-}
-
-/** Grows a memory to hold at least so many bytes. */
-export function ensureMemory(memory: WebAssembly.Memory, bytes: number): void {
-  const missing = bytes - memory.buffer.byteLength;
-  if (missing > 0) memory.grow(Math.ceil(missing / 65536));
 }

@@ -1,5 +1,6 @@
 import { operandsOf, type Instruction, type Program, type Value } from '../lower.ts';
 import { int, vector as v, type Int, type Vector } from './code.ts';
+import { gridReader, gridRecordBytes } from './grid.ts';
 import type { FunctionWriter } from './function.ts';
 import type { Callee, ModuleWriter } from './module.ts';
 import { readTable, type TableShape } from './table.ts';
@@ -13,6 +14,8 @@ export interface PlacedProgram {
   readonly tables: number;
   /** Derivatives of each table that the program reads, beside its value. */
   readonly tableOrders: number;
+  /** Address of the records of the grids. */
+  readonly grids: number;
   /** Function without arguments: computes all that does not differ between samples. Call it first. */
   readonly prepare: Callee;
   /**
@@ -27,10 +30,12 @@ export function placeProgram(module: ModuleWriter, program: Program, shape: Tabl
   const parameters = module.reserve(8 * program.parameters.length);
   const tableOrders = 1 + Math.max(0, ...program.instructions.map((step) => (step.op === 'table' ? step.order : 0)));
   const tables = module.reserve(4 * tableOrders * program.tables.length);
+  const grids = module.reserve(gridRecordBytes * program.grids.length);
+  const readings = gridReadings(module, program);
   const kept = keptValues(program);
   const reach = reachOf(program);
   const keptAt = new Map(kept.map((value) => [value, module.reserve(16)]));
-  const writer = (w: FunctionWriter, lanes: readonly Vector[]): StepWriter => new StepWriter(w, lanes, { parameters, tables, tableOrders, shape }, reach);
+  const writer = (w: FunctionWriter, lanes: readonly Vector[]): StepWriter => new StepWriter(w, lanes, { parameters, tables, tableOrders, shape, grids, readings }, reach);
   const prepare = module.define([], [], (w) => {
     const steps = writer(w, []);
     program.instructions.forEach((step, value) => {
@@ -44,6 +49,7 @@ export function placeProgram(module: ModuleWriter, program: Program, shape: Tabl
     parameters,
     tables,
     tableOrders,
+    grids,
     prepare,
     begin: (w) => {
       const known = new Map<Value, Vector>();
@@ -94,12 +100,38 @@ interface Places {
   readonly tables: number;
   readonly tableOrders: number;
   readonly shape: TableShape;
+  readonly grids: number;
+  readonly readings: ReadonlyMap<string, GridReading>;
+}
+
+type GridStep = Instruction & { readonly op: 'grid' };
+
+/** All that a program wants of one grid at one place: read together. */
+interface GridReading {
+  readonly orders: readonly (readonly number[])[];
+  /** Where the results of two samples go, order by order. */
+  readonly results: number;
+}
+
+function readingKey({ grid, coordinates }: GridStep): string {
+  return [grid, ...coordinates].join();
+}
+
+function gridReadings(module: ModuleWriter, program: Program): ReadonlyMap<string, GridReading> {
+  const orders = new Map<string, (readonly number[])[]>();
+  for (const step of program.instructions) {
+    if (step.op !== 'grid') continue;
+    const key = readingKey(step);
+    orders.set(key, [...(orders.get(key) ?? []), step.orders]);
+  }
+  return new Map([...orders].map(([key, wanted]) => [key, { orders: wanted, results: module.reserve(16 * wanted.length) }]));
 }
 
 /** Writes instructions one by one and remembers where their values are. */
 class StepWriter {
   private readonly values: Vector[] = [];
   private readonly masks = new Map<Value, Vector>();
+  private readonly read = new Set<GridReading>();
   private readonly maths: VectorMaths;
 
   constructor(
@@ -122,7 +154,7 @@ class StepWriter {
 
   write(step: Instruction, index: Value): void {
     const code = this.code(step, index);
-    const isPlain = step.op === 'lane' || step.op === 'constant';
+    const isPlain = step.op === 'lane' || step.op === 'constant' || step.op === 'grid';
     this.values[index] = isPlain ? code : isCostly(step) || this.reach[index] > farReach ? this.w.pin(code) : this.w.let(code);
   }
 
@@ -157,7 +189,25 @@ class StepWriter {
         const pointer: Int = int.load(int.constant(0), this.places.tables + 4 * (step.table * this.places.tableOrders + step.order));
         return readTable(this.w, this.places.shape, this.w.let(pointer), values[step.argument]);
       }
+      case 'grid':
+        return this.grid(step);
     }
+  }
+
+  /** Reads all orders of a grid where the first of them is wanted; each stays in memory. */
+  private grid(step: GridStep): Vector {
+    const reading = this.places.readings.get(readingKey(step));
+    if (!reading) throw new Error('a grid is read that the program does not name');
+    const { orders, results } = reading;
+    if (!this.read.has(reading)) {
+      this.read.add(reading);
+      const reader = gridReader(this.w.module, orders);
+      const record = int.constant(this.places.grids + gridRecordBytes * step.grid);
+      for (const lane of [0, 1] as const) {
+        this.w.run(reader, record, int.constant(results + 8 * lane), ...step.coordinates.map((value) => v.lane(this.values[value], lane)));
+      }
+    }
+    return v.load(int.constant(0), results + 16 * orders.findIndex((known) => known.join() === step.orders.join()));
   }
 
   private binary({ name, left, right }: Instruction & { op: 'binary' }, index: Value): Vector {
