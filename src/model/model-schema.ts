@@ -5,7 +5,7 @@ import { quoteValue } from '../units/quote.ts';
 /** Names that formulas, scenes or this program use themselves, so no parameter may have them. */
 export const reservedNames: readonly string[] = [
   'e', 'i', 'pi', 'r', 'phi', 'model', 'name', 'parameters', 'choices', 'define', 'potential', 'euler', 'field',
-  'edges', 'normalisation', 'heightIndex', 'heightAt',
+  'edges', 'normalisation', 'heightIndex', 'heightAt', 'filling', 'arms', 'flare', 'hole',
 ];
 
 const identifier = /^[A-Za-z][A-Za-z0-9]{0,39}$/;

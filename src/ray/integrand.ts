@@ -5,16 +5,17 @@ import { coordinateSubstitution } from '../formula/vector-calculus.ts';
 import type { SplineGrid } from '../math/spline-grid.ts';
 import type { Table } from '../math/table.ts';
 import type { Scene } from '../scene/types.ts';
+import { freeFreeOpacity, opaqueBrightness, type FreeFree } from './free-free.ts';
 import { riceTables, riceTableShape } from './rice.ts';
 import { sceneGrids } from './grids.ts';
 import { parameterValues, SceneGraph, smallestFieldSquared } from './scene-graph.ts';
-import { faradayDepthPerKpc } from './synchrotron.ts';
+import { brightnessPerKpc, faradayDepthPerKpc } from './synchrotron.ts';
 
 /**
  * A scene made into one function of a point. Outputs of `program`, in order: dφ/ds (rad m^-2 per
  * kpc), dΣ/ds (rad² m^-4 per kpc), then the moments ⟨B^q⟩, ⟨B^q cos2θ⟩ and ⟨B^q sin2θ⟩ (uG^q, θ
- * from the receding half of the major axis towards the minor axis, of the electric vector), then
- * C (cm^-3) of each emission group. Lanes are x, y, z (kpc, galaxy frame).
+ * from the receding half of the major axis towards the minor axis, of the electric vector), the
+ * emission measure (pc cm^-6 per kpc), and C (cm^-3) of each emission group. Lanes are x, y, z (kpc, galaxy frame).
  */
 export interface Integrand {
   readonly program: Program;
@@ -22,6 +23,8 @@ export interface Integrand {
   readonly groupOf: readonly number[];
   readonly groups: number;
   readonly hasDispersion: boolean;
+  /** Whether thermal gas absorbs and emits. */
+  readonly hasAbsorption: boolean;
   /** Run-time values for a scene of the same structure: parameters of `program`, tables, grids, edges. */
   inputs(scene: Scene): IntegrandInputs;
 }
@@ -32,12 +35,14 @@ export interface IntegrandInputs {
   readonly grids: readonly SplineGrid[];
   /** Length of a panel at most, kpc, for the sake of the grids. */
   readonly longestPanelKpc: number;
+  /** Opacity and brightness of thermal gas per frequency; there where the integrand `hasAbsorption`. */
+  readonly freeFree?: FreeFree;
   /** Heights and radii (kpc) where rays must break their panels, beside the plane and the axis. */
   readonly edges: { readonly zKpc: readonly number[]; readonly rKpc: readonly number[] };
 }
 
 /** Fixed places of the outputs; C of the first emission group stands at `firstGroup`. */
-export const output = { faraday: 0, dispersion: 1, total: 2, cosine: 3, sine: 4, firstGroup: 5 } as const;
+export const output = { faraday: 0, dispersion: 1, total: 2, cosine: 3, sine: 4, emissionMeasure: 5, firstGroup: 6 } as const;
 
 /** What all tables of an integrand are like. */
 export const tableShape = riceTableShape;
@@ -66,20 +71,22 @@ export function compileIntegrand(scene: Scene, spectrum: readonly SpectralPoint[
   const faraday = graph.multiply(graph.constant(faradayDepthPerKpc), electrons, along);
 
   const rms = fields.unresolvedRms();
-  const dispersion = rms === undefined ? graph.constant(0) : fields.dispersion(electrons, rms);
+  const dispersion = rms === undefined ? graph.constant(0) : fields.dispersion(rms);
+  const emissionMeasure = scene.freeFree ? fields.emissionMeasure() : graph.constant(0);
   const moments = fieldMoments(graph, bx, minor, rms);
   const groupOf = emissionGroups(scene, spectrum);
   const groups = Math.max(...groupOf) + 1;
   const normalisations = Array.from({ length: groups }, (_, group) => fields.cosmicRays(group));
 
-  const program = lowerGraph(graph, [faraday, dispersion, ...moments, ...normalisations], ['x', 'y', 'z'], coordinateSubstitution(graph));
+  const program = lowerGraph(graph, [faraday, dispersion, ...moments, emissionMeasure, ...normalisations], ['x', 'y', 'z'], coordinateSubstitution(graph));
   const groupFrequencies = Array.from({ length: groups }, (_, group) => spectrum[groupOf.indexOf(group)].centreHz);
   return {
     program,
     groupOf,
     groups,
     hasDispersion: rms !== undefined,
-    inputs: (values) => integrandInputs(program, values, groupFrequencies),
+    hasAbsorption: scene.freeFree !== undefined,
+    inputs: (values) => ({ ...integrandInputs(program, values, groupFrequencies), ...(values.freeFree && { freeFree: freeFreeOf(values, spectrum) }) }),
   };
 }
 
@@ -130,6 +137,16 @@ export function gridInputs(program: Program, scene: Scene): Pick<IntegrandInputs
     return grid;
   });
   return { grids: used.map(({ grid }) => grid), longestPanelKpc: Math.min(Infinity, ...used.map(({ panelKpc }) => panelKpc)) };
+}
+
+/** Thermal gas at each frequency, its brightness in the unit of a ray's sums: that of C = 1 cm^-3 in 1 uG along 1 kpc. */
+function freeFreeOf({ freeFree, cosmicRays }: Scene, spectrum: readonly SpectralPoint[]): FreeFree {
+  const temperature = freeFree?.temperatureK ?? 0;
+  const perFrequency = (compute: (frequencyHz: number) => number): Float64Array => Float64Array.from(spectrum, ({ frequencyHz }) => compute(frequencyHz));
+  return {
+    opacity: perFrequency((frequency) => freeFreeOpacity(temperature, frequency)),
+    source: perFrequency((frequency) => opaqueBrightness(temperature, frequency) / brightnessPerKpc(cosmicRays.index, frequency)),
+  };
 }
 
 /** Evaluates the declared edges, which depend on parameters alone. */

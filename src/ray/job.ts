@@ -64,6 +64,8 @@ function structureKey(scene: Scene, spectrum: readonly SpectralPoint[]): string 
     ]),
     scene.field.length,
     scene.thermalElectrons.length,
+    scene.thermalElectrons.map(({ filling }) => filling !== undefined),
+    scene.freeFree !== undefined,
     scene.turbulence.unresolved ? (scene.turbulence.unresolved.follows ?? true) : false,
     spectrum,
   ]);

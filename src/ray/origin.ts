@@ -25,7 +25,7 @@ const mostPanels = 400;
 
 /**
  * Walks the rays of a bundle and hands the net share of every piece of each to `take`: with chi the
- * final angle, w(s) = Re[j_P e^{2i(chi0 + lambda^2 phi - chi)} e^{-2 lambda^4 Sigma}] (physics.md section
+ * final angle, w(s) = Re[j_P e^{2i(chi0 + lambda^2 phi - chi)} e^{-2 lambda^4 Sigma - tau}] (physics.md section
  * 5, own definition). The pieces are used again for the next ray. A foreground turns all alike and is
  * left out; no beam.
  */
@@ -59,7 +59,7 @@ export function walkOrigins(scene: Scene, bundle: RayBundle, spectrum: readonly 
     const [major, minor] = [north * cosPA + east * sinPA, east * cosPA - north * sinPA];
     const intervals = findBreaks(geometry, major, minor, breaks);
     let count = 0;
-    let [depth, variance] = [0, 0];
+    let [depth, variance, column] = [0, 0, 0];
     emitted.fill(0);
     for (let k = intervals - 1; k > 0; k--) {
       const [far, near] = [breaks[k - 1], breaks[k]];
@@ -73,21 +73,23 @@ export function walkOrigins(scene: Scene, bundle: RayBundle, spectrum: readonly 
           cosine = cosine.map(grown);
           sine = sine.map(grown);
         }
-        let [wholeDepth, wholeVariance] = [0, 0];
+        let [wholeDepth, wholeVariance, wholeColumn] = [0, 0, 0];
         for (let i = 0; i < panelNodes; i++) {
-          let [phi, sigma] = [depth, variance];
+          let [phi, sigma, measure] = [depth, variance, column];
           for (let j = 0; j < panelNodes; j++) {
             phi += half * panelRule.toNearEnd[i * panelNodes + j] * out[output.faraday][j];
             sigma += half * panelRule.toNearEnd[i * panelNodes + j] * out[output.dispersion][j];
+            measure += half * panelRule.toNearEnd[i * panelNodes + j] * out[output.emissionMeasure][j];
           }
           wholeDepth += half * panelRule.weights[i] * out[output.faraday][i];
           wholeVariance += half * panelRule.weights[i] * out[output.dispersion][i];
+          wholeColumn += half * panelRule.weights[i] * out[output.emissionMeasure][i];
           z[count + i] = lanes[2][i];
           const [q, u] = [out[output.cosine][i], out[output.sine][i]];
           for (let f = 0; f < squares.length; f++) {
             const size = half * panelRule.weights[i] * out[output.firstGroup + integrand.groupOf[f]][i];
             emitted[f] += size * Math.hypot(q, u);
-            const damped = size * Math.exp(-2 * squares[f] * squares[f] * sigma);
+            const damped = size * Math.exp(-2 * squares[f] * squares[f] * sigma - (inputs.freeFree?.opacity[f] ?? 0) * measure);
             const angle = 2 * squares[f] * phi;
             const [c, s] = [damped * Math.cos(angle), damped * Math.sin(angle)];
             cosine[f][count + i] = c * q - s * u;
@@ -97,6 +99,7 @@ export function walkOrigins(scene: Scene, bundle: RayBundle, spectrum: readonly 
         count += panelNodes;
         depth += wholeDepth;
         variance += wholeVariance;
+        column += wholeColumn;
       }
     }
     take(ray, { count, z, shares: netShares(cosine, sine, count), emitted });

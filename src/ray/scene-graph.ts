@@ -3,6 +3,7 @@ import type { Vector } from '../formula/vector-calculus.ts';
 import { buildDensity, buildEdges, buildField, type ModelUse } from '../model/build-model.ts';
 import type { Component, CosmicRayLayer, Scene } from '../scene/types.ts';
 import { InputError } from '../units/input-error.ts';
+import { emissionMeasurePerKpc } from './free-free.ts';
 import { faradayDepthPerKpc } from './synchrotron.ts';
 
 /** Keeps powers of squared fields finite where the field vanishes, uG². */
@@ -52,6 +53,25 @@ export class SceneGraph {
     return this.graph.add(...placedComponents(this.scene).thermalElectrons.map((placed) => buildDensity(this.graph, this.use(placed))));
   }
 
+  /**
+   * ⟨n_e²⟩, cm^-6. Clumps of a component with filling factor f raise ⟨n²⟩ to ⟨n⟩²/f; those of
+   * different components are independent (own definition).
+   */
+  private electronDensitySquared(): NodeId {
+    const { graph } = this;
+    const clumps = placedComponents(this.scene).thermalElectrons.filter(({ component }) => component.filling !== undefined);
+    const excess = clumps.map((placed) => {
+      const rise = graph.subtract(graph.power(graph.parameter(`${placed.path}/filling`), -1), graph.constant(1));
+      return graph.multiply(graph.power(buildDensity(graph, this.use(placed)), 2), rise);
+    });
+    return graph.add(graph.power(this.electronDensity(), 2), ...excess);
+  }
+
+  /** dEM/ds of thermal gas, pc cm^-6 per kpc. */
+  emissionMeasure(): NodeId {
+    return this.graph.multiply(this.graph.constant(emissionMeasurePerKpc), this.electronDensitySquared());
+  }
+
   /** C of the cosmic-ray electrons at the frequencies of an emission group. */
   cosmicRays(group: number): NodeId {
     const layers = placedComponents(this.scene).cosmicRays.map((placed) => {
@@ -99,10 +119,10 @@ export class SceneGraph {
     return this.graph.parameter(`${placed.path}/${name}`);
   }
 
-  /** dΣ/ds of unresolved turbulence: K² n_e² σ_∥² d (Burn 1966; Sokoloff et al. 1998), per kpc. */
-  dispersion(electrons: NodeId, rms: NodeId): NodeId {
+  /** dΣ/ds of unresolved turbulence: K² ⟨n_e²⟩ σ_∥² d (Burn 1966; Sokoloff et al. 1998), per kpc. */
+  dispersion(rms: NodeId): NodeId {
     const cell = this.graph.parameter('turbulence/cell');
-    return this.graph.multiply(this.graph.constant(faradayDepthPerKpc ** 2), this.graph.power(electrons, 2), this.graph.power(rms, 2), cell);
+    return this.graph.multiply(this.graph.constant(faradayDepthPerKpc ** 2), this.electronDensitySquared(), this.graph.power(rms, 2), cell);
   }
 
   use({ path, component }: PlacedComponent): ModelUse {
@@ -131,6 +151,7 @@ export function parameterValues(scene: Scene, groupFrequenciesHz: readonly numbe
   const { field, thermalElectrons, cosmicRays } = placedComponents(scene);
   for (const { path, component } of [...field, ...thermalElectrons, ...cosmicRays]) {
     for (const [name, value] of Object.entries(component.parameters)) values.set(`${path}/${name}`, value);
+    if (component.filling !== undefined) values.set(`${path}/filling`, component.filling);
   }
   for (const { path, component } of cosmicRays) {
     const layer = component as CosmicRayLayer;

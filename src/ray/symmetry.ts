@@ -11,8 +11,10 @@ export interface SceneSymmetry {
   readonly parity: Parity;
   /** Densities are the same above and below the plane. */
   readonly evenDensities: boolean;
-  /** Whether unresolved turbulence damps the far side. */
+  /** Whether unresolved turbulence damps the far side's polarization. */
   readonly damped: boolean;
+  /** Whether thermal gas absorbs the far side. */
+  readonly absorbed: boolean;
 }
 
 const testPoints = 48;
@@ -47,6 +49,7 @@ export function measureSymmetry(scene: Scene): SceneSymmetry {
     parity: isEven ? 'even' : isOdd ? 'odd' : 'mixed',
     evenDensities: columns.every((column) => same(column(here), column(below))),
     damped: (scene.turbulence.unresolved?.rmsUG ?? 0) > 0,
+    absorbed: scene.freeFree !== undefined && scene.thermalElectrons.length > 0,
   };
 }
 
@@ -55,19 +58,20 @@ export function measureSymmetry(scene: Scene): SceneSymmetry {
  * sentences (design/physics.md section 8, derived there).
  */
 export function symmetrySentences(scene: Scene): readonly string[] {
-  const { axisymmetric, parity, evenDensities, damped } = measureSymmetry(scene);
-  if (!axisymmetric) return ['Not axisymmetric: symmetry forbids no asymmetry.'];
+  const symmetry = measureSymmetry(scene);
+  if (!symmetry.axisymmetric) return ['Not axisymmetric: symmetry forbids no asymmetry.'];
   const isFaceOn = Math.abs(Math.sin(scene.galaxy.inclination)) < 1e-12;
   const faceOn = isFaceOn ? ['Axisymmetric and seen face-on: no azimuthal structure in I, |P| or RM; the polarization angle turns with the azimuth.'] : [];
-  return [...faceOn, oppositePoints(parity, evenDensities, damped)];
+  return [...faceOn, oppositePoints(symmetry)];
 }
 
-function oppositePoints(parity: Parity, evenDensities: boolean, damped: boolean): string {
+function oppositePoints({ parity, evenDensities, damped, absorbed }: SceneSymmetry): string {
   if (!evenDensities) return 'Axisymmetric, with densities that differ above and below the plane: symmetry forbids no odd asymmetry.';
   if (parity === 'odd') return 'Axisymmetric and odd in z: an odd asymmetry of |P| (approaching against receding, near against far) arises without damping and stays at short wavelengths.';
   if (parity === 'mixed') return 'Axisymmetric with even and odd parts: no exact symmetry between opposite points.';
-  if (damped) {
-    return 'Axisymmetric and even in z, damped by unresolved turbulence: an odd asymmetry of |P| can arise at long wavelengths, where the far side is lost, and vanishes at short ones.';
+  if (damped || absorbed) {
+    const causes = [...(damped ? ['damped by unresolved turbulence'] : []), ...(absorbed ? ['absorbed by thermal gas'] : [])].join(' and ');
+    return `Axisymmetric and even in z, ${causes}: an odd asymmetry of |P| can arise at long wavelengths, where the far side is lost, and vanishes at short ones.${absorbed ? ' Absorption dims I and |P| of the far side alike.' : ''}`;
   }
   return (
     'Axisymmetric and even in z, without damping: before the beam, |P| and I are equal at opposite points at every wavelength, so no odd asymmetry; ' +

@@ -1,5 +1,6 @@
 import { findBreaks, mostBreaks, type RayGeometry } from './path.ts';
 import type { Kernel } from '../formula/javascript.ts';
+import { thermalEmission } from './free-free.ts';
 import { output, type Integrand, type IntegrandInputs } from './integrand.ts';
 import { panelNodes, panelRule } from './panel.ts';
 
@@ -88,11 +89,15 @@ export const mostBehind = 10;
  * one that falls more slowly may hide.
  */
 export const fastestDecay = 0.03;
+/** Share of the errors of a depth at the nodes that beats with the last coefficients of the emission. */
+export const beating = 0.1;
 /** Keeps ratios of coefficients finite. */
 export const tiniest = 1e-300;
 /** Emission that a panel may hide between its nodes, over the tolerance. */
 export const mostHidden = 0.1;
-/** Largest turn or damping exponent across a panel that its nodes are trusted to notice. */
+/** Light from behind thermal gas, as it would be without the gas, over the scale of I: a bound. */
+export const mostDimmed = 1e6;
+/** Largest turn, damping or absorption exponent across a panel that its nodes are trusted to notice. */
 export const mostPerPanel = 12;
 
 /**
@@ -111,6 +116,8 @@ export class RayTracer {
   private readonly sigma = new Float64Array(n);
   private readonly real = new Float64Array(n);
   private readonly imaginary = new Float64Array(n);
+  private readonly measure = new Float64Array(n);
+  private readonly made = new Float64Array(n);
   private readonly emission = new Float64Array(n);
   private readonly pending: Float64Array;
   private readonly breaks = new Float64Array(mostBreaks);
@@ -119,6 +126,7 @@ export class RayTracer {
   private readonly tested: readonly number[];
   private nearPhi = 0;
   private nearSigma = 0;
+  private nearMeasure = 0;
 
   constructor(
     private readonly integrand: Integrand,
@@ -129,7 +137,7 @@ export class RayTracer {
     private readonly accuracy: Accuracy,
   ) {
     this.out = integrand.program.outputs.map(() => new Float64Array(n));
-    this.tested = testedFrequencies(wavelengthM2, integrand.hasDispersion);
+    this.tested = testedFrequencies(wavelengthM2, integrand.hasDispersion || integrand.hasAbsorption);
     this.pending = new Float64Array(wavelengthM2.length);
   }
 
@@ -139,6 +147,7 @@ export class RayTracer {
     const count = findBreaks(this.geometry, majorKpc, minorKpc, this.breaks);
     this.nearPhi = 0;
     this.nearSigma = 0;
+    this.nearMeasure = 0;
     for (let k = count - 1; k > 0; k--) {
       const [from, to] = [this.breaks[k - 1], this.breaks[k]];
       const pieces = Math.max(1, Math.ceil((to - from) / this.geometry.longestPanelKpc));
@@ -149,6 +158,8 @@ export class RayTracer {
       }
     }
     sums.faradayDepth = this.nearPhi;
+    const { freeFree } = this.inputs;
+    if (freeFree) for (let k = 0; k < sums.total.length; k++) sums.total[k] += thermalEmission(freeFree, k, this.nearMeasure);
   }
 
   /** Integrates between two breaks, nearest panel first, bisecting where needed. */
@@ -177,10 +188,10 @@ export class RayTracer {
     }
   }
 
-  /** Evaluates the integrand at the nodes of [a, b], and φ and Σ from the observer to each node. */
+  /** Evaluates the integrand at the nodes of [a, b], and φ, Σ and EM from the observer to each node. */
   private sample(a: number, b: number, major: number, minor: number): void {
     const { sinI, cosI } = this.geometry;
-    const { x, y, z, phi, sigma, out } = this;
+    const { x, y, z, phi, sigma, measure, out } = this;
     const half = 0.5 * (b - a);
     const centre = 0.5 * (a + b);
     for (let i = 0; i < n; i++) {
@@ -192,16 +203,20 @@ export class RayTracer {
     this.kernel.evaluate(n, this.inputs.parameters, this.lanes, out, this.inputs.tables, this.inputs.grids);
     const faraday = out[output.faraday];
     const dispersion = out[output.dispersion];
+    const gas = out[output.emissionMeasure];
     const { toNearEnd } = panelRule;
     for (let i = 0; i < n; i++) {
       let depth = 0;
       let variance = 0;
+      let column = 0;
       for (let j = 0; j < n; j++) {
         depth += toNearEnd[i * n + j] * faraday[j];
         variance += toNearEnd[i * n + j] * dispersion[j];
+        column += toNearEnd[i * n + j] * gas[j];
       }
       phi[i] = this.nearPhi + half * depth;
       sigma[i] = this.nearSigma + half * variance;
+      measure[i] = this.nearMeasure + half * column;
     }
   }
 
@@ -212,18 +227,26 @@ export class RayTracer {
     const path = 2 * half;
     const depth = tailOf(this.out[output.faraday]);
     const errorPhi = path * meanError(depth, 0);
+    const gas = tailOf(this.out[output.emissionMeasure]);
+    const errorMeasure = path * meanError(gas, 0);
     for (const k of this.tested) {
       const total = this.emit(k);
-      if (this.mayHide(k, half, mostHidden * tolerance * scaleP[k])) return false;
+      if (this.mayHide(k, half, mostHidden * tolerance)) return false;
       const least = hasValley(total) ? valleyShare(tolerance) : 0;
-      const errorI = (path * meanError(tailOf(total), least)) / scaleI[k];
+      const unpolarized = tailOf(total);
+      const { opacity, through, source } = this.gasAt(k);
+      // What lies behind is dimmed wrongly where the gas is; what the gas itself emits follows from its column.
+      const dimmed = opacity * errorMeasure;
+      const arriving = Math.min(1, mostDimmed * through);
+      const dims = opacity * half * gas.tail * beating;
+      const errorI = (path * (meanError(unpolarized, least) + unpolarized.tail * dims) + dimmed * (arriving * scaleI[k] + through * source)) / scaleI[k];
       if (errorI > limit) return false;
       this.rotate(k);
       const turn = 2 * this.wavelengthM2[k];
       const polarized = tailOf(this.real, this.imaginary);
       // Depth errors at the nodes beat with the emission; at the far end they turn all that lies behind.
-      const coupled = polarized.tail * turn * half * depth.tail * 0.1;
-      const behind = turn * errorPhi * Math.min(scaleI[k], mostBehind * scaleP[k]);
+      const coupled = polarized.tail * (turn * half * depth.tail * beating + dims);
+      const behind = (turn * errorPhi + dimmed * arriving) * Math.min(scaleI[k], mostBehind * scaleP[k]);
       const errorP = (path * (meanError(polarized, least) + coupled) + behind) / scaleP[k];
       if (errorP > limit) return false;
       this.pending[k] = Math.max(errorI, errorP);
@@ -233,36 +256,54 @@ export class RayTracer {
   }
 
   /**
-   * Whether rotation or damping is so fast that emission between the nodes could go unnoticed:
-   * eight samples cannot tell a fast oscillation, or a layer thinner than their distance.
+   * Whether rotation, damping or absorption is so fast that more emission than a share of the scales
+   * could go unnoticed between the nodes: eight samples cannot tell a fast oscillation, or a layer
+   * thinner than their distance.
    */
-  private mayHide(k: number, half: number, limit: number): boolean {
+  private mayHide(k: number, half: number, share: number): boolean {
     const square = this.wavelengthM2[k];
+    const { opacity, through } = this.gasAt(k);
     const turn = 4 * square * half * largest(this.out[output.faraday]);
     const damping = 4 * square * square * half * largest(this.out[output.dispersion]);
-    if (turn + damping < mostPerPanel) return false;
-    const reaching = Math.exp(-2 * square * square * this.nearSigma);
-    return 2 * half * largest(this.emission) * reaching > limit;
+    const absorption = 2 * half * opacity * largest(this.out[output.emissionMeasure]);
+    if (turn + damping + absorption < mostPerPanel) return false;
+    const reaching = 2 * half * largest(this.made) * through;
+    const { scaleI, scaleP } = this.accuracy;
+    if (absorption >= mostPerPanel && reaching > share * scaleI[k]) return true;
+    return reaching * Math.exp(-2 * square * square * this.nearSigma) > share * scaleP[k];
   }
 
-  /** Writes the unpolarized emission of a frequency. */
+  /** Thermal gas at a frequency: optical depth per emission measure, the share of light that comes through to the panel's near end, its brightness. */
+  private gasAt(k: number): { readonly opacity: number; readonly through: number; readonly source: number } {
+    const { freeFree } = this.inputs;
+    if (!freeFree) return noGas;
+    const opacity = freeFree.opacity[k];
+    return { opacity, through: Math.exp(-opacity * this.nearMeasure), source: freeFree.source[k] };
+  }
+
+  /** Writes the unpolarized emission of a frequency as it is made, and as it comes through the gas. */
   private emit(k: number): Float64Array {
-    const { out, emission } = this;
+    const { out, made, emission, measure } = this;
     const density = out[output.firstGroup + this.integrand.groupOf[k]];
-    for (let i = 0; i < n; i++) emission[i] = density[i] * out[output.total][i];
+    const { freeFree } = this.inputs;
+    for (let i = 0; i < n; i++) {
+      made[i] = density[i] * out[output.total][i];
+      emission[i] = freeFree ? made[i] * Math.exp(-freeFree.opacity[k] * measure[i]) : made[i];
+    }
     return emission;
   }
 
-  /** Writes the rotated, damped polarized emission of a frequency. */
+  /** Writes the rotated, damped, absorbed polarized emission of a frequency. */
   private rotate(k: number): void {
-    const { out, phi, sigma, real, imaginary } = this;
+    const { out, phi, sigma, measure, real, imaginary } = this;
+    const opacity = this.inputs.freeFree?.opacity[k] ?? 0;
     const square = this.wavelengthM2[k];
     const density = out[output.firstGroup + this.integrand.groupOf[k]];
     const [cosine, sine] = [out[output.cosine], out[output.sine]];
-    const damps = this.integrand.hasDispersion;
+    const damps = this.integrand.hasDispersion || this.integrand.hasAbsorption;
     for (let i = 0; i < n; i++) {
       const angle = 2 * square * phi[i];
-      const size = damps ? density[i] * Math.exp(-2 * square * square * sigma[i]) : density[i];
+      const size = damps ? density[i] * Math.exp(-2 * square * square * sigma[i] - opacity * measure[i]) : density[i];
       const [c, s] = [Math.cos(angle) * size, Math.sin(angle) * size];
       real[i] = c * cosine[i] - s * sine[i];
       imaginary[i] = s * cosine[i] + c * sine[i];
@@ -295,15 +336,19 @@ export class RayTracer {
       sums.heightSine[k] += half * sumZU;
       sums.emitted[k] += half * emitted;
     }
-    let [depth, variance] = [0, 0];
+    let [depth, variance, column] = [0, 0, 0];
     for (let i = 0; i < n; i++) {
       depth += weights[i] * out[output.faraday][i];
       variance += weights[i] * out[output.dispersion][i];
+      column += weights[i] * out[output.emissionMeasure][i];
     }
     this.nearPhi += half * depth;
     this.nearSigma += half * variance;
+    this.nearMeasure += half * column;
   }
 }
+
+const noGas = { opacity: 0, through: 1, source: 0 } as const;
 
 interface Tail {
   readonly tail: number;
@@ -359,17 +404,17 @@ function largest(values: Float64Array): number {
   return size;
 }
 
-/** Where rotation is damped, tested frequencies lie at most this factor apart in λ², if there are any between. */
+/** Where the far side is damped or absorbed, tested frequencies lie at most this factor apart in λ², if there are any between. */
 const testedRatio = 2;
 
 /**
  * Frequencies whose integrands decide on bisection: the longest and the shortest wavelength; where
- * unresolved turbulence may hide from the longest what shorter ones see, some between them too.
+ * unresolved turbulence or thermal gas may hide from the longest what shorter ones see, some between them too.
  */
-export function testedFrequencies(wavelengthM2: Float64Array, hasDispersion: boolean): readonly number[] {
+export function testedFrequencies(wavelengthM2: Float64Array, hidesFar: boolean): readonly number[] {
   const order = Array.from(wavelengthM2.keys()).sort((a, b) => wavelengthM2[b] - wavelengthM2[a]);
   const tested = [order[0]];
-  for (const k of hasDispersion ? order : []) {
+  for (const k of hidesFar ? order : []) {
     if (wavelengthM2[tested[tested.length - 1]] >= testedRatio * wavelengthM2[k]) tested.push(k);
   }
   const shortest = order[order.length - 1];

@@ -56,6 +56,7 @@ export interface TransferLayout {
   readonly minorCos: Cell;
   readonly nearPhi: Cell;
   readonly nearSigma: Cell;
+  readonly nearMeasure: Cell;
   readonly samples: Cell;
   readonly from: Cell;
   readonly to: Cell;
@@ -75,11 +76,14 @@ export interface TransferLayout {
   /** dφ/ds and dΣ/ds at the nodes. */
   readonly faraday: number;
   readonly dispersion: number;
+  /** dEM/ds at the nodes. */
+  readonly gas: number;
   /** Per emission group: total emission, then the two parts of the polarized one, at the nodes. */
   readonly emission: number;
   readonly z: number;
   readonly phi: number;
   readonly sigma: number;
+  readonly measure: number;
 }
 
 /** Bytes of what a group emits at the nodes. */
@@ -111,6 +115,7 @@ export function layOut(module: ModuleWriter, groups: number): TransferLayout {
     minorCos: cell(),
     nearPhi: cell(),
     nearSigma: cell(),
+    nearMeasure: cell(),
     samples: cell(),
     from: cell(),
     to: cell(),
@@ -126,10 +131,12 @@ export function layOut(module: ModuleWriter, groups: number): TransferLayout {
     toNearEnd: module.numbers(columns),
     faraday: module.reserve(nodeBytes),
     dispersion: module.reserve(nodeBytes),
+    gas: module.reserve(nodeBytes),
     emission: module.reserve(emissionBytes * groups),
     z: module.reserve(nodeBytes),
     phi: module.reserve(nodeBytes),
     sigma: module.reserve(nodeBytes),
+    measure: module.reserve(nodeBytes),
   };
 }
 
@@ -139,12 +146,18 @@ export interface TransferStructure {
   /** Emission group of each frequency. */
   readonly groupOf: readonly number[];
   readonly hasDispersion: boolean;
+  readonly hasAbsorption: boolean;
   /** Frequencies whose integrands decide on bisection. */
   readonly tested: readonly number[];
 }
 
-/** f64 per frequency in memory: 2λ², -2λ⁴, scale of I, scale of P. */
-export const spectrumRecord = { turn: 0, damping: 8, scaleI: 16, scaleP: 24, bytes: 32 } as const;
+/** f64 per frequency in memory: 2λ², -2λ⁴, scale of I, scale of P, -τ per emission measure, brightness of the gas. */
+export const spectrumRecord = { turn: 0, damping: 8, scaleI: 16, scaleP: 24, opacity: 32, source: 40, bytes: 48 } as const;
+/** Bytes of what `rotate` gives at the nodes: rotated emission, real then imaginary, and the unpolarized one that comes through gas. */
+export function rotatedBytes({ hasAbsorption }: TransferStructure): number {
+  return (hasAbsorption ? 3 : 2) * nodeBytes;
+}
+
 /** f64 per frequency in the results of a ray. */
 export const resultsPerFrequency = 7;
 

@@ -1,6 +1,7 @@
 import { placeGrids, type PlacedGrids } from '../formula/wasm/grid.ts';
 import { placeTables } from '../formula/wasm/kernel.ts';
 import { ensureMemory } from '../formula/wasm/memory.ts';
+import { thermalEmission, type FreeFree } from './free-free.ts';
 import type { Integrand, IntegrandInputs } from './integrand.ts';
 import type { RayGeometry } from './path.ts';
 import { mostHidden, panelLimit, testedFrequencies, type Accuracy, type RaySums, valleyShare } from './transfer.ts';
@@ -21,8 +22,8 @@ export class WasmTransfer {
     integrand: Integrand,
     private readonly wavelengthM2: Float64Array,
   ) {
-    const { program, groupOf, hasDispersion } = integrand;
-    this.module = writeTransfer({ program, groupOf, hasDispersion, tested: testedFrequencies(wavelengthM2, hasDispersion) });
+    const { program, groupOf, hasDispersion, hasAbsorption } = integrand;
+    this.module = writeTransfer({ program, groupOf, hasDispersion, hasAbsorption, tested: testedFrequencies(wavelengthM2, hasDispersion || hasAbsorption) });
     const instance = new WebAssembly.Instance(new WebAssembly.Module(this.module.bytes));
     this.memory = instance.exports.memory as WebAssembly.Memory;
     this.run = instance.exports.follow as typeof this.run;
@@ -44,7 +45,7 @@ export class WasmTransfer {
       numbers.set(rays.subarray(2 * from, 2 * (from + here)), raysAt / 8);
       this.run(raysAt, resultsAt, here);
       for (let ray = 0; ray < here; ray++) {
-        this.read(numbers, resultsAt / 8 + ray * resultLength, sums);
+        this.read(numbers, resultsAt / 8 + ray * resultLength, sums, inputs.freeFree);
         take(from + ray);
       }
     }
@@ -83,12 +84,13 @@ export class WasmTransfer {
     for (const [cell, value] of cells) numbers[cell.address / 8] = value;
     this.wavelengthM2.forEach((square, k) => {
       const record = (module.spectrum + spectrumRecord.bytes * k) / 8;
-      numbers.set([2 * square, -2 * square * square, accuracy.scaleI[k], accuracy.scaleP[k]], record);
+      const { opacity, source } = inputs.freeFree ?? {};
+      numbers.set([2 * square, -2 * square * square, accuracy.scaleI[k], accuracy.scaleP[k], -(opacity?.[k] ?? 0), source?.[k] ?? 0], record);
     });
     return free;
   }
 
-  private read(numbers: Float64Array, at: number, sums: RaySums): void {
+  private read(numbers: Float64Array, at: number, sums: RaySums, freeFree: FreeFree | undefined): void {
     const { total, cosine, sine, heightCosine, heightSine, emitted, error } = sums;
     let place = at;
     for (let k = 0; k < total.length; k++, place += resultsPerFrequency) {
@@ -102,5 +104,6 @@ export class WasmTransfer {
     }
     sums.faradayDepth = numbers[place];
     sums.samples = numbers[place + 1];
+    if (freeFree) for (let k = 0; k < total.length; k++) total[k] += thermalEmission(freeFree, k, numbers[place + 2]);
   }
 }

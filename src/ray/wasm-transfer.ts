@@ -17,7 +17,7 @@ export interface TransferModule {
   readonly layout: TransferLayout;
   readonly placed: PlacedProgram;
   readonly spectrum: number;
-  /** f64 of one ray's results: 7 per frequency (I, Q, U, heights of Q and U, emitted, error), depth, samples. */
+  /** f64 of one ray's results: 7 per frequency (I, Q, U, heights of Q and U, emitted, error), depth, samples, emission measure. */
   readonly resultLength: number;
   readonly heapStart: number;
 }
@@ -30,18 +30,18 @@ export function writeTransfer(structure: TransferStructure): TransferModule {
   const spectrum = module.reserve(spectrumRecord.bytes * groupOf.length);
   const placed = placeProgram(module, program, tableShape);
   const findBreaks = writeFindBreaks(module, layout);
-  const sample = writeSample(module, layout, placed, structure.hasDispersion);
+  const sample = writeSample(module, layout, placed, structure);
   const context = { module, layout, spectrum, structure };
   const resolve = writeIsResolved(context);
   const sums = writeAccept(context, resolve);
   const interval = writeInterval(module, layout, sample, resolve.isResolved, sums.accept);
-  const resultLength = resultsPerFrequency * groupOf.length + 2;
+  const resultLength = resultsPerFrequency * groupOf.length + 3;
   writeFollow(module, layout, { prepare: placed.prepare, findBreaks, interval, sums, resultLength });
   return { bytes: module.encode(), layout, placed, spectrum, resultLength, heapStart: module.heapStart };
 }
 
-/** (a, b): evaluates the integrand at the nodes of [a, b], and φ and Σ from the observer to each node. */
-function writeSample(module: ModuleWriter, layout: TransferLayout, placed: PlacedProgram, hasDispersion: boolean): Callee {
+/** (a, b): evaluates the integrand at the nodes of [a, b], and φ, Σ and EM from the observer to each node. */
+function writeSample(module: ModuleWriter, layout: TransferLayout, placed: PlacedProgram, { hasDispersion, hasAbsorption }: TransferStructure): Callee {
   return module.define(['f64', 'f64'], [], (w) => {
     const [a, b] = [w.parameter(0, 'f64'), w.parameter(1, 'f64')];
     const half = w.let(v.splat(f.multiply(f.constant(0.5), f.subtract(b, a))));
@@ -56,6 +56,7 @@ function writeSample(module: ModuleWriter, layout: TransferLayout, placed: Place
       const values = evaluate([major, y, z]);
       w.store(offset, layout.faraday, values[output.faraday]);
       if (hasDispersion) w.store(offset, layout.dispersion, values[output.dispersion]);
+      if (hasAbsorption) w.store(offset, layout.gas, values[output.emissionMeasure]);
       values.slice(output.firstGroup).forEach((density, group) => {
         [output.total, output.cosine, output.sine].forEach((part, k) => {
           w.store(offset, layout.emission + emissionBytes * group + nodeBytes * k, v.multiply(density, values[part]));
@@ -64,6 +65,7 @@ function writeSample(module: ModuleWriter, layout: TransferLayout, placed: Place
     });
     integrateToNodes(w, layout, layout.faraday, half, layout.nearPhi.both(), layout.phi);
     if (hasDispersion) integrateToNodes(w, layout, layout.dispersion, half, layout.nearSigma.both(), layout.sigma);
+    if (hasAbsorption) integrateToNodes(w, layout, layout.gas, half, layout.nearMeasure.both(), layout.measure);
   });
 }
 
@@ -123,7 +125,7 @@ interface FollowParts {
 
 /** Exported (rays, results, count): follows rays, pairs of f64 major and minor, one after the other. */
 function writeFollow(module: ModuleWriter, layout: TransferLayout, { prepare, findBreaks, interval, sums, resultLength }: FollowParts): void {
-  const { major, minor, minorSin, minorCos, sinI, cosI, nearPhi, nearSigma, samples, breaks, breakCount, longestPanel } = layout;
+  const { major, minor, minorSin, minorCos, sinI, cosI, nearPhi, nearSigma, nearMeasure, samples, breaks, breakCount, longestPanel } = layout;
   module.define(
     ['i32', 'i32', 'i32'],
     [],
@@ -136,7 +138,7 @@ function writeFollow(module: ModuleWriter, layout: TransferLayout, { prepare, fi
         minor.set(w, f.load(rays, 8));
         minorSin.set(w, f.multiply(minor.get(), sinI.get()));
         minorCos.set(w, f.multiply(minor.get(), cosI.get()));
-        for (const cell of [nearPhi, nearSigma, samples]) cell.set(w, f.constant(0));
+        for (const cell of [nearPhi, nearSigma, nearMeasure, samples]) cell.set(w, f.constant(0));
         w.run(sums.clear);
         w.run(findBreaks);
         const k = w.variable('i32', int.subtract(breakCount.get(), int.constant(1)));
@@ -156,9 +158,10 @@ function writeFollow(module: ModuleWriter, layout: TransferLayout, { prepare, fi
           k.set(int.subtract(k, int.constant(1)));
         });
         w.run(sums.write, results);
-        const end = 8 * (resultLength - 2);
+        const end = 8 * (resultLength - 3);
         w.store(results, end, nearPhi.get());
         w.store(results, end + 8, samples.get());
+        w.store(results, end + 16, nearMeasure.get());
         rays.set(int.add(rays, int.constant(16)));
         results.set(int.add(results, int.constant(8 * resultLength)));
       });

@@ -7,7 +7,7 @@ import { keys, nameText } from '../units/schema.ts';
 import { checkYaml, placeAt } from '../units/yaml-input.ts';
 import type { YamlInput, YamlPath } from '../units/yaml-input.ts';
 import { readInlineComponent } from './inline-model.ts';
-import { laterKeys, placed, readHeightLaw } from './section.ts';
+import { laterKeys, placed, readFilling, readHeightLaw } from './section.ts';
 import type { Section } from './section.ts';
 import type { CosmicRayLayer } from './types.ts';
 
@@ -49,5 +49,5 @@ function readLibraryComponent(input: YamlInput, section: Section, path: YamlPath
   const given: Readonly<Record<string, unknown>> = checkYaml(input, componentSchema(model, section), path);
   const values = placed(input, path, () => fillValues(model, given, section.rename));
   const name = typeof given.name === 'string' ? given.name : modelName;
-  return { name, model, ...values, ...readHeightLaw(input, path, model, given) };
+  return { name, model, ...values, ...readHeightLaw(input, path, model, given), ...readFilling(given) };
 }

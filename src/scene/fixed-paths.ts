@@ -32,6 +32,12 @@ export const fixedPaths: readonly PathEntry[] = [
   },
   turbulencePath('rms', sceneLimits.rms, ({ rmsUG }) => rmsUG, (old, rmsUG) => ({ ...old, rmsUG })),
   turbulencePath('cell', sceneLimits.cell, ({ cellKpc }) => cellKpc, (old, cellKpc) => ({ ...old, cellKpc })),
+  {
+    path: 'freeFree.temperature',
+    ...sceneLimits.temperature,
+    read: ({ freeFree }) => freeFree?.temperatureK,
+    write: (scene, temperatureK) => ({ ...scene, freeFree: { temperatureK } }),
+  },
   observationPath('foreground.depth', sceneLimits.foregroundDepth, ({ foregroundDepth }) => foregroundDepth, (old, foregroundDepth) => ({ ...old, foregroundDepth })),
   ...gradientPaths(),
   screenPath('rms', sceneLimits.screenRms, ({ rmsRadM2 }) => rmsRadM2, (old, rmsRadM2) => ({ ...old, rmsRadM2 })),

@@ -11,7 +11,7 @@ import { quoteValue } from '../units/quote.ts';
 import { keys, listOf, nameText } from '../units/schema.ts';
 import { checkYaml, placeAt } from '../units/yaml-input.ts';
 import type { YamlInput, YamlPath } from '../units/yaml-input.ts';
-import { laterKeys, placed, readHeightLaw } from './section.ts';
+import { laterKeys, placed, readFilling, readHeightLaw } from './section.ts';
 import type { Section } from './section.ts';
 import type { CosmicRayLayer } from './types.ts';
 
@@ -77,7 +77,7 @@ export function readInlineComponent(input: YamlInput, section: Section, path: Ya
     checks: [],
   };
   tryFormulas(input, model, path);
-  return { name: given.name, model, parameters: values, choices: {}, ...readHeightLaw(input, path, model, given) };
+  return { name: given.name, model, parameters: values, choices: {}, ...readHeightLaw(input, path, model, given), ...readFilling(given) };
 }
 
 function readParameters(

@@ -30,6 +30,8 @@ export const sceneLimits = {
   heightAt: limit('GHz', 0.001, 1000, 'Hz', 'frequency at which height is given'),
   rms: limit('uG', 0, 10000, 'uG', 'rms of one component of the unresolved field'),
   cell: limit('kpc', 0, 100, 'kpc', 'size of a turbulent cell along the ray', above),
+  filling: limit('', 0, 1, '', 'filling factor f of clumps, with <n^2> = <n>^2/f', above),
+  temperature: limit('K', 100, 1e9, 'K', 'temperature of the thermal gas that absorbs and emits'),
   pixels: limit('', 1, 16384, '', 'pixels along one side', whole),
   pixelArcsec: limit('arcsec', 0, 36000, 'arcsec', 'side of a pixel', above),
   pixelKpc: limit('kpc', 0, 1000, 'kpc', 'side of a pixel at the distance of the galaxy', above),

@@ -39,6 +39,7 @@ export function parseScene(text: string, fileName: string, overrides: readonly O
     thermalElectrons: components.thermalElectrons,
     cosmicRays: { index: file.cosmicRays.index, layers: components.layers },
     turbulence: readTurbulence(input, file.turbulence, Object.values(components).flat()),
+    ...(file.freeFree && { freeFree: { temperatureK: file.freeFree.temperature } }),
     observation: readObservation(input, file.observation, galaxy.distanceKpc),
     numerics: file.numerics,
   };

@@ -132,6 +132,14 @@ function entriesOfComponent({ section, read, write }: ComponentList, component: 
     read: (scene) => find(scene)?.parameters[parameter.name],
     write: (scene, value) => change(scene, (old) => withParameter(old, parameter.name, value)),
   }));
+  if (component.filling !== undefined) {
+    parameters.push({
+      path: path('filling'),
+      ...sceneLimits.filling,
+      read: (scene) => find(scene)?.filling,
+      write: (scene, filling) => change(scene, (old) => ({ ...old, filling })),
+    });
+  }
   if (component.heightIndex === undefined) return parameters;
   return [
     ...parameters,

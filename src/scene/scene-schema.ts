@@ -27,6 +27,8 @@ const turbulence = keys(
   ['resolved', 'ordered'],
 );
 
+const freeFree = keys({ temperature: limited(sceneLimits.temperature) });
+
 const pixelCount = limited(sceneLimits.pixels);
 const pixels = z.union([pixelCount, z.tuple([pixelCount, pixelCount])], {
   error: (issue) => {
@@ -109,10 +111,11 @@ export function sceneSchema<Item extends z.ZodType>(items: { readonly field: Ite
         'scaleTo',
       ]),
       turbulence: turbulence.default({}),
+      freeFree: freeFree.optional(),
       observation,
       numerics: numerics.default({ tolerance: 1e-4, seed: 1, bits: 32 }),
     },
-    ['freeFree', 'dust'],
+    ['dust'],
   );
 }
 

@@ -24,7 +24,13 @@ const layerKeys = {
 /** The three lists of components of a scene. */
 export const sections = {
   field: { title: 'field', path: ['field'], kind: 'field', rename: {}, extra: {} },
-  thermalElectrons: { title: 'thermalElectrons', path: ['thermalElectrons'], kind: 'density', rename: {}, extra: {} },
+  thermalElectrons: {
+    title: 'thermalElectrons',
+    path: ['thermalElectrons'],
+    kind: 'density',
+    rename: {},
+    extra: { filling: limited(sceneLimits.filling).optional() },
+  },
   cosmicRays: {
     title: 'cosmicRays',
     path: ['cosmicRays', 'layers'],
@@ -35,7 +41,7 @@ export const sections = {
 } as const satisfies Readonly<Record<string, Section>>;
 
 /** Keys of components that this version cannot compute. */
-export const laterKeys: readonly string[] = ['arms', 'filling', 'flare', 'hole'];
+export const laterKeys: readonly string[] = ['arms', 'flare', 'hole'];
 
 /**
  * The frequency dependence of a layer's height: both keys or neither, and only where the model has
@@ -56,6 +62,11 @@ export function readHeightLaw(
     throw new InputError(`"${present}" needs a model with the parameter "height"; "${model.name}" has none`, placeAt(input, path, present));
   }
   return { heightIndex, heightAtHz: heightAt };
+}
+
+/** The filling factor of a component of thermal electrons. */
+export function readFilling({ filling }: Readonly<Record<string, unknown>>): Pick<CosmicRayLayer, 'filling'> {
+  return typeof filling === 'number' ? { filling } : {};
 }
 
 /** Runs `compute`; an InputError without a place gets that of the value at `path`. */

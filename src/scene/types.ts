@@ -12,6 +12,8 @@ export interface Component {
   readonly choices: Readonly<Record<string, string>>;
   /** What the model reads on grids, by the names that its `grids` have. */
   readonly grids?: Readonly<Record<string, GriddedFunction>>;
+  /** Filling factor f of clumps: ⟨n²⟩ = ⟨n⟩²/f. Thermal electrons only. */
+  readonly filling?: number;
 }
 
 /** Numbers on a grid, and how fine rays must sample it. */
@@ -46,6 +48,11 @@ export interface UnresolvedTurbulence {
   readonly cellKpc: number;
   /** Name of a component or density whose value, divided by its strength, scales the rms. */
   readonly follows?: string;
+}
+
+/** Thermal gas that absorbs and emits at radio frequencies, at one temperature. */
+export interface FreeFreeGas {
+  readonly temperatureK: number;
 }
 
 export interface Band {
@@ -117,6 +124,8 @@ export interface Scene {
   readonly thermalElectrons: readonly Component[];
   readonly cosmicRays: { readonly index: number; readonly layers: readonly CosmicRayLayer[] };
   readonly turbulence: { readonly unresolved?: UnresolvedTurbulence };
+  /** Free–free absorption and emission of the thermal electrons; undefined: none. */
+  readonly freeFree?: FreeFreeGas;
   readonly observation: Observation;
   readonly numerics: Numerics;
 }

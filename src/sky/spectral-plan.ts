@@ -59,7 +59,7 @@ export function planSpectrum(
   };
   const plans = bands.map((band): BandPlan => {
     const channels = band.channels.map((channel): ChannelPlan => {
-      const nodes = channelNodes(channel, largestDepth, scene.numerics.tolerance);
+      const nodes = channelNodes(channel, largestDepth, scene.numerics.tolerance, scene.freeFree !== undefined);
       const points = Array.from(nodes.frequenciesHz, (frequency) => point(frequency, channel.frequencyHz));
       return { channel, points, weights: nodes.weights };
     });

@@ -51,7 +51,7 @@ export function denseRays(scene: Scene, spectrum: readonly SpectralPoint[], nort
     const breaks = new Float64Array(128);
     const count = findBreaks(geometry, major, minor, breaks);
     const sums = squares.map(() => ({ I: 0, Q: 0, U: 0 }));
-    let [phi, sigma] = [0, 0];
+    let [phi, sigma, measure] = [0, 0, 0];
     for (let k = count - 1; k > 0; k--) {
       const panels = Math.ceil((breaks[k] - breaks[k - 1]) / panelKpc);
       const half = (breaks[k] - breaks[k - 1]) / panels / 2;
@@ -65,22 +65,25 @@ export function denseRays(scene: Scene, spectrum: readonly SpectralPoint[], nort
         }
         kernel.evaluate(n, inputs.parameters, lanes, out, inputs.tables, inputs.grids);
         for (let i = 0; i < n; i++) {
-          let [depth, variance] = [phi, sigma];
+          let [depth, variance, column] = [phi, sigma, measure];
           for (let j = 0; j < n; j++) {
             depth += half * toNearEnd[i][j] * out[output.faraday][j];
             variance += half * toNearEnd[i][j] * out[output.dispersion][j];
+            column += half * toNearEnd[i][j] * out[output.emissionMeasure][j];
           }
           for (let f = 0; f < squares.length; f++) {
-            const emission = half * rule.weights[i] * out[output.firstGroup + integrand.groupOf[f]][i];
+            const emission = half * rule.weights[i] * out[output.firstGroup + integrand.groupOf[f]][i] * Math.exp(-(inputs.freeFree?.opacity[f] ?? 0) * column);
+            const thermal = (inputs.freeFree?.opacity[f] ?? 0) * half * rule.weights[i] * out[output.emissionMeasure][i] * Math.exp(-(inputs.freeFree?.opacity[f] ?? 0) * column);
             const size = emission * Math.exp(-2 * squares[f] ** 2 * variance);
             const [c, s] = [Math.cos(2 * squares[f] * depth), Math.sin(2 * squares[f] * depth)];
-            sums[f].I += emission * out[output.total][i];
+            sums[f].I += emission * out[output.total][i] + thermal * (inputs.freeFree?.source[f] ?? 0);
             sums[f].Q += size * (c * out[output.cosine][i] - s * out[output.sine][i]);
             sums[f].U += size * (s * out[output.cosine][i] + c * out[output.sine][i]);
           }
         }
         phi += half * out[output.faraday].reduce((sum, value, i) => sum + rule.weights[i] * value, 0);
         sigma += half * out[output.dispersion].reduce((sum, value, i) => sum + rule.weights[i] * value, 0);
+        measure += half * out[output.emissionMeasure].reduce((sum, value, i) => sum + rule.weights[i] * value, 0);
       }
     }
     const factors = spectrum.map(({ frequencyHz }) => brightnessPerKpc(scene.cosmicRays.index, frequencyHz));

@@ -15,6 +15,8 @@ export interface SceneParts {
   readonly index?: number;
   readonly layers: readonly string[];
   readonly turbulence?: string;
+  /** Further keys at the top of the scene. */
+  readonly more?: readonly string[];
   readonly tolerance?: number;
 }
 
@@ -32,6 +34,7 @@ export function sceneOf(parts: SceneParts): Scene {
       `  index: ${parts.index ?? 2.8}`,
       `  layers:${parts.layers.map((item) => `\n    - ${item}`).join('')}`,
       ...(parts.turbulence === undefined ? [] : [`turbulence: {unresolved: ${parts.turbulence}}`]),
+      ...(parts.more ?? []),
       'observation: {image: {pixels: 4, pixel: 1 kpc}, bands: [{name: one, at: [1.4 GHz]}]}',
       `numerics: {tolerance: ${parts.tolerance ?? 1e-4}, bits: 64}`,
     ].join('\n'),

@@ -154,8 +154,8 @@ test('the code of a structure is valid and does not grow with channels', () => {
   const scene = sceneAt('a-spiral-quadrupole', 1e-4);
   const bytes = [3, 128].map((count) => {
     const spectrum = frequencies(...Array.from({ length: count }, (_, k) => 1.3e9 + 3e6 * k));
-    const { program, groupOf, hasDispersion } = compileIntegrand(scene, spectrum);
-    return writeTransfer({ program, groupOf, hasDispersion, tested: [0, count - 1] }).bytes;
+    const { program, groupOf, hasDispersion, hasAbsorption } = compileIntegrand(scene, spectrum);
+    return writeTransfer({ program, groupOf, hasDispersion, hasAbsorption, tested: [0, count - 1] }).bytes;
   });
   for (const module of bytes) expect(WebAssembly.validate(module)).toBe(true);
   // Only the writing of results, some 100 bytes a channel, is unrolled.
