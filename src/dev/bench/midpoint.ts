@@ -1,7 +1,7 @@
-import { exactSineCosine } from '../ray/scene-graph.ts';
-import { faradayDepthPerKpc, wavelengthSquared } from '../ray/synchrotron.ts';
-import type { RayBundle } from '../ray/types.ts';
-import type { Scene } from '../scene/types.ts';
+import { exactSineCosine } from '../../ray/scene-graph.ts';
+import { faradayDepthPerKpc, wavelengthSquared } from '../../ray/synchrotron.ts';
+import type { RayBundle } from '../../ray/types.ts';
+import type { Scene } from '../../scene/types.ts';
 
 /** Sums over rays in units of C B^q kpc, in the frame of the major axis. */
 export interface MidpointMap {
