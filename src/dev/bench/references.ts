@@ -8,7 +8,7 @@ import type { MidpointMap } from './midpoint.ts';
 import { sideKpc } from './prepare.ts';
 import type { Timed } from './timing.ts';
 import cSource from './fixed-step.c?raw';
-import pythonSource from './fixed_step.py?raw';
+import pythonSource from './fixed-step.py?raw';
 
 /** A program outside that follows scene a with fixed steps: file to run and arguments before the common ones. */
 export interface Reference {
@@ -30,7 +30,7 @@ export function compileC(folder: string): Reference | undefined {
 
 /** The numpy reference; undefined where there is no python3 with numpy. */
 export function findNumpy(folder: string): Reference | undefined {
-  const script = join(folder, 'fixed_step.py');
+  const script = join(folder, 'fixed-step.py');
   writeFileSync(script, pythonSource);
   try {
     execFileSync('/usr/bin/python3', ['-c', 'import numpy'], { stdio: 'pipe' });

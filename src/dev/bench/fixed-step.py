@@ -1,5 +1,5 @@
 # The benchmark's numpy reference: what fixed-step.c does, in blocks of pixels that stay in cache.
-# usage: fixed_step.py SIDE STEP_KPC SIN_I COS_I STEPS OUT WAVELENGTH_SQUARED...; prints seconds of CPU
+# usage: fixed-step.py SIDE STEP_KPC SIN_I COS_I STEPS OUT WAVELENGTH_SQUARED...; prints seconds of CPU
 import sys
 import time
 import numpy as np
