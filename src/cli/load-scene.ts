@@ -1,4 +1,5 @@
-import { readText } from '../files/node-io.ts';
+import { gridSource } from '../files/grid-source.ts';
+import { filesBeside, readText } from '../files/node-io.ts';
 import type { Provenance } from '../files/fits-scene.ts';
 import { parseScene, sceneText } from '../scene/parse-scene.ts';
 import type { Override } from '../scene/overrides.ts';
@@ -14,7 +15,7 @@ export interface LoadedScene {
 /** Reads and checks a scene file. Throws InputError with file:line:column, or the flag. */
 export function loadScene(path: string, overrides: readonly Override[]): LoadedScene {
   const text = readText(path);
-  const scene = parseScene(text, path, overrides);
-  const provenance = { sceneText: sceneText(text, path, overrides), version, seed: scene.numerics.seed };
+  const scene = parseScene(text, path, overrides, gridSource(filesBeside(path)));
+  const provenance = { sceneText: sceneText(text, path, overrides), version, seed: scene.numerics.seed, inputs: scene.inputs };
   return { scene, provenance };
 }

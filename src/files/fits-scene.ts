@@ -1,3 +1,4 @@
+import type { InputFile } from '../scene/types.ts';
 import { escapeLines, unescapeLines } from './escape-lines.ts';
 import { asciiText } from './fits-card-write.ts';
 import { findNumber, findString } from './fits-header.ts';
@@ -16,6 +17,8 @@ export interface Provenance {
   /** Of the program. */
   readonly version: string;
   readonly seed: number;
+  /** Files that the scene names, as they stood; none where absent. */
+  readonly inputs?: readonly InputFile[];
 }
 
 /** The SCENE table of an output file: the scene line by line, version, seed and SHA-256 of the text. */
@@ -27,6 +30,10 @@ export function sceneTable(provenance: Provenance): TableHdu {
     { keyword: 'CREATOR', value: `gyrelight ${asciiText(provenance.version)}`, comment: 'program and version' },
     { keyword: 'SEED', value: provenance.seed, comment: 'of all random streams' },
     { keyword: 'SHA256', value: sha256OfText(provenance.sceneText) },
+    ...(provenance.inputs ?? []).flatMap(({ file, sha256 }, k): Card[] => [
+      { keyword: `INFILE${k + 1}`, value: asciiText(file), comment: 'a file that the scene names' },
+      { keyword: `INSHA${k + 1}`, value: sha256 },
+    ]),
     { keyword: 'COMMENT', comment },
   ];
   return makeTable(TABLE_NAME, [{ name: COLUMN_NAME, texts: escapeLines(provenance.sceneText) }], cards);
@@ -50,7 +57,18 @@ export function findProvenance(hdus: readonly FitsHdu[], fileName: string): Prov
   }
   const creator = required(findString(table.cards, 'CREATOR', place), 'CREATOR', place);
   const seed = required(findNumber(table.cards, 'SEED', place), 'SEED', place);
-  return { sceneText, version: creator.replace(/^gyrelight /, ''), seed };
+  const inputs = inputsOf(table.cards, place);
+  return { sceneText, version: creator.replace(/^gyrelight /, ''), seed, ...(inputs.length > 0 && { inputs }) };
+}
+
+function inputsOf(cards: readonly Card[], place: FitsPlace): InputFile[] {
+  const inputs: InputFile[] = [];
+  for (;;) {
+    const file = findString(cards, `INFILE${inputs.length + 1}`, place);
+    if (file === undefined) return inputs;
+    const keyword = `INSHA${inputs.length + 1}`;
+    inputs.push({ file, sha256: required(findString(cards, keyword, place), keyword, place) });
+  }
 }
 
 function required<Value>(value: Value | undefined, keyword: string, place: FitsPlace): Value {

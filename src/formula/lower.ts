@@ -220,6 +220,8 @@ function keyOf(instruction: Instruction): string {
       return `${instruction.op} ${instruction.index}`;
     case 'table':
       return `table ${instruction.table} ${instruction.order} ${instruction.argument}`;
+    case 'grid':
+      return `grid ${instruction.grid} ${instruction.orders.join(' ')} ${instruction.coordinates.join(' ')}`;
     case 'unary':
     case 'binary':
       return `${instruction.name} ${operandsOf(instruction).join(' ')}`;

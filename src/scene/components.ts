@@ -6,13 +6,21 @@ import { InputError } from '../units/input-error.ts';
 import { keys, nameText } from '../units/schema.ts';
 import { checkYaml, placeAt } from '../units/yaml-input.ts';
 import type { YamlInput, YamlPath } from '../units/yaml-input.ts';
+import type { ComponentSources } from './component-sources.ts';
+import { readCubeComponent } from './cube-model.ts';
 import { readInlineComponent } from './inline-model.ts';
 import { laterKeys, placed, readFilling, readHeightLaw } from './section.ts';
 import type { Section } from './section.ts';
 import type { CosmicRayLayer } from './types.ts';
 
 /** Models of the format that this version cannot compute. */
-const laterModels = ['mean-field', 'simulation-cube', 'turbulence'];
+const laterModels = ['mean-field'];
+
+/** Models that are no file of the library: what reads each. */
+const specialModels: Readonly<Record<string, (input: YamlInput, section: Section, path: YamlPath, sources: ComponentSources) => CosmicRayLayer>> = {
+  formula: readInlineComponent,
+  'simulation-cube': readCubeComponent,
+};
 
 /** The keys of a component of a library model in a section. */
 export function componentSchema(model: Model, section: Section) {
@@ -26,10 +34,11 @@ export function componentSchema(model: Model, section: Section) {
  * The checked components of a section: known models, all parameters in range, names unique. Throws
  * InputError with its place.
  */
-export function readComponents(input: YamlInput, section: Section, models: readonly string[]): CosmicRayLayer[] {
+export function readComponents(input: YamlInput, section: Section, models: readonly string[], sources: ComponentSources): CosmicRayLayer[] {
   const components = models.map((model, index) => {
     const path = [...section.path, index];
-    return model === 'formula' ? readInlineComponent(input, section, path) : readLibraryComponent(input, section, path, model);
+    const read = Object.hasOwn(specialModels, model) ? specialModels[model] : undefined;
+    return read ? read(input, section, path, sources) : readLibraryComponent(input, section, path, model);
   });
   components.forEach(({ name }, index) => {
     if (components.findIndex((other) => other.name === name) === index) return;
@@ -44,6 +53,7 @@ export function readComponents(input: YamlInput, section: Section, models: reado
 function readLibraryComponent(input: YamlInput, section: Section, path: YamlPath, modelName: string): CosmicRayLayer {
   const model = placed(input, [...path, 'model'], () => {
     if (laterModels.includes(modelName)) throw new InputError(`the model "${modelName}" is not available in this version`);
+    if (modelName === 'turbulence') throw new InputError('turbulence is no component: it is given as turbulence.resolved');
     return getModel(modelName, section.kind);
   });
   const given: Readonly<Record<string, unknown>> = checkYaml(input, componentSchema(model, section), path);

@@ -1,6 +1,7 @@
 import { z } from 'zod';
 import { modelLibrary } from '../model/library.ts';
 import { componentSchema } from './components.ts';
+import { cubeSchema } from './cube-model.ts';
 import { inlineSchema } from './inline-model.ts';
 import { sceneSchema } from './scene-schema.ts';
 import { sections } from './section.ts';
@@ -19,5 +20,5 @@ export function sceneJsonSchema(): Record<string, unknown> {
 function anyComponent(section: Section): z.ZodType {
   const models = [...modelLibrary().values()].filter((model) => model.kind === section.kind);
   const ofLibrary = models.map((model) => componentSchema(model, section).meta({ title: model.title, description: model.meaning }));
-  return z.union([...ofLibrary, inlineSchema(section)]);
+  return z.union([...ofLibrary, inlineSchema(section), cubeSchema(section)]);
 }

@@ -1,6 +1,8 @@
+import type { GridSource } from '../field/grid-file.ts';
 import { InputError, nearestHint } from '../units/input-error.ts';
 import { checkVersion, checkYaml, placeAt, readYaml } from '../units/yaml-input.ts';
 import type { YamlInput } from '../units/yaml-input.ts';
+import { noteSources } from './component-sources.ts';
 import { readComponents } from './components.ts';
 import { readObservation } from './observation.ts';
 import { applyOverrides } from './overrides.ts';
@@ -8,7 +10,7 @@ import type { Override } from './overrides.ts';
 import { looseComponent, sceneSchema } from './scene-schema.ts';
 import type { SceneFile } from './scene-schema.ts';
 import { sections } from './section.ts';
-import type { Component, Galaxy, Scene, UnresolvedTurbulence } from './types.ts';
+import type { Component, Galaxy, InputFile, Scene, UnresolvedTurbulence } from './types.ts';
 
 /** The newest version of the scene format, and the only one so far. */
 const SCENE_VERSION = 1;
@@ -17,9 +19,9 @@ const fileSchema = sceneSchema({ field: looseComponent, density: looseComponent,
 
 /**
  * Scene text (YAML 1.2) → checked scene. `overrides` (from `--set`) change the text's values before
- * they are checked. Throws InputError with file:line:column, or the flag, for the first thing wrong.
+ * they are checked; `files` opens what the scene names. Throws InputError with file:line:column, or the flag, for the first thing wrong.
  */
-export function parseScene(text: string, fileName: string, overrides: readonly Override[] = []): Scene {
+export function parseScene(text: string, fileName: string, overrides: readonly Override[] = [], files?: GridSource): Scene {
   const input = readYaml(text, fileName);
   checkVersion(input, 'gyrelight', SCENE_VERSION);
   applyOverrides(input, overrides);
@@ -27,10 +29,12 @@ export function parseScene(text: string, fileName: string, overrides: readonly O
   const file = checkYaml(input, fileSchema);
   const modelsOf = (items: readonly { readonly model: string }[]): string[] => items.map(({ model }) => model);
   const galaxy = readGalaxy(file.galaxy);
+  const inputs = new Map<string, InputFile>();
+  const sources = noteSources(files, galaxy.volume, inputs);
   const components = {
-    field: readComponents(input, sections.field, modelsOf(file.field)),
-    thermalElectrons: readComponents(input, sections.thermalElectrons, modelsOf(file.thermalElectrons)),
-    layers: readComponents(input, sections.cosmicRays, modelsOf(file.cosmicRays.layers)),
+    field: readComponents(input, sections.field, modelsOf(file.field), sources),
+    thermalElectrons: readComponents(input, sections.thermalElectrons, modelsOf(file.thermalElectrons), sources),
+    layers: readComponents(input, sections.cosmicRays, modelsOf(file.cosmicRays.layers), sources),
   };
   return {
     title: file.title,
@@ -42,6 +46,7 @@ export function parseScene(text: string, fileName: string, overrides: readonly O
     ...(file.freeFree && { freeFree: { temperatureK: file.freeFree.temperature } }),
     observation: readObservation(input, file.observation, galaxy.distanceKpc),
     numerics: file.numerics,
+    ...(inputs.size > 0 && { inputs: [...inputs.values()] }),
   };
 }
 

@@ -116,6 +116,13 @@ export interface Numerics {
   readonly bits: 32 | 64;
 }
 
+/** A file that a scene was read with, as it stood then. */
+export interface InputFile {
+  /** As the scene names it. */
+  readonly file: string;
+  readonly sha256: string;
+}
+
 /** A checked scene: every value present, in range, in the units its name says. */
 export interface Scene {
   readonly title: string;
@@ -128,4 +135,6 @@ export interface Scene {
   readonly freeFree?: FreeFreeGas;
   readonly observation: Observation;
   readonly numerics: Numerics;
+  /** Files of gridded numbers; none where absent. */
+  readonly inputs?: readonly InputFile[];
 }

@@ -49,6 +49,8 @@ export const baseUnits: ReadonlyMap<string, BaseUnit> = new Map([
   ['kHz', unit('frequency', 1, 3)],
   ['MHz', unit('frequency', 1, 6)],
   ['GHz', unit('frequency', 1, 9)],
+  ['G', unit('field', 1)],
+  ['T', unit('field', 1, 4)],
   ['uG', unit('field', 1, -6)],
   ['nG', unit('field', 1, -9)],
   ['mG', unit('field', 1, -3)],

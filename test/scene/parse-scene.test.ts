@@ -110,7 +110,7 @@ describe('what is refused, word for word', () => {
     [7, '  volume: {radius: 0 kpc, height: 6 kpc}', '7:20: galaxy.volume.radius: "0 kpc" is not allowed: more than 0 and at most 1000 kpc'],
     [10, '  - {model: unifrom, x: 1 uG, y: 0 uG, z: 0 uG}', '10:13: unknown model "unifrom" (did you mean "uniform"?); models are '],
     [10, '  - {model: sech2-disc, density: 1 cm^-3, radius: 1 kpc, height: 1 kpc}', '10:13: the model "sech2-disc" is a density, but a field is wanted; those are '],
-    [10, '  - {model: simulation-cube, file: b.fits}', '10:13: the model "simulation-cube" is not available in this version'],
+    [10, '  - {model: turbulence, rms: 4 uG}', '10:13: turbulence is no component: it is given as turbulence.resolved'],
     [10, '  - {x: 1 uG}', '10:5: field, item 1, model is missing: the name of a model is wanted'],
     [10, '  - uniform', '10:5: field, item 1: "uniform" is given where a component is wanted, such as {model: uniform, x: 1 uG, y: 0 uG, z: 0 uG}'],
     [11, '  - {model: quadrupole-halo, name: halo, strength: 2 uG, core: 2 kpc}', '11:5: field.halo.reference is missing: a length is wanted, such as "2 kpc" (0.001 to 1000 kpc)'],
