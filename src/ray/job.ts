@@ -23,8 +23,16 @@ export interface Watch {
 /** Whoever follows rays: this thread, or a pool of workers. The result does not depend on which. */
 export type RayBackend = (job: RayJob, watch?: Watch) => Promise<RayResult>;
 
-/** Rays followed in one call: the unit of work, the same wherever it runs. */
+/** Rays followed in one call at most: the unit of work, the same wherever it runs. */
 export const tileRays = 256;
+
+/**
+ * Samples after which a call ends before its tile does, some 50 ms of work: what is to be stopped
+ * stops soon. A count, not a time, and rays do not know each other: results are the same.
+ */
+export function sampleBudget(frequencies: number): number {
+  return 4e6 / (8 + frequencies);
+}
 
 /** [from, to) of every tile of a bundle, in order. */
 export function tilesOf(rays: number): readonly (readonly [number, number])[] {
@@ -106,11 +114,20 @@ export function localBackend(cache = new EngineCache()): RayBackend {
     const engine = cache.get(scene, spectrum);
     const scale = findMapScale(engine, scene, bundle);
     const rays = bundle.northKpc.length;
+    const budget = sampleBudget(spectrum.length);
     const tiles: RayResult[] = [];
-    for (const [from, to] of tilesOf(rays)) {
+    let [done, left] = [0, budget];
+    while (done < rays) {
       watch.signal?.throwIfAborted();
-      tiles.push(traceRays(engine, scene, bundle, scale, from, to));
-      watch.onProgress?.(to, rays);
+      const tile = traceRays(engine, scene, bundle, scale, done, Math.min(done + tileRays, rays), budget);
+      tiles.push(tile);
+      done += tile.faradayDepth.length;
+      watch.onProgress?.(done, rays);
+      left -= tile.samples;
+      if (left > 0) continue;
+      // Lets whoever holds the signal have a turn.
+      await new Promise((resolve) => setTimeout(resolve));
+      left = budget;
     }
     return joinTiles(tiles, spectrum.length);
   };

@@ -6,7 +6,8 @@ import { compileIntegrand, tableShape, type Integrand, type IntegrandInputs, typ
 import type { RayGeometry } from './path.ts';
 import { exactSineCosine } from './scene-graph.ts';
 import { brightnessPerKpc, intrinsicPolarization, wavelengthSquared } from './synchrotron.ts';
-import { makeRaySums, RayTracer, statedError, type Accuracy, type RaySums } from './transfer.ts';
+import { InputError } from '../units/input-error.ts';
+import { makeRaySums, mostSamples, RayTracer, statedError, type Accuracy, type RaySums } from './transfer.ts';
 import type { RayBundle, RayResult } from './types.ts';
 import { WasmTransfer } from './wasm-tracer.ts';
 
@@ -98,8 +99,12 @@ function seriesOf(count: number): number[][] {
   return Array.from({ length: count }, () => []);
 }
 
-/** Follows the rays `from` ≤ index < `to` of a bundle to the scene's tolerance. */
-export function traceRays(engine: RayEngine, scene: Scene, bundle: RayBundle, scale: MapScale, from = 0, to = bundle.northKpc.length): RayResult {
+/**
+ * Follows the rays `from` ≤ index < `to` of a bundle to the scene's tolerance. The result has fewer
+ * rays where they have taken `budget` samples before the last: it ends behind the ray that did.
+ * Throws InputError where a ray has no end.
+ */
+export function traceRays(engine: RayEngine, scene: Scene, bundle: RayBundle, scale: MapScale, from = 0, to = bundle.northKpc.length, budget = Infinity): RayResult {
   const rays = to - from;
   const result = makeResult(engine.spectrum.length, rays);
   const toJansky = spectralFactors(engine, scene);
@@ -108,7 +113,7 @@ export function traceRays(engine: RayEngine, scene: Scene, bundle: RayBundle, sc
   const [sine, cosine] = [Math.sin(turn), Math.cos(turn)];
   const accuracy = { tolerance: scene.numerics.tolerance, ...scale };
   const indices = Array.from({ length: rays }, (_, k) => from + k);
-  let samples = 0;
+  let [samples, done] = [0, 0];
   followAll(engine, scene, bundle, indices, accuracy, (index, sums) => {
     const ray = index - from;
     for (let k = 0; k < engine.spectrum.length; k++) {
@@ -125,9 +130,22 @@ export function traceRays(engine: RayEngine, scene: Scene, bundle: RayBundle, sc
     }
     result.faradayDepth[ray] = sums.faradayDepth;
     samples += sums.samples;
+    done++;
     refuseNaN(sums, bundle, index);
-  });
-  return { ...result, samples };
+  }, budget);
+  return done < rays ? firstRays({ ...result, samples }, done) : { ...result, samples };
+}
+
+/** A result without the rays behind the first `count`. */
+function firstRays(result: RayResult, count: number): RayResult {
+  const rays = result.faradayDepth.length;
+  const cut = (planes: Float64Array): Float64Array => {
+    const kept = new Float64Array((planes.length / rays) * count);
+    for (let plane = 0; plane * rays < planes.length; plane++) kept.set(planes.subarray(plane * rays, plane * rays + count), plane * count);
+    return kept;
+  };
+  const { I, Q, U, heightQ, heightU, emittedP, faradayDepth } = result;
+  return { ...result, I: cut(I), Q: cut(Q), U: cut(U), heightQ: cut(heightQ), heightU: cut(heightU), emittedP: cut(emittedP), faradayDepth: cut(faradayDepth) };
 }
 
 /** How a scene's galaxy is turned and bounded, and where its integrand wants panels to end. */
@@ -144,6 +162,7 @@ function followAll(
   indices: readonly number[],
   accuracy: Accuracy,
   take: (index: number, sums: RaySums) => void,
+  budget = Infinity,
 ): void {
   const inputs = engine.integrand.inputs(scene);
   const geometry = rayGeometry(scene, inputs);
@@ -156,12 +175,20 @@ function followAll(
   if (engine.backEnd === 'wasm') {
     const rays = new Float64Array(2 * indices.length);
     indices.forEach((index, k) => rays.set(place(index), 2 * k));
-    engine.transfer().follow(inputs, geometry, accuracy, rays, sums, (k) => take(indices[k], sums));
+    const takeNext = (k: number): void => {
+      refuseEndless(sums, bundle, indices[k], accuracy.tolerance);
+      take(indices[k], sums);
+    };
+    engine.transfer().follow(inputs, geometry, accuracy, rays, sums, takeNext, budget);
     return;
   }
   const tracer = new RayTracer(engine.integrand, engine.kernel(), inputs, geometry, wavelengthsOf(engine.spectrum), accuracy);
+  let left = budget;
   for (const index of indices) {
+    if (left <= 0) return;
     tracer.follow(...place(index), sums);
+    refuseEndless(sums, bundle, index, accuracy.tolerance);
+    left -= sums.samples;
     take(index, sums);
   }
 }
@@ -197,13 +224,25 @@ function keepLargest(largest: Float64Array, values: Float64Array): void {
   for (let k = 0; k < largest.length; k++) largest[k] = Math.max(largest[k], values[k]);
 }
 
+/** Stops the run where a ray was given up, naming it and what to change. */
+function refuseEndless(sums: RaySums, bundle: RayBundle, index: number, tolerance: number): void {
+  if (sums.samples <= mostSamples) return;
+  throw new InputError(
+    `the ray at ${placeOf(bundle, index)} is not resolved to a tolerance of ${tolerance} by ${mostSamples} samples: a field or density changes too fast along it; ` +
+      'look for a formula that oscillates within parsecs or jumps where no edge is declared (edges of its model), or take a larger numerics.tolerance',
+  );
+}
+
+function placeOf({ northKpc, eastKpc }: RayBundle, index: number): string {
+  return `north ${northKpc[index].toPrecision(6)} kpc, east ${eastKpc[index].toPrecision(6)} kpc`;
+}
+
 /** Stops the run where a ray has come back as no number, naming the ray. */
 function refuseNaN(sums: RaySums, bundle: RayBundle, index: number): void {
   const sum = sums.total[0] + sums.cosine[0] + sums.sine[0] + sums.faradayDepth;
   if (Number.isFinite(sum)) return;
-  const [north, east] = [bundle.northKpc[index], bundle.eastKpc[index]];
   const part = Number.isFinite(sums.faradayDepth) ? 'the emission' : 'the Faraday depth';
-  throw new NotANumberError(`${part} of the ray at north ${north.toPrecision(6)} kpc, east ${east.toPrecision(6)} kpc is not a number`);
+  throw new NotANumberError(`${part} of the ray at ${placeOf(bundle, index)} is not a number`);
 }
 
 /** A formula of the scene gave something that is no finite number along a ray. */

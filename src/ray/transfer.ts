@@ -46,6 +46,8 @@ export function makeRaySums(count: number): RaySums {
 const n = panelNodes;
 /** Bisections of one interval. */
 export const deepestSplit = 48;
+/** Samples that one ray may take, thousands of times what galaxies need: what wants more has no end worth waiting for. */
+export const mostSamples = 160_000;
 /**
  * Largest error that one panel may be estimated to have, over the tolerance. Panels' errors rarely
  * add up and the estimates are far too large where coefficients fall ever faster, as they do in
@@ -104,7 +106,8 @@ export const mostPerPanel = 12;
  * Follows single rays through an integrand from the observer's end: panels of Gauss–Legendre
  * nodes, bisected where the tail of the Legendre coefficients of the rotated emission, of the
  * Faraday depth or of the unpolarized emission says so (physics.md section 3). One instance
- * follows one ray at a time and allocates nothing while it does.
+ * follows one ray at a time and allocates nothing while it does. A ray that takes more than
+ * `mostSamples` is given up: its sums mean nothing.
  */
 export class RayTracer {
   private readonly x = new Float64Array(n);
@@ -169,7 +172,7 @@ export class RayTracer {
     stack[0] = from;
     stack[1] = to;
     stack[2] = 0;
-    while (top >= 0) {
+    while (top >= 0 && sums.samples <= mostSamples) {
       const [a, b, depth] = [stack[3 * top], stack[3 * top + 1], stack[3 * top + 2]];
       this.sample(a, b, major, minor);
       sums.samples += n;

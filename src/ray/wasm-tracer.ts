@@ -16,7 +16,7 @@ export class WasmTransfer {
   private readonly module: TransferModule;
   private readonly memory: WebAssembly.Memory;
   private readonly placedGrids: PlacedGrids = new Map();
-  private readonly run: (rays: number, results: number, count: number) => void;
+  private readonly run: (rays: number, results: number, count: number, budget: number) => number;
 
   constructor(
     integrand: Integrand,
@@ -31,21 +31,23 @@ export class WasmTransfer {
 
   /**
    * Follows rays given as pairs (major, minor), kpc; `take` is called for each, in order, with its
-   * sums filled in.
+   * sums filled in. Stops behind the ray with which they have taken `budget` samples.
    */
-  follow(inputs: IntegrandInputs, geometry: RayGeometry, accuracy: Accuracy, rays: Float64Array, sums: RaySums, take: (ray: number) => void): void {
+  follow(inputs: IntegrandInputs, geometry: RayGeometry, accuracy: Accuracy, rays: Float64Array, sums: RaySums, take: (ray: number) => void, budget = Infinity): void {
     const { resultLength } = this.module;
     const raysAt = this.place(inputs, geometry, accuracy);
     const resultsAt = raysAt + 16 * raysPerCall;
     ensureMemory(this.memory, resultsAt + 8 * resultLength * raysPerCall);
     const numbers = new Float64Array(this.memory.buffer);
     const count = rays.length / 2;
-    for (let from = 0; from < count; from += raysPerCall) {
+    let left = budget;
+    for (let from = 0; from < count && left > 0; from += raysPerCall) {
       const here = Math.min(raysPerCall, count - from);
       numbers.set(rays.subarray(2 * from, 2 * (from + here)), raysAt / 8);
-      this.run(raysAt, resultsAt, here);
-      for (let ray = 0; ray < here; ray++) {
+      const done = this.run(raysAt, resultsAt, here, left);
+      for (let ray = 0; ray < done; ray++) {
         this.read(numbers, resultsAt / 8 + ray * resultLength, sums, inputs.freeFree);
+        left -= sums.samples;
         take(from + ray);
       }
     }

@@ -8,7 +8,7 @@ import { emissionBytes, layOut, resultsPerFrequency, spectrumRecord, type Transf
 import { writeAccept, type Sums } from './wasm-accept.ts';
 import { writeIsResolved } from './wasm-resolve.ts';
 import { nodeBytes, pairOffsets, zero } from './wasm-nodes.ts';
-import { deepestSplit } from './transfer.ts';
+import { deepestSplit, mostSamples } from './transfer.ts';
 import { panelNodes } from './panel.ts';
 
 /** A module that follows rays, and where it wants its inputs. */
@@ -87,7 +87,7 @@ function writeInterval(module: ModuleWriter, { stack, samples }: TransferLayout,
     w.store(zero, stack + 8, w.parameter(1, 'f64'));
     w.store(zero, stack + 16, f.constant(0));
     const record = int.constant(24);
-    w.repeatWhile(() => int.greaterOrEqual(address, zero), () => {
+    w.repeatWhile(() => int.and(int.greaterOrEqual(address, zero), f.lessOrEqual(samples.get(), f.constant(mostSamples))), () => {
       const [a, b, depth] = [0, 8, 16].map((offset) => w.let(f.load(address, stack + offset)));
       w.run(sample, a, b);
       samples.set(w, f.add(samples.get(), f.constant(panelNodes)));
@@ -123,17 +123,23 @@ interface FollowParts {
   readonly resultLength: number;
 }
 
-/** Exported (rays, results, count): follows rays, pairs of f64 major and minor, one after the other. */
+/**
+ * Exported (rays, results, count, budget): follows rays, pairs of f64 major and minor, one after the
+ * other, until all are done or they have taken as many samples as the budget; returns how many are done.
+ */
 function writeFollow(module: ModuleWriter, layout: TransferLayout, { prepare, findBreaks, interval, sums, resultLength }: FollowParts): void {
   const { major, minor, minorSin, minorCos, sinI, cosI, nearPhi, nearSigma, nearMeasure, samples, breaks, breakCount, longestPanel } = layout;
   module.define(
-    ['i32', 'i32', 'i32'],
-    [],
+    ['i32', 'i32', 'i32', 'f64'],
+    ['i32'],
     (w) => {
       const rays = w.variable('i32', w.parameter(0, 'i32'));
       const results = w.variable('i32', w.parameter(1, 'i32'));
+      const [count, budget] = [w.parameter(2, 'i32'), w.parameter(3, 'f64')];
+      const done = w.variable('i32');
+      const spent = w.variable('f64');
       w.run(prepare);
-      w.count(zero, w.parameter(2, 'i32'), 1, () => {
+      w.repeatWhile(() => int.and(int.less(done, count), f.less(spent, budget)), () => {
         major.set(w, f.load(rays));
         minor.set(w, f.load(rays, 8));
         minorSin.set(w, f.multiply(minor.get(), sinI.get()));
@@ -164,7 +170,10 @@ function writeFollow(module: ModuleWriter, layout: TransferLayout, { prepare, fi
         w.store(results, end + 16, nearMeasure.get());
         rays.set(int.add(rays, int.constant(16)));
         results.set(int.add(results, int.constant(8 * resultLength)));
+        done.set(int.add(done, int.constant(1)));
+        spent.set(f.add(spent, samples.get()));
       });
+      w.leave(done);
     },
     'follow',
   );

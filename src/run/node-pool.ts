@@ -3,7 +3,8 @@ import { Worker } from 'node:worker_threads';
 import * as Comlink from 'comlink';
 import nodeEndpoint from 'comlink/dist/esm/node-adapter.mjs';
 import { makeRayPool, type PooledWorker, type RayPool } from './ray-pool.ts';
-import type { RayService } from './ray-service.ts';
+import type { RayResult } from '../ray/types.ts';
+import type { RayService, TileNote } from './ray-service.ts';
 
 /** Starts a pool of threads of this machine: as many as asked for, or one per core. */
 export function startNodePool(workers = availableParallelism()): RayPool {
@@ -26,7 +27,7 @@ function startWorker(script: URL): PooledWorker {
   return {
     begin: (job) => orDead(remote.begin(job)),
     scale: () => orDead(remote.scale()),
-    tile: (scale, from, to) => orDead(remote.tile(scale, from, to)),
+    tile: (scale, from, to) => orDead<RayResult | TileNote>(remote.tile(scale, from, to)),
     close: async () => {
       closing = true;
       await thread.terminate();

@@ -1,6 +1,7 @@
 import { tilesOf, type RayBackend, type RayJob, type Watch } from '../ray/job.ts';
 import type { MapScale } from '../ray/trace.ts';
 import type { RayBundle, RayResult } from '../ray/types.ts';
+import { InputError } from '../units/input-error.ts';
 import { rayArrays, writeTile, type RayArray, type ServiceJob, type SharedRays, type TileNote } from './ray-service.ts';
 
 /** One worker as the pool sees it; every call is answered or rejected, also when the worker dies. */
@@ -59,26 +60,32 @@ async function runJob(
   const arrays = makeArrays(job, canShare);
   const { scene, spectrum } = job;
   await Promise.all(workers.map((worker) => worker.begin({ scene, spectrum, bundle, shared: canShare ? arrays : undefined })));
-  const scale = await workers[0].scale();
+  const scale = await workers[0].scale().catch((problem: unknown) => Promise.reject(sameKind(problem)));
   const tiles = tilesOf(rays);
   const error = new Float64Array(spectrum.length);
   let [next, done, samples] = [0, 0, 0];
   let failed = false;
   const serve = async (worker: PooledWorker): Promise<void> => {
     while (next < tiles.length && !failed) {
-      const [from, to] = tiles[next++];
-      try {
-        signal?.throwIfAborted();
-        const tile = await worker.tile(scale, from, to);
-        if ('I' in tile) for (const name of rayArrays) if (arrays[name]) writeTile(arrays[name], tile[name], rays, from);
-        for (let k = 0; k < error.length; k++) error[k] = Math.max(error[k], tile.error[k]);
-        samples += tile.samples;
-      } catch (problem) {
-        failed = true;
-        throw problem;
+      const [start, to] = tiles[next++];
+      let from = start;
+      // A tile that takes long comes in several parts, between which the job may be stopped.
+      while (from < to && !failed) {
+        try {
+          signal?.throwIfAborted();
+          const tile = await worker.tile(scale, from, to);
+          if ('I' in tile) for (const name of rayArrays) if (arrays[name]) writeTile(arrays[name], tile[name], rays, from);
+          for (let k = 0; k < error.length; k++) error[k] = Math.max(error[k], tile.error[k]);
+          samples += tile.samples;
+          const followed = 'I' in tile ? tile.faradayDepth.length : tile.rays;
+          from += followed;
+          done += followed;
+        } catch (problem) {
+          failed = true;
+          throw sameKind(problem);
+        }
+        onProgress?.(done, rays);
       }
-      done += to - from;
-      onProgress?.(done, rays);
     }
   };
   const outcomes = await Promise.allSettled(workers.map(serve));
@@ -95,6 +102,12 @@ async function runJob(
     error,
     samples,
   };
+}
+
+/** Threads hand errors over without their class: wrong input stays wrong input. */
+function sameKind(problem: unknown): unknown {
+  if (problem instanceof InputError || !(problem instanceof Error) || problem.name !== 'InputError') return problem;
+  return new InputError(problem.message);
 }
 
 /** Empty arrays for the whole result of a job; without origins those that serve them only are left out. */

@@ -1,4 +1,4 @@
-import { EngineCache, type RayJob } from '../ray/job.ts';
+import { EngineCache, sampleBudget, type RayJob } from '../ray/job.ts';
 import { findMapScale, traceRays, type MapScale } from '../ray/trace.ts';
 import type { RayBundle, RayResult } from '../ray/types.ts';
 
@@ -18,7 +18,10 @@ export type RayArray = 'I' | 'Q' | 'U' | 'heightQ' | 'heightU' | 'emittedP' | 'f
 export const rayArrays: readonly RayArray[] = ['I', 'Q', 'U', 'heightQ', 'heightU', 'emittedP', 'faradayDepth'];
 
 /** What a tile says of itself where its arrays are in shared memory. */
-export type TileNote = Pick<RayResult, 'error' | 'samples'>;
+export interface TileNote extends Pick<RayResult, 'error' | 'samples'> {
+  /** Rays that are done: fewer than were asked for where they took too long. */
+  readonly rays: number;
+}
 
 /**
  * What a worker does for a pool: keeps the job it is on, finds its scale, follows tiles of it. The
@@ -43,17 +46,17 @@ export class RayService {
     return findMapScale(this.cache.get(scene, spectrum), scene, bundle);
   }
 
-  /** Follows the rays `from` ≤ index < `to`: into shared memory, or as a result of its own. */
+  /** Follows the rays `from` ≤ index < `to`, or as many of them as the budget allows: into shared memory, or as a result of its own. */
   tile(scale: MapScale, from: number, to: number): RayResult | TileNote {
     const { scene, spectrum, bundle } = this.current();
-    const result = traceRays(this.cache.get(scene, spectrum), scene, bundle, scale, from, to);
+    const result = traceRays(this.cache.get(scene, spectrum), scene, bundle, scale, from, to, sampleBudget(spectrum.length));
     if (!this.shared) return result;
     const rays = bundle.northKpc.length;
     for (const name of rayArrays) {
       const whole = this.shared[name];
       if (whole) writeTile(whole, result[name], rays, from);
     }
-    return { error: result.error, samples: result.samples };
+    return { error: result.error, samples: result.samples, rays: result.faradayDepth.length };
   }
 
   private current(): RayJob {
