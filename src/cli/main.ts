@@ -1,5 +1,6 @@
 import { Command, CommanderError } from 'commander';
 import { InputError } from '../units/input-error.ts';
+import { addApp } from './app.ts';
 import { addCheck } from './check.ts';
 import { addCompare } from './compare.ts';
 import { addFit } from './fit.ts';
@@ -21,7 +22,7 @@ function makeProgram(): Command {
     .version(version)
     .exitOverride()
     .configureOutput({ writeErr: () => undefined });
-  for (const add of [addMap, addCompare, addRank, addFit, addForecast, addMeasure, addCheck, addProbe, addOrient]) add(program);
+  for (const add of [addMap, addCompare, addRank, addFit, addForecast, addMeasure, addCheck, addProbe, addOrient, addApp]) add(program);
   for (const command of program.commands) command.exitOverride().configureOutput({ writeErr: () => undefined });
   return program;
 }

@@ -1,0 +1,53 @@
+import type { Place } from '../../units/input-error.ts';
+import type { ColumnPicture, ObservedPicture } from './column-picture.ts';
+
+/** Files of the page by name; a worker is given them once. */
+export interface DataFiles {
+  /** Changes whenever the study's data or a file does. */
+  readonly key: string;
+  /** Text of a study whose data count; its hypotheses do not. */
+  readonly studyText: string;
+  readonly files: Readonly<Record<string, Uint8Array>>;
+}
+
+/** A column to be drawn. */
+export interface DrawTask {
+  readonly kind: 'draw';
+  readonly name: string;
+  readonly sceneText: string;
+  readonly ringKpc?: readonly [number, number];
+  readonly exact: boolean;
+  /** Of the data to hold it against; undefined where there are none. */
+  readonly dataKey?: string;
+}
+
+/** The observation's own column, its rings laid as this scene's galaxy lies. */
+export interface ObservedTask {
+  readonly kind: 'observed';
+  readonly name: string;
+  readonly sceneText: string;
+  readonly ringKpc?: readonly [number, number];
+  readonly dataKey: string;
+}
+
+export type Task = DrawTask | ObservedTask;
+
+export type TaskResult<T extends Task> = T extends DrawTask ? ColumnPicture : ObservedPicture;
+
+/** What went wrong: the user's input with its place, or a fault of ours. */
+export interface Trouble {
+  readonly reason: string;
+  readonly place?: Place;
+  readonly isInput: boolean;
+}
+
+/** The end of a task in a worker. */
+export type Outcome<Value> = { readonly value: Value } | { readonly trouble: Trouble } | { readonly cancelled: true };
+
+/** What a worker of the page answers to. */
+export interface PageWorker {
+  setData(data: DataFiles): Promise<Outcome<null>>;
+  run(task: Task): Promise<Outcome<ColumnPicture | ObservedPicture>>;
+  /** Ends the running task; it answers `cancelled`. */
+  cancel(): Promise<void>;
+}

@@ -1,0 +1,62 @@
+import * as Comlink from 'comlink';
+import { config } from 'zod';
+import { loadData } from '../../files/load-data.ts';
+import { parseStudy } from '../../infer/study.ts';
+import { EngineCache } from '../../ray/job.ts';
+import { patientBackend } from '../../run/patient-backend.ts';
+import { parseScene } from '../../scene/parse-scene.ts';
+import { InputError } from '../../units/input-error.ts';
+import { memoryFiles } from './memory-files.ts';
+import type { DataFiles, Outcome, PageWorker, Task } from './messages.ts';
+import { makeWorkData, pictureData, workColumn, type WorkData } from './work-column.ts';
+
+// The entry of a worker of the page: one task at a time, which a message can cancel.
+
+// Generated checkers would need `unsafe-eval`.
+config({ jitless: true });
+
+const backend = patientBackend(new EngineCache());
+let running: AbortController | undefined;
+let seen: { readonly key: string; readonly data: WorkData } | undefined;
+
+const worker: PageWorker = {
+  setData: (data) => outcomeOf(async () => {
+    seen = { key: data.key, data: readData(data) };
+    return null;
+  }),
+  run: (task) => {
+    running?.abort();
+    const controller = new AbortController();
+    running = controller;
+    return outcomeOf(() => perform(task, controller.signal));
+  },
+  cancel: async () => running?.abort(),
+};
+
+async function perform(task: Task, signal: AbortSignal): Promise<Awaited<ReturnType<typeof workColumn>> | ReturnType<typeof pictureData>> {
+  const scene = parseScene(task.sceneText, task.name);
+  const data = task.dataKey !== undefined && seen?.key === task.dataKey ? seen.data : undefined;
+  if (task.kind === 'observed') {
+    if (!data) throw new Error('the worker has no data');
+    return pictureData(data, scene, task.ringKpc);
+  }
+  return workColumn({ scene, exact: task.exact, ringKpc: task.ringKpc, ...(data && { seen: data }) }, backend, signal, () => performance.now());
+}
+
+function readData({ studyText, files }: DataFiles): WorkData {
+  const study = parseStudy(studyText, 'study.yaml');
+  const { data, notes } = loadData(study.data, memoryFiles(files), study.others);
+  return makeWorkData(data, notes);
+}
+
+async function outcomeOf<Value>(work: () => Promise<Value>): Promise<Outcome<Value>> {
+  try {
+    return { value: await work() };
+  } catch (error) {
+    if (error instanceof DOMException && error.name === 'AbortError') return { cancelled: true };
+    if (error instanceof InputError) return { trouble: { reason: error.reason, isInput: true, ...(error.place && { place: error.place }) } };
+    return { trouble: { reason: error instanceof Error ? error.message : String(error), isInput: false } };
+  }
+}
+
+Comlink.expose(worker);
