@@ -116,6 +116,8 @@ export function makeStore(start: PageDocument, crew: Crew) {
     closeUp,
     note,
     data,
+    /** One place of a column, offsets in kpc; a newer question takes the place of an older one. */
+    lookAt: (name: string, sceneText: string, northKpc: number, eastKpc: number) => crew.ask('place', { kind: 'place', name, sceneText, northKpc, eastKpc }),
     canUndo: computed(() => history.value.past.length > 0),
     canRedo: computed(() => history.value.future.length > 0),
     /** Changes the document; changes of one `name` in a row are one step to undo. */

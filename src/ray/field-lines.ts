@@ -4,6 +4,7 @@ import { lowerGraph } from '../formula/lower.ts';
 import { coordinateSubstitution } from '../formula/vector-calculus.ts';
 import { randomStream } from '../math/random.ts';
 import type { Scene } from '../scene/types.ts';
+import { gridInputs } from './integrand.ts';
 import { parameterValues, SceneGraph } from './scene-graph.ts';
 
 /** A line of the magnetic field through a galaxy's volume, galaxy frame. */
@@ -73,11 +74,12 @@ function compileField(scene: Scene): Field {
   const kernel = compileJavaScript(program);
   const values = parameterValues(scene, []);
   const parameters = Float64Array.from(program.parameters, (name) => values.get(name) ?? NaN);
+  const { grids } = gridInputs(program, scene);
   const lanes = [0, 1, 2].map(() => new Float64Array(1));
   const out = [0, 1, 2].map(() => new Float64Array(1));
   return (x, y, z, into) => {
     [lanes[0][0], lanes[1][0], lanes[2][0]] = [x, y, z];
-    kernel.evaluate(1, parameters, lanes, out, []);
+    kernel.evaluate(1, parameters, lanes, out, [], grids);
     for (let k = 0; k < 3; k++) into[k] = out[k][0];
   };
 }

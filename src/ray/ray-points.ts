@@ -18,7 +18,7 @@ export function rayPoints({ galaxy }: Pick<Scene, 'galaxy'>, northKpc: number, e
   const [sinPA, cosPA] = exactSineCosine(galaxy.positionAngle);
   const [major, minor] = [northKpc * cosPA + eastKpc * sinPA, eastKpc * cosPA - northKpc * sinPA];
   const breaks = new Float64Array(mostBreaks);
-  const geometry = { sinI, cosI, radiusKpc: galaxy.volume.radiusKpc, heightKpc: galaxy.volume.heightKpc, edges: { zKpc: [], rKpc: [] } };
+  const geometry = { sinI, cosI, radiusKpc: galaxy.volume.radiusKpc, heightKpc: galaxy.volume.heightKpc, longestPanelKpc: Infinity, edges: { zKpc: [], rKpc: [] } };
   const count = findBreaks(geometry, major, minor, breaks);
   if (count < 2) return undefined;
   const [from, to] = [breaks[0], breaks[count - 1]];

@@ -50,9 +50,10 @@ export function followSightline(scene: Scene, northKpc: number, eastKpc: number,
   const probe = probeScene(scene, { x, y, z });
   const [si, ci] = [Math.sin(scene.galaxy.inclination), Math.cos(scene.galaxy.inclination)];
   const out = engine.integrand.program.outputs.map(() => new Float64Array(pieces));
-  engine.kernel().evaluate(pieces, inputs.parameters, [x, y, z], out, inputs.tables);
+  engine.kernel().evaluate(pieces, inputs.parameters, [x, y, z], out, inputs.tables, inputs.grids);
   const depth = towardsObserver(out[output.faraday], stepKpc);
   const variance = towardsObserver(out[output.dispersion], stepKpc);
+  const measure = towardsObserver(out[output.emissionMeasure], stepKpc);
   const turned = 2 * scene.galaxy.positionAngle;
   const { index } = scene.cosmicRays;
   const light = spectrum.map(({ frequencyHz }, k): SightlineLight => {
@@ -63,7 +64,10 @@ export function followSightline(scene: Scene, northKpc: number, eastKpc: number,
     const [q, u] = [out[output.cosine], out[output.sine]];
     const Q = density.map((value, i) => polarized * value * (q[i] * Math.cos(turned) - u[i] * Math.sin(turned)));
     const U = density.map((value, i) => polarized * value * (q[i] * Math.sin(turned) + u[i] * Math.cos(turned)));
-    return { frequencyHz, emission, Q, U, ...netShares(Q, U, depth, variance, wavelengthSquared(frequencyHz)) };
+    const square = wavelengthSquared(frequencyHz);
+    const opacity = inputs.freeFree?.opacity[k] ?? 0;
+    const dimming = variance.map((value, i) => Math.exp(-2 * square * square * value - opacity * measure[i]));
+    return { frequencyHz, emission, Q, U, ...netShares(Q, U, depth, dimming, square) };
   });
   return {
     sKpc,
@@ -86,13 +90,12 @@ function towardsObserver(rate: Float64Array, step: number): Float64Array {
   return sum;
 }
 
-function netShares(Q: Float64Array, U: Float64Array, depth: Float64Array, variance: Float64Array, square: number): Pick<SightlineLight, 'share' | 'P' | 'emittedP'> {
+function netShares(Q: Float64Array, U: Float64Array, depth: Float64Array, dimming: Float64Array, square: number): Pick<SightlineLight, 'share' | 'P' | 'emittedP'> {
   const turnedQ = new Float64Array(Q.length);
   const turnedU = new Float64Array(Q.length);
   let [sumQ, sumU, emittedP] = [0, 0, 0];
   for (let i = 0; i < Q.length; i++) {
-    const size = Math.exp(-2 * square * square * variance[i]);
-    const [c, s] = [size * Math.cos(2 * square * depth[i]), size * Math.sin(2 * square * depth[i])];
+    const [c, s] = [dimming[i] * Math.cos(2 * square * depth[i]), dimming[i] * Math.sin(2 * square * depth[i])];
     turnedQ[i] = c * Q[i] - s * U[i];
     turnedU[i] = s * Q[i] + c * U[i];
     sumQ += turnedQ[i];

@@ -1,5 +1,6 @@
 import type { Place } from '../../units/input-error.ts';
 import type { ColumnPicture, ObservedPicture } from './column-picture.ts';
+import type { PlacePicture } from './work-place.ts';
 
 /** Files of the page by name; a worker is given them once. */
 export interface DataFiles {
@@ -30,9 +31,21 @@ export interface ObservedTask {
   readonly dataKey: string;
 }
 
-export type Task = DrawTask | ObservedTask;
+/** One place of a column, looked at closely. */
+export interface PlaceTask {
+  readonly kind: 'place';
+  readonly name: string;
+  readonly sceneText: string;
+  readonly northKpc: number;
+  readonly eastKpc: number;
+  readonly dataKey?: undefined;
+}
 
-export type TaskResult<T extends Task> = T extends DrawTask ? ColumnPicture : ObservedPicture;
+export type Task = DrawTask | ObservedTask | PlaceTask;
+
+export type TaskResult<T extends Task> = T extends DrawTask ? ColumnPicture : T extends PlaceTask ? PlacePicture : ObservedPicture;
+
+export type AnyResult = ColumnPicture | ObservedPicture | PlacePicture;
 
 /** What went wrong: the user's input with its place, or a fault of ours. */
 export interface Trouble {
@@ -47,7 +60,7 @@ export type Outcome<Value> = { readonly value: Value } | { readonly trouble: Tro
 /** What a worker of the page answers to. */
 export interface PageWorker {
   setData(data: DataFiles): Promise<Outcome<null>>;
-  run(task: Task): Promise<Outcome<ColumnPicture | ObservedPicture>>;
+  run(task: Task): Promise<Outcome<AnyResult>>;
   /** Ends the running task; it answers `cancelled`. */
   cancel(): Promise<void>;
 }

@@ -7,7 +7,8 @@ import { patientBackend } from '../../run/patient-backend.ts';
 import { parseScene } from '../../scene/parse-scene.ts';
 import { InputError } from '../../units/input-error.ts';
 import { memoryFiles } from './memory-files.ts';
-import type { DataFiles, Outcome, PageWorker, Task } from './messages.ts';
+import type { AnyResult, DataFiles, Outcome, PageWorker, Task } from './messages.ts';
+import { workPlace } from './work-place.ts';
 import { makeWorkData, pictureData, workColumn, type WorkData } from './work-column.ts';
 
 // The entry of a worker of the page: one task at a time, which a message can cancel.
@@ -33,8 +34,9 @@ const worker: PageWorker = {
   cancel: async () => running?.abort(),
 };
 
-async function perform(task: Task, signal: AbortSignal): Promise<Awaited<ReturnType<typeof workColumn>> | ReturnType<typeof pictureData>> {
+async function perform(task: Task, signal: AbortSignal): Promise<AnyResult> {
   const scene = parseScene(task.sceneText, task.name);
+  if (task.kind === 'place') return workPlace(scene, task.northKpc, task.eastKpc, backend, signal);
   const data = task.dataKey !== undefined && seen?.key === task.dataKey ? seen.data : undefined;
   if (task.kind === 'observed') {
     if (!data) throw new Error('the worker has no data');

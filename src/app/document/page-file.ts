@@ -2,6 +2,7 @@ import { z } from 'zod';
 import { InputError } from '../../units/input-error.ts';
 import type { PageFiles } from '../store.ts';
 import type { PageDocument } from './page-document.ts';
+import { withoutKey } from './without-key.ts';
 
 const version = 1;
 
@@ -44,7 +45,8 @@ export function readPageFile(text: string, fileName: string): { readonly page: P
     const [issue] = parsed.error.issues;
     throw new InputError(`this is no page file: ${issue.path.join('.') || 'its top'}: ${issue.message}`, { file: fileName });
   }
-  const { 'gyrelight-page': _, files, ...page } = parsed.data;
+  const { files, ...kept } = parsed.data;
+  const page: PageDocument = withoutKey(kept, 'gyrelight-page');
   return { page, files: Object.fromEntries(Object.entries(files).map(([name, code]) => [name, fromBase64(code)])) };
 }
 

@@ -2,6 +2,7 @@ import { parse, stringify } from 'yaml';
 import { parseStudy } from '../../infer/study.ts';
 import { InputError } from '../../units/input-error.ts';
 import type { PageColumn, PageDocument, PageRow } from './page-document.ts';
+import { withoutKey } from './without-key.ts';
 
 /** What the page shows of a study at first: the shapes, P at the longest and shortest wavelength, RM, rings. */
 export const firstRows: readonly PageRow[] = [
@@ -25,7 +26,8 @@ const look: Pick<PageDocument, 'rows' | 'shape' | 'theme'> = {
  */
 export function pageOfStudy(text: string, fileName: string, sceneText: (file: string) => string): PageDocument {
   parseStudy(text, fileName);
-  const { hypotheses, title, 'gyrelight-study': _, ...study } = parse(text) as StudyFile;
+  const { hypotheses, title, ...rest } = parse(text) as StudyFile;
+  const study = withoutKey(rest, 'gyrelight-study');
   const columns = hypotheses.map(({ name, scene, ...hypothesis }, k): PageColumn => ({ id: `c${k + 1}`, name, scene: sceneText(scene), hypothesis }));
   return { ...look, title: title ?? fileName, columns, chosen: columns[0].id, study };
 }

@@ -2,6 +2,7 @@ import { useEffect, useRef, useState } from 'preact/hooks';
 import type { JSX } from 'preact';
 import { takeIn } from '../document/take-in.ts';
 import type { Store } from '../store.ts';
+import { CloseUp } from './close-up.tsx';
 import { Header } from './header.tsx';
 import { Knobs } from './knobs.tsx';
 import { LineUp } from './line-up.tsx';
@@ -48,6 +49,7 @@ export function Page({ store }: { readonly store: Store }): JSX.Element {
         <LineUp store={store} />
         <Knobs store={store} />
       </main>
+      {store.closeUp.value !== undefined && <CloseUp store={store} id={store.closeUp.value} />}
       {isOver && <div class="drop-hint">Drop FITS maps, tables, scenes, a study or a page</div>}
     </div>
   );
