@@ -66,6 +66,14 @@ export function findDepthPeak(
   };
 }
 
+/**
+ * The chance that noise alone stands above `threshold` times its rms somewhere among `samples`
+ * independent depths: 1 - (1 - e^{-threshold^2/2})^samples (Rice 1945; George, Stil & Keller 2012).
+ */
+export function falsePeakChance(threshold: number, samples: number): number {
+  return -Math.expm1(samples * Math.log1p(-Math.exp((-threshold * threshold) / 2)));
+}
+
 /** Moments of |F| over depth: sum |F| dphi, the mean depth, and the rms width about it. */
 export interface FaradayMoments {
   readonly total: number;

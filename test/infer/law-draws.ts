@@ -14,6 +14,7 @@ export const truths: Readonly<Record<string, readonly number[]>> = {
   'exponential-disc': [0.3, 0.5, 60, 0.7],
   'depth-gradient': [0.3, 0.5, 42, 30],
   'partial-cover': [0.3, 0.5, 42, 18, 0.7],
+  'resolved-cover': [0.3, 0.5, 42, 18, 0.7],
   'tribble-screen': [0.3, 0.5, 42, 40, 1],
   'two-slabs': [0.3, 0.5, 60, 0.2, 1.3, -45],
   'thin-screen+thin-screen': [0.3, 0.5, 60, 0.2, 1.3, -45],

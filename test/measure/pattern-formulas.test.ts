@@ -1,26 +1,28 @@
 import { expect, test } from 'vitest';
 import { localBackend } from '../../src/ray/job.ts';
+import { riceAligned, riceTotal } from '../../src/ray/rice.ts';
 import { intrinsicPolarization } from '../../src/ray/synchrotron.ts';
 import { parseScene } from '../../src/scene/parse-scene.ts';
 import type { Scene } from '../../src/scene/types.ts';
 import { planDepths } from '../../src/sky/depth-spectrum.ts';
 import { lambda2M2 } from '../../src/sky/wavelength.ts';
 import { depthSearch, fitRotationMeasure } from '../../src/sky/rotation-measure.ts';
+import { checkRow } from '../reference/check-rows.ts';
 import { relativeError } from '../sky/compare.ts';
 import { ringLight } from './ring-light.ts';
 
 const radian = Math.PI / 180;
 
 /**
- * Formulas of azimuthal patterns recomputed with numpy (Krause 1990; Sofue et al. 1986; Burn 1966 for
- * the half; from memory): i = 30 deg, p = -20 deg, beta = 40 deg. B_parallel/B, RM of a source behind a
- * layer of 1 kpc with n_e = 0.03, B = 5 and of the layer itself, and B_perp/B.
+ * Rows of the check values (Krause 1990; Sofue et al. 1986; Burn 1966 for the half; from memory):
+ * i = 30 deg, p = -20 deg, beta = 40 deg. B_parallel/B, RM of a source behind a layer of 1 kpc with
+ * n_e = 0.03, B = 5 and of the layer itself, and B_perp/B.
  */
 const published = {
-  parallel: { azimuthDeg: [0, 70, 160, 250], value: [-0.46984631039295405, 0, 0.5, 0] },
-  rotation: { behind: 70.31270335290867, mixed: 35.156351676454335 },
-  bisymmetric: { azimuthDeg: [0, 10, 100], value: [0.7198463103929543, 0.75, -0.25] },
-  across: { azimuthDeg: [-20, 70, 0], value: [0.8660254037844387, 1, 0.8827482339886769] },
+  parallel: { azimuthDeg: [0, 70, 160, 250], value: checkRow('10.ass') },
+  rotation: { behind: checkRow('10.amp')[0], mixed: checkRow('10.amp')[1] },
+  bisymmetric: { azimuthDeg: [0, 10, 100], value: checkRow('10.bss') },
+  across: { azimuthDeg: [-20, 70, 0], value: checkRow('10.PI').slice(0, 3) },
 } as const;
 
 /** A layer 1 kpc thick of a planar field of constant strength 5 uG, pitch -20 deg, times a factor of azimuth. */
@@ -81,8 +83,9 @@ test('polarized intensity is brightest near the minor axis, as B_perp^((p+1)/2)'
 });
 
 test('isotropic turbulence depolarizes at all wavelengths: 1/(1 + 2 q^2/3) for emission like B_perp^2', async () => {
-  // Burn 1966; Sokoloff et al. 1998: q = b/B_perp, b the three-dimensional rms; published values for q = 1, 2, 0.5.
-  for (const [q, expected] of [[1, 0.6], [2, 0.27272727272727276], [0.5, 0.8571428571428571]]) {
+  // Burn 1966; Sokoloff et al. 1998: q = b/B_perp, b the three-dimensional rms.
+  for (const [q, id] of [[1, '5.wi.b1'], [2, '5.wi.b2'], [0.5, '5.wi.b0.5']] as const) {
+    const [expected] = checkRow(id);
     // At azimuth 70 deg the whole field of 5 uG lies across the line of sight; rms of one component b/sqrt 3.
     const scene = layer(0, '1', 3, (5 * q) / Math.sqrt(3));
     const azimuth = 70 * radian;
@@ -93,6 +96,18 @@ test('isotropic turbulence depolarizes at all wavelengths: 1/(1 + 2 q^2/3) for e
   }
 });
 
+test('where the electrons go with the energy of the field, turbulence depolarizes less: emission like B^2 B_perp^2', () => {
+  // Equipartition (Sokoloff et al. 1998). B^2 = B_perp^2 + B_par^2 with a mean B_par^2 of b^2/3, independent
+  // of B_perp: the means needed are those of B_perp^4 and B_perp^2 that transfer itself uses.
+  for (const [q, id] of [[1, '5.wi.b1'], [2, '5.wi.b2'], [0.5, '5.wi.b0.5']] as const) {
+    const variance = (q * q) / 3;
+    const m = 1 + 2 * variance;
+    const [all, aligned] = [riceTotal, riceAligned].map((mean, part) => (power: number) => m ** (power / 2) * mean(power, 1 / m) * (part === 0 ? 1 : 1 / m));
+    const share = (aligned(4) + variance * aligned(2)) / (all(4) + variance * all(2));
+    expect(relativeError(share, checkRow(id)[1])).toBeLessThan(1e-9);
+  }
+});
+
 test('uniform coverage of lambda^2: width 3.791/span, largest depth 1.895/channel, scale pi/lambda_min^2', () => {
   // Brentjens & de Bruyn 2005 print 2 sqrt 3 and sqrt 3 (8.6 % small); the numerical values, Schnitzeler et al. 2009.
   const count = 4000;
@@ -100,7 +115,7 @@ test('uniform coverage of lambda^2: width 3.791/span, largest depth 1.895/channe
   const lambda2 = Array.from({ length: count }, (_, k) => low + ((high - low) * (k + 0.5)) / count);
   const plan = planDepths(lambda2.map((square) => ({ frequencyHz: 299792458 / Math.sqrt(square), widthHz: 0 })), new Float64Array(count));
   // A sum of 4000 against the integral: 1e-7.
-  expect(relativeError(plan.resolution * (high - low), 3.7909885340679623)).toBeLessThan(1e-6);
-  expect(relativeError((plan.largestDepth * (high - low)) / count, 1.8954942670339812)).toBeLessThan(1e-6);
-  expect(relativeError(plan.largestScale * lambda2[0], Math.PI)).toBeLessThan(1e-12);
+  expect(relativeError(plan.resolution * (high - low), checkRow('6.fwhm')[0])).toBeLessThan(1e-6);
+  expect(relativeError((plan.largestDepth * (high - low)) / count, checkRow('6.chan')[0])).toBeLessThan(1e-6);
+  expect(relativeError(plan.largestScale * lambda2[0], checkRow('6.maxscale')[0])).toBeLessThan(1e-12);
 });

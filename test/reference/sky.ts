@@ -13,33 +13,23 @@ export const wcsPoints = {
 export const beamFactor = 1.13309004;
 
 /**
- * True P/sigma, the mean of the observed P/sigma (Rice 1945), and the mean of
- * sqrt(max(P^2 - sigma^2, 0))/sigma (Wardle & Kronberg 1974), both by scipy quadrature of Rice's law.
+ * True P/sigma, its row of the check values (mean observed P/sigma, Rice 1945), and the mean of
+ * sqrt(max(P^2 - sigma^2, 0))/sigma (Wardle & Kronberg 1974) by scipy quadrature of Rice's law.
  */
 export const riceRows = [
-  [0, 1.2533141373155, 0.7601734505331],
-  [0.5, 1.3304473406107, 0.8537309535012],
-  [1, 1.5485724605511, 1.1177992271266],
-  [2, 2.2723834280687, 1.9764353107193],
-  [3, 3.1725772879007, 2.9839452569811],
-  [4, 4.1271935425367, 3.9943153739161],
-  [5, 5.1010696394921, 4.9975499494624],
-  [8, 8.0627501660829, 7.9994778380742],
+  [0, '6.rice.0', 0.7601734505331],
+  [0.5, '6.rice.0.5', 0.8537309535012],
+  [1, '6.rice.1', 1.1177992271266],
+  [2, '6.rice.2', 1.9764353107193],
+  [3, '6.rice.3', 2.9839452569811],
+  [4, '6.rice.4', 3.9943153739161],
+  [5, '6.rice.5', 4.9975499494624],
+  [8, '6.rice.8', 7.9994778380742],
 ] as const;
 
-/** Observed P/sigma and its debiased value (Wardle & Kronberg 1974). */
-export const debiasedRows = [
-  [3, 2.8284271247461903],
-  [5, 4.898979485566356],
-  [8, 7.937253933193772],
-] as const;
-
-/** 100 channels uniform in lambda^2 from 0.02 to 0.09 m^2, P = 1, sigma = 0.3 (Brentjens & de Bruyn 2005, eq. 52, 53). */
-export const rmErrors = { rm: 0.7349211610452592, chi0: 0.04311415158251566 };
-
-/** RM, channel, |P| after a top-hat channel in frequency (Burn 1966; numerical mean). */
+/** RM and channel of rows of the check values: |P| after a top-hat in lambda^2, and in frequency (Burn 1966). */
 export const bandwidthRows = [
-  { depth: 500, frequencyHz: 1.4e9, widthHz: 8e6, P: 0.9885958515317217 },
-  { depth: 2000, frequencyHz: 1.4e9, widthHz: 8e6, P: 0.8267042485027429 },
-  { depth: 100, frequencyHz: 0.15e9, widthHz: 0.1e6, P: 0.9533896339105086 },
+  { id: '5.bw.RM500.nu1.4', depth: 500, frequencyHz: 1.4e9, widthHz: 8e6 },
+  { id: '5.bw.RM2000.nu1.4', depth: 2000, frequencyHz: 1.4e9, widthHz: 8e6 },
+  { id: '5.bw.RM100.nu0.15', depth: 100, frequencyHz: 0.15e9, widthHz: 0.1e6 },
 ] as const;

@@ -2,6 +2,8 @@ import { expect, test } from 'vitest';
 import { averageNodes, channelNodes, phaseAcross } from '../../src/sky/bandwidth.ts';
 import { turnByForeground } from '../../src/sky/foreground.ts';
 import { channelLambda2M2, lambda2M2 } from '../../src/sky/wavelength.ts';
+import { spreadFunction } from '../../src/sky/depth-spectrum.ts';
+import { checkRow } from '../reference/check-rows.ts';
 import { bandwidthRows } from '../reference/sky.ts';
 import { relativeError } from './compare.ts';
 
@@ -17,8 +19,21 @@ function averagedP(channel: { frequencyHz: number; widthHz: number }, depth: num
 test('the mean over a channel in frequency is that of Burn 1966, to each tolerance', () => {
   for (const row of bandwidthRows) {
     for (const tolerance of [1e-3, 1e-6, 1e-10]) {
-      expect(Math.abs(averagedP(row, row.depth, tolerance) - row.P)).toBeLessThan(tolerance);
+      expect(Math.abs(averagedP(row, row.depth, tolerance) - checkRow(row.id)[1])).toBeLessThan(tolerance);
     }
+  }
+});
+
+test('evenly in lambda^2 a channel loses sinc(RM x its width), hardly else than in frequency', () => {
+  for (const { id, depth, frequencyHz, widthHz } of bandwidthRows) {
+    const [long, short] = [lambda2M2(frequencyHz - widthHz / 2), lambda2M2(frequencyHz + widthHz / 2)];
+    const count = 4000;
+    const lambda2 = Float64Array.from({ length: count }, (_, k) => short + ((long - short) * (k + 0.5)) / count);
+    const weights = lambda2.map(() => 1 / count);
+    const P = Math.hypot(...spreadFunction({ lambda2M2: lambda2, weights, referenceLambda2: (long + short) / 2 }, depth));
+    // A sum of 4000 against the integral: (phase/4000)^2/24 = 1e-8; the rows say 1e-6.
+    expect(relativeError(P, checkRow(id)[0])).toBeLessThan(1e-7);
+    expect(relativeError(averagedP({ frequencyHz, widthHz }, depth, 1e-9), P)).toBeLessThan(3e-6);
   }
 });
 

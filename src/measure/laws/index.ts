@@ -5,6 +5,7 @@ import { exponentialDisc } from './exponential-disc.ts';
 import { externalDispersion } from './external-dispersion.ts';
 import { internalDispersion } from './internal-dispersion.ts';
 import { partialCover } from './partial-cover.ts';
+import { resolvedCover } from './resolved-cover.ts';
 import { sumOfTwo } from './sum-of-two.ts';
 import { thinScreen } from './thin-screen.ts';
 import { tribbleScreen } from './tribble-screen.ts';
@@ -23,6 +24,7 @@ export const laws: readonly Law[] = [
   exponentialDisc,
   depthGradient,
   partialCover,
+  resolvedCover,
   tribbleScreen,
   twoSlabs,
 ];
