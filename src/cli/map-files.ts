@@ -6,9 +6,11 @@ import { sha256OfText } from '../files/sha256.ts';
 import type { Scene } from '../scene/types.ts';
 import { centreMaps, channelMaps, type CentreMaps } from '../sky/band-centre.ts';
 import { angleError, fractionError, inDegrees, polarizedFraction } from '../sky/derived.ts';
+import { gridOffsetsKpc } from '../sky/grid.ts';
 import type { ObservedSky } from '../sky/observe.ts';
 import { rotationMeasureMaps, type RotationMeasureMaps } from '../sky/rotation-measure-map.ts';
 import type { StokesCube } from '../sky/types.ts';
+import { addOriginFiles, originMaps, type OriginWatch } from './origin-files.ts';
 import type { OutputFolder } from './output-folder.ts';
 
 /** Adds every map of an observed scene to a folder, and an overview of them. */
@@ -37,6 +39,18 @@ export function addMapFiles(folder: OutputFolder, scene: Scene, sky: ObservedSky
     folder.add('fieldAngle.fits', mapFits({ quantity: 'fieldAngle', values: inDegrees(rm.fieldAngle), ...shared, unit: 'deg', comments: ['Faraday-corrected orientation of the magnetic field, north through east.'] }, provenance, bits));
   }
   folder.add('overview.svg', overviewSvg(skyOverview(scene, sky, rm)));
+}
+
+/** Adds maps of the layers that every band sees at the frequencies of its `originHeight`. */
+export async function addOriginMaps(folder: OutputFolder, scene: Scene, sky: ObservedSky, provenance: Provenance, watch: Omit<OriginWatch, 'pause'>): Promise<void> {
+  const spectrum = sky.origins.flatMap(({ frequenciesHz }) => frequenciesHz.map((frequencyHz) => ({ frequencyHz, centreHz: frequencyHz })));
+  const pause = (): Promise<void> => new Promise((resolve) => setImmediate(resolve));
+  const maps = await originMaps(scene, gridOffsetsKpc(sky.grid), spectrum, { ...watch, pause });
+  let first = 0;
+  for (const { band, frequenciesHz } of sky.origins) {
+    addOriginFiles(folder, band, sky.grid, frequenciesHz, first, maps, provenance, scene.numerics.bits);
+    first += frequenciesHz.length;
+  }
 }
 
 /** RM over all bands, or undefined where there is only one wavelength. */

@@ -2,21 +2,24 @@ import type { Command } from 'commander';
 import { observe } from '../sky/observe.ts';
 import { addCommonFlags, overridesOf, sayWords, withRunContext, type CommonFlags } from './run-context.ts';
 import { loadScene } from './load-scene.ts';
-import { addMapFiles, mapSummary } from './map-files.ts';
+import { addMapFiles, addOriginMaps, mapSummary } from './map-files.ts';
 import { OutputFolder } from './output-folder.ts';
 import { durationText } from './progress.ts';
 
 /** `gyrelight map SCENE`: maps and cubes of a scene. */
 export function addMap(program: Command): void {
-  addCommonFlags(program.command('map <scene>').description('maps and cubes of a scene: I, Q, U, P, RM … as FITS, with an overview')).action(
-    async (path: string, flags: CommonFlags) => {
+  addCommonFlags(program.command('map <scene>').description('maps and cubes of a scene: I, Q, U, P, RM … as FITS, with an overview'))
+    .option('--origin', 'maps of the layer that each band sees: heights at 16, 50 and 84 % of the light, near side, cancelled share')
+    .action(async (path: string, flags: CommonFlags & { readonly origin?: boolean }) => {
       const { scene, provenance } = loadScene(path, overridesOf(flags));
       const started = Date.now();
-      const sky = await withRunContext(flags, ({ pool, progress, signal }) =>
-        observe(scene, pool.backend, { signal, onProgress: (done, total) => progress.show('following rays', done, total, 'rays') }),
-      );
       const folder = new OutputFolder(flags.out);
-      addMapFiles(folder, scene, sky, provenance);
+      const sky = await withRunContext(flags, async ({ pool, progress, signal }) => {
+        const seen = await observe(scene, pool.backend, { signal, onProgress: (done, total) => progress.show('following rays', done, total, 'rays') });
+        addMapFiles(folder, scene, seen, provenance);
+        if (flags.origin) await addOriginMaps(folder, scene, seen, provenance, { signal, onProgress: (done, total) => progress.show('layers seen', done, total, 'rays') });
+        return seen;
+      });
       const seconds = (Date.now() - started) / 1000;
       const summary = mapSummary(scene, sky, provenance, seconds, folder.names);
       const text = `${JSON.stringify(summary, null, 2)}\n`;
@@ -29,6 +32,5 @@ export function addMap(program: Command): void {
           `${sky.samplesPerRay.toFixed(0)} samples a ray, estimated error ${sky.errorReached.toExponential(1)} (asked: ${scene.numerics.tolerance}), ${durationText(seconds)}`,
         `Maps: ${flags.out}/`,
       );
-    },
-  );
+    });
 }

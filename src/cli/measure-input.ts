@@ -2,23 +2,24 @@ import { readFits } from '../files/fits-read.ts';
 import { openCubeRows } from '../files/fits-rows.ts';
 import { readBytes } from '../files/node-io.ts';
 import { skyImageFromFits } from '../files/sky-fits-read.ts';
-import type { SkyImage, SkyImageOverrides } from '../files/sky-image.ts';
+import type { SkyImage } from '../files/sky-image.ts';
 import { sameGrid } from '../infer/map-facts.ts';
 import type { MapFrame } from '../measure/disc.ts';
 import type { Beam } from '../scene/types.ts';
-import { commonBeam, convolveTo } from '../sky/common-beam.ts';
-import type { RowSource } from '../sky/depth-maps.ts';
+import { commonBeam } from '../sky/common-beam.ts';
+import { cubeInMemory, type CubeSource } from '../sky/cube-source.ts';
 import type { BrightnessUnit, Channel } from '../sky/types.ts';
 import { InputError } from '../units/input-error.ts';
-import { convertQuantity, parseQuantity } from '../units/quantity.ts';
+import { fileFacts, parseInput, type MapInput, type MapStokes, type StatedFacts } from './measure-facts.ts';
+import { smoothed, type Smoothing } from './measure-smooth.ts';
 
-/** One band of maps on a common grid with a common beam, IAU signs; cubes [channel * ny * nx + row * nx + column]. */
+/** One band of maps on a common grid with a common beam, IAU signs. */
 export interface MapBand {
   readonly name: string;
   readonly channels: readonly Channel[];
-  readonly I?: Float64Array;
-  readonly Q: Float64Array;
-  readonly U: Float64Array;
+  readonly I?: CubeSource;
+  readonly Q: CubeSource;
+  readonly U: CubeSource;
   /** rms of Q and of U per channel; 0 where none is stated. */
   readonly noise: Float64Array;
 }
@@ -32,203 +33,117 @@ export interface MapData {
   readonly notes: readonly string[];
 }
 
-/** What the user states of maps whose headers lack it. */
-export interface StatedFacts extends Pick<SkyImageOverrides, 'frequencyHz' | 'widthHz' | 'beam' | 'convention'> {
-  /** Such as "20 uJy/beam". */
-  readonly noise?: string;
-  /** Beam that all maps are brought to; the smallest round one that all allow where left out. */
-  readonly smooth?: Beam;
+/** Maps read, or open for reading; `close` when done with them. */
+export interface OpenMaps {
+  readonly data: MapData;
+  /** What has to be smoothed before the cubes can be used. */
+  readonly smoothings: readonly Smoothing[];
+  /** Whether cubes are read by rows. */
+  readonly isLarge: boolean;
+  close(): void;
 }
 
-type Stokes = 'I' | 'Q' | 'U';
-
-interface Plane {
-  readonly stokes: Stokes;
+/** One Stokes parameter of a file. */
+export interface Plane {
+  readonly stokes: MapStokes;
   readonly file: string;
-  readonly image: SkyImage;
+  readonly image: Omit<SkyImage, 'values'>;
   readonly channels: readonly Channel[];
-  readonly values: Float64Array;
+  readonly cube: CubeSource;
   readonly noise: Float64Array;
   readonly beam?: Beam;
 }
 
-/**
- * Reads maps: each argument is a FITS file, `Q=file` where its header does not say which Stokes parameter
- * it holds, `file@1.4GHz` where it does not say its frequency. Throws InputError for what is missing or
- * does not fit together.
- */
-export function readMaps(inputs: readonly string[], facts: StatedFacts): MapData {
-  const notes: string[] = [];
-  const units = new Set<BrightnessUnit>();
-  const planes = inputs.flatMap((input) => readInput(input, facts, units, notes));
-  if (units.size > 1) throw new InputError(`some maps are in Jy/beam and others in Jy/sr; bring all to one unit`);
-  const { image, file } = planes[0];
-  for (const other of planes) {
-    if (!sameGrid({ ...other.image, file: other.file }, image)) {
-      throw new InputError(`${other.file} is on another grid than ${file}; bring all maps to one grid`);
-    }
-  }
-  const [unit] = units;
-  const beams = planes.flatMap((plane) => (plane.beam ? [plane.beam] : []));
-  if (beams.length > 0 && beams.length < planes.length) {
-    const bare = planes.find((plane) => !plane.beam);
-    throw new InputError(`${bare?.file} states no beam and other maps do; state it with --beam`);
-  }
-  const target = beams.length > 0 ? (facts.smooth ?? commonBeam(beams)) : undefined;
-  const smoothed = planes.map((plane) => toBeam(plane, target, unit, notes));
-  const bands = gatherBands(smoothed);
-  const { wcs, nx, ny } = image;
-  return { frame: { nx, ny, wcs, ...(target && { beam: target }) }, unit, bands, notes: [...new Set(notes)] };
-}
-
-/** What an argument says: the file, and what is written before and behind its name. */
-interface Input {
-  readonly file: string;
-  readonly stokes?: Stokes;
-  readonly overrides: SkyImageOverrides;
-}
-
-function parseInput(input: string, facts: StatedFacts): Input {
-  const [, given, file, at] = /^(?:([A-Za-z]{1,2})=)?(.*?)(?:@(.*))?$/.exec(input) ?? [];
-  if (given !== undefined && !['I', 'Q', 'U'].includes(given)) {
-    throw new InputError(`"${given}=" is not known: I=, Q= or U= may stand before a file`, { flag: input });
-  }
-  const frequencyHz = at === undefined ? facts.frequencyHz : placedQuantity(at, 'Hz', input);
-  const overrides = { ...(frequencyHz !== undefined && { frequencyHz }), ...(facts.widthHz !== undefined && { widthHz: facts.widthHz }), ...(facts.beam && { beam: facts.beam }), ...(facts.convention && { convention: facts.convention }) };
-  return { file, ...(given !== undefined && { stokes: given as Stokes }), overrides };
-}
-
-/** What a header and the user say together of the planes of a file. */
-interface PlaneFacts {
-  readonly stokes: SkyImage['stokes'];
-  readonly channels: readonly Channel[];
-  readonly brightness: BrightnessUnit;
-  /** To `brightness`, for I and Q; U may change its sign too. */
-  readonly scale: number;
-  readonly signOfU: 1 | -1;
-  readonly noise: Float64Array;
-}
-
-function planeFacts(image: Omit<SkyImage, 'values'>, input: Input, facts: StatedFacts, notes: string[]): PlaneFacts {
-  const { file } = input;
-  const place = { file };
-  notes.push(...image.notes.map((note) => `${file}: ${note}`));
-  const stokes = input.stokes === undefined ? image.stokes : [input.stokes];
-  if (stokes.length === 0) {
-    throw new InputError('the header does not say which Stokes parameter this is; write Q= or U= or I= before the file name', place);
-  }
-  const { channels } = image;
-  if (!channels) throw new InputError('the header does not say its frequency; give --frequency "1.4 GHz" or write @1.4GHz behind the file name', place);
-  const brightness = (['Jy/beam', 'Jy/sr'] as const).find((unit) => canConvert(image.unit, unit));
-  if (!brightness) throw new InputError(`BUNIT is "${image.unit}"; Jy/beam and Jy/sr with their prefixes are read`, place);
-  const scale = convertQuantity(1, image.unit, brightness);
-  if (image.convention === undefined) notes.push(`${file}: no convention of polarization angles is stated; taken as IAU (--convention)`);
-  const noise = Float64Array.from(channels, (_, k) => (facts.noise !== undefined ? placedQuantity(facts.noise, brightness, `--noise ${facts.noise}`) : scale * (image.noise?.[k] ?? 0)));
-  return { stokes, channels, brightness, scale, signOfU: image.convention === 'U-reversed' ? -1 : 1, noise };
-}
-
-function readInput(text: string, facts: StatedFacts, units: Set<BrightnessUnit>, notes: string[]): Plane[] {
-  const input = parseInput(text, facts);
-  const { file } = input;
-  const image = skyImageFromFits(readFits(readBytes(file), file), file, input.overrides);
-  const { stokes, channels, brightness, scale, signOfU, noise } = planeFacts(image, input, facts, notes);
-  units.add(brightness);
-  const size = channels.length * image.nx * image.ny;
-  if (image.values.length !== size * stokes.length) {
-    throw new InputError(`${image.values.length / image.nx / image.ny} planes for ${channels.length} channels of Stokes ${stokes.join(', ')}`, { file });
-  }
-  return stokes.flatMap((name, k): Plane[] => {
-    if (name === 'V') return [];
-    const factor = name === 'U' ? signOfU * scale : scale;
-    const values = image.values.subarray(k * size, (k + 1) * size).map((value) => factor * value);
-    return [{ stokes: name, file, image, channels, values, noise, ...(image.beam && { beam: image.beam }) }];
-  });
-}
-
-/** Q and U cubes too large for memory, read by rows. */
-export interface LargeMaps {
-  /** Without bands: no plane is in memory yet. */
-  readonly data: MapData;
-  readonly channels: readonly Channel[];
-  readonly noise: Float64Array;
-  readonly source: RowSource;
-  close(): void;
-}
-
-/** Bytes that a number of a map takes while maps are read and measured in memory: as read, sorted, scaled, joined. */
+/** Bytes that a number of a map takes while maps are read and measured in memory: as read, scaled, smoothed. */
 const bytesInMemory = 32;
 
 /**
- * Opens cubes of Q and U for reading by rows where holding them would take more than `memoryBytes`;
- * undefined where it would not, or where other maps are among them. Throws InputError where they do not
- * fit together, or are packed so that rows cannot be read.
+ * Reads maps; where holding them would take more than `memoryBytes` their rows are read as they are
+ * needed. Throws InputError for what is missing, does not fit together, or is packed so that rows cannot
+ * be read.
  */
-export function openLargeMaps(inputs: readonly string[], facts: StatedFacts, memoryBytes: number): LargeMaps | undefined {
+export function openMaps(inputs: readonly string[], facts: StatedFacts, memoryBytes: number): OpenMaps {
   const parsed = inputs.map((text) => parseInput(text, facts));
-  const opened = parsed.map((input) => ({ input, cube: openCubeRows(input.file, input.file, input.overrides) }));
-  const close = (): void => opened.forEach(({ cube }) => cube?.close());
+  const opened = parsed.map(({ file, overrides }) => openCubeRows(file, file, overrides));
+  const close = (): void => opened.forEach((rows) => rows?.close());
   try {
-    const numbers = opened.reduce((sum, { cube }) => sum + (cube?.count ?? 0), 0);
-    if (numbers * bytesInMemory <= memoryBytes) {
-      close();
-      return undefined;
-    }
+    const numbers = opened.reduce((sum, rows) => sum + (rows?.count ?? 0), 0);
+    const isLarge = numbers * bytesInMemory > memoryBytes;
     const notes: string[] = [];
-    const planes = opened.map(({ input, cube }) => {
-      if (!cube) throw new InputError('the maps are too large for memory, and this file cannot be read by rows: unpack it, with its axes in the order RA, Dec, frequency', { file: input.file });
-      return { input, cube, ...planeFacts(cube.facts, input, facts, notes) };
+    const units = new Set<BrightnessUnit>();
+    const planes = parsed.flatMap((input, k) => {
+      const rows = opened[k];
+      if (!isLarge) return planesInMemory(input, facts, units, notes);
+      if (!rows) throw new InputError('the maps are too large for memory (--memory), and this file cannot be read by rows: unpack it, with its axes in the order RA, Dec, frequency', { file: input.file });
+      const read = { ...rows.facts, count: rows.count, rows: (stokes: number, factor: number): CubeSource => scaledRows(rows, stokes, factor) };
+      return planesOf(input, read, facts, units, notes);
     });
-    const find = (stokes: Stokes): (typeof planes)[number] => {
-      const found = planes.filter((plane) => plane.stokes.length === 1 && plane.stokes[0] === stokes);
-      if (found.length === 1) return found[0];
-      throw new InputError(`maps too large for memory are measured as one cube of Q and one of U; ${found.length} of ${stokes} are given (--memory allows more)`);
+    if (units.size > 1) throw new InputError(`some maps are in Jy/beam and others in Jy/sr; bring all to one unit`);
+    checkGrids(planes);
+    const [unit] = units;
+    const beam = targetBeam(planes, facts);
+    const smoothings: Smoothing[] = [];
+    const bands = gatherBands(planes.map((plane) => smoothed(plane, beam, unit, isLarge, smoothings, notes)));
+    const { wcs, nx, ny } = planes[0].image;
+    const data = { frame: { nx, ny, wcs, ...(beam && { beam }) }, unit, bands, notes: [...new Set(notes)] };
+    const closeAll = (): void => {
+      close();
+      smoothings.forEach((smoothing) => smoothing.close());
     };
-    const [Q, U] = [find('Q'), find('U')];
-    const first = Q.cube.facts;
-    if (!sameGrid({ ...U.cube.facts, values: new Float64Array(0), file: U.input.file }, first)) throw new InputError(`${U.input.file} is on another grid than ${Q.input.file}; bring all maps to one grid`);
-    const isSame = Q.channels.length === U.channels.length && Q.channels.every(({ frequencyHz }, k) => Math.abs(frequencyHz / U.channels[k].frequencyHz - 1) < 1e-9);
-    if (!isSame || Q.brightness !== U.brightness) throw new InputError(`${U.input.file} has other channels or another unit than ${Q.input.file}`);
-    if (facts.smooth) throw new InputError('maps too large for memory are not smoothed: leave --smooth out, or allow more memory (--memory)');
-    const left = planes.filter((plane) => plane !== Q && plane !== U);
-    for (const { input } of left) notes.push(`${input.file}: left aside, as Q and U are measured by rows (--memory)`);
-    const { nx, ny, wcs, beam } = first;
-    const rows = (plane: typeof Q, factor: number, from: number, to: number): Float64Array => plane.cube.rows(from, to).map((value) => factor * value);
-    return {
-      data: { frame: { nx, ny, wcs, ...(beam && { beam }) }, unit: Q.brightness, bands: [], notes: [...new Set(notes)] },
-      channels: Q.channels,
-      noise: Q.noise.map((rms, k) => Math.max(rms, U.noise[k])),
-      source: { nx, ny, rows: (from, to) => ({ Q: rows(Q, Q.scale, from, to), U: rows(U, U.signOfU * U.scale, from, to) }) },
-      close,
-    };
+    return { data, smoothings, isLarge, close: closeAll };
   } catch (error) {
     close();
     throw error;
   }
 }
 
-function canConvert(from: string, to: BrightnessUnit): boolean {
-  try {
-    convertQuantity(1, from, to);
-    return true;
-  } catch {
-    return false;
+/** What a file holds, and its cubes: `rows` gives one Stokes parameter times a factor. */
+interface FileCubes extends Omit<SkyImage, 'values'> {
+  readonly count: number;
+  rows(stokes: number, factor: number): CubeSource;
+}
+
+function planesInMemory(input: MapInput, facts: StatedFacts, units: Set<BrightnessUnit>, notes: string[]): Plane[] {
+  const image = skyImageFromFits(readFits(readBytes(input.file), input.file), input.file, input.overrides);
+  const { nx, ny, values } = image;
+  const size = (image.channels?.length ?? 1) * nx * ny;
+  const rows = (stokes: number, factor: number): CubeSource => cubeInMemory(values.subarray(stokes * size, (stokes + 1) * size).map((value) => factor * value), nx, ny);
+  return planesOf(input, { ...image, count: values.length, rows }, facts, units, notes);
+}
+
+function scaledRows(rows: NonNullable<ReturnType<typeof openCubeRows>>, stokes: number, factor: number): CubeSource {
+  const scale = (values: Float64Array): Float64Array => values.map((value) => factor * value);
+  return { rows: (from, to) => scale(rows.rows(from, to, stokes)), plane: (channel) => scale(rows.plane(channel, stokes)) };
+}
+
+function planesOf(input: MapInput, image: FileCubes, facts: StatedFacts, units: Set<BrightnessUnit>, notes: string[]): Plane[] {
+  const { file } = input;
+  const { stokes, channels, brightness, scale, signOfU, noise } = fileFacts(image, input, facts, notes);
+  units.add(brightness);
+  if (image.count !== channels.length * image.nx * image.ny * stokes.length) {
+    throw new InputError(`${image.count / image.nx / image.ny} planes for ${channels.length} channels of Stokes ${stokes.join(', ')}`, { file });
+  }
+  return stokes.flatMap((name, k): Plane[] => {
+    if (name === 'V') return [];
+    const cube = image.rows(k, name === 'U' ? signOfU * scale : scale);
+    return [{ stokes: name, file, image, channels, cube, noise, ...(image.beam && { beam: image.beam }) }];
+  });
+}
+
+function checkGrids(planes: readonly Plane[]): void {
+  const [first] = planes;
+  for (const other of planes) {
+    if (!sameGrid({ ...other.image, values: new Float64Array(0), file: other.file }, first.image)) {
+      throw new InputError(`${other.file} is on another grid than ${first.file}; bring all maps to one grid`);
+    }
   }
 }
 
-function placedQuantity(text: string, unit: string, flag: string): number {
-  try {
-    return parseQuantity(text, unit);
-  } catch (error) {
-    throw error instanceof InputError ? error.at({ flag }) : error;
-  }
-}
-
-function toBeam(plane: Plane, target: Beam | undefined, unit: BrightnessUnit, notes: string[]): Plane {
-  if (!plane.beam || !target) return plane;
-  const { wcs, nx, ny } = plane.image;
-  const { values, noiseFactor } = convolveTo({ wcs, nx, ny, values: plane.values }, plane.beam, target, unit);
-  if (noiseFactor !== 1) notes.push(`${plane.file}: smoothed to ${Number(target.majorArcsec.toPrecision(4))} x ${Number(target.minorArcsec.toPrecision(4))} arcsec; its noise becomes ${Number(noiseFactor.toPrecision(3))} times as large`);
-  return { ...plane, values, noise: plane.noise.map((rms) => rms * noiseFactor), beam: target };
+function targetBeam(planes: readonly Plane[], facts: StatedFacts): Beam | undefined {
+  const beams = planes.flatMap(({ beam }) => (beam ? [beam] : []));
+  const bare = planes.find(({ beam }) => !beam);
+  if (bare && beams.length > 0) throw new InputError(`${bare.file} states no beam and other maps do; state it with --beam`);
+  return beams.length > 0 ? (facts.smooth ?? commonBeam(beams)) : undefined;
 }
 
 /** Planes of the same channels make a band, which needs Q and U. */
@@ -243,11 +158,11 @@ function gatherBands(planes: readonly Plane[]): MapBand[] {
     } else group.push(plane);
   }
   const bands = groups.map((group): MapBand => {
-    const find = (stokes: Stokes): Plane | undefined => group.find((plane) => plane.stokes === stokes);
+    const find = (stokes: MapStokes): Plane | undefined => group.find((plane) => plane.stokes === stokes);
     const [I, Q, U] = [find('I'), find('Q'), find('U')];
     if (!Q || !U) throw new InputError(`no Stokes ${Q ? 'U' : 'Q'} goes with it: Q and U of the same channels are needed`, { file: group[0].file });
     const noise = Q.noise.map((rms, k) => Math.max(rms, U.noise[k]));
-    return { name: bandName(Q), channels: Q.channels, Q: Q.values, U: U.values, noise, ...(I && { I: I.values }) };
+    return { name: bandName(Q), channels: Q.channels, Q: Q.cube, U: U.cube, noise, ...(I && { I: I.cube }) };
   });
   const sorted = bands.sort((a, b) => a.channels[0].frequencyHz - b.channels[0].frequencyHz);
   return sorted.map((band, k) => {

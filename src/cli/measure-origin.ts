@@ -1,20 +1,30 @@
+import type { Provenance } from '../files/fits-scene.ts';
 import { writeCsv } from '../files/csv-write.ts';
 import type { Layout } from '../measure/layout.ts';
-import { originProfiles } from '../measure/origin-profile.ts';
+import { makeOriginProfiles, type OriginLayer } from '../measure/origin-profile.ts';
 import type { Scene } from '../scene/types.ts';
 import { offsetsKpc } from '../sky/grid.ts';
 import type { MapData } from './measure-input.ts';
+import { addOriginFiles, originMaps, type OriginWatch } from './origin-files.ts';
+import type { OutputFolder } from './output-folder.ts';
 
-/** The layers that every band of the maps sees in every region of a scene; one row a band and region. */
-export function originCsv(scene: Scene, data: MapData, layout: Layout, onRay: (done: number, total: number) => void, meta: Readonly<Record<string, string | number>>): string {
+/** Adds the layers of a scene that every band of the maps sees at its centre: maps, and `origin.csv` by region. */
+export async function addOrigins(folder: OutputFolder, scene: Scene, data: MapData, layout: Layout, watch: OriginWatch, meta: Readonly<Record<string, string | number>>, provenance: Provenance): Promise<void> {
   const { wcs, nx, ny } = data.frame;
+  const frequenciesHz = data.bands.map(({ channels }) => (channels[0].frequencyHz + channels[channels.length - 1].frequencyHz) / 2);
+  const spectrum = frequenciesHz.map((frequencyHz) => ({ frequencyHz, centreHz: frequencyHz }));
+  const { take, layers } = makeOriginProfiles(scene.galaxy, layout.regions.length, spectrum.length);
   const bundle = offsetsKpc(wcs, nx, ny, scene.galaxy.distanceKpc, scene.galaxy.centre);
-  const spectrum = data.bands.map(({ channels }) => {
-    const frequencyHz = (channels[0].frequencyHz + channels[channels.length - 1].frequencyHz) / 2;
-    return { frequencyHz, centreHz: frequencyHz };
+  const maps = await originMaps(scene, bundle, spectrum, watch, (ray, pieces) => {
+    if (layout.regionOf[ray] >= 0) take(layout.regionOf[ray], pieces);
   });
-  const layers = originProfiles(scene, bundle, spectrum, layout.regionOf, layout.regions.length, onRay);
-  const rows = data.bands.flatMap((band, f) => layout.regions.map((region, k) => ({ band, region, frequencyHz: spectrum[f].frequencyHz, layer: layers[k][f] })));
+  data.bands.forEach((band, k) => addOriginFiles(folder, band.name, data.frame, [frequenciesHz[k]], k, maps, provenance, 32));
+  folder.add('origin.csv', originCsv(data, layout, frequenciesHz, layers(), meta));
+}
+
+/** One row a band and region. */
+function originCsv(data: MapData, layout: Layout, frequenciesHz: readonly number[], layers: readonly (readonly OriginLayer[])[], meta: Readonly<Record<string, string | number>>): string {
+  const rows = data.bands.flatMap((band, f) => layout.regions.map((region, k) => ({ band, region, frequencyHz: frequenciesHz[f], layer: layers[k][f] })));
   const column = (pick: (row: (typeof rows)[number]) => number): number[] => rows.map(pick);
   const degrees = 180 / Math.PI;
   return writeCsv(

@@ -7,10 +7,11 @@ import type { Law } from '../measure/laws/types.ts';
 import type { Layout } from '../measure/layout.ts';
 import { pitchAngles, regionPitches, type RegionPitch } from '../measure/pitch-angle.ts';
 import { measureRegions, type RegionMean, type RegionValues } from '../measure/region.ts';
-import { regionSpectrum, type RegionSpectrum, type SpectrumOptions } from '../measure/region-spectrum.ts';
-import { centreMaps, type CentreMaps } from '../sky/band-centre.ts';
-import { depthMaps, rowsOfPlanes, type DepthMapOptions, type DepthMaps } from '../sky/depth-maps.ts';
+import { regionSpectrum, type RegionSpectrum, type RegionSums, type SpectrumOptions } from '../measure/region-spectrum.ts';
+import { centreMaps, middleChannels, type CentreMaps, type ChannelPlanes } from '../sky/band-centre.ts';
+import { depthMaps, type DepthMapOptions, type DepthMaps } from '../sky/depth-maps.ts';
 import { planDepths } from '../sky/depth-spectrum.ts';
+import { joinedRows, type CubeSource } from '../sky/cube-source.ts';
 import { arcsec } from '../sky/grid.ts';
 import { rotationMeasureMaps } from '../sky/rotation-measure-map.ts';
 import type { SkyGrid, StokesCube } from '../sky/types.ts';
@@ -35,6 +36,7 @@ export interface RingHarmonics {
   readonly nearFar: Asymmetry;
 }
 
+/** Laws fitted to the light of one region. */
 export interface RegionLaws {
   /** -1: the integrated light. */
   readonly region: number;
@@ -45,9 +47,20 @@ export interface RegionLaws {
 
 const highestOrder = 3;
 
-/** Rotation measures of some bands together by the fit of angles over lambda^2. */
-export function fittedRotation(data: MapData, bands: readonly MapBand[], orientation: DiscOrientation): ReturnType<typeof rotationMeasureMaps> {
-  return rotationMeasureMaps(bands.map((band) => asCube(data, band, orientation)));
+/** Rotation measures of all bands together by the fit of angles over lambda^2; every channel is taken into memory. */
+export function fittedRotation(data: MapData, orientation: DiscOrientation): ReturnType<typeof rotationMeasureMaps> {
+  return rotationMeasureMaps(data.bands.map((band) => asCube(data, band, orientation)));
+}
+
+/** Some channels of a band, in memory: [place in the list * pixels + pixel]. */
+export function planesOfChannels({ channels, I, Q, U, noise }: MapBand, wanted: readonly number[]): ChannelPlanes {
+  const join = (cube: CubeSource): Float64Array => {
+    const planes = wanted.map((channel) => cube.plane(channel));
+    const all = new Float64Array(planes.length * planes[0].length);
+    planes.forEach((plane, k) => all.set(plane, k * plane.length));
+    return all;
+  };
+  return { channels: wanted.map((k) => channels[k]), noise: wanted.map((k) => noise[k]), ...(I && { I: join(I) }), Q: join(Q), U: join(U) };
 }
 
 /** Whether a band's own channels span lambda^2 enough for an RM of its own: 2 % of it. */
@@ -56,18 +69,23 @@ function hasOwnRotation(band: MapBand): boolean {
   return band.channels.length > 2 && Math.max(...squares) > 1.02 * Math.min(...squares);
 }
 
-/** Measures one band at its centre, with the RM that its own channels show. */
+/**
+ * Measures one band at its centre, with the RM that its own channels show. `whole` are the depths of all
+ * bands together: those of the band where it is the only one.
+ */
 export async function measureBand(
   data: MapData,
   band: MapBand,
   layout: Layout,
   orientation: DiscOrientation,
   axis: number,
+  whole: DepthMaps | undefined,
   { spectralIndex, ...options }: DepthMapOptions & { readonly spectralIndex: number },
 ): Promise<MeasuredBand> {
-  const centre = centreMaps(band);
+  const centre = centreMaps(planesOfChannels(band, middleChannels(band.channels.length)));
   const { nx, ny } = data.frame;
-  const own = hasOwnRotation(band) ? await depthMaps(rowsOfPlanes(band.Q, band.U, nx, ny), planDepths(band.channels, band.noise, { spectralIndex }), options) : undefined;
+  const ofItsOwn = (): Promise<DepthMaps> => depthMaps(joinedRows([band], nx, ny), planDepths(band.channels, band.noise, { spectralIndex }), options);
+  const own = hasOwnRotation(band) ? (data.bands.length === 1 && whole ? whole : await ofItsOwn()) : undefined;
   const rm = own && { rm: own.depth, rmError: own.depthError };
   const inside = (values: Float64Array): Float64Array => values.map((value, k) => (layout.regionOf[k] < 0 ? NaN : value));
   return {
@@ -91,8 +109,25 @@ export function changeOfGradient(bands: readonly MeasuredBand[]): GradientChange
   return own.length < 2 ? undefined : gradientChange(own.map(({ lambda2 }) => lambda2), own.map(({ gradient }) => gradient));
 }
 
-/** Harmonics and asymmetries of P of every band, and of RM over all bands, ring by ring. */
-export function ringHarmonics(layout: Layout, quantities: readonly { readonly name: string; readonly values: readonly number[]; readonly errors: readonly number[] }[]): RingHarmonics[] {
+/** A quantity measured in every region of a layout. */
+export interface RingQuantity {
+  readonly name: string;
+  readonly values: readonly number[];
+  readonly errors: readonly number[];
+}
+
+/** P of every band, RM over all bands, and that of every band that has one. */
+export function ringQuantities(bands: readonly MeasuredBand[], rotation: readonly RegionMean[] | undefined): RingQuantity[] {
+  const quantity = (name: string, means: readonly (RegionMean | undefined)[]): RingQuantity => ({ name, values: means.map((mean) => mean?.value ?? NaN), errors: means.map((mean) => mean?.error ?? NaN) });
+  return [
+    ...bands.map(({ band, regions }) => quantity(`P ${band.name}`, regions.map(({ P }) => P))),
+    ...(rotation ? [quantity('RM', rotation)] : []),
+    ...bands.flatMap(({ band, rm, regions }) => (rm ? [quantity(`RM ${band.name}`, regions.map((region) => region.rm))] : [])),
+  ];
+}
+
+/** Harmonics and asymmetries of quantities, ring by ring. */
+export function ringHarmonics(layout: Layout, quantities: readonly RingQuantity[]): RingHarmonics[] {
   if (layout.kind !== 'rings') return [];
   return Array.from({ length: layout.groups }, (_, group) => group).flatMap((group) => {
     const members = [...layout.regions.keys()].filter((k) => layout.regions[k].group === group);
@@ -121,25 +156,21 @@ export function fieldPitches(frame: MapFrame, orientation: DiscOrientation, layo
 
 /** Fits laws to the integrated light within the layout and, where asked, to each of its regions. */
 export async function fitRegionLaws(
-  data: MapData,
+  sums: RegionSums,
   layout: Layout,
   laws: readonly Law[],
   options: SpectrumOptions,
   withRegions: boolean,
   watch: { readonly onProgress: (done: number, total: number) => void; readonly pause: () => Promise<void>; readonly signal: AbortSignal },
 ): Promise<RegionLaws[]> {
-  const members: number[][] = layout.regions.map(() => []);
-  layout.regionOf.forEach((region, pixel) => {
-    if (region >= 0) members[region].push(pixel);
-  });
-  const total = data.frame.nx * data.frame.ny;
-  const wanted = [-1, ...(withRegions ? members.keys() : [])].filter((region) => region < 0 || members[region].length > 0);
+  const all = [...layout.regions.keys()];
+  const wanted = [-1, ...(withRegions ? all : [])];
   const found: RegionLaws[] = [];
-  for (const region of wanted) {
-    const spectrum = regionSpectrum(data.bands, region < 0 ? members.flat() : members[region], total, options);
+  for (const [done, region] of wanted.entries()) {
+    const spectrum = regionSpectrum(sums, region < 0 ? all : [region], options);
     const known = Array.from(spectrum.q).filter(Number.isFinite).length;
     if (known > 1) found.push({ region, spectrum, fits: await fitLaws(laws, spectrum, { signal: watch.signal }) });
-    watch.onProgress(found.length, wanted.length);
+    watch.onProgress(done + 1, wanted.length);
     await watch.pause();
   }
   return found;
@@ -149,7 +180,8 @@ function asCube({ frame, unit }: MapData, band: MapBand, { distanceKpc }: DiscOr
   const { wcs, nx, ny } = frame;
   const pixelArcsec = 3600 * Math.sqrt(Math.abs(wcs.cd[0] * wcs.cd[3] - wcs.cd[1] * wcs.cd[2]));
   const grid: SkyGrid = { nx, ny, pixelArcsec, pixelKpc: pixelArcsec * arcsec * distanceKpc, raDeg: wcs.raDeg, decDeg: wcs.decDeg, crpixX: wcs.crpixX, crpixY: wcs.crpixY };
-  return { band: band.name, grid, channels: band.channels, I: band.I ?? new Float64Array(band.Q.length), Q: band.Q, U: band.U, unit, noise: band.noise, ...(frame.beam && { beam: frame.beam }) };
+  const { I, Q, U } = planesOfChannels(band, [...band.channels.keys()]);
+  return { band: band.name, grid, channels: band.channels, I: I ?? new Float64Array(Q.length), Q, U, unit, noise: band.noise, ...(frame.beam && { beam: frame.beam }) };
 }
 
 function mean(values: readonly number[]): number {

@@ -1,9 +1,16 @@
 import { join } from 'node:path';
 import { writeWhole } from '../files/node-io.ts';
 
+/** A file too large to gather, written beside its place as it is made; it appears, or is gone, at the end. */
+export interface BegunFile {
+  finish(): void;
+  abandon(): void;
+}
+
 /** Files of one run: gathered first, written together once everything has been computed. */
 export class OutputFolder {
   private readonly files = new Map<string, Uint8Array | string>();
+  private readonly begun = new Map<string, BegunFile>();
 
   constructor(readonly path: string) {}
 
@@ -12,12 +19,23 @@ export class OutputFolder {
     this.files.set(name, content);
   }
 
+  /** Takes charge of a file that is being written already. */
+  addBegun(name: string, file: BegunFile): void {
+    this.begun.set(name, file);
+  }
+
   get names(): readonly string[] {
-    return [...this.files.keys()];
+    return [...this.files.keys(), ...this.begun.keys()];
+  }
+
+  /** Leaves nothing of the files that were begun; for a run that failed. */
+  abandon(): void {
+    for (const file of this.begun.values()) file.abandon();
   }
 
   /** Writes every file, each whole or not at all; folders are made as needed. */
   write(): void {
+    for (const file of this.begun.values()) file.finish();
     for (const [name, content] of this.files) writeWhole(join(this.path, name), content);
   }
 }

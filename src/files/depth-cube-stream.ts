@@ -1,5 +1,5 @@
 import { randomUUID } from 'node:crypto';
-import { closeSync, fsyncSync, mkdirSync, openSync, renameSync, rmSync, writeSync } from 'node:fs';
+import { closeSync, fsyncSync, mkdirSync, openSync, readdirSync, renameSync, rmdirSync, rmSync, writeSync } from 'node:fs';
 import { basename, dirname, join } from 'node:path';
 import { onesComplementSum } from './fits-checksum.ts';
 import type { Provenance } from './fits-scene.ts';
@@ -22,7 +22,7 @@ export function streamDepthCube(path: string, cube: Omit<DepthCube, 'values'>, p
   const [nx, ny, depths] = primary.shape;
   const dataStart = imageHeaderBytes(primary, 0).length;
   const length = 4 * nx * ny * depths;
-  mkdirSync(dirname(path), { recursive: true });
+  const isNewFolder = mkdirSync(dirname(path), { recursive: true }) !== undefined;
   const beside = join(dirname(path), `.${basename(path)}.${randomUUID()}.part`);
   const file = openSync(beside, 'wx');
   let sum = 0;
@@ -59,6 +59,7 @@ export function streamDepthCube(path: string, cube: Omit<DepthCube, 'values'>, p
       if (isOpen) closeSync(file);
       isOpen = false;
       rmSync(beside, { force: true });
+      if (isNewFolder && readdirSync(dirname(path)).length === 0) rmdirSync(dirname(path));
     },
   };
 }

@@ -15,6 +15,8 @@ export interface CubeRows {
   readonly count: number;
   /** Rows `from` to `to` (not included) of all channels of a Stokes plane, [channel * pixels + pixel]. */
   rows(from: number, to: number, stokes?: number): Float64Array;
+  /** One channel of a Stokes plane, [row * nx + column]. */
+  plane(channel: number, stokes?: number): Float64Array;
   close(): void;
 }
 
@@ -54,18 +56,20 @@ function openRows(file: number, fileName: string, overrides: SkyImageOverrides):
   const [stokes, layer, row, column] = order;
   if (column.stride !== 1 || row.stride !== facts.nx) return undefined;
   const scaling = imageScaling(hdu.cards, hdu.bitpix, place);
+  const part = (plane: number, channel: number, from: number, to: number): Float64Array => {
+    const first = plane * stokes.stride + channel * layer.stride + from * row.stride;
+    return decodeNumbers(bytesAt(file, dataStart + first * width, (to - from) * facts.nx * width), hdu.bitpix, scaling);
+  };
   return {
     facts,
     count,
     rows: (from, to, plane = 0) => {
       const pixels = (to - from) * facts.nx;
       const values = new Float64Array(layer.length * pixels);
-      for (let channel = 0; channel < layer.length; channel++) {
-        const first = plane * stokes.stride + channel * layer.stride + from * row.stride;
-        values.set(decodeNumbers(bytesAt(file, dataStart + first * width, pixels * width), hdu.bitpix, scaling), channel * pixels);
-      }
+      for (let channel = 0; channel < layer.length; channel++) values.set(part(plane, channel, from, to), channel * pixels);
       return values;
     },
+    plane: (channel, plane = 0) => part(plane, channel, 0, facts.ny),
     close: () => closeSync(file),
   };
 }

@@ -20,7 +20,8 @@ export interface OriginLayer {
   readonly rays: number;
 }
 
-const smallestVisible = 1e-2;
+/** A ray counts whose |P| is at least this part of what it emits. */
+export const smallestVisible = 1e-2;
 const bins = 2000;
 
 /** Sums from which a layer follows; positive shares by height. */
@@ -33,31 +34,37 @@ interface LayerSums {
   rays: number;
 }
 
+/** The sign of z before the plane of the disc, as seen from here; NaN edge-on, where a ray lies all on one side. */
+export function nearSide(inclination: number): number {
+  const cos = Math.cos(inclination);
+  return Math.abs(cos) < 1e-9 ? NaN : Math.sign(cos);
+}
+
 /**
- * The layers seen in regions of a sky at each of several frequencies, result[region][frequency]:
- * net shares of all rays of a region added (each along its own final angle; no beam). `regionOf` holds
- * each ray's region, 0 to count - 1, or -1. NaN where no ray counts. `onRay` is told of every ray done.
+ * Gathers the layers seen in regions at each of several frequencies, layers()[region][frequency], from
+ * the pieces of rays (`walkOrigins`): net shares of all rays of a region added, each along its own final
+ * angle. `heightKpc` is that of the scene's volume. NaN where no ray counts.
  */
-export function originProfiles(
-  scene: Scene,
-  bundle: RayBundle,
-  spectrum: readonly SpectralPoint[],
-  regionOf: ArrayLike<number>,
+export function makeOriginProfiles(
+  { inclination, volume: { heightKpc } }: Scene['galaxy'],
   count: number,
-  onRay?: (done: number, total: number) => void,
-): OriginLayer[][] {
-  const { heightKpc } = scene.galaxy.volume;
-  // Edge-on, a ray lies all on one side: no half is before the plane.
-  const cos = Math.cos(scene.galaxy.inclination);
-  const near = Math.abs(cos) < 1e-9 ? NaN : Math.sign(cos);
-  const sums = Array.from({ length: count }, () => spectrum.map((): LayerSums => ({ positive: new Float64Array(bins), sum: 0, heightSum: 0, negative: 0, near: 0, rays: 0 })));
-  const wanted = Array.from({ length: bundle.northKpc.length }, (_, ray) => ray).filter((ray) => regionOf[ray] >= 0 && Number.isFinite(bundle.northKpc[ray] + bundle.eastKpc[ray]));
-  const some = { northKpc: Float64Array.from(wanted, (ray) => bundle.northKpc[ray]), eastKpc: Float64Array.from(wanted, (ray) => bundle.eastKpc[ray]) };
-  walkOrigins(scene, some, spectrum, (ray, pieces) => {
-    sums[regionOf[wanted[ray]]].forEach((layer, f) => addRay(layer, pieces, f, heightKpc, near));
-    onRay?.(ray + 1, wanted.length);
-  });
-  return sums.map((layers) => layers.map((layer) => layerOf(layer, heightKpc)));
+  frequencies: number,
+): { readonly take: (region: number, pieces: OriginPieces) => void; readonly layers: () => OriginLayer[][] } {
+  const near = nearSide(inclination);
+  const noSums = (): LayerSums => ({ positive: new Float64Array(bins), sum: 0, heightSum: 0, negative: 0, near: 0, rays: 0 });
+  const sums = Array.from({ length: count }, () => Array.from({ length: frequencies }, noSums));
+  return {
+    take: (region, pieces) => sums[region].forEach((layer, f) => addRay(layer, pieces, f, heightKpc, near)),
+    layers: () => sums.map((layers) => layers.map((layer) => layerOf(layer, heightKpc))),
+  };
+}
+
+/** The layers seen in regions of a sky; `regionOf` holds each ray's region, 0 to count - 1, or -1. No beam. */
+export function originProfiles(scene: Scene, bundle: RayBundle, spectrum: readonly SpectralPoint[], regionOf: ArrayLike<number>, count: number): OriginLayer[][] {
+  const { take, layers } = makeOriginProfiles(scene.galaxy, count, spectrum.length);
+  const wanted = Array.from({ length: bundle.northKpc.length }, (_, ray) => ray).filter((ray) => regionOf[ray] >= 0);
+  walkOrigins(scene, { northKpc: Float64Array.from(wanted, (ray) => bundle.northKpc[ray]), eastKpc: Float64Array.from(wanted, (ray) => bundle.eastKpc[ray]) }, spectrum, (ray, pieces) => take(regionOf[wanted[ray]], pieces));
+  return layers();
 }
 
 function addRay(layer: LayerSums, { count, z, shares, emitted }: OriginPieces, frequency: number, heightKpc: number, near: number): void {

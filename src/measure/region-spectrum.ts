@@ -1,13 +1,29 @@
-import { channelLambda2M2 } from '../sky/wavelength.ts';
+import type { CubeSource } from '../sky/cube-source.ts';
 import type { Channel } from '../sky/types.ts';
+import { channelLambda2M2 } from '../sky/wavelength.ts';
 
-/** Cubes of bands, [channel * pixels + pixel], with the rms of Q, U and I per channel. */
+/** Cubes of a band with the rms of Q, U and I per channel. */
 export interface SpectralBand {
   readonly channels: readonly Channel[];
-  readonly I?: Float64Array;
+  readonly I?: CubeSource;
+  readonly Q: CubeSource;
+  readonly U: CubeSource;
+  readonly noise: ArrayLike<number>;
+}
+
+/** The thermal share of I at a pixel and frequency. */
+export type ThermalShare = (pixel: number, frequencyHz: number) => number;
+
+/** Sums over the pixels of regions, [region * channels + channel], the channels of all bands after one another. */
+export interface RegionSums {
+  readonly channels: readonly Channel[];
+  readonly noise: readonly number[];
+  /** Whether every band has I. */
+  readonly hasI: boolean;
+  readonly I: Float64Array;
   readonly Q: Float64Array;
   readonly U: Float64Array;
-  readonly noise: ArrayLike<number>;
+  readonly counts: Float64Array;
 }
 
 /** The Q and U of a region or pixel over wavelength, as fractions of the non-thermal I where I is there. */
@@ -24,48 +40,85 @@ export interface RegionSpectrum {
 export interface SpectrumOptions {
   /** Pixels that share their noise; see `pixelsPerBeam`. */
   readonly pixelsPerBeam: number;
-  /** Thermal share of I of a channel at a pixel; none where left out. */
-  readonly thermal?: (pixel: number, frequencyHz: number) => number;
   /** Where there is no I, P is multiplied by (nu/mean nu)^alpha; default 0. */
   readonly spectralIndex?: number;
+  /** Q and U themselves, where there is I too. */
+  readonly isPlain?: boolean;
+}
+
+/** Where maps are summed: their size, the region of every pixel (-1: none) and the number of regions. */
+export interface SummedRegions {
+  readonly nx: number;
+  readonly ny: number;
+  readonly regionOf: ArrayLike<number>;
+  readonly count: number;
+}
+
+export interface SumWatch {
+  /** Rows done and rows in all. */
+  readonly onProgress?: (done: number, total: number) => void;
+  readonly pause?: () => Promise<void>;
+  readonly signal?: AbortSignal;
+}
+
+const usualMemory = 64e6;
+
+/** Sums Q, U and the non-thermal I of regions, some rows at a time. A channel of a pixel counts where none of them is blank. */
+export async function sumRegions(bands: readonly SpectralBand[], regions: SummedRegions, thermal?: ThermalShare, watch: SumWatch = {}): Promise<RegionSums> {
+  const sums = noSums(bands, regions.count);
+  const block = Math.max(1, Math.floor(usualMemory / (3 * 8 * regions.nx * sums.channels.length)));
+  for (let from = 0; from < regions.ny; from += block) {
+    watch.signal?.throwIfAborted();
+    const to = Math.min(regions.ny, from + block);
+    addRows(sums, bands, regions, from, to, thermal);
+    watch.onProgress?.(to, regions.ny);
+    await watch.pause?.();
+  }
+  return sums;
 }
 
 /**
- * Means of Q, U and I over `pixels`, channel by channel; fractions are Q and U over I without its
- * thermal share. Channels with a blank pixel count those that are not. The error of a fraction is
- * that of Q and of I to first order, q shares the error of I with u: counted in full.
+ * The means over some of the regions together, channel by channel: fractions of I without its thermal
+ * share, or Q and U where there is no I. The error of a fraction is that of Q and of I to first order, q
+ * shares the error of I with u: counted in full. NaN where no pixel counts.
  */
-export function regionSpectrum(bands: readonly SpectralBand[], pixels: readonly number[], total: number, options: SpectrumOptions): RegionSpectrum {
-  const channels = bands.flatMap((band) => band.channels.map((channel, k) => ({ band, channel, k })));
-  const isFraction = bands.every((band) => band.I !== undefined);
-  const middle = Math.exp(channels.reduce((sum, { channel }) => sum + Math.log(channel.frequencyHz), 0) / channels.length);
-  const [q, u, sigma] = [0, 1, 2].map(() => new Float64Array(channels.length).fill(NaN));
-  channels.forEach(({ band, channel, k }, index) => {
-    let [sumQ, sumU, sumI, count] = [0, 0, 0, 0];
-    for (const pixel of pixels) {
-      const at = k * total + pixel;
-      const I = band.I ? band.I[at] * (1 - (options.thermal?.(pixel, channel.frequencyHz) ?? 0)) : 0;
-      if (!Number.isFinite(band.Q[at] + band.U[at] + (isFraction ? I : 0))) continue;
-      sumQ += band.Q[at];
-      sumU += band.U[at];
-      sumI += I;
-      count++;
-    }
-    if (count === 0 || (isFraction && !(sumI > 0))) return;
-    const mean = (sum: number): number => sum / count;
-    const rms = band.noise[k] / Math.sqrt(Math.max(1, count / options.pixelsPerBeam));
-    const scale = isFraction ? 1 / mean(sumI) : (channel.frequencyHz / middle) ** (options.spectralIndex ?? 0);
-    q[index] = mean(sumQ) * scale;
-    u[index] = mean(sumU) * scale;
-    sigma[index] = rms * scale * (isFraction ? Math.sqrt(1 + q[index] ** 2 + u[index] ** 2) : 1);
+export function regionSpectrum(sums: RegionSums, regions: readonly number[], options: SpectrumOptions): RegionSpectrum {
+  const { channels, noise } = sums;
+  const isFraction = sums.hasI && !options.isPlain;
+  const middle = Math.exp(channels.reduce((sum, { frequencyHz }) => sum + Math.log(frequencyHz), 0) / channels.length);
+  const [q, u, sigma] = [NaN, NaN, 0].map((blank) => new Float64Array(channels.length).fill(blank));
+  channels.forEach(({ frequencyHz }, channel) => {
+    const total = (values: Float64Array): number => regions.reduce((sum, region) => sum + values[region * channels.length + channel], 0);
+    const [I, Q, U, count] = [sums.I, sums.Q, sums.U, sums.counts].map(total);
+    if (count === 0 || (isFraction && !(I > 0))) return;
+    const rms = noise[channel] / Math.sqrt(Math.max(1, count / options.pixelsPerBeam));
+    const scale = isFraction ? count / I : (frequencyHz / middle) ** (options.spectralIndex ?? 0);
+    q[channel] = (Q / count) * scale;
+    u[channel] = (U / count) * scale;
+    sigma[channel] = rms * scale * (isFraction ? Math.sqrt(1 + q[channel] ** 2 + u[channel] ** 2) : 1);
   });
   return {
-    lambda2M2: Float64Array.from(channels, ({ channel }) => channelLambda2M2(channel)),
-    frequenciesHz: Float64Array.from(channels, ({ channel }) => channel.frequencyHz),
+    lambda2M2: Float64Array.from(channels, channelLambda2M2),
+    frequenciesHz: Float64Array.from(channels, ({ frequencyHz }) => frequencyHz),
     q,
     u,
-    sigma: sigma.map((value) => (Number.isNaN(value) ? 0 : value)),
+    sigma,
     isFraction,
+  };
+}
+
+/** Spectra of single pixels by their place; neighbours in a row cost one reading of it. */
+export function pixelSpectra(bands: readonly SpectralBand[], { nx, ny }: Pick<SummedRegions, 'nx' | 'ny'>, options: Omit<SpectrumOptions, 'pixelsPerBeam'>, thermal?: ThermalShare): (pixel: number) => RegionSpectrum {
+  const regions = { nx, ny, regionOf: Int32Array.from({ length: nx * ny }, (_, pixel) => pixel % nx), count: nx };
+  let known: { readonly row: number; readonly sums: RegionSums } | undefined;
+  return (pixel) => {
+    const row = Math.floor(pixel / nx);
+    if (known?.row !== row) {
+      const sums = noSums(bands, nx);
+      addRows(sums, bands, regions, row, row + 1, thermal);
+      known = { row, sums };
+    }
+    return regionSpectrum(known.sums, [pixel % nx], { ...options, pixelsPerBeam: 1 });
   };
 }
 
@@ -77,4 +130,42 @@ export function thermalShare(share: number, atHz: number, frequencyHz: number, a
   const ratio = frequencyHz / atHz;
   const thermal = share * ratio ** -0.1;
   return thermal / (thermal + (1 - share) * ratio ** -alpha);
+}
+
+function noSums(bands: readonly SpectralBand[], count: number): RegionSums {
+  const channels = bands.flatMap((band) => band.channels);
+  const zeros = (): Float64Array => new Float64Array(count * channels.length);
+  return {
+    channels,
+    noise: bands.flatMap((band) => band.channels.map((_, k) => band.noise[k])),
+    hasI: bands.every((band) => band.I !== undefined),
+    I: zeros(),
+    Q: zeros(),
+    U: zeros(),
+    counts: zeros(),
+  };
+}
+
+function addRows(sums: RegionSums, bands: readonly SpectralBand[], { nx, regionOf }: SummedRegions, from: number, to: number, thermal?: ThermalShare): void {
+  const pixels = (to - from) * nx;
+  const all = sums.channels.length;
+  let first = 0;
+  for (const band of bands) {
+    const [Q, U, I] = [band.Q.rows(from, to), band.U.rows(from, to), sums.hasI ? band.I?.rows(from, to) : undefined];
+    band.channels.forEach(({ frequencyHz }, k) => {
+      for (let pixel = 0; pixel < pixels; pixel++) {
+        const region = regionOf[from * nx + pixel];
+        if (region < 0) continue;
+        const at = k * pixels + pixel;
+        const light = I ? I[at] * (1 - (thermal?.(from * nx + pixel, frequencyHz) ?? 0)) : 0;
+        if (!Number.isFinite(Q[at] + U[at] + light)) continue;
+        const place = region * all + first + k;
+        sums.Q[place] += Q[at];
+        sums.U[place] += U[at];
+        sums.I[place] += light;
+        sums.counts[place]++;
+      }
+    });
+    first += band.channels.length;
+  }
 }

@@ -84,7 +84,9 @@ export function walkOrigins(scene: Scene, bundle: RayBundle, spectrum: readonly 
           wholeDepth += half * panelRule.weights[i] * out[output.faraday][i];
           wholeVariance += half * panelRule.weights[i] * out[output.dispersion][i];
           wholeColumn += half * panelRule.weights[i] * out[output.emissionMeasure][i];
-          z[count + i] = lanes[2][i];
+          // Nodes run towards the observer, pieces away.
+          const at = count + panelNodes - 1 - i;
+          z[at] = lanes[2][i];
           const [q, u] = [out[output.cosine][i], out[output.sine][i]];
           for (let f = 0; f < squares.length; f++) {
             const size = half * panelRule.weights[i] * out[output.firstGroup + integrand.groupOf[f]][i];
@@ -92,8 +94,8 @@ export function walkOrigins(scene: Scene, bundle: RayBundle, spectrum: readonly 
             const damped = size * Math.exp(-2 * squares[f] * squares[f] * sigma - (inputs.freeFree?.opacity[f] ?? 0) * measure);
             const angle = 2 * squares[f] * phi;
             const [c, s] = [damped * Math.cos(angle), damped * Math.sin(angle)];
-            cosine[f][count + i] = c * q - s * u;
-            sine[f][count + i] = s * q + c * u;
+            cosine[f][at] = c * q - s * u;
+            sine[f][at] = s * q + c * u;
           }
         }
         count += panelNodes;

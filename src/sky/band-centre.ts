@@ -31,9 +31,12 @@ export interface CentreMaps {
  * where their number is even. The channels must be in order of frequency.
  */
 export function centreMaps(planes: ChannelPlanes): CentreMaps {
-  const count = planes.channels.length;
-  const middle = count % 2 === 1 ? [(count - 1) / 2] : [count / 2 - 1, count / 2];
-  return mapsOf(planes, middle);
+  return mapsOf(planes, middleChannels(planes.channels.length));
+}
+
+/** The middle channel of so many, or the two in the middle where their number is even. */
+export function middleChannels(count: number): readonly number[] {
+  return count % 2 === 1 ? [(count - 1) / 2] : [count / 2 - 1, count / 2];
 }
 
 /** The maps of one channel. */

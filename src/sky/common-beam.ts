@@ -65,36 +65,42 @@ export function commonBeam(beams: readonly Beam[]): Beam {
   return { majorArcsec: widest, minorArcsec: widest, angle: 0 };
 }
 
-/** A map's planes, [plane * ny * nx + row * nx + column], and where they lie. */
-export interface BeamPlanes {
+/** Where the pixels of a plane lie. */
+export interface PlaneFrame {
   readonly wcs: CelestialWcs;
   readonly nx: number;
   readonly ny: number;
-  readonly values: Float64Array;
+}
+
+/** What brings planes of one beam to another. */
+export interface BeamChange {
+  /** What the rms of noise correlated like the first beam becomes, in the new unit over the old. */
+  readonly noiseFactor: number;
+  /** One plane as seen with the other beam. Blank pixels count as dark and stay blank; so does what lies beyond the map. */
+  plane(values: Float64Array): Float64Array;
 }
 
 /**
- * Planes of `from` as seen with the beam `to`: brightness per beam grows with the beam, per steradian
- * it does not. Blank pixels count as dark and stay blank; so does what lies beyond the map. `noiseFactor`
- * is what the rms of noise correlated like `from` becomes, in the new unit over the old.
+ * What turns planes of the beam `from` into planes of the beam `to`: brightness per beam grows with the
+ * beam, per steradian it does not. Undefined where the two are the same; throws InputError where `to` is
+ * narrower in some direction.
  */
-export function convolveTo(
-  { wcs, nx, ny, values }: BeamPlanes,
-  from: Beam,
-  to: Beam,
-  unit: BrightnessUnit,
-): { values: Float64Array; noiseFactor: number } {
+export function beamChange({ wcs, nx, ny }: PlaneFrame, from: Beam, to: Beam, unit: BrightnessUnit): BeamChange | undefined {
   const between = beamBetween(from, to);
-  if (!between) return { values: values.slice(), noiseFactor: 1 };
-  const ratio = beamSolidAngleSr(to) / beamSolidAngleSr(from);
-  const scale = unit === 'Jy/beam' ? ratio : 1;
+  if (!between) return undefined;
+  const scale = unit === 'Jy/beam' ? beamSolidAngleSr(to) / beamSolidAngleSr(from) : 1;
   const convolve = beamConvolver(narrowBeam(between, wcs), nx, ny);
-  const result = values.map((value) => (Number.isFinite(value) ? scale * value : 0));
-  for (let start = 0; start < values.length; start += nx * ny) convolve(result.subarray(start, start + nx * ny));
-  values.forEach((value, k) => {
-    if (!Number.isFinite(value)) result[k] = NaN;
-  });
-  return { values: result, noiseFactor: scale * noiseShare(from, between) };
+  return {
+    noiseFactor: scale * noiseShare(from, between),
+    plane: (values) => {
+      const result = values.map((value) => (Number.isFinite(value) ? scale * value : 0));
+      convolve(result);
+      values.forEach((value, k) => {
+        if (!Number.isFinite(value)) result[k] = NaN;
+      });
+      return result;
+    },
+  };
 }
 
 /**

@@ -92,18 +92,3 @@ export async function depthMaps(source: RowSource, plan: DepthPlan, options: Dep
   }
   return maps;
 }
-
-/** A cube in memory as a source of rows; planes [channel * ny * nx + row * nx + column]. */
-export function rowsOfPlanes(Q: Float64Array, U: Float64Array, nx: number, ny: number): RowSource {
-  const channels = Q.length / (nx * ny);
-  const cut = (planes: Float64Array, from: number, to: number): Float64Array => {
-    const pixels = (to - from) * nx;
-    const rows = new Float64Array(channels * pixels);
-    for (let channel = 0; channel < channels; channel++) {
-      const start = (channel * ny + from) * nx;
-      rows.set(planes.subarray(start, start + pixels), channel * pixels);
-    }
-    return rows;
-  };
-  return { nx, ny, rows: (from, to) => ({ Q: cut(Q, from, to), U: cut(U, from, to) }) };
-}

@@ -10,11 +10,11 @@ describe('gyrelight map', () => {
     needPython(context, 'astropy', 'numpy');
     inFolder((folder) => {
       writeFileSync(join(folder, 'any name at all.yaml'), smallScene);
-      const { status, stderr } = gyrelight(['map', 'any name at all.yaml', '--out', 'maps', '--workers', '2'], folder);
+      const { status, stderr } = gyrelight(['map', 'any name at all.yaml', '--out', 'maps', '--workers', '2', '--origin'], folder);
       expect(stderr).not.toContain('Error');
       expect(status).toBe(0);
       const names = namesIn(join(folder, 'maps'));
-      for (const name of ['I-low.fits', 'Q-low.fits', 'U-low.fits', 'P-low.fits', 'fraction-low.fits', 'chi-low.fits', 'originHeight-low.fits', 'I-high.fits', 'RM.fits', 'RM-error.fits', 'faradayDepth.fits', 'summary.json', 'overview.svg']) {
+      for (const name of ['I-low.fits', 'Q-low.fits', 'U-low.fits', 'P-low.fits', 'fraction-low.fits', 'chi-low.fits', 'originHeight-low.fits', 'originMedian-low.fits', 'originLow-low.fits', 'originHigh-high.fits', 'nearShare-low.fits', 'cancelledShare-low.fits', 'I-high.fits', 'RM.fits', 'RM-error.fits', 'faradayDepth.fits', 'summary.json', 'overview.svg']) {
         expect(names).toContain(name);
       }
       for (const name of names.filter((file) => file.endsWith('.fits'))) {

@@ -1,11 +1,17 @@
-import { readFileSync, writeFileSync } from 'node:fs';
+import { Command } from 'commander';
+import { mkdtempSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
+import { tmpdir } from 'node:os';
 import { join } from 'node:path';
-import { describe, expect, it } from 'vitest';
+import { afterAll, beforeAll, describe, expect, it } from 'vitest';
+import { addMeasure } from '../../src/cli/measure.ts';
+import { InputError } from '../../src/units/input-error.ts';
 import { fitsVerdict, inFolder, needCommand, needPython, pythonJson, runPython } from '../support/tools.ts';
 import { gyrelight, namesIn, smallScene } from './run.ts';
 
 interface Summary {
   readonly layout: string;
+  readonly bands: readonly { readonly rmGradient?: { readonly error: number } }[];
+  readonly rmGradientChange?: { readonly error: number };
   readonly depthSpectrum: { readonly resolution: number };
   readonly rings: readonly { readonly quantity: string; readonly harmonics?: readonly { readonly order: number; readonly phaseDeg: number }[] }[];
   readonly integratedLaws: readonly { readonly law: string; readonly parameters: Readonly<Record<string, { readonly value: number; readonly error: number }>> }[];
@@ -34,6 +40,19 @@ for name, nus in (('low', np.linspace(1.3e9, 1.7e9, 9)), ('high', np.array([4.8e
         fits.PrimaryHDU((plane if name == 'low' else plane[0]).astype('f4'), h).writeto(f'{sys.argv[1]}/{s}-{name}.fits')
 `;
 
+/** A folder with the small scene and its maps, made once for all tests that need some. */
+let shared = '';
+
+beforeAll(() => {
+  shared = mkdtempSync(join(tmpdir(), 'gyrelight-measure-'));
+  writeFileSync(join(shared, 's.yaml'), smallScene);
+  expect(gyrelight(['map', 's.yaml', '--out', 'maps', '--quiet'], shared).status).toBe(0);
+});
+
+afterAll(() => rmSync(shared, { recursive: true, force: true }));
+
+const ownMaps = ['low', 'high'].flatMap((band) => ['I', 'Q', 'U'].map((stokes) => `maps/${stokes}-${band}.fits`));
+const ring = ['--radii', '4 kpc,5 kpc', '--sectors', '4'];
 const lies = ['--inclination', '0 deg', '--position-angle', '0 deg', '--distance', '10 Mpc'];
 
 describe('gyrelight measure', () => {
@@ -47,6 +66,7 @@ describe('gyrelight measure', () => {
       expect(stderr).not.toMatch(/Error/);
       expect(status).toBe(0);
       expect(stdout).toMatch(/resolution .* largest depth .* largest scale /);
+      expect(stdout).toMatch(/threshold 5 times the noise: .* false peak with a chance of 0\.00/);
       for (const name of ['RM.fits', 'RM-error.fits', 'faraday-spectrum.fits', 'fieldAngle.fits', 'profiles.csv', 'laws.csv', 'summary.json', 'plots']) expect(namesIn(join(folder, 'm'))).toContain(name);
       for (const name of namesIn(join(folder, 'm')).filter((file) => file.endsWith('.fits'))) {
         expect(fitsVerdict(new Uint8Array(readFileSync(join(folder, 'm', name)))), name).toMatch(/found 0 warning.* and 0 error/);
@@ -82,83 +102,105 @@ print(json.dumps(dict(units=[str(t[c].unit) for c in ('RM','P','azimuth','inner'
   });
 
   it("measures this program's own maps, whose headers say all", () => {
-    inFolder((folder) => {
-      writeFileSync(join(folder, 's.yaml'), smallScene);
-      expect(gyrelight(['map', 's.yaml', '--out', 'maps', '--quiet'], folder).status).toBe(0);
-      const files = ['low', 'high'].flatMap((band) => ['I', 'Q', 'U'].map((stokes) => `maps/${stokes}-${band}.fits`));
-      const { status, stdout } = gyrelight(['measure', ...files, '--galaxy', 's.yaml', '--laws', 'pixels', '--radii', '4 kpc,5 kpc', '--sectors', '4', '--thermal-fraction', '0.1', '--thermal-at', '1.4 GHz', '--deconvolve', '--origin', '--json', '--out', 'm'], folder);
-      expect(status).toBe(0);
-      const summary = JSON.parse(stdout) as Summary;
-      expect(summary.layout).toBe('rings');
-      expect(summary.integratedLaws.length).toBeGreaterThan(5);
-      expect(namesIn(join(folder, 'm', 'laws'))).toContain('best.fits');
-      expect(readFileSync(join(folder, 'm', 'origin.csv'), 'utf8')).toMatch(/^low,1400000000,4,5,0,nan,-?\d/m);
-    });
+    const { status, stdout } = gyrelight(['measure', ...ownMaps, '--galaxy', 's.yaml', '--laws', 'pixels', '--sums', ...ring, '--thermal-fraction', '0.1', '--thermal-at', '1.4 GHz', '--deconvolve', '--origin', '--json', '--out', 'own'], shared);
+    expect(status).toBe(0);
+    const summary = JSON.parse(stdout) as Summary;
+    expect(summary.layout).toBe('rings');
+    expect(summary.integratedLaws.map(({ law }) => law)).toEqual(expect.arrayContaining(['burn-slab', 'thin-screen+thin-screen']));
+    expect(namesIn(join(shared, 'own', 'laws'))).toEqual(expect.arrayContaining(['best.fits', 'p.fits', 'p-error.fits', 'lead.fits']));
+    expect(readFileSync(join(shared, 'own', 'origin.csv'), 'utf8')).toMatch(/^low,1400000000,4,5,0,nan,-?\d/m);
+    for (const name of ['originMedian', 'originLow', 'originHigh', 'nearShare', 'cancelledShare']) expect(namesIn(join(shared, 'own'))).toContain(`${name}-high.fits`);
+    // Both bands have an RM of their own: its gradient, and the change of that with wavelength, each with an error.
+    expect(summary.bands.map(({ rmGradient }) => (rmGradient?.error ?? 0) > 0)).toEqual([true, true]);
+    expect(summary.rmGradientChange?.error).toBeGreaterThan(0);
+    expect(summary.files).toEqual(expect.arrayContaining(['faraday-spectrum.fits', 'laws/best.fits', 'originMedian-low.fits']));
   });
 
-  it('reads cubes beyond --memory by rows: the same depths, byte for byte', () => {
-    inFolder((folder) => {
-      writeFileSync(join(folder, 's.yaml'), smallScene.replace('pixels: [22, 21]', 'pixels: [61, 60]').replace('24 arcsec', '12 arcsec').replace('to: 1.5 GHz, channels: 4', 'to: 1.9 GHz, channels: 12'));
-      expect(gyrelight(['map', 's.yaml', '--out', 'maps', '--quiet'], folder).status).toBe(0);
-      const common = ['measure', 'maps/Q-low.fits', 'maps/U-low.fits', '--galaxy', 's.yaml', '--laws', 'none'];
-      const whole = gyrelight([...common, '--out', 'whole'], folder);
-      const rows = gyrelight([...common, '--out', 'rows', '--memory', '1'], folder);
-      expect([whole.status, rows.status]).toEqual([0, 0]);
-      for (const name of ['RM.fits', 'RM-error.fits', 'faraday-spectrum.fits', 'fieldAngle.fits']) {
-        const [a, b] = ['whole', 'rows'].map((out) => readFileSync(join(folder, out, name)));
-        // The tables of provenance tell the two commands apart; the data stand before them, behind a header of one length.
-        const data = (bytes: Buffer): Buffer => bytes.subarray(5760, bytes.indexOf('XTENSION') - 2880);
-        expect(data(a).length, name).toBeGreaterThan(5000);
-        expect(data(a).equals(data(b)), name).toBe(true);
-      }
-      expect(readFileSync(join(folder, 'rows', 'profiles.csv'), 'utf8')).toMatch(/^peak,/m);
-      const refused = gyrelight(['measure', 'maps/Q-low.fits', '--galaxy', 's.yaml', '--memory', '1', '--out', 'o'], folder);
-      expect(refused.status).toBe(2);
-      expect(refused.stderr).toMatch(/one cube of Q and one of U/);
-    });
+  it('reads maps beyond --memory by rows: the same maps, profiles and laws', () => {
+    const common = ['measure', ...ownMaps, '--galaxy', 's.yaml', '--laws', 'pixels', ...ring, '--thermal-fraction', '0.1'];
+    const whole = gyrelight([...common, '--out', 'whole'], shared);
+    const rows = gyrelight([...common, '--memory', '0.1', '--out', 'rows'], shared);
+    expect([whole.status, rows.status]).toEqual([0, 0]);
+    expect(whole.stdout).not.toMatch(/rows are read/);
+    expect(rows.stdout).toMatch(/the maps are large \(--memory\): their rows are read/);
+    // One number with an error in the terminal, too.
+    expect(rows.stdout).toMatch(/RM gradient along 25 deg, low: \S+ \+- \S+ rad\/m\^2 per kpc\n.*high: .*\nits change with wavelength: \S+ \+- \S+ rad/);
+    const names = namesIn(join(shared, 'whole'));
+    expect(namesIn(join(shared, 'rows'))).toEqual(names);
+    const files = [...names.filter((name) => name.endsWith('.fits')), ...namesIn(join(shared, 'whole', 'laws')).map((name) => join('laws', name))];
+    expect(files.length).toBeGreaterThan(15);
+    for (const name of files) {
+      const [a, b] = ['whole', 'rows'].map((out) => readFileSync(join(shared, out, name)));
+      // The tables of provenance tell the two commands apart; the data stand before them, behind a header of one length.
+      const data = (bytes: Buffer): Buffer => bytes.subarray(5760, bytes.indexOf('XTENSION') - 2880);
+      expect(data(a).equals(data(b)), name).toBe(true);
+    }
+    for (const name of ['profiles.csv', 'laws.csv', 'summary.json']) expect(readFileSync(join(shared, 'rows', name), 'utf8'), name).toBe(readFileSync(join(shared, 'whole', name), 'utf8'));
+  });
+
+  it('smooths large maps plane by plane, to single precision the same', (context) => {
+    needPython(context, 'astropy', 'numpy');
+    const common = ['measure', 'maps/Q-low.fits', 'maps/U-low.fits', '--galaxy', 's.yaml', '--laws', 'integrated', ...ring, '--smooth', '90 arcsec'];
+    expect(gyrelight([...common, '--out', 'smooth'], shared).status).toBe(0);
+    const rows = gyrelight([...common, '--memory', '0.1', '--out', 'smooth-rows'], shared);
+    expect(rows.status).toBe(0);
+    expect(rows.stdout).toMatch(/smoothed to 90 x 90 arcsec; its noise becomes/);
+    const worst = pythonJson(
+      `
+import sys, json, numpy as np
+from astropy.io import fits
+from astropy.table import Table
+a, b = [fits.getdata(f'{sys.argv[1]}/{d}/faraday-spectrum.fits') for d in ('smooth', 'smooth-rows')]
+p, q = [Table.read(f'{sys.argv[1]}/{d}/laws.csv', format='ascii.ecsv')['chi2'] for d in ('smooth', 'smooth-rows')]
+print(json.dumps([float(np.abs(a - b).max() / a.max()), float(np.abs(p / q - 1).max())]))
+`,
+      [shared],
+    ) as [number, number];
+    // Six digits of single precision; chi^2 of signal to noise 100 feels them a hundredfold.
+    expect(worst[0]).toBeLessThan(3e-7);
+    expect(worst[1]).toBeLessThan(1e-3);
   });
 
   it('cuts a disc near edge-on into strips', () => {
-    inFolder((folder) => {
-      writeFileSync(join(folder, 's.yaml'), smallScene.replace('inclination: 40 deg', 'inclination: 88 deg'));
-      expect(gyrelight(['map', 's.yaml', '--out', 'maps', '--quiet'], folder).status).toBe(0);
-      const { status, stdout } = gyrelight(['measure', 'maps/Q-low.fits', 'maps/U-low.fits', '--galaxy', 's.yaml', '--laws', 'none', '--json', '--out', 'm'], folder);
-      expect(status).toBe(0);
-      expect((JSON.parse(stdout) as Summary).layout).toBe('strips');
-      expect(readFileSync(join(folder, 'm', 'profiles.csv'), 'utf8')).toMatch(/^band,frequency,from,to,across,/m);
-    });
+    const { status, stdout } = gyrelight(['measure', 'maps/Q-low.fits', 'maps/U-low.fits', '--inclination', '88 deg', '--position-angle', '25 deg', '--distance', '10 Mpc', '--laws', 'none', '--json', '--out', 'strips'], shared);
+    expect(status).toBe(0);
+    expect((JSON.parse(stdout) as Summary).layout).toBe('strips');
+    expect(readFileSync(join(shared, 'strips', 'profiles.csv'), 'utf8')).toMatch(/^band,frequency,from,to,across,/m);
   });
 
-  it('refuses bad input with words: exit 2, nothing written, no stack', () => {
-    inFolder((folder) => {
-      writeFileSync(join(folder, 's.yaml'), smallScene);
-      expect(gyrelight(['map', 's.yaml', '--out', 'maps', '--quiet'], folder).status).toBe(0);
-      const [Q, U] = ['maps/Q-low.fits', 'maps/U-low.fits'];
-      const cases: readonly (readonly [readonly string[], RegExp])[] = [
-        [[Q, U], /--inclination.*not known/],
-        [[Q, U, '--galaxy', 's.yaml', '--distance', '3 Mpc'], /leave --distance out/],
-        [[Q, U, ...lies, '--origin'], /--origin: .*--galaxy SCENE/],
-        [[Q, '--galaxy', 's.yaml'], /no Stokes U goes with it/],
-        [[Q, U, 'maps/U-low.fits', '--galaxy', 's.yaml'], /given twice/],
-        [[Q, 'nowhere.fits', '--galaxy', 's.yaml'], /no such file/],
-        [[Q, 's.yaml', '--galaxy', 's.yaml'], /not a FITS file/],
-        [['maps/RM.fits', '--galaxy', 's.yaml'], /Stokes/],
-        [[Q, U, '--galaxy', 's.yaml', '--radii', '4 kpc,2 kpc'], /rise/],
-        [[Q, U, '--galaxy', 's.yaml', '--radii', '4,2'], /--radii 4,2: .*unit/],
-        [[Q, U, '--galaxy', 's.yaml', '--sectors', '0'], /--sectors 0/],
-        [[Q, U, '--galaxy', 's.yaml', '--depths', '1 rad/m^2'], /--depths/],
-        [[Q, U, '--galaxy', 's.yaml', '--smooth', '10 arcsec'], /narrower/],
-        [[Q, U, '--galaxy', 's.yaml', '--thermal-fraction', '2'], /--thermal-fraction 2/],
-        [[Q, U, '--galaxy', 's.yaml', '--noise', '1 kpc'], /--noise 1 kpc/],
-        [[Q, U, ...['--inclination', '40 deg', '--position-angle', '0 deg', '--distance', '10 Mpc', '--centre', '10 deg,10 deg']], /no pixel of the maps/],
-      ];
-      for (const [parameters, pattern] of cases) {
-        const { status, stderr } = gyrelight(['measure', ...parameters, '--out', 'o', '--quiet'], folder);
-        expect(stderr, parameters.join(' ')).toMatch(pattern);
-        expect(status).toBe(2);
-        expect(stderr).not.toMatch(/\n\s+at /);
-      }
-      expect(namesIn(folder)).toEqual(['maps', 's.yaml']);
-    });
+  it('refuses bad input with words: exit 2, nothing written, no stack', async () => {
+    const before = namesIn(shared);
+    const [Q, U, scene] = ['maps/Q-low.fits', 'maps/U-low.fits', 's.yaml'].map((name) => join(shared, name));
+    const cases: readonly (readonly [readonly string[], RegExp])[] = [
+      [[Q, U], /--inclination.*not known/],
+      [[Q, U, '--galaxy', scene, '--distance', '3 Mpc'], /leave --distance out/],
+      [[Q, U, ...lies, '--origin'], /--origin: .*--galaxy SCENE/],
+      [[Q, '--galaxy', scene], /no Stokes U goes with it/],
+      [[Q, U, U, '--galaxy', scene], /given twice/],
+      [[Q, join(shared, 'nowhere.fits'), '--galaxy', scene], /no such file/],
+      [[Q, scene, '--galaxy', scene], /not a FITS file/],
+      [[join(shared, 'maps/RM.fits'), '--galaxy', scene], /Stokes/],
+      [[Q, U, '--galaxy', scene, '--radii', '4 kpc,2 kpc'], /rise/],
+      [[Q, U, '--galaxy', scene, '--radii', '4,2'], /--radii 4,2: .*unit/],
+      [[Q, U, '--galaxy', scene, '--sectors', '0'], /--sectors 0/],
+      [[Q, U, '--galaxy', scene, '--depths', '1 rad/m^2'], /--depths/],
+      [[Q, U, '--galaxy', scene, '--smooth', '10 arcsec'], /narrower/],
+      [[Q, U, '--galaxy', scene, '--thermal-fraction', '2'], /--thermal-fraction 2/],
+      [[Q, U, '--galaxy', scene, '--noise', '1 kpc'], /--noise 1 kpc/],
+      [[Q, '--galaxy', scene, '--memory', '0.1'], /no Stokes U goes with it/],
+      [[Q, U, '--inclination', '40 deg', '--position-angle', '0 deg', '--distance', '10 Mpc', '--centre', '10 deg,10 deg'], /no pixel of the maps/],
+    ];
+    for (const [parameters, pattern] of cases) {
+      const program = new Command().exitOverride();
+      addMeasure(program);
+      const run = program.parseAsync(['measure', ...parameters, '--out', join(shared, 'refused'), '--quiet'], { from: 'user' });
+      await expect(run, parameters.join(' ')).rejects.toThrow(pattern);
+      await expect(run).rejects.toBeInstanceOf(InputError);
+    }
+    const { status, stderr } = gyrelight(['measure', 'maps/Q-low.fits', '--galaxy', 's.yaml', '--out', 'refused', '--quiet'], shared);
+    expect(status).toBe(2);
+    expect(stderr).toMatch(/no Stokes U goes with it/);
+    expect(stderr).not.toMatch(/\n\s+at /);
+    expect(namesIn(shared)).toEqual(before);
   });
 });

@@ -1,8 +1,10 @@
 import { readFileSync, writeFileSync } from 'node:fs';
+import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { expect, test } from 'vitest';
 import { streamDepthCube } from '../../src/files/depth-cube-stream.ts';
 import { openCubeRows } from '../../src/files/fits-rows.ts';
+import { makeScratchCube } from '../../src/files/scratch-cube.ts';
 import { readFits } from '../../src/files/fits-read.ts';
 import { skyImageFromFits } from '../../src/files/sky-fits-read.ts';
 import { depthCubeFits, stokesFits } from '../../src/files/sky-fits-write.ts';
@@ -27,6 +29,7 @@ test('rows of a cube are those of the whole, for even channels and a table of th
       for (let channel = 0; channel < 3; channel++) {
         expect([...(rows?.subarray(channel * 10, channel * 10 + 10) ?? [])]).toEqual([...whole.values.subarray(channel * 20 + 5, channel * 20 + 15)]);
       }
+      expect([...(open?.plane(2) ?? [])]).toEqual([...whole.values.subarray(40, 60)]);
       open?.close();
       writeFileSync(path, readFileSync(path).subarray(0, 5800));
       expect(() => openCubeRows(path, 'cut.fits')).toThrow(/cut\.fits.*is it cut/);
@@ -55,5 +58,27 @@ test('a cube written rows by rows is, byte for byte, the one written whole', (co
     const other = streamDepthCube(path.replace('cube', 'other'), about, provenance);
     other.abandon();
     expect(namesIn(join(folder, 'out'))).toEqual(['cube.fits']);
+    // A folder made for it goes with it.
+    streamDepthCube(join(folder, 'new', 'cube.fits'), about, provenance).abandon();
+    expect(namesIn(folder)).toEqual(['out']);
   });
 });
+
+test('a scratch cube gives back rows and planes in single precision, and is gone when closed', () => {
+  const before = scratchFiles();
+  const cube = makeScratchCube(3, 4, 2);
+  const planes = [0, 1].map((channel) => Float64Array.from({ length: 12 }, (_, k) => (k === 5 ? NaN : Math.sin(12 * channel + k))));
+  // In any order.
+  [1, 0].forEach((channel) => cube.write(channel, planes[channel]));
+  const single = planes.map((plane) => plane.map(Math.fround));
+  expect([...cube.plane(1)]).toEqual([...single[1]]);
+  expect([...cube.rows(1, 3)]).toEqual([...single[0].subarray(3, 9), ...single[1].subarray(3, 9)]);
+  expect(scratchFiles().length).toBe(before.length + 1);
+  cube.close();
+  cube.close();
+  expect(scratchFiles()).toEqual(before);
+});
+
+function scratchFiles(): readonly string[] {
+  return namesIn(tmpdir()).filter((name) => name.endsWith('.scratch'));
+}

@@ -2,32 +2,17 @@ import { expect, test } from 'vitest';
 import { originProfiles } from '../../src/measure/origin-profile.ts';
 import { localBackend } from '../../src/ray/job.ts';
 import { faradayDepthPerKpc } from '../../src/ray/synchrotron.ts';
-import { parseScene } from '../../src/scene/parse-scene.ts';
-import type { Scene } from '../../src/scene/types.ts';
 import { gridOffsetsKpc } from '../../src/sky/grid.ts';
 import { observe } from '../../src/sky/observe.ts';
 import { lambda2M2 } from '../../src/sky/wavelength.ts';
 import { referenceScene } from './ring-light.ts';
-
-/** A uniform slab of half thickness 1 kpc seen face-on, B = (3, 0, along) uG, n_e in cm^-3. */
-function slab(electrons: number, along: number, inclination = 0): Scene {
-  return parseScene(
-    `gyrelight: 1
-galaxy: {distance: 10 Mpc, inclination: ${inclination} deg, positionAngle: 0 deg, volume: {radius: 20 kpc, height: 2 kpc}}
-field: [{model: uniform, x: 3 uG, y: 0 uG, z: ${along} uG}]
-thermalElectrons: [{model: slab, density: ${electrons} cm^-3, halfThickness: 1 kpc}]
-cosmicRays: {index: 3, layers: [{model: slab, normalisation: 1e-5 cm^-3, halfThickness: 1 kpc}]}
-observation: {image: {pixels: 3, pixel: 1 kpc}, bands: [{name: L, at: [1.4 GHz]}]}
-`,
-    'slab.scene.yaml',
-  );
-}
+import { slabScene } from './slab-scene.ts';
 
 const centre = { northKpc: Float64Array.of(0), eastKpc: Float64Array.of(0) };
 const at = (frequencyHz: number) => [{ frequencyHz, centreHz: frequencyHz }];
 
 test('without rotation the whole slab is seen evenly', () => {
-  const [[layer]] = originProfiles(slab(0, 2), centre, at(1.4e9), [0], 1);
+  const [[layer]] = originProfiles(slabScene(0, 2), centre, at(1.4e9), [0], 1);
   // Heights fall into bins of 2 pc.
   expect(Math.abs(layer.lowKpc + 0.68)).toBeLessThan(0.005);
   expect(Math.abs(layer.medianKpc)).toBeLessThan(0.005);
@@ -43,7 +28,7 @@ test("Burn's slab: shares cos(R lambda^2 t), by closed forms, from both sides", 
   const along = 2;
   const electrons = a / lambda2M2(1.4e9) / (faradayDepthPerKpc * along * 2);
   for (const inclination of [0, 180]) {
-    const [[layer]] = originProfiles(slab(electrons, along, inclination), centre, at(1.4e9), [0], 1);
+    const [[layer]] = originProfiles(slabScene(electrons, along, inclination), centre, at(1.4e9), [0], 1);
     // Positive where |t| < pi/(2 a): cumulative (1 + sin(a t))/2.
     const quantile = Math.asin(2 * 0.84 - 1) / a;
     expect(Math.abs(layer.highKpc - quantile)).toBeLessThan(0.005);
@@ -55,7 +40,7 @@ test("Burn's slab: shares cos(R lambda^2 t), by closed forms, from both sides", 
 });
 
 test('a turbulent slab is seen at its near face', () => {
-  const turbulent = { ...slab(0.05, 0), turbulence: { unresolved: { rmsUG: 2, cellKpc: 0.05 } } };
+  const turbulent = { ...slabScene(0.05, 0), turbulence: { unresolved: { rmsUG: 2, cellKpc: 0.05 } } };
   for (const [inclination, sign] of [[0, 1], [180, -1]]) {
     const turned = { ...turbulent, galaxy: { ...turbulent.galaxy, inclination: (inclination * Math.PI) / 180 } };
     const [[long, short]] = originProfiles(turned, centre, [...at(1e9), ...at(3e10)], [0], 1);

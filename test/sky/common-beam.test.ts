@@ -2,9 +2,10 @@ import { expect, test } from 'vitest';
 import { randomStream } from '../../src/math/random.ts';
 import type { Beam } from '../../src/scene/types.ts';
 import { beamConvolver, beamSolidAngleSr, pixelBeam } from '../../src/sky/beam.ts';
-import { beamBetween, commonBeam, convolveTo } from '../../src/sky/common-beam.ts';
+import { beamBetween, beamChange, commonBeam, type PlaneFrame } from '../../src/sky/common-beam.ts';
 import { wcsFromGrid } from '../../src/sky/grid.ts';
 import { noiseMaker } from '../../src/sky/noise.ts';
+import type { BrightnessUnit } from '../../src/sky/types.ts';
 import { pixelAreaSr } from '../../src/sky/wcs.ts';
 import { smallGrid } from './cubes.ts';
 import { largestDifference, relativeError } from './compare.ts';
@@ -22,6 +23,12 @@ function point(beam: Beam, peak: number): Float64Array {
   plane[32 * n + 32] = (peak * beamSolidAngleSr(beam)) / pixelAreaSr(wcs);
   beamConvolver(pixelBeam(beam, wcs.cd), n, n)(plane);
   return plane;
+}
+
+/** One plane brought to another beam, or itself. */
+function convolveTo(map: PlaneFrame & { values: Float64Array }, from: Beam, to: Beam, unit: BrightnessUnit): { values: Float64Array; noiseFactor: number } {
+  const change = beamChange(map, from, to, unit);
+  return change ? { values: change.plane(map.values), noiseFactor: change.noiseFactor } : { values: map.values, noiseFactor: 1 };
 }
 
 test('a point seen with one beam becomes the point seen with the other, in either unit', () => {
