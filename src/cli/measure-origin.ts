@@ -42,6 +42,8 @@ function originCsv(data: MapData, layout: Layout, frequenciesHz: readonly number
       { name: 'near', type: 'float64', values: column(({ layer }) => layer.nearShare), description: 'share from before the plane of the disc' },
       { name: 'far', type: 'float64', values: column(({ layer }) => layer.farShare), description: 'share from behind it' },
       { name: 'cancelled', type: 'float64', values: column(({ layer }) => layer.cancelledShare), description: 'part of all shares that others cancel' },
+      { name: 'seen_depth', unit: 'rad/m2', type: 'float64', values: column(({ layer }) => layer.seenDepth), description: 'mean Faraday depth of the light seen, without the foreground' },
+      { name: 'whole_depth', unit: 'rad/m2', type: 'float64', values: column(({ layer }) => layer.wholeDepth), description: 'Faraday depth through the whole galaxy, mean of the rays, without the foreground' },
       { name: 'rays', type: 'int64', values: column(({ layer }) => layer.rays), description: 'pixels that count' },
     ],
     meta,

@@ -16,6 +16,9 @@ export interface OriginLayer {
   readonly farShare: number;
   /** Part of all shares, by size, that others cancel. */
   readonly cancelledShare: number;
+  /** Mean Faraday depth of the light seen, weighted as the mean height; and through the whole galaxy, averaged over rays; rad m^-2. */
+  readonly seenDepth: number;
+  readonly wholeDepth: number;
   /** Rays that count: those whose |P| is at least 1 % of what they emit. */
   readonly rays: number;
 }
@@ -29,6 +32,8 @@ interface LayerSums {
   readonly positive: Float64Array;
   sum: number;
   heightSum: number;
+  depthSum: number;
+  wholeDepthSum: number;
   negative: number;
   near: number;
   rays: number;
@@ -51,7 +56,7 @@ export function makeOriginProfiles(
   frequencies: number,
 ): { readonly take: (region: number, pieces: OriginPieces) => void; readonly layers: () => OriginLayer[][] } {
   const near = nearSide(inclination);
-  const noSums = (): LayerSums => ({ positive: new Float64Array(bins), sum: 0, heightSum: 0, negative: 0, near: 0, rays: 0 });
+  const noSums = (): LayerSums => ({ positive: new Float64Array(bins), sum: 0, heightSum: 0, depthSum: 0, wholeDepthSum: 0, negative: 0, near: 0, rays: 0 });
   const sums = Array.from({ length: count }, () => Array.from({ length: frequencies }, noSums));
   return {
     take: (region, pieces) => sums[region].forEach((layer, f) => addRay(layer, pieces, f, heightKpc, near)),
@@ -67,7 +72,7 @@ export function originProfiles(scene: Scene, bundle: RayBundle, spectrum: readon
   return layers();
 }
 
-function addRay(layer: LayerSums, { count, z, shares, emitted }: OriginPieces, frequency: number, heightKpc: number, near: number): void {
+function addRay(layer: LayerSums, { count, z, depth, wholeDepth, shares, emitted }: OriginPieces, frequency: number, heightKpc: number, near: number): void {
   const w = shares[frequency];
   let P = 0;
   for (let k = 0; k < count; k++) P += w[k];
@@ -75,6 +80,7 @@ function addRay(layer: LayerSums, { count, z, shares, emitted }: OriginPieces, f
   for (let k = 0; k < count; k++) {
     layer.sum += w[k];
     layer.heightSum += w[k] * z[k];
+    layer.depthSum += w[k] * depth[k];
     if (w[k] < 0) layer.negative -= w[k];
     else {
       const bin = Math.floor(((z[k] + heightKpc) / (2 * heightKpc)) * bins);
@@ -82,12 +88,13 @@ function addRay(layer: LayerSums, { count, z, shares, emitted }: OriginPieces, f
       if (Number.isNaN(near) || near * z[k] > 0) layer.near += Number.isNaN(near) ? NaN : w[k];
     }
   }
+  layer.wholeDepthSum += wholeDepth;
   layer.rays++;
 }
 
-function layerOf({ positive, sum, heightSum, negative, near, rays }: LayerSums, heightKpc: number): OriginLayer {
+function layerOf({ positive, sum, heightSum, depthSum, wholeDepthSum, negative, near, rays }: LayerSums, heightKpc: number): OriginLayer {
   const total = positive.reduce((all, value) => all + value, 0);
-  if (rays === 0 || total === 0) return { lowKpc: NaN, medianKpc: NaN, highKpc: NaN, meanKpc: NaN, nearShare: NaN, farShare: NaN, cancelledShare: NaN, rays };
+  if (rays === 0 || total === 0) return { lowKpc: NaN, medianKpc: NaN, highKpc: NaN, meanKpc: NaN, nearShare: NaN, farShare: NaN, cancelledShare: NaN, seenDepth: NaN, wholeDepth: NaN, rays };
   const at = (share: number): number => {
     let below = 0;
     for (let bin = 0; bin < bins; bin++) {
@@ -107,6 +114,8 @@ function layerOf({ positive, sum, heightSum, negative, near, rays }: LayerSums, 
     nearShare: near / total,
     farShare: 1 - near / total,
     cancelledShare: negative / (negative + total),
+    seenDepth: depthSum / sum,
+    wholeDepth: wholeDepthSum / rays,
     rays,
   };
 }

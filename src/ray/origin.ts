@@ -12,6 +12,9 @@ export interface OriginPieces {
   readonly count: number;
   /** Height of each piece, kpc; positive along the spin. */
   readonly z: Float64Array;
+  /** Faraday depth between each piece and the observer, and through the whole galaxy, rad m^-2; no foreground. */
+  readonly depth: Float64Array;
+  readonly wholeDepth: number;
   /** Net share of each piece at each frequency, w ds, [frequency][piece]; may be negative. Its sum is |P|, its unit free. */
   readonly shares: readonly Float64Array[];
   /** What each frequency's pieces would give if all were in phase and undamped: integral of |j_P| ds in that unit. */
@@ -42,6 +45,7 @@ export function walkOrigins(scene: Scene, bundle: RayBundle, spectrum: readonly 
   const out = integrand.program.outputs.map(() => new Float64Array(panelNodes));
   const most = mostBreaks * mostPanels * panelNodes;
   let z = new Float64Array(4096);
+  let depths = new Float64Array(4096);
   let cosine = spectrum.map(() => new Float64Array(4096));
   let sine = spectrum.map(() => new Float64Array(4096));
   const emitted = new Float64Array(spectrum.length);
@@ -70,6 +74,7 @@ export function walkOrigins(scene: Scene, bundle: RayBundle, spectrum: readonly 
         if (count + panelNodes > z.length) {
           if (count >= most) throw new Error('A ray has more pieces than there can be.');
           z = grown(z);
+          depths = grown(depths);
           cosine = cosine.map(grown);
           sine = sine.map(grown);
         }
@@ -87,6 +92,7 @@ export function walkOrigins(scene: Scene, bundle: RayBundle, spectrum: readonly 
           // Nodes run towards the observer, pieces away.
           const at = count + panelNodes - 1 - i;
           z[at] = lanes[2][i];
+          depths[at] = phi;
           const [q, u] = [out[output.cosine][i], out[output.sine][i]];
           for (let f = 0; f < squares.length; f++) {
             const size = half * panelRule.weights[i] * out[output.firstGroup + integrand.groupOf[f]][i];
@@ -104,7 +110,7 @@ export function walkOrigins(scene: Scene, bundle: RayBundle, spectrum: readonly 
         column += wholeColumn;
       }
     }
-    take(ray, { count, z, shares: netShares(cosine, sine, count), emitted });
+    take(ray, { count, z, depth: depths, wholeDepth: depth, shares: netShares(cosine, sine, count), emitted });
   }
 }
 

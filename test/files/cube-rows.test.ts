@@ -1,5 +1,4 @@
 import { readFileSync, writeFileSync } from 'node:fs';
-import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { expect, test } from 'vitest';
 import { streamDepthCube } from '../../src/files/depth-cube-stream.ts';
@@ -65,20 +64,24 @@ test('a cube written rows by rows is, byte for byte, the one written whole', (co
 });
 
 test('a scratch cube gives back rows and planes in single precision, and is gone when closed', () => {
-  const before = scratchFiles();
-  const cube = makeScratchCube(3, 4, 2);
-  const planes = [0, 1].map((channel) => Float64Array.from({ length: 12 }, (_, k) => (k === 5 ? NaN : Math.sin(12 * channel + k))));
-  // In any order.
-  [1, 0].forEach((channel) => cube.write(channel, planes[channel]));
-  const single = planes.map((plane) => plane.map(Math.fround));
-  expect([...cube.plane(1)]).toEqual([...single[1]]);
-  expect([...cube.rows(1, 3)]).toEqual([...single[0].subarray(3, 9), ...single[1].subarray(3, 9)]);
-  expect(scratchFiles().length).toBe(before.length + 1);
-  cube.close();
-  cube.close();
-  expect(scratchFiles()).toEqual(before);
+  const usual = process.env.TMPDIR;
+  inFolder((folder) => {
+    process.env.TMPDIR = folder;
+    try {
+      const cube = makeScratchCube(3, 4, 2);
+      const planes = [0, 1].map((channel) => Float64Array.from({ length: 12 }, (_, k) => (k === 5 ? NaN : Math.sin(12 * channel + k))));
+      // In any order.
+      [1, 0].forEach((channel) => cube.write(channel, planes[channel]));
+      const single = planes.map((plane) => plane.map(Math.fround));
+      expect([...cube.plane(1)]).toEqual([...single[1]]);
+      expect([...cube.rows(1, 3)]).toEqual([...single[0].subarray(3, 9), ...single[1].subarray(3, 9)]);
+      expect(namesIn(folder).length).toBe(1);
+      cube.close();
+      cube.close();
+      expect(namesIn(folder)).toEqual([]);
+    } finally {
+      if (usual === undefined) delete process.env.TMPDIR;
+      else process.env.TMPDIR = usual;
+    }
+  });
 });
-
-function scratchFiles(): readonly string[] {
-  return namesIn(tmpdir()).filter((name) => name.endsWith('.scratch'));
-}

@@ -42,7 +42,7 @@ test("Burn's slab: positive shares where |t| < pi/(2 a), the rest cancels", () =
 });
 
 test('what lies in front is near, whichever pole is turned to the observer; edge-on nothing is', () => {
-  const pieces = { count: 3, z: Float64Array.of(1, 0.5, -1), shares: [Float64Array.of(3, -1, 2)], emitted: Float64Array.of(6) };
+  const pieces = { count: 3, z: Float64Array.of(1, 0.5, -1), depth: Float64Array.of(0, 1, 2), wholeDepth: 3, shares: [Float64Array.of(3, -1, 2)], emitted: Float64Array.of(6) };
   for (const [inclination, near] of [[0.7, 0.6], [2.5, 0.4], [Math.PI / 2, NaN]]) {
     const { maps, take } = makeOriginMaps(inclination, 2, 1);
     take(1, pieces);
