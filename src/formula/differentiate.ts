@@ -26,22 +26,38 @@ const slopes: Readonly<Record<UnaryName, Slope>> = {
   incompleteGamma2: (g, u) => g.multiply(u, g.unary('exp', g.negate(u))),
 };
 
+/** A direction to differentiate along: how fast leaves, and what tables hold, change with one number. */
+export interface Direction {
+  /** d(leaf) of every variable or parameter that changes. */
+  readonly leaves: ReadonlyMap<NodeId, NodeId>;
+  /** Tables whose functions change themselves: the table of the change, and a factor on it. */
+  readonly tables?: ReadonlyMap<string, { readonly table: string; readonly rate: NodeId }>;
+}
+
 /**
  * ∂node/∂leaf as a node of the same graph. The leaf is a variable or a parameter; all other
  * leaves are held fixed, r and x among them: chain rules between coordinates are the caller's.
  * At kinks (abs, min, max, conditions) the derivative of the branch taken.
  */
 export function differentiate(graph: Graph, node: NodeId, leaf: NodeId, memo = new Map<NodeId, NodeId>()): NodeId {
+  return differentiateAlong(graph, node, { leaves: new Map([[leaf, graph.constant(1)]]) }, memo);
+}
+
+/**
+ * The derivative of a node along a direction, as a node of the same graph: forward differentiation
+ * in which equal subexpressions, of values and derivatives alike, are one node. `memo` keeps what
+ * is known between calls for one direction.
+ */
+export function differentiateAlong(graph: Graph, node: NodeId, direction: Direction, memo = new Map<NodeId, NodeId>()): NodeId {
   const known = memo.get(node);
   if (known !== undefined) return known;
-  const result = derivative(graph, node, leaf, (id) => differentiate(graph, id, leaf, memo));
+  const result = direction.leaves.get(node) ?? derivative(graph, node, direction, (id) => differentiateAlong(graph, id, direction, memo));
   memo.set(node, result);
   return result;
 }
 
-function derivative(graph: Graph, id: NodeId, leaf: NodeId, of: (id: NodeId) => NodeId): NodeId {
+function derivative(graph: Graph, id: NodeId, { tables }: Direction, of: (id: NodeId) => NodeId): NodeId {
   const zero = graph.constant(0);
-  if (id === leaf) return graph.constant(1);
   const node = graph.node(id);
   switch (node.kind) {
     case 'constant':
@@ -69,7 +85,9 @@ function derivative(graph: Graph, id: NodeId, leaf: NodeId, of: (id: NodeId) => 
       return graph.select(node.condition, of(node.yes), of(node.no));
     case 'table': {
       const inner = of(node.argument);
-      return inner === zero ? zero : graph.multiply(graph.table(node.table, node.order + 1, node.argument), inner);
+      const along = inner === zero ? zero : graph.multiply(graph.table(node.table, node.order + 1, node.argument), inner);
+      const change = tables?.get(node.table);
+      return change ? graph.add(along, graph.multiply(change.rate, graph.table(change.table, node.order, node.argument))) : along;
     }
     case 'grid': {
       const parts = node.coordinates.map((coordinate, axis) => {
@@ -100,14 +118,27 @@ function binaryDerivative(graph: Graph, id: NodeId, of: (id: NodeId) => NodeId):
       return graph.divide(graph.subtract(graph.multiply(right, dLeft), graph.multiply(left, dRight)), square);
     }
     case 'pow': {
-      const lower = graph.binary('pow', left, graph.subtract(right, graph.constant(1)));
-      const byBase = graph.multiply(right, lower, dLeft);
+      // Where the base cannot vanish, the power at hand serves its own derivative.
+      const lower = isPositive(graph, left) ? graph.divide(id, left) : graph.binary('pow', left, graph.subtract(right, graph.constant(1)));
+      const byBase = dLeft === zero ? zero : graph.multiply(right, lower, dLeft);
       if (dRight === zero) return byBase;
-      return graph.add(byBase, graph.multiply(id, graph.unary('log', left), dRight));
+      // x^n ln x → 0 at x = 0, where the logarithm alone has no value.
+      const byExponent = graph.multiply(id, graph.unary('log', left), dRight);
+      return graph.add(byBase, graph.select(graph.binary('equal', left, zero), zero, byExponent));
     }
     case 'less':
     case 'lessOrEqual':
     case 'equal':
       return zero;
   }
+}
+
+/** Whether a node is a sum of squares and a positive constant: it is never 0. */
+function isPositive(graph: Graph, id: NodeId): boolean {
+  const node = graph.node(id);
+  if (node.kind !== 'sum' || !(node.constant > 0)) return false;
+  return node.terms.every(([coefficient, term]) => {
+    const inner = graph.node(term);
+    return coefficient > 0 && inner.kind === 'product' && inner.coefficient > 0 && inner.factors.every(([, exponent]) => exponent % 2 === 0);
+  });
 }

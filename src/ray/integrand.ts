@@ -6,7 +6,7 @@ import type { SplineGrid } from '../math/spline-grid.ts';
 import type { Table } from '../math/table.ts';
 import type { Scene } from '../scene/types.ts';
 import { freeFreeOpacity, opaqueBrightness, type FreeFree } from './free-free.ts';
-import { riceTables, riceTableShape } from './rice.ts';
+import { findRiceTable, riceTableShape } from './rice.ts';
 import { sceneGrids } from './grids.ts';
 import { parameterValues, SceneGraph, smallestFieldSquared } from './scene-graph.ts';
 import { brightnessPerKpc, faradayDepthPerKpc } from './synchrotron.ts';
@@ -60,7 +60,30 @@ export interface SpectralPoint {
  */
 export function compileIntegrand(scene: Scene, spectrum: readonly SpectralPoint[]): Integrand {
   const graph = new Graph();
-  const fields = new SceneGraph(graph, scene);
+  const { outputs, groupOf, groupFrequenciesHz, hasDispersion, hasAbsorption } = integrandNodes(graph, new SceneGraph(graph, scene), scene, spectrum);
+  const program = lowerGraph(graph, outputs, ['x', 'y', 'z'], coordinateSubstitution(graph));
+  return {
+    program,
+    groupOf,
+    groups: groupFrequenciesHz.length,
+    hasDispersion,
+    hasAbsorption,
+    inputs: (values) => ({ ...integrandInputs(program, values, groupFrequenciesHz), ...(values.freeFree && { freeFree: freeFreeOf(values, spectrum) }) }),
+  };
+}
+
+/** A scene's integrand as nodes of a graph. */
+export interface IntegrandNodes {
+  /** In the order of an integrand's outputs. */
+  readonly outputs: readonly NodeId[];
+  readonly groupOf: readonly number[];
+  readonly groupFrequenciesHz: readonly number[];
+  readonly hasDispersion: boolean;
+  readonly hasAbsorption: boolean;
+}
+
+/** Builds the integrand of a scene for a list of frequencies. */
+export function integrandNodes(graph: Graph, fields: SceneGraph, scene: Scene, spectrum: readonly SpectralPoint[]): IntegrandNodes {
   const [bx, by, bz] = fields.totalField();
   const electrons = fields.electronDensity();
 
@@ -77,16 +100,12 @@ export function compileIntegrand(scene: Scene, spectrum: readonly SpectralPoint[
   const groupOf = emissionGroups(scene, spectrum);
   const groups = Math.max(...groupOf) + 1;
   const normalisations = Array.from({ length: groups }, (_, group) => fields.cosmicRays(group));
-
-  const program = lowerGraph(graph, [faraday, dispersion, ...moments, emissionMeasure, ...normalisations], ['x', 'y', 'z'], coordinateSubstitution(graph));
-  const groupFrequencies = Array.from({ length: groups }, (_, group) => spectrum[groupOf.indexOf(group)].centreHz);
   return {
-    program,
+    outputs: [faraday, dispersion, ...moments, emissionMeasure, ...normalisations],
     groupOf,
-    groups,
+    groupFrequenciesHz: Array.from({ length: groups }, (_, group) => spectrum[groupOf.indexOf(group)].centreHz),
     hasDispersion: rms !== undefined,
     hasAbsorption: scene.freeFree !== undefined,
-    inputs: (values) => ({ ...integrandInputs(program, values, groupFrequencies), ...(values.freeFree && { freeFree: freeFreeOf(values, spectrum) }) }),
   };
 }
 
@@ -116,15 +135,20 @@ function emissionGroups(scene: Scene, spectrum: readonly SpectralPoint[]): reado
   return spectrum.map((point) => distinct.indexOf(point.centreHz));
 }
 
-function integrandInputs(program: Program, scene: Scene, groupFrequenciesHz: readonly number[]): IntegrandInputs {
+/** Run-time inputs of a program made from a scene's integrand; `rates` are values of parameters that are no numbers of the scene. */
+export function integrandInputs(
+  program: Program,
+  scene: Scene,
+  groupFrequenciesHz: readonly number[],
+  rates: ReadonlyMap<string, number> = new Map(),
+): IntegrandInputs {
   const values = parameterValues(scene, groupFrequenciesHz);
   const parameters = Float64Array.from(program.parameters, (name) => {
-    const value = values.get(name);
+    const value = values.get(name) ?? rates.get(name);
     if (value === undefined) throw new Error(`parameter ${name} has no value`);
     return value;
   });
-  const rice = riceTables(scene.cosmicRays.index);
-  const tables = program.tables.map((name) => (name === 'riceTotal' ? rice.total : rice.aligned));
+  const tables = program.tables.map((name) => findRiceTable(name, scene.cosmicRays.index));
   return { parameters, tables, ...gridInputs(program, scene), edges: edgeValues(scene, values) };
 }
 

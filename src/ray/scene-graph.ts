@@ -34,9 +34,11 @@ export function placedComponents(scene: Scene): {
 export class SceneGraph {
   private readonly fieldsByName = new Map<string, Vector>();
 
+  /** `kept`: run-time parameters that stay in the graph although they are unused. */
   constructor(
     private readonly graph: Graph,
     private readonly scene: Scene,
+    private readonly kept: ReadonlySet<string> = new Set(),
   ) {}
 
   totalField(): Vector {
@@ -127,7 +129,10 @@ export class SceneGraph {
 
   use({ path, component }: PlacedComponent): ModelUse {
     const parameters = new Map(
-      Object.keys(component.parameters).map((name) => [name, isUnused(component, name) ? this.graph.constant(0) : this.graph.parameter(`${path}/${name}`)]),
+      Object.keys(component.parameters).map((name) => {
+        const key = `${path}/${name}`;
+        return [name, isUnused(component, name) && !this.kept.has(key) ? this.graph.constant(0) : this.graph.parameter(key)];
+      }),
     );
     return { model: component.model, parameters, choices: component.choices, path };
   }

@@ -7,9 +7,13 @@ import type { RayGeometry } from './path.ts';
 import { exactSineCosine } from './scene-graph.ts';
 import { brightnessPerKpc, intrinsicPolarization, wavelengthSquared } from './synchrotron.ts';
 import { InputError } from '../units/input-error.ts';
+import { compileTangents, type TangentIntegrand } from './tangent-integrand.ts';
+import { makeTangentSums } from './tangent-sums.ts';
+import { makeRayTangents, tangentWriter } from './tangent-trace.ts';
+import { TangentTracer } from './tangent-transfer.ts';
 import { makeRaySums, mostSamples, RayTracer, statedError, type Accuracy, type RaySums } from './transfer.ts';
 import type { RayBundle, RayResult } from './types.ts';
-import { WasmTransfer } from './wasm-tracer.ts';
+import { WasmTransfer, type Derivatives } from './wasm-tracer.ts';
 
 /** What follows rays: WebAssembly SIMD code, or generated JavaScript. */
 export type BackEnd = 'wasm' | 'javascript';
@@ -26,10 +30,28 @@ export interface RayEngine {
   kernel(): Kernel;
   /** The code that follows rays where the back end is WebAssembly. */
   transfer(): WasmTransfer;
+  /** What differentiates rays beside following them, where that is asked for. */
+  readonly tangents?: TangentEngine;
 }
 
-/** Compiles a scene for a spectrum: to WebAssembly where the host has its SIMD instructions, unless told otherwise. */
-export function makeRayEngine(scene: Scene, spectrum: readonly SpectralPoint[], backEnd: BackEnd = hasWasmSimd() ? 'wasm' : 'javascript'): RayEngine {
+/** Derivatives of a scene's rays, ready to be followed. */
+export interface TangentEngine {
+  readonly integrand: TangentIntegrand;
+  kernel(): Kernel;
+  /** The code that follows rays and differentiates them. */
+  transfer(): WasmTransfer;
+}
+
+/**
+ * Compiles a scene for a spectrum: to WebAssembly where the host has its SIMD instructions, unless told
+ * otherwise; with derivatives by the numbers at some paths that `findTangentParameter` knows.
+ */
+export function makeRayEngine(
+  scene: Scene,
+  spectrum: readonly SpectralPoint[],
+  backEnd: BackEnd = hasWasmSimd() ? 'wasm' : 'javascript',
+  tangentPaths: readonly string[] = [],
+): RayEngine {
   const integrand = compileIntegrand(scene, spectrum);
   let kernel: Kernel | undefined;
   let transfer: WasmTransfer | undefined;
@@ -39,6 +61,18 @@ export function makeRayEngine(scene: Scene, spectrum: readonly SpectralPoint[], 
     backEnd,
     kernel: () => (kernel ??= backEnd === 'wasm' ? compileWasm(integrand.program, tableShape) : compileJavaScript(integrand.program)),
     transfer: () => (transfer ??= new WasmTransfer(integrand, wavelengthsOf(spectrum))),
+    ...(tangentPaths.length > 0 && { tangents: makeTangentEngine(scene, spectrum, backEnd, integrand, tangentPaths) }),
+  };
+}
+
+function makeTangentEngine(scene: Scene, spectrum: readonly SpectralPoint[], backEnd: BackEnd, values: Integrand, paths: readonly string[]): TangentEngine {
+  const integrand = compileTangents(scene, spectrum, paths);
+  let kernel: Kernel | undefined;
+  let transfer: WasmTransfer | undefined;
+  return {
+    integrand,
+    kernel: () => (kernel ??= backEnd === 'wasm' ? compileWasm(integrand.program, tableShape) : compileJavaScript(integrand.program)),
+    transfer: () => (transfer ??= new WasmTransfer(values, wavelengthsOf(spectrum), integrand)),
   };
 }
 
@@ -113,6 +147,10 @@ export function traceRays(engine: RayEngine, scene: Scene, bundle: RayBundle, sc
   const [sine, cosine] = [Math.sin(turn), Math.cos(turn)];
   const accuracy = { tolerance: scene.numerics.tolerance, ...scale };
   const indices = Array.from({ length: rays }, (_, k) => from + k);
+  const { tangents } = engine;
+  const derivatives = tangents && makeDerivatives(tangents.integrand, scene);
+  const slopes = tangents && makeRayTangents(tangents.integrand.parameters.length, engine.spectrum.length, rays);
+  const writeSlopes = tangents && tangentWriter(tangents.integrand, scene, engine.spectrum.map(({ frequencyHz }) => frequencyHz), rays);
   let [samples, done] = [0, 0];
   followAll(engine, scene, bundle, indices, accuracy, (index, sums) => {
     const ray = index - from;
@@ -132,8 +170,10 @@ export function traceRays(engine: RayEngine, scene: Scene, bundle: RayBundle, sc
     samples += sums.samples;
     done++;
     refuseNaN(sums, bundle, index);
-  }, budget);
-  return done < rays ? firstRays({ ...result, samples }, done) : { ...result, samples };
+    if (derivatives && slopes) writeSlopes?.(ray, sums, derivatives.sums, slopes);
+  }, budget, derivatives);
+  const whole = { ...result, samples, ...(slopes && { tangents: slopes }) };
+  return done < rays ? firstRays(whole, done) : whole;
 }
 
 /** A result without the rays behind the first `count`. */
@@ -144,8 +184,12 @@ function firstRays(result: RayResult, count: number): RayResult {
     for (let plane = 0; plane * rays < planes.length; plane++) kept.set(planes.subarray(plane * rays, plane * rays + count), plane * count);
     return kept;
   };
-  const { I, Q, U, heightQ, heightU, emittedP, faradayDepth } = result;
-  return { ...result, I: cut(I), Q: cut(Q), U: cut(U), heightQ: cut(heightQ), heightU: cut(heightU), emittedP: cut(emittedP), faradayDepth: cut(faradayDepth) };
+  const { I, Q, U, heightQ, heightU, emittedP, faradayDepth, tangents } = result;
+  return {
+    ...result,
+    I: cut(I), Q: cut(Q), U: cut(U), heightQ: cut(heightQ), heightU: cut(heightU), emittedP: cut(emittedP), faradayDepth: cut(faradayDepth),
+    ...(tangents && { tangents: { I: cut(tangents.I), Q: cut(tangents.Q), U: cut(tangents.U), faradayDepth: cut(tangents.faradayDepth) } }),
+  };
 }
 
 /** How a scene's galaxy is turned and bounded, and where its integrand wants panels to end. */
@@ -163,6 +207,7 @@ function followAll(
   accuracy: Accuracy,
   take: (index: number, sums: RaySums) => void,
   budget = Infinity,
+  derivatives?: Derivatives,
 ): void {
   const inputs = engine.integrand.inputs(scene);
   const geometry = rayGeometry(scene, inputs);
@@ -179,10 +224,14 @@ function followAll(
       refuseEndless(sums, bundle, indices[k], accuracy.tolerance);
       take(indices[k], sums);
     };
-    engine.transfer().follow(inputs, geometry, accuracy, rays, sums, takeNext, budget);
+    const transfer = derivatives && engine.tangents ? engine.tangents.transfer() : engine.transfer();
+    transfer.follow(inputs, geometry, accuracy, rays, sums, takeNext, budget, derivatives);
     return;
   }
-  const tracer = new RayTracer(engine.integrand, engine.kernel(), inputs, geometry, wavelengthsOf(engine.spectrum), accuracy);
+  const wavelengthM2 = wavelengthsOf(engine.spectrum);
+  const { tangents } = engine;
+  const watcher = derivatives && tangents && new TangentTracer(tangents.integrand, tangents.kernel(), derivatives.inputs, geometry, wavelengthM2, derivatives.sums);
+  const tracer = new RayTracer(engine.integrand, engine.kernel(), inputs, geometry, wavelengthM2, accuracy, watcher);
   let left = budget;
   for (const index of indices) {
     if (left <= 0) return;
@@ -200,6 +249,10 @@ export function pickRays(count: number): readonly number[] {
   const picked = new Set<number>([Math.floor(count / 2)]);
   for (let k = 0; picked.size < scaleRays; k++) picked.add(Math.floor(((k * golden) % 1) * count));
   return [...picked].sort((a, b) => a - b);
+}
+
+function makeDerivatives(integrand: TangentIntegrand, scene: Scene): Derivatives {
+  return { inputs: integrand.inputs(scene), sums: makeTangentSums(integrand.groupOf.length, integrand.parameters.length) };
 }
 
 function spectralFactors(engine: RayEngine, scene: Scene): Float64Array {

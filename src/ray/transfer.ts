@@ -43,6 +43,13 @@ export function makeRaySums(count: number): RaySums {
   };
 }
 
+/** Something that looks at each ray and at the panels accepted on it, the nearest to the observer first. */
+export interface PanelWatcher {
+  begin(majorKpc: number, minorKpc: number): void;
+  panel(from: number, to: number): void;
+  finish(): void;
+}
+
 const n = panelNodes;
 /** Bisections of one interval. */
 export const deepestSplit = 48;
@@ -138,6 +145,7 @@ export class RayTracer {
     private readonly geometry: RayGeometry,
     private readonly wavelengthM2: Float64Array,
     private readonly accuracy: Accuracy,
+    private readonly watcher?: PanelWatcher,
   ) {
     this.out = integrand.program.outputs.map(() => new Float64Array(n));
     this.tested = testedFrequencies(wavelengthM2, integrand.hasDispersion || integrand.hasAbsorption);
@@ -147,6 +155,7 @@ export class RayTracer {
   /** Integrates the ray at offsets (major, minor) from the galaxy's centre, kpc. */
   follow(majorKpc: number, minorKpc: number, sums: RaySums): void {
     clear(sums);
+    this.watcher?.begin(majorKpc, minorKpc);
     const count = findBreaks(this.geometry, majorKpc, minorKpc, this.breaks);
     this.nearPhi = 0;
     this.nearSigma = 0;
@@ -163,6 +172,7 @@ export class RayTracer {
     sums.faradayDepth = this.nearPhi;
     const { freeFree } = this.inputs;
     if (freeFree) for (let k = 0; k < sums.total.length; k++) sums.total[k] += thermalEmission(freeFree, k, this.nearMeasure);
+    this.watcher?.finish();
   }
 
   /** Integrates between two breaks, nearest panel first, bisecting where needed. */
@@ -177,6 +187,7 @@ export class RayTracer {
       this.sample(a, b, major, minor);
       sums.samples += n;
       if (depth >= deepestSplit || this.isResolved(0.5 * (b - a), sums)) {
+        this.watcher?.panel(a, b);
         this.accept(0.5 * (b - a), sums);
         top--;
         continue;

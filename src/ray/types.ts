@@ -23,4 +23,18 @@ export interface RayResult {
   readonly error: Float64Array;
   /** Samples taken, summed over the rays. */
   readonly samples: number;
+  /** Derivatives by the parameters that a job names; absent where it names none. */
+  readonly tangents?: RayTangents;
+}
+
+/**
+ * Derivatives of a bundle's results by parameters of the scene, per unit that their path has inside
+ * (rad for angles): of I, Q and U at [(parameter * frequencies + frequency) * rays + ray], of the
+ * total Faraday depth at [parameter * rays + ray].
+ */
+export interface RayTangents {
+  readonly I: Float64Array;
+  readonly Q: Float64Array;
+  readonly U: Float64Array;
+  readonly faradayDepth: Float64Array;
 }

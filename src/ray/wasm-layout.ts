@@ -33,7 +33,8 @@ export interface IntCell {
   set(w: FunctionWriter, value: Int): void;
 }
 
-function makeIntCell(module: ModuleWriter): IntCell {
+/** Sets memory aside for a whole number. */
+export function makeIntCell(module: ModuleWriter): IntCell {
   const address = module.reserve(4);
   return { address, get: () => int.load(zero, address), set: (w, value) => w.store(zero, address, value) };
 }

@@ -6,7 +6,16 @@ import type { Integrand, IntegrandInputs } from './integrand.ts';
 import type { RayGeometry } from './path.ts';
 import { mostHidden, panelLimit, testedFrequencies, type Accuracy, type RaySums, valleyShare } from './transfer.ts';
 import { resultsPerFrequency, spectrumRecord } from './wasm-layout.ts';
+import type { TangentInputs, TangentIntegrand } from './tangent-integrand.ts';
+import type { TangentSums } from './tangent-sums.ts';
+import { crossingBytes, placeCrossings, placeTangentInputs, readTangents } from './wasm-tangent-inputs.ts';
 import { writeTransfer, type TransferModule } from './wasm-transfer.ts';
+
+/** What a transfer of derivatives takes, and where it leaves those of a ray. */
+export interface Derivatives {
+  readonly inputs: TangentInputs;
+  readonly sums: TangentSums;
+}
 
 /** Rays that one call follows. */
 const raysPerCall = 256;
@@ -16,14 +25,17 @@ export class WasmTransfer {
   private readonly module: TransferModule;
   private readonly memory: WebAssembly.Memory;
   private readonly placedGrids: PlacedGrids = new Map();
+  private readonly tangentGrids: PlacedGrids = new Map();
   private readonly run: (rays: number, results: number, count: number, budget: number) => number;
 
   constructor(
     integrand: Integrand,
     private readonly wavelengthM2: Float64Array,
+    private readonly tangents?: TangentIntegrand,
   ) {
     const { program, groupOf, hasDispersion, hasAbsorption } = integrand;
-    this.module = writeTransfer({ program, groupOf, hasDispersion, hasAbsorption, tested: testedFrequencies(wavelengthM2, hasDispersion || hasAbsorption) });
+    const tested = testedFrequencies(wavelengthM2, hasDispersion || hasAbsorption);
+    this.module = writeTransfer({ program, groupOf, hasDispersion, hasAbsorption, tested }, tangents);
     const instance = new WebAssembly.Instance(new WebAssembly.Module(this.module.bytes));
     this.memory = instance.exports.memory as WebAssembly.Memory;
     this.run = instance.exports.follow as typeof this.run;
@@ -31,22 +43,30 @@ export class WasmTransfer {
 
   /**
    * Follows rays given as pairs (major, minor), kpc; `take` is called for each, in order, with its
-   * sums filled in. Stops behind the ray with which they have taken `budget` samples.
+   * sums filled in, and those of `derivatives` where the transfer makes them. Stops behind the ray
+   * with which they have taken `budget` samples.
    */
-  follow(inputs: IntegrandInputs, geometry: RayGeometry, accuracy: Accuracy, rays: Float64Array, sums: RaySums, take: (ray: number) => void, budget = Infinity): void {
-    const { resultLength } = this.module;
-    const raysAt = this.place(inputs, geometry, accuracy);
+  follow(inputs: IntegrandInputs, geometry: RayGeometry, accuracy: Accuracy, rays: Float64Array, sums: RaySums, take: (ray: number) => void, budget = Infinity, derivatives?: Derivatives): void {
+    const { resultLength, tangents } = this.module;
+    const ownEnd = this.place(inputs, geometry, accuracy);
+    const raysAt = tangents && derivatives ? placeTangentInputs(this.memory, tangents, derivatives.inputs, ownEnd, this.tangentGrids) : ownEnd;
     const resultsAt = raysAt + 16 * raysPerCall;
-    ensureMemory(this.memory, resultsAt + 8 * resultLength * raysPerCall);
+    const crossingsAt = resultsAt + 8 * resultLength * raysPerCall;
+    const parameters = this.tangents?.parameters.length ?? 0;
+    ensureMemory(this.memory, crossingsAt + (derivatives ? crossingBytes(derivatives.inputs, parameters) * (raysPerCall + 1) : 0));
     const numbers = new Float64Array(this.memory.buffer);
     const count = rays.length / 2;
     let left = budget;
     for (let from = 0; from < count && left > 0; from += raysPerCall) {
       const here = Math.min(raysPerCall, count - from);
-      numbers.set(rays.subarray(2 * from, 2 * (from + here)), raysAt / 8);
+      const these = rays.subarray(2 * from, 2 * (from + here));
+      numbers.set(these, raysAt / 8);
+      if (tangents && derivatives) placeCrossings(this.memory, tangents, derivatives.inputs, parameters, these, crossingsAt);
       const done = this.run(raysAt, resultsAt, here, left);
       for (let ray = 0; ray < done; ray++) {
-        this.read(numbers, resultsAt / 8 + ray * resultLength, sums, inputs.freeFree);
+        const at = resultsAt / 8 + ray * resultLength;
+        this.read(numbers, at, sums, inputs.freeFree);
+        if (this.tangents && tangents && derivatives) readTangents(numbers, at + resultLength - tangents.resultLength, this.tangents, derivatives.sums);
         left -= sums.samples;
         take(from + ray);
       }

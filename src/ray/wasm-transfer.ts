@@ -8,7 +8,9 @@ import { emissionBytes, layOut, resultsPerFrequency, spectrumRecord, type Transf
 import { writeAccept, type Sums } from './wasm-accept.ts';
 import { writeIsResolved } from './wasm-resolve.ts';
 import { nodeBytes, pairOffsets, zero } from './wasm-nodes.ts';
+import type { TangentIntegrand } from './tangent-integrand.ts';
 import { deepestSplit, mostSamples } from './transfer.ts';
+import { writeTangents, type PanelFollower, type PlacedTangents } from './wasm-tangent.ts';
 import { panelNodes } from './panel.ts';
 
 /** A module that follows rays, and where it wants its inputs. */
@@ -17,13 +19,21 @@ export interface TransferModule {
   readonly layout: TransferLayout;
   readonly placed: PlacedProgram;
   readonly spectrum: number;
-  /** f64 of one ray's results: 7 per frequency (I, Q, U, heights of Q and U, emitted, error), depth, samples, emission measure. */
+  /** Derivatives, where they are asked for. */
+  readonly tangents?: PlacedTangents;
+  /**
+   * f64 of one ray's results: 7 per frequency (I, Q, U, heights of Q and U, emitted, error), depth, samples, emission
+   * measure; then derivatives.
+   */
   readonly resultLength: number;
   readonly heapStart: number;
 }
 
-/** Writes the module that follows the rays of a structure: the algorithm of `RayTracer`, two nodes at a time. */
-export function writeTransfer(structure: TransferStructure): TransferModule {
+/**
+ * Writes the module that follows the rays of a structure: the algorithm of `RayTracer`, two nodes at a
+ * time; with `tangents` that of `TangentTracer` on the panels that it accepts.
+ */
+export function writeTransfer(structure: TransferStructure, tangents?: TangentIntegrand): TransferModule {
   const { program, groupOf } = structure;
   const module = new ModuleWriter();
   const layout = layOut(module, Math.max(...groupOf) + 1);
@@ -34,10 +44,12 @@ export function writeTransfer(structure: TransferStructure): TransferModule {
   const context = { module, layout, spectrum, structure };
   const resolve = writeIsResolved(context);
   const sums = writeAccept(context, resolve);
-  const interval = writeInterval(module, layout, sample, resolve.isResolved, sums.accept);
-  const resultLength = resultsPerFrequency * groupOf.length + 3;
-  writeFollow(module, layout, { prepare: placed.prepare, findBreaks, interval, sums, resultLength });
-  return { bytes: module.encode(), layout, placed, spectrum, resultLength, heapStart: module.heapStart };
+  const placedTangents = tangents && writeTangents(module, layout, spectrum, tangents);
+  const interval = writeInterval(module, layout, sample, resolve.isResolved, sums.accept, placedTangents);
+  const ownLength = resultsPerFrequency * groupOf.length + 3;
+  const resultLength = ownLength + (placedTangents?.resultLength ?? 0);
+  writeFollow(module, layout, { prepare: placed.prepare, findBreaks, interval, sums, ownLength, resultLength, follower: placedTangents });
+  return { bytes: module.encode(), layout, placed, spectrum, ...(placedTangents && { tangents: placedTangents }), resultLength, heapStart: module.heapStart };
 }
 
 /** (a, b): evaluates the integrand at the nodes of [a, b], and φ, Σ and EM from the observer to each node. */
@@ -80,7 +92,7 @@ function integrateToNodes(w: FunctionWriter, layout: TransferLayout, values: num
 }
 
 /** (from, to): integrates between two breaks, nearest panel first, bisecting where needed. */
-function writeInterval(module: ModuleWriter, { stack, samples }: TransferLayout, sample: Callee, isResolved: Callee, accept: Callee): Callee {
+function writeInterval(module: ModuleWriter, { stack, samples }: TransferLayout, sample: Callee, isResolved: Callee, accept: Callee, follower?: PanelFollower): Callee {
   return module.define(['f64', 'f64'], [], (w) => {
     const address = w.variable('i32');
     w.store(zero, stack, w.parameter(0, 'f64'));
@@ -97,6 +109,7 @@ function writeInterval(module: ModuleWriter, { stack, samples }: TransferLayout,
       w.when(
         done,
         () => {
+          if (follower) w.run(follower.panel, a, b);
           w.run(accept, half);
           address.set(int.subtract(address, record));
         },
@@ -120,14 +133,17 @@ interface FollowParts {
   readonly findBreaks: Callee;
   readonly interval: Callee;
   readonly sums: Sums;
+  /** f64 of a ray's own results, and of all. */
+  readonly ownLength: number;
   readonly resultLength: number;
+  readonly follower: PanelFollower | undefined;
 }
 
 /**
  * Exported (rays, results, count, budget): follows rays, pairs of f64 major and minor, one after the
  * other, until all are done or they have taken as many samples as the budget; returns how many are done.
  */
-function writeFollow(module: ModuleWriter, layout: TransferLayout, { prepare, findBreaks, interval, sums, resultLength }: FollowParts): void {
+function writeFollow(module: ModuleWriter, layout: TransferLayout, { prepare, findBreaks, interval, sums, ownLength, resultLength, follower }: FollowParts): void {
   const { major, minor, minorSin, minorCos, sinI, cosI, nearPhi, nearSigma, nearMeasure, samples, breaks, breakCount, longestPanel } = layout;
   module.define(
     ['i32', 'i32', 'i32', 'f64'],
@@ -139,6 +155,7 @@ function writeFollow(module: ModuleWriter, layout: TransferLayout, { prepare, fi
       const done = w.variable('i32');
       const spent = w.variable('f64');
       w.run(prepare);
+      if (follower) w.run(follower.prepare);
       w.repeatWhile(() => int.and(int.less(done, count), f.less(spent, budget)), () => {
         major.set(w, f.load(rays));
         minor.set(w, f.load(rays, 8));
@@ -146,6 +163,7 @@ function writeFollow(module: ModuleWriter, layout: TransferLayout, { prepare, fi
         minorCos.set(w, f.multiply(minor.get(), cosI.get()));
         for (const cell of [nearPhi, nearSigma, nearMeasure, samples]) cell.set(w, f.constant(0));
         w.run(sums.clear);
+        if (follower) w.run(follower.begin);
         w.run(findBreaks);
         const k = w.variable('i32', int.subtract(breakCount.get(), int.constant(1)));
         w.repeatWhile(() => int.greaterThan(k, zero), () => {
@@ -164,7 +182,8 @@ function writeFollow(module: ModuleWriter, layout: TransferLayout, { prepare, fi
           k.set(int.subtract(k, int.constant(1)));
         });
         w.run(sums.write, results);
-        const end = 8 * (resultLength - 3);
+        if (follower) w.run(follower.finish, int.add(results, int.constant(8 * ownLength)));
+        const end = 8 * (ownLength - 3);
         w.store(results, end, nearPhi.get());
         w.store(results, end + 8, samples.get());
         w.store(results, end + 16, nearMeasure.get());
