@@ -5,7 +5,7 @@ import { lowerGraph } from '../formula/lower.ts';
 import type { Scene } from '../scene/types.ts';
 import { onNumbers, rayMotions } from './ray-motion.ts';
 import { exactSineCosine, parameterValues, SceneGraph } from './scene-graph.ts';
-import { directionOf, type TangentParameter } from './tangent-parameters.ts';
+import { directionOf, findTangentParameter, type TangentParameter } from './tangent-parameters.ts';
 
 /** A height or radius (kpc) where the integrand may jump, and how fast it moves with each parameter. */
 export interface Surface {
@@ -66,6 +66,16 @@ export function compileSurfaces(scene: Scene, parameters: readonly TangentParame
     }));
     return surfacesOf(given, parameters, [...ends, ...declared]);
   };
+}
+
+/**
+ * Those of some paths by which a scene has no derivative as it stands: surfaces coincide that part
+ * when the number changes, so that the change to either side is another one.
+ */
+export function splitPaths(scene: Scene, paths: readonly string[]): readonly string[] {
+  const parameters = paths.flatMap((path) => findTangentParameter(scene, path) ?? []);
+  const { splits } = compileSurfaces(scene, parameters)(scene);
+  return parameters.filter((_, p) => splits[p]).map(({ path }) => path);
 }
 
 function surfacesOf(scene: Scene, parameters: readonly TangentParameter[], all: readonly Surface[]): Surfaces {

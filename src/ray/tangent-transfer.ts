@@ -8,7 +8,7 @@ import type { PanelWatcher } from './transfer.ts';
 
 const n = panelNodes;
 /** Distance from a surface, over the volume's radius, at which the integrand's two sides are taken. */
-export const besideSurface = 1e-10;
+export const besideSurface = 1e-12;
 
 /**
  * Derivatives of a ray's results on the panels that its values were accepted on, nearest panel
@@ -65,7 +65,7 @@ export class TangentTracer implements PanelWatcher {
   /** Adds an accepted panel [a, b], behind all before it. */
   panel(a: number, b: number): void {
     const half = 0.5 * (b - a);
-    this.passSurfaces(b - half * besideSurface);
+    this.passSurfaces(b - besideSurface * this.geometry.radiusKpc);
     this.evaluate(n, (i) => 0.5 * (a + b) + half * panelRule.nodes[i]);
     for (let block = 0; block <= this.count; block++) {
       this.cumulate(this.block(block, place.faraday), half, this.nearPhi[block], this.phi[block]);

@@ -103,7 +103,7 @@ export function writeTangents(module: ModuleWriter, layout: TransferLayout, spec
   const panel = module.define(['f64', 'f64'], [], (w) => {
     const [a, b] = [w.parameter(0, 'f64'), w.parameter(1, 'f64')];
     const half = w.let(f.multiply(f.constant(0.5), f.subtract(b, a)));
-    const end = w.let(f.subtract(b, f.multiply(half, f.constant(besideSurface))));
+    const end = w.let(f.subtract(b, f.multiply(f.constant(besideSurface), layout.radius.get())));
     // Addresses beyond the last record are still in memory: reading them is harmless.
     w.when(int.greaterThan(left.get(), zero), () => passAll(w, (s) => f.lessOrEqual(end, s)));
     w.run(addPanel, w.let(f.multiply(f.constant(0.5), f.add(a, b))), half);

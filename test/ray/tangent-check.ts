@@ -42,14 +42,16 @@ export function differenceMaps(scene: Scene, spectrum: readonly SpectralPoint[],
   return { I: extrapolate('I'), Q: extrapolate('Q'), U: extrapolate('U'), faradayDepth: extrapolate('faradayDepth') };
 }
 
-/** Largest difference of two sets of maps, over the largest of the second; of Q and U together. */
-export function worstDifference(a: Maps, b: Maps): number {
-  const largest = (...maps: readonly Float64Array[]): number => maps.reduce((most, map) => map.reduce((size, value) => Math.max(size, Math.abs(value)), most), 0);
+/**
+ * Largest difference of two sets of derivatives by a parameter of that size, over the largest of the
+ * second; of Q and U together. That scale is at least 1e-3 of the maps over the size.
+ */
+export function worstDifference(a: Maps, b: Maps, values: Maps, size: number): number {
+  const largest = (maps: readonly Float64Array[]): number => maps.reduce((most, map) => map.reduce((found, value) => Math.max(found, Math.abs(value)), most), 0);
   const groups: (keyof Maps)[][] = [['I'], ['Q', 'U'], ['faradayDepth']];
   return Math.max(...groups.map((names) => {
-    const scale = largest(...names.map((name) => b[name]));
-    const off = Math.max(...names.map((name) => a[name].reduce((most, value, k) => Math.max(most, Math.abs(value - b[name][k])), 0)));
-    // Where both are rounding about 0, they agree.
-    return off === 0 ? 0 : off / Math.max(scale, 1e-300);
+    const scale = Math.max(largest(names.map((name) => b[name])), (1e-3 * largest(names.map((name) => values[name]))) / size, 1e-300);
+    const off = largest(names.map((name) => a[name].map((value, k) => value - b[name][k])));
+    return off / scale;
   }));
 }
