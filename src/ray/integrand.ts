@@ -1,14 +1,17 @@
 import { interpretProgram } from '../formula/javascript.ts';
 import { Graph, type NodeId } from '../formula/graph.ts';
 import { lowerGraph, type Program } from '../formula/lower.ts';
-import { coordinateSubstitution } from '../formula/vector-calculus.ts';
+import { coordinateSubstitution, type Vector } from '../formula/vector-calculus.ts';
 import type { SplineGrid } from '../math/spline-grid.ts';
 import type { Table } from '../math/table.ts';
 import type { Scene } from '../scene/types.ts';
 import { freeFreeOpacity, opaqueBrightness, type FreeFree } from './free-free.ts';
+import { fieldMoments } from './field-moments.ts';
+import { fluxFactor } from './flux-scale.ts';
+import { orderedSteps } from './ordered-moments.ts';
 import { findRiceTable, riceTableShape } from './rice.ts';
 import { sceneGrids } from './grids.ts';
-import { parameterValues, SceneGraph, smallestFieldSquared } from './scene-graph.ts';
+import { parameterValues, SceneGraph } from './scene-graph.ts';
 import { brightnessPerKpc, faradayDepthPerKpc } from './synchrotron.ts';
 
 /**
@@ -89,14 +92,21 @@ export function integrandNodes(graph: Graph, fields: SceneGraph, scene: Scene, s
 
   // Turn the field into the observer's frame: along k̂ and along the two axes of the sky.
   const [sinI, cosI] = [graph.parameter('sinI'), graph.parameter('cosI')];
-  const along = graph.subtract(graph.multiply(bz, cosI), graph.multiply(by, sinI));
-  const minor = graph.add(graph.multiply(by, cosI), graph.multiply(bz, sinI));
-  const faraday = graph.multiply(graph.constant(faradayDepthPerKpc), electrons, along);
+  const towardsObserver = ([, y, z]: Vector): NodeId => graph.subtract(graph.multiply(z, cosI), graph.multiply(y, sinI));
+  const towardsMinor = ([, y, z]: Vector): NodeId => graph.add(graph.multiply(y, cosI), graph.multiply(z, sinI));
+  const field: Vector = [bx, by, bz];
+  const faraday = graph.multiply(graph.constant(faradayDepthPerKpc), electrons, towardsObserver(field));
 
   const rms = fields.unresolvedRms();
-  const dispersion = rms === undefined ? graph.constant(0) : fields.dispersion(rms);
+  const ordered = fields.orderedField();
+  const dispersion = fields.dispersion(rms, ordered && towardsObserver(ordered));
   const emissionMeasure = scene.freeFree ? fields.emissionMeasure() : graph.constant(0);
-  const moments = fieldMoments(graph, bx, minor, rms);
+  const moments = fieldMoments(graph, {
+    major: bx,
+    minor: towardsMinor(field),
+    ...(rms !== undefined && { rms }),
+    ...(ordered && { ordered: { major: ordered[0], minor: towardsMinor(ordered), steps: orderedSteps(scene.cosmicRays.index, scene.numerics.tolerance).count } }),
+  });
   const groupOf = emissionGroups(scene, spectrum);
   const groups = Math.max(...groupOf) + 1;
   const normalisations = Array.from({ length: groups }, (_, group) => fields.cosmicRays(group));
@@ -104,28 +114,9 @@ export function integrandNodes(graph: Graph, fields: SceneGraph, scene: Scene, s
     outputs: [faraday, dispersion, ...moments, emissionMeasure, ...normalisations],
     groupOf,
     groupFrequenciesHz: Array.from({ length: groups }, (_, group) => spectrum[groupOf.indexOf(group)].centreHz),
-    hasDispersion: rms !== undefined,
+    hasDispersion: rms !== undefined || ordered !== undefined,
     hasAbsorption: scene.freeFree !== undefined,
   };
-}
-
-/** ⟨B^q⟩, ⟨B^q cos2θ⟩, ⟨B^q sin2θ⟩ for the electric vector, which is perpendicular to the field. */
-function fieldMoments(graph: Graph, major: NodeId, minor: NodeId, rms: NodeId | undefined): readonly [NodeId, NodeId, NodeId] {
-  const squared = graph.add(graph.power(major, 2), graph.power(minor, 2));
-  const halfPower = graph.parameter('halfPower');
-  const twist = graph.multiply(graph.constant(-2), major, minor);
-  const difference = graph.subtract(graph.power(minor, 2), graph.power(major, 2));
-  const random = rms === undefined ? graph.constant(0) : graph.multiply(graph.constant(2), graph.power(rms, 2));
-  const size = graph.add(squared, random, graph.constant(smallestFieldSquared));
-  const power = graph.binary('pow', size, graph.subtract(halfPower, graph.constant(1)));
-  if (rms === undefined) return [graph.multiply(power, size), graph.multiply(power, difference), graph.multiply(power, twist)];
-  const share = graph.divide(squared, size);
-  const aligned = graph.multiply(power, graph.table('riceAligned', 0, share));
-  return [
-    graph.multiply(power, size, graph.table('riceTotal', 0, share)),
-    graph.multiply(aligned, difference),
-    graph.multiply(aligned, twist),
-  ];
 }
 
 function emissionGroups(scene: Scene, spectrum: readonly SpectralPoint[]): readonly number[] {
@@ -135,6 +126,15 @@ function emissionGroups(scene: Scene, spectrum: readonly SpectralPoint[]): reado
   return spectrum.map((point) => distinct.indexOf(point.centreHz));
 }
 
+/**
+ * Values of every run-time parameter by name, the factor of `scaleTo` among them. Throws InputError
+ * where a scene with `scaleTo` emits nothing.
+ */
+export function sceneValues(scene: Scene, groupFrequenciesHz: readonly number[]): ReadonlyMap<string, number> {
+  const factor = fluxFactor(scene, { compile: compileIntegrand, total: output.total, firstGroup: output.firstGroup, tableShape });
+  return new Map([...parameterValues(scene, groupFrequenciesHz), ['cosmicRays/scale', factor]]);
+}
+
 /** Run-time inputs of a program made from a scene's integrand; `rates` are values of parameters that are no numbers of the scene. */
 export function integrandInputs(
   program: Program,
@@ -142,7 +142,7 @@ export function integrandInputs(
   groupFrequenciesHz: readonly number[],
   rates: ReadonlyMap<string, number> = new Map(),
 ): IntegrandInputs {
-  const values = parameterValues(scene, groupFrequenciesHz);
+  const values = sceneValues(scene, groupFrequenciesHz);
   const parameters = Float64Array.from(program.parameters, (name) => {
     const value = values.get(name) ?? rates.get(name);
     if (value === undefined) throw new Error(`parameter ${name} has no value`);

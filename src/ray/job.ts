@@ -1,6 +1,6 @@
 import type { Scene } from '../scene/types.ts';
 import type { SpectralPoint } from './integrand.ts';
-import { isUnused } from './scene-graph.ts';
+import { structureKey } from './structure-key.ts';
 import { findMapScale, makeRayEngine, traceRays, type BackEnd, type RayEngine } from './trace.ts';
 import type { RayBundle, RayResult } from './types.ts';
 
@@ -57,26 +57,6 @@ export class EngineCache {
     }
     return engine;
   }
-}
-
-/** Two scenes of equal key differ in numbers only. */
-function structureKey(scene: Scene, spectrum: readonly SpectralPoint[]): string {
-  const components = [...scene.field, ...scene.thermalElectrons, ...scene.cosmicRays.layers];
-  return JSON.stringify([
-    components.map((component) => [
-      component.name,
-      component.model,
-      component.choices,
-      Object.keys(component.parameters).map((name) => [name, isUnused(component, name)]),
-      'heightIndex' in component && component.heightIndex !== undefined,
-    ]),
-    scene.field.length,
-    scene.thermalElectrons.length,
-    scene.thermalElectrons.map(({ filling }) => filling !== undefined),
-    scene.freeFree !== undefined,
-    scene.turbulence.unresolved ? (scene.turbulence.unresolved.follows ?? true) : false,
-    spectrum,
-  ]);
 }
 
 /** Joins the results of tiles, given in order, to that of the whole bundle. */

@@ -5,8 +5,8 @@ import { coordinatesOf, coordinateSubstitution, jacobian, type Vector } from '..
 import { randomStream } from '../math/random.ts';
 import { buildField, isSolenoidalByConstruction } from '../model/build-model.ts';
 import type { Component, Scene } from '../scene/types.ts';
-import { gridInputs } from './integrand.ts';
-import { parameterValues, placedComponents, SceneGraph } from './scene-graph.ts';
+import { gridInputs, sceneValues } from './integrand.ts';
+import { placedComponents, SceneGraph } from './scene-graph.ts';
 
 /** Points in the galaxy frame, kpc. */
 export interface Points {
@@ -107,7 +107,7 @@ function divergenceNodes(graph: Graph, field: Vector): readonly [NodeId, NodeId]
 
 function evaluateNodes(graph: Graph, nodes: readonly NodeId[], scene: Scene, { x, y, z }: Points): readonly Float64Array[] {
   const program = lowerGraph(graph, nodes, ['x', 'y', 'z'], coordinateSubstitution(graph));
-  const values = parameterValues(scene, []);
+  const values = sceneValues(scene, []);
   const parameters = Float64Array.from(program.parameters, (name) => values.get(name) ?? NaN);
   const columns = nodes.map(() => new Float64Array(x.length));
   compileJavaScript(program).evaluate(x.length, parameters, [x, y, z], columns, [], gridInputs(program, scene).grids);

@@ -1,13 +1,13 @@
 import type { Graph, NodeId } from '../formula/graph.ts';
-import type { Vector } from '../formula/vector-calculus.ts';
+import { cartesianFromCylindrical, coordinatesOf, type Vector } from '../formula/vector-calculus.ts';
 import { buildDensity, buildEdges, buildField, type ModelUse } from '../model/build-model.ts';
 import type { Component, CosmicRayLayer, Scene } from '../scene/types.ts';
 import { InputError } from '../units/input-error.ts';
+import { equipartitionElectrons } from './equipartition.ts';
+import { smallestFieldSquared } from './field-size.ts';
 import { emissionMeasurePerKpc } from './free-free.ts';
+import { orderedSteps } from './ordered-moments.ts';
 import { faradayDepthPerKpc } from './synchrotron.ts';
-
-/** Keeps powers of squared fields finite where the field vanishes, uG². */
-export const smallestFieldSquared = 1e-30;
 
 /** One use of a model in a scene: the path its run-time parameters are known by. */
 export interface PlacedComponent {
@@ -33,6 +33,7 @@ export function placedComponents(scene: Scene): {
 /** The parts of a scene as nodes of one graph, each component built once. */
 export class SceneGraph {
   private readonly fieldsByName = new Map<string, Vector>();
+  private field: Vector | undefined;
 
   /** `kept`: run-time parameters that stay in the graph although they are unused. */
   constructor(
@@ -42,6 +43,10 @@ export class SceneGraph {
   ) {}
 
   totalField(): Vector {
+    return (this.field ??= this.sumOfFields());
+  }
+
+  private sumOfFields(): Vector {
     const parts = placedComponents(this.scene).field.map((placed) => {
       const field = buildField(this.graph, this.use(placed));
       this.fieldsByName.set(placed.component.name, field);
@@ -76,6 +81,7 @@ export class SceneGraph {
 
   /** C of the cosmic-ray electrons at the frequencies of an emission group. */
   cosmicRays(group: number): NodeId {
+    if (this.scene.cosmicRays.equipartition) return this.equipartition();
     const layers = placedComponents(this.scene).cosmicRays.map((placed) => {
       const layer = placed.component as CosmicRayLayer;
       if (layer.heightIndex === undefined) return buildDensity(this.graph, this.use(placed));
@@ -84,12 +90,28 @@ export class SceneGraph {
       parameters.set('height', this.graph.parameter(`${placed.path}/height@${group}`));
       return buildDensity(this.graph, { ...use, parameters });
     });
-    return this.graph.add(...layers);
+    return this.scaled(layers);
   }
 
   /** C with layers that depend on frequency at their reference frequency. */
   cosmicRaysAtReference(): NodeId {
-    return this.graph.add(...placedComponents(this.scene).cosmicRays.map((placed) => buildDensity(this.graph, this.use(placed))));
+    if (this.scene.cosmicRays.equipartition) return this.equipartition();
+    return this.scaled(placedComponents(this.scene).cosmicRays.map((placed) => buildDensity(this.graph, this.use(placed))));
+  }
+
+  private scaled(layers: readonly NodeId[]): NodeId {
+    const sum = this.graph.add(...layers);
+    return this.scene.cosmicRays.scaleTo ? this.graph.multiply(this.graph.parameter('cosmicRays/scale'), sum) : sum;
+  }
+
+  /** C in equipartition with the mean square of the whole field: cells are too small to hold electrons of their own (Beck & Krause 2005). */
+  private equipartition(): NodeId {
+    const { graph } = this;
+    const square = (node: NodeId): NodeId => graph.power(node, 2);
+    const rms = this.unresolvedRms();
+    const parts = [...this.totalField(), ...(this.orderedField() ?? [])].map(square);
+    const random = rms === undefined ? [] : [graph.multiply(graph.constant(3), square(rms))];
+    return graph.multiply(graph.parameter('cosmicRays/equipartition'), graph.add(...parts, ...random));
   }
 
   /** rms of one component of the unresolved field, uG, or undefined where there is none. */
@@ -97,34 +119,53 @@ export class SceneGraph {
     const { unresolved } = this.scene.turbulence;
     if (!unresolved) return undefined;
     const rms = this.graph.parameter('turbulence/rms');
-    return unresolved.follows === undefined ? rms : this.graph.multiply(rms, this.profileOf(unresolved.follows));
+    return unresolved.follows === undefined ? rms : this.graph.multiply(rms, this.profileOf(unresolved.follows, 'unresolved'));
+  }
+
+  /** The ordered random field: its rms times the unit vector along which it changes sign, uG; undefined where there is none. */
+  orderedField(): Vector | undefined {
+    const { graph } = this;
+    const { ordered } = this.scene.turbulence;
+    if (!ordered) return undefined;
+    const strength = graph.parameter('ordered/rms');
+    const rms = ordered.follows === undefined ? strength : graph.multiply(strength, this.profileOf(ordered.follows, 'ordered'));
+    const zero = graph.constant(0);
+    const [radial, azimuthal] = ordered.along === 'azimuth' ? [zero, rms] : (['sin', 'cos'] as const).map((name) => graph.multiply(rms, graph.unary(name, graph.parameter('ordered/pitch'))));
+    return cartesianFromCylindrical(graph, coordinatesOf(graph), [radial, azimuthal, zero]);
   }
 
   /** A named component's value over its strength, or a density's over its amplitude. */
-  private profileOf(name: string): NodeId {
+  private profileOf(name: string, key: 'unresolved' | 'ordered'): NodeId {
     const { field, thermalElectrons, cosmicRays } = placedComponents(this.scene);
     const fieldPart = field.find((placed) => placed.component.name === name);
     if (fieldPart) {
       const [x, y, z] = this.fieldsByName.get(name) ?? buildField(this.graph, this.use(fieldPart));
       const size = this.graph.power(this.graph.add(...[x, y, z].map((part) => this.graph.power(part, 2)), this.graph.constant(smallestFieldSquared)), 0.5);
-      return this.graph.divide(size, this.graph.unary('abs', this.amplitude(fieldPart, 'strength')));
+      return this.graph.divide(size, this.graph.unary('abs', this.amplitude(fieldPart, 'strength', key)));
     }
     const density = [...thermalElectrons, ...cosmicRays].find((placed) => placed.component.name === name);
-    if (!density) throw new InputError(`turbulence.unresolved.follows: no component or density is named "${name}"`);
-    return this.graph.divide(buildDensity(this.graph, this.use(density)), this.amplitude(density, 'density'));
+    if (!density) throw new InputError(`turbulence.${key}.follows: no component or density is named "${name}"`);
+    return this.graph.divide(buildDensity(this.graph, this.use(density)), this.amplitude(density, 'density', key));
   }
 
-  private amplitude(placed: PlacedComponent, name: string): NodeId {
+  private amplitude(placed: PlacedComponent, name: string, key: 'unresolved' | 'ordered'): NodeId {
     if (!(name in placed.component.parameters)) {
-      throw new InputError(`turbulence.unresolved.follows: "${placed.component.name}" has no parameter ${name} to be measured by; name a component that has one`);
+      throw new InputError(`turbulence.${key}.follows: "${placed.component.name}" has no parameter ${name} to be measured by; name a component that has one`);
     }
     return this.graph.parameter(`${placed.path}/${name}`);
   }
 
-  /** dΣ/ds of unresolved turbulence: K² ⟨n_e²⟩ σ_∥² d (Burn 1966; Sokoloff et al. 1998), per kpc. */
-  dispersion(rms: NodeId): NodeId {
-    const cell = this.graph.parameter('turbulence/cell');
-    return this.graph.multiply(this.graph.constant(faradayDepthPerKpc ** 2), this.electronDensitySquared(), this.graph.power(rms, 2), cell);
+  /**
+   * dΣ/ds of fields that are not resolved, per kpc: K² ⟨n_e²⟩ Σ σ_∥² d over isotropic turbulence of
+   * that rms and the ordered field's part along the line of sight (Burn 1966; Sokoloff et al. 1998).
+   */
+  dispersion(rms: NodeId | undefined, orderedAlong: NodeId | undefined): NodeId {
+    const { graph } = this;
+    const walks: NodeId[] = [];
+    if (rms !== undefined) walks.push(graph.multiply(graph.power(rms, 2), graph.parameter('turbulence/cell')));
+    if (orderedAlong !== undefined) walks.push(graph.multiply(graph.power(orderedAlong, 2), graph.parameter('ordered/cell')));
+    if (walks.length === 0) return graph.constant(0);
+    return graph.multiply(graph.constant(faradayDepthPerKpc ** 2), this.electronDensitySquared(), graph.add(...walks));
   }
 
   use({ path, component }: PlacedComponent): ModelUse {
@@ -170,6 +211,14 @@ export function parameterValues(scene: Scene, groupFrequenciesHz: readonly numbe
   values.set('halfPower', (scene.cosmicRays.index + 1) / 4);
   values.set('turbulence/rms', scene.turbulence.unresolved?.rmsUG ?? 0);
   values.set('turbulence/cell', scene.turbulence.unresolved?.cellKpc ?? 0);
+  const { equipartition, index } = scene.cosmicRays;
+  if (equipartition) values.set('cosmicRays/equipartition', equipartitionElectrons(index, equipartition.protonRatio));
+  const { ordered } = scene.turbulence;
+  if (ordered) {
+    const { start, step, weight } = orderedSteps(index, scene.numerics.tolerance);
+    values.set('ordered/rms', ordered.rmsUG).set('ordered/cell', ordered.cellKpc).set('ordered/pitch', ordered.pitch);
+    values.set('ordered/start', start).set('ordered/step', step).set('ordered/weight', weight);
+  }
   return values;
 }
 

@@ -22,14 +22,23 @@ export const perDistanceName = 'rate/perDistance';
 
 /** Numbers that enter without a run-time parameter of their own. */
 const geometric: readonly string[] = [...Object.keys(rayMotions), 'galaxy.volume.radius', 'galaxy.volume.height', 'cosmicRays.index'];
-const turbulent: Readonly<Record<string, string>> = { 'turbulence.unresolved.rms': 'turbulence/rms', 'turbulence.unresolved.cell': 'turbulence/cell' };
+const turbulent: Readonly<Record<string, string>> = {
+  'turbulence.unresolved.rms': 'turbulence/rms',
+  'turbulence.unresolved.cell': 'turbulence/cell',
+  'turbulence.ordered.rms': 'ordered/rms',
+  'turbulence.ordered.cell': 'ordered/cell',
+  'turbulence.ordered.pitch': 'ordered/pitch',
+};
 
 /**
  * The parameter at a path of a scene, or undefined where rays do not depend on it or not smoothly
- * (whole numbers), and where thermal gas absorbs. Throws InputError for an unknown path.
+ * (whole numbers), where thermal gas absorbs, or where electrons are scaled to a flux density that
+ * every number changes. Throws InputError for an unknown path.
  */
 export function findTangentParameter(scene: Scene, path: string): TangentParameter | undefined {
-  if (scenePath(scene, path).whole || scene.freeFree) return undefined;
+  if (scenePath(scene, path).whole || scene.freeFree || scene.cosmicRays.scaleTo) return undefined;
+  // The index also sets the electrons of equipartition and the steps of the ordered field's moments.
+  if (path === 'cosmicRays.index' && (scene.cosmicRays.equipartition || scene.turbulence.ordered)) return undefined;
   if (geometric.includes(path)) return { path, leaves: [] };
   if (path in turbulent) return { path, leaves: [turbulent[path]] };
   const placed = placedComponents(scene);

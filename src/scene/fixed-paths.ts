@@ -1,8 +1,9 @@
 import { InputError } from '../units/input-error.ts';
+import { checkEquipartition } from './equipartition-index.ts';
 import { sceneLimits } from './limits.ts';
 import type { SceneLimit } from './limits.ts';
 import { arcsecOf, gradientPerArcsec } from './observation.ts';
-import type { Beam, ForegroundGradient, ForegroundScreen, Galaxy, Observation, Scene, UnresolvedTurbulence } from './types.ts';
+import type { Beam, CosmicRays, ForegroundGradient, ForegroundScreen, Galaxy, Observation, OrderedTurbulence, Scene, UnresolvedTurbulence } from './types.ts';
 
 /** What a path of a scene reads and writes; `SceneLimit` says in which unit and range. */
 export interface PathEntry extends SceneLimit {
@@ -28,10 +29,28 @@ export const fixedPaths: readonly PathEntry[] = [
     path: 'cosmicRays.index',
     ...sceneLimits.index,
     read: ({ cosmicRays }) => cosmicRays.index,
-    write: (scene, index) => ({ ...scene, cosmicRays: { ...scene.cosmicRays, index } }),
+    write: (scene, index) => {
+      if (scene.cosmicRays.equipartition) {
+        checkEquipartition(index, (reason) => {
+          throw new InputError(`cosmicRays.index: ${reason}`);
+        });
+      }
+      return { ...scene, cosmicRays: { ...scene.cosmicRays, index } };
+    },
   },
+  {
+    path: 'cosmicRays.equipartition.protonRatio',
+    ...sceneLimits.protonRatio,
+    read: ({ cosmicRays }) => cosmicRays.equipartition?.protonRatio,
+    write: (scene, protonRatio) => ({ ...scene, cosmicRays: { ...scene.cosmicRays, equipartition: { protonRatio } } }),
+  },
+  scaleToPath('flux', sceneLimits.flux, ({ fluxJy }) => fluxJy, (old, fluxJy) => ({ ...old, fluxJy })),
+  scaleToPath('at', sceneLimits.fluxAt, ({ atHz }) => atHz, (old, atHz) => ({ ...old, atHz })),
   turbulencePath('rms', sceneLimits.rms, ({ rmsUG }) => rmsUG, (old, rmsUG) => ({ ...old, rmsUG })),
   turbulencePath('cell', sceneLimits.cell, ({ cellKpc }) => cellKpc, (old, cellKpc) => ({ ...old, cellKpc })),
+  orderedPath('rms', sceneLimits.orderedRms, ({ rmsUG }) => rmsUG, (old, rmsUG) => ({ ...old, rmsUG })),
+  orderedPath('cell', sceneLimits.cell, ({ cellKpc }) => cellKpc, (old, cellKpc) => ({ ...old, cellKpc })),
+  orderedPath('pitch', sceneLimits.orderedPitch, ({ along, pitch }) => (along === 'pitch' ? pitch : undefined), (old, pitch) => ({ ...old, pitch })),
   {
     path: 'freeFree.temperature',
     ...sceneLimits.temperature,
@@ -136,6 +155,37 @@ function turbulencePath(
     write: (scene, value) => {
       const old = scene.turbulence.unresolved;
       return old ? { ...scene, turbulence: { ...scene.turbulence, unresolved: write(old, value) } } : scene;
+    },
+  };
+}
+
+function orderedPath(
+  key: string,
+  limit: SceneLimit,
+  read: (old: OrderedTurbulence) => number | undefined,
+  write: (old: OrderedTurbulence, value: number) => OrderedTurbulence,
+): PathEntry {
+  return {
+    path: `turbulence.ordered.${key}`,
+    ...limit,
+    read: ({ turbulence }) => turbulence.ordered && read(turbulence.ordered),
+    write: (scene, value) => {
+      const old = scene.turbulence.ordered;
+      return old ? { ...scene, turbulence: { ...scene.turbulence, ordered: write(old, value) } } : scene;
+    },
+  };
+}
+
+type ScaleTo = NonNullable<CosmicRays['scaleTo']>;
+
+function scaleToPath(key: string, limit: SceneLimit, read: (old: ScaleTo) => number, write: (old: ScaleTo, value: number) => ScaleTo): PathEntry {
+  return {
+    path: `cosmicRays.scaleTo.${key}`,
+    ...limit,
+    read: ({ cosmicRays }) => cosmicRays.scaleTo && read(cosmicRays.scaleTo),
+    write: (scene, value) => {
+      const old = scene.cosmicRays.scaleTo;
+      return old ? { ...scene, cosmicRays: { ...scene.cosmicRays, scaleTo: write(old, value) } } : scene;
     },
   };
 }

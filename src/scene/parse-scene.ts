@@ -10,7 +10,8 @@ import type { Override } from './overrides.ts';
 import { looseComponent, sceneSchema } from './scene-schema.ts';
 import type { SceneFile } from './scene-schema.ts';
 import { sections } from './section.ts';
-import type { Component, Galaxy, InputFile, Scene, UnresolvedTurbulence } from './types.ts';
+import { checkEquipartition } from './equipartition-index.ts';
+import type { Component, CosmicRayLayer, CosmicRays, Galaxy, InputFile, Scene } from './types.ts';
 
 /** The newest version of the scene format, and the only one so far. */
 const SCENE_VERSION = 1;
@@ -34,14 +35,14 @@ export function parseScene(text: string, fileName: string, overrides: readonly O
   const components = {
     field: readComponents(input, sections.field, modelsOf(file.field), sources),
     thermalElectrons: readComponents(input, sections.thermalElectrons, modelsOf(file.thermalElectrons), sources),
-    layers: readComponents(input, sections.cosmicRays, modelsOf(file.cosmicRays.layers), sources),
+    layers: readComponents(input, sections.cosmicRays, modelsOf(file.cosmicRays.layers ?? []), sources),
   };
   return {
     title: file.title,
     galaxy,
     field: components.field,
     thermalElectrons: components.thermalElectrons,
-    cosmicRays: { index: file.cosmicRays.index, layers: components.layers },
+    cosmicRays: readCosmicRays(input, file.cosmicRays, components.layers),
     turbulence: readTurbulence(input, file.turbulence, Object.values(components).flat()),
     ...(file.freeFree && { freeFree: { temperatureK: file.freeFree.temperature } }),
     observation: readObservation(input, file.observation, galaxy.distanceKpc),
@@ -68,21 +69,54 @@ function readGalaxy({ distance, inclination, positionAngle, volume, centre }: Sc
   };
 }
 
+/** Layers or equipartition, and what each of them allows beside it. */
+function readCosmicRays(input: YamlInput, { index, layers, equipartition, scaleTo }: SceneFile['cosmicRays'], read: readonly CosmicRayLayer[]): CosmicRays {
+  const fail = (reason: string, key: string): never => {
+    throw new InputError(`cosmicRays: ${reason}`, placeAt(input, ['cosmicRays', key]));
+  };
+  if (!equipartition) {
+    if (!layers) throw new InputError('cosmicRays: "layers" or "equipartition" is missing: one of them is wanted', placeAt(input, ['cosmicRays']));
+    return { index, layers: read, ...(scaleTo && { scaleTo: { fluxJy: scaleTo.flux, atHz: scaleTo.at } }) };
+  }
+  if (layers) fail('"layers" and "equipartition" are given: one of them is wanted', 'equipartition');
+  if (scaleTo) fail('"scaleTo" scales layers; equipartition with the field leaves no factor free', 'scaleTo');
+  checkEquipartition(index, (reason) => fail(reason, 'index'));
+  return { index, layers: [], equipartition };
+}
+
 function readTurbulence(
   input: YamlInput,
-  { unresolved }: SceneFile['turbulence'],
+  { unresolved, ordered }: SceneFile['turbulence'],
   components: readonly Component[],
-): { readonly unresolved?: UnresolvedTurbulence } {
-  if (!unresolved) return {};
-  const { rms, cell, follows } = unresolved;
-  if (follows !== undefined) checkFollows(input, follows, components);
-  return { unresolved: { rmsUG: rms, cellKpc: cell, ...(follows !== undefined && { follows }) } };
+): Scene['turbulence'] {
+  return {
+    ...(unresolved && { unresolved: { rmsUG: unresolved.rms, cellKpc: unresolved.cell, ...readFollows(input, 'unresolved', unresolved.follows, components) } }),
+    ...(ordered && {
+      ordered: {
+        rmsUG: ordered.rms,
+        cellKpc: ordered.cell,
+        along: ordered.along,
+        pitch: readOrderedPitch(input, ordered),
+        ...readFollows(input, 'ordered', ordered.follows, components),
+      },
+    }),
+  };
+}
+
+/** The pitch of the ordered field: wanted along a pitch, and only there. */
+function readOrderedPitch(input: YamlInput, { along, pitch }: { readonly along: 'azimuth' | 'pitch'; readonly pitch?: number | undefined }): number {
+  const fail = (reason: string): never => {
+    throw new InputError(`turbulence.ordered: ${reason}`, placeAt(input, ['turbulence', 'ordered', pitch === undefined ? 'along' : 'pitch']));
+  };
+  if (along === 'pitch') return pitch ?? fail('"along: pitch" needs the angle "pitch", such as "-20 deg"');
+  return pitch === undefined ? 0 : fail('"pitch" is given, but the field lies along the azimuth; say "along: pitch"');
 }
 
 /** `follows` names one component, and one whose amplitude is known so that it can be divided out. */
-function checkFollows(input: YamlInput, follows: string, components: readonly Component[]): void {
+function readFollows(input: YamlInput, key: 'unresolved' | 'ordered', follows: string | undefined, components: readonly Component[]): { readonly follows?: string } {
+  if (follows === undefined) return {};
   const fail = (reason: string): never => {
-    throw new InputError(`turbulence.unresolved.follows: ${reason}`, placeAt(input, ['turbulence', 'unresolved', 'follows']));
+    throw new InputError(`turbulence.${key}.follows: ${reason}`, placeAt(input, ['turbulence', key, 'follows']));
   };
   const names = components.map(({ name }) => name);
   const found = components.filter(({ name }) => name === follows);
@@ -91,4 +125,5 @@ function checkFollows(input: YamlInput, follows: string, components: readonly Co
   const amplitude = ['strength', 'density'].find((name) => Object.hasOwn(found[0].parameters, name));
   if (amplitude === undefined) fail(`"${follows}" has neither "strength" nor "density" to divide by`);
   else if (found[0].parameters[amplitude] === 0) fail(`the ${amplitude} of "${follows}" is 0 and cannot be divided by`);
+  return { follows };
 }

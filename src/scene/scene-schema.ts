@@ -1,6 +1,6 @@
 import { z } from 'zod';
 import { quoteValue } from '../units/quote.ts';
-import { keys, listOf, nameText, quantityOfEither, words } from '../units/schema.ts';
+import { keys, listOf, nameText, oneOf, quantityOfEither, words } from '../units/schema.ts';
 import { limited, sceneLimits } from './limits.ts';
 
 /** Most components in a section, and most bands. */
@@ -23,8 +23,15 @@ const turbulence = keys(
       cell: limited(sceneLimits.cell),
       follows: nameText().optional(),
     }).optional(),
+    ordered: keys({
+      rms: limited(sceneLimits.orderedRms),
+      along: oneOf(['azimuth', 'pitch'], 'along'),
+      pitch: limited(sceneLimits.orderedPitch).optional(),
+      cell: limited(sceneLimits.cell),
+      follows: nameText().optional(),
+    }).optional(),
   },
-  ['resolved', 'ordered'],
+  ['resolved'],
 );
 
 const freeFree = keys({ temperature: limited(sceneLimits.temperature) });
@@ -106,10 +113,12 @@ export function sceneSchema<Item extends z.ZodType>(items: { readonly field: Ite
       galaxy,
       field: listOf(items.field, 'components', 0, MAX_ITEMS).default([]),
       thermalElectrons: listOf(items.density, 'components', 0, MAX_ITEMS).default([]),
-      cosmicRays: keys({ index: limited(sceneLimits.index), layers: listOf(items.layer, 'layers', 1, MAX_ITEMS) }, [
-        'equipartition',
-        'scaleTo',
-      ]),
+      cosmicRays: keys({
+        index: limited(sceneLimits.index),
+        layers: listOf(items.layer, 'layers', 1, MAX_ITEMS).optional(),
+        equipartition: keys({ protonRatio: limited(sceneLimits.protonRatio) }).optional(),
+        scaleTo: keys({ flux: limited(sceneLimits.flux), at: limited(sceneLimits.fluxAt) }).optional(),
+      }),
       turbulence: turbulence.default({}),
       freeFree: freeFree.optional(),
       observation,

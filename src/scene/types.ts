@@ -55,6 +55,30 @@ export interface FreeFreeGas {
   readonly temperatureK: number;
 }
 
+/** An ordered random field that changes sign from cell to cell along one local direction. */
+export interface OrderedTurbulence {
+  /** rms along that direction, uG. */
+  readonly rmsUG: number;
+  readonly cellKpc: number;
+  readonly along: 'azimuth' | 'pitch';
+  /** atan(B_r/B_φ) of the direction, rad; 0 along the azimuth. */
+  readonly pitch: number;
+  /** Name of a component or density whose value, divided by its strength, scales the rms. */
+  readonly follows?: string;
+}
+
+/** Cosmic-ray electrons: layers, with one factor that gives them a flux density, or equipartition with the field. */
+export interface CosmicRays {
+  /** p of the spectrum γ^-p. */
+  readonly index: number;
+  /** Empty in equipartition. */
+  readonly layers: readonly CosmicRayLayer[];
+  /** Number ratio of protons to electrons. */
+  readonly equipartition?: { readonly protonRatio: number };
+  /** Flux density of the synchrotron emission of the whole volume at one frequency. */
+  readonly scaleTo?: { readonly fluxJy: number; readonly atHz: number };
+}
+
 export interface Band {
   readonly name: string;
   /** Given as from/to/channels (or at + width); widthHz 0 is monochromatic. */
@@ -129,8 +153,8 @@ export interface Scene {
   readonly galaxy: Galaxy;
   readonly field: readonly Component[];
   readonly thermalElectrons: readonly Component[];
-  readonly cosmicRays: { readonly index: number; readonly layers: readonly CosmicRayLayer[] };
-  readonly turbulence: { readonly unresolved?: UnresolvedTurbulence };
+  readonly cosmicRays: CosmicRays;
+  readonly turbulence: { readonly unresolved?: UnresolvedTurbulence; readonly ordered?: OrderedTurbulence };
   /** Free–free absorption and emission of the thermal electrons; undefined: none. */
   readonly freeFree?: FreeFreeGas;
   readonly observation: Observation;

@@ -17,6 +17,7 @@ const CODATA = 'CODATA 2018 (Tiesinga et al. 2021)';
 
 export const elementaryCharge = constant(1.602176634e-19, 'C', `${CODATA}, exact`);
 export const electronMass = constant(9.1093837015e-31, 'kg', CODATA);
+export const protonMass = constant(1.67262192369e-27, 'kg', CODATA);
 export const speedOfLight = constant(299792458, 'm/s', `${CODATA}, exact`);
 export const vacuumPermittivity = constant(8.8541878128e-12, 'F/m', CODATA);
 export const boltzmannConstant = constant(1.380649e-23, 'J/K', `${CODATA}, exact`);
