@@ -9,8 +9,8 @@ export interface RayJob {
   readonly scene: Scene;
   readonly spectrum: readonly SpectralPoint[];
   readonly bundle: RayBundle;
-  /** Whether heights of origin are wanted; a pool leaves their arrays empty where not. True by default. */
-  readonly origins?: boolean;
+  /** Indices into the spectrum whose heights of origin are wanted, planes of the result in that order; all by default. */
+  readonly origins?: false | readonly number[];
 }
 
 /** How a long job is watched and stopped. */
@@ -18,6 +18,24 @@ export interface Watch {
   /** Rays done and rays in all. */
   readonly onProgress?: (done: number, total: number) => void;
   readonly signal?: AbortSignal;
+}
+
+/** The points of a job's spectrum whose heights of origin are wanted. */
+export function originPoints({ spectrum, origins }: Pick<RayJob, 'spectrum' | 'origins'>): readonly number[] {
+  return origins === undefined ? [...spectrum.keys()] : origins === false ? [] : origins;
+}
+
+const originArrays = ['heightQ', 'heightU', 'emittedP'] as const;
+
+/** A result with the heights of origin of these points only. */
+export function keepOrigins(result: RayResult, points: readonly number[]): RayResult {
+  const rays = result.faradayDepth.length;
+  const kept = originArrays.map((name) => {
+    const planes = new Float64Array(points.length * rays);
+    points.forEach((point, k) => planes.set(result[name].subarray(point * rays, (point + 1) * rays), k * rays));
+    return planes;
+  });
+  return { ...result, heightQ: kept[0], heightU: kept[1], emittedP: kept[2] };
 }
 
 /** Whoever follows rays: this thread, or a pool of workers. The result does not depend on which. */
@@ -62,12 +80,13 @@ export class EngineCache {
 /** Joins the results of tiles, given in order, to that of the whole bundle. */
 export function joinTiles(tiles: readonly RayResult[], frequencies: number): RayResult {
   const rays = tiles.reduce((sum, tile) => sum + tile.faradayDepth.length, 0);
-  const join = (pick: (tile: RayResult) => Float64Array, planes: number): Float64Array => {
+  const join = (pick: (tile: RayResult) => Float64Array): Float64Array => {
+    const planes = tiles.length === 0 ? 0 : pick(tiles[0]).length / tiles[0].faradayDepth.length;
     const whole = new Float64Array(planes * rays);
     let start = 0;
     for (const tile of tiles) {
       const part = pick(tile);
-      const length = part.length / planes;
+      const length = tile.faradayDepth.length;
       for (let plane = 0; plane < planes; plane++) whole.set(part.subarray(plane * length, (plane + 1) * length), plane * rays + start);
       start += length;
     }
@@ -76,13 +95,13 @@ export function joinTiles(tiles: readonly RayResult[], frequencies: number): Ray
   const error = new Float64Array(frequencies);
   for (const tile of tiles) for (let k = 0; k < frequencies; k++) error[k] = Math.max(error[k], tile.error[k]);
   return {
-    I: join((tile) => tile.I, frequencies),
-    Q: join((tile) => tile.Q, frequencies),
-    U: join((tile) => tile.U, frequencies),
-    heightQ: join((tile) => tile.heightQ, frequencies),
-    heightU: join((tile) => tile.heightU, frequencies),
-    emittedP: join((tile) => tile.emittedP, frequencies),
-    faradayDepth: join((tile) => tile.faradayDepth, 1),
+    I: join((tile) => tile.I),
+    Q: join((tile) => tile.Q),
+    U: join((tile) => tile.U),
+    heightQ: join((tile) => tile.heightQ),
+    heightU: join((tile) => tile.heightU),
+    emittedP: join((tile) => tile.emittedP),
+    faradayDepth: join((tile) => tile.faradayDepth),
     error,
     samples: tiles.reduce((sum, tile) => sum + tile.samples, 0),
   };
@@ -90,7 +109,8 @@ export function joinTiles(tiles: readonly RayResult[], frequencies: number): Ray
 
 /** A backend that follows all rays in this thread. */
 export function localBackend(cache = new EngineCache()): RayBackend {
-  return async ({ scene, spectrum, bundle }, watch = {}) => {
+  return async ({ scene, spectrum, bundle, origins }, watch = {}) => {
+    const points = originPoints({ spectrum, origins });
     const engine = cache.get(scene, spectrum);
     const scale = findMapScale(engine, scene, bundle);
     const rays = bundle.northKpc.length;
@@ -100,7 +120,7 @@ export function localBackend(cache = new EngineCache()): RayBackend {
     while (done < rays) {
       watch.signal?.throwIfAborted();
       const tile = traceRays(engine, scene, bundle, scale, done, Math.min(done + tileRays, rays), budget);
-      tiles.push(tile);
+      tiles.push(keepOrigins(tile, points));
       done += tile.faradayDepth.length;
       watch.onProgress?.(done, rays);
       left -= tile.samples;

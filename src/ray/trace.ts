@@ -122,7 +122,7 @@ const leastOfLargest = 1e-3;
  * The largest of a few rays' values, but no more than a few times their 90 % point, unless that is
  * almost nothing beside it; empty rays do not count.
  */
-function typicalLargest(values: readonly number[]): number {
+export function typicalLargest(values: readonly number[]): number {
   const sorted = values.filter((value) => value > 0).sort((a, b) => a - b);
   if (sorted.length === 0) return 0;
   const largest = sorted[sorted.length - 1];

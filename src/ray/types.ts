@@ -12,7 +12,10 @@ export interface RayResult {
   readonly I: Float64Array;
   readonly Q: Float64Array;
   readonly U: Float64Array;
-  /** integral z (Q+iU) along the ray, Jy/sr kpc, real and imaginary part: for origin heights. */
+  /**
+   * integral z (Q+iU) along the ray, Jy/sr kpc, real and imaginary part: for origin heights. One
+   * plane for each point of the spectrum whose heights were wanted, in the order of the wish.
+   */
   readonly heightQ: Float64Array;
   readonly heightU: Float64Array;
   /** integral |j_P| ds without rotation, Jy/sr: tells where |P| is too small to have an origin. */

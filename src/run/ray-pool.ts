@@ -1,4 +1,4 @@
-import { tilesOf, type RayBackend, type RayJob, type Watch } from '../ray/job.ts';
+import { originPoints, tilesOf, type RayBackend, type RayJob, type Watch } from '../ray/job.ts';
 import type { MapScale } from '../ray/trace.ts';
 import type { RayBundle, RayResult } from '../ray/types.ts';
 import { InputError } from '../units/input-error.ts';
@@ -58,8 +58,8 @@ async function runJob(
   signal?.throwIfAborted();
   const rays = job.bundle.northKpc.length;
   const arrays = makeArrays(job, canShare);
-  const { scene, spectrum } = job;
-  await Promise.all(workers.map((worker) => worker.begin({ scene, spectrum, bundle, shared: canShare ? arrays : undefined })));
+  const { scene, spectrum, origins } = job;
+  await Promise.all(workers.map((worker) => worker.begin({ scene, spectrum, origins, bundle, shared: canShare ? arrays : undefined })));
   const scale = await workers[0].scale().catch((problem: unknown) => Promise.reject(sameKind(problem)));
   const tiles = tilesOf(rays);
   const error = new Float64Array(spectrum.length);
@@ -110,13 +110,14 @@ function sameKind(problem: unknown): unknown {
   return new InputError(problem.message);
 }
 
-/** Empty arrays for the whole result of a job; without origins those that serve them only are left out. */
-function makeArrays({ spectrum, bundle, origins = true }: RayJob, canShare: boolean): SharedRays {
-  const rays = bundle.northKpc.length;
-  const wanted = rayArrays.filter((name) => origins || !['heightQ', 'heightU', 'emittedP'].includes(name));
+/** Empty arrays for the whole result of a job. */
+function makeArrays(job: RayJob, canShare: boolean): SharedRays {
+  const rays = job.bundle.northKpc.length;
+  const origins = originPoints(job).length;
+  const planesOf = (name: RayArray): number => (name === 'faradayDepth' ? 1 : name === 'I' || name === 'Q' || name === 'U' ? job.spectrum.length : origins);
   return Object.fromEntries(
-    wanted.map((name) => {
-      const length = name === 'faradayDepth' ? rays : rays * spectrum.length;
+    rayArrays.map((name) => {
+      const length = rays * planesOf(name);
       return [name, canShare ? new Float64Array(new SharedArrayBuffer(8 * length)) : new Float64Array(length)];
     }),
   );

@@ -1,4 +1,4 @@
-import { EngineCache, sampleBudget, type RayJob } from '../ray/job.ts';
+import { EngineCache, keepOrigins, originPoints, sampleBudget, type RayJob } from '../ray/job.ts';
 import { findMapScale, traceRays, type MapScale } from '../ray/trace.ts';
 import type { RayBundle, RayResult } from '../ray/types.ts';
 
@@ -12,7 +12,7 @@ export interface ServiceJob extends Omit<RayJob, 'bundle'> {
 /** The arrays of a result that a job wants, over all its rays. */
 export type SharedRays = Readonly<Partial<Record<RayArray, Float64Array>>>;
 
-/** Names of a result's arrays; all but the depth have one plane per frequency. */
+/** Names of a result's arrays; all but the depth have one plane per frequency or per origin. */
 export type RayArray = 'I' | 'Q' | 'U' | 'heightQ' | 'heightU' | 'emittedP' | 'faradayDepth';
 
 export const rayArrays: readonly RayArray[] = ['I', 'Q', 'U', 'heightQ', 'heightU', 'emittedP', 'faradayDepth'];
@@ -33,10 +33,10 @@ export class RayService {
   private shared: SharedRays | undefined;
 
   /** Takes up a job in place of the last. */
-  begin({ scene, spectrum, bundle, shared }: ServiceJob): void {
+  begin({ scene, spectrum, origins, bundle, shared }: ServiceJob): void {
     const rays = bundle ?? this.job?.bundle;
     if (!rays) throw new Error('a job came without rays');
-    this.job = { scene, spectrum, bundle: rays };
+    this.job = { scene, spectrum, origins, bundle: rays };
     this.shared = shared;
   }
 
@@ -48,8 +48,9 @@ export class RayService {
 
   /** Follows the rays `from` ≤ index < `to`, or as many of them as the budget allows: into shared memory, or as a result of its own. */
   tile(scale: MapScale, from: number, to: number): RayResult | TileNote {
-    const { scene, spectrum, bundle } = this.current();
-    const result = traceRays(this.cache.get(scene, spectrum), scene, bundle, scale, from, to, sampleBudget(spectrum.length));
+    const { scene, spectrum, bundle, origins } = this.current();
+    const all = traceRays(this.cache.get(scene, spectrum), scene, bundle, scale, from, to, sampleBudget(spectrum.length));
+    const result = keepOrigins(all, originPoints({ spectrum, origins }));
     if (!this.shared) return result;
     const rays = bundle.northKpc.length;
     for (const name of rayArrays) {

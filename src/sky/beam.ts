@@ -131,6 +131,24 @@ function refuseBlanks(...planes: (Float64Array | undefined)[]): void {
   }
 }
 
+/** Planes of I, Q and U, each [plane * pixels + pixel]; as many of U as of Q. */
+export type StokesPlanes = Readonly<Record<'I' | 'Q' | 'U', Float64Array>>;
+
+/**
+ * Brings planes of the sky on a grid (Jy/sr, with its margin still on) to Jy/beam in place, as the
+ * beam sees them. Throws InputError for blank pixels and a beam narrower than a pixel.
+ */
+export function beamPlanes({ I, Q, U }: StokesPlanes, beam: Beam, grid: SkyGrid): void {
+  const { nx, ny } = grid;
+  const convolve = beamConvolver(pixelBeam(beam, wcsFromGrid(grid).cd), nx, ny);
+  const solidAngle = beamSolidAngleSr(beam);
+  const plane = (planes: Float64Array, index: number): Float64Array => planes.subarray(index * nx * ny, (index + 1) * nx * ny);
+  for (let index = 0; index < Q.length / (nx * ny); index++) convolve(plane(Q, index), plane(U, index));
+  const planesI = I.length / (nx * ny);
+  for (let index = 0; index < planesI; index += 2) convolve(plane(I, index), index + 1 < planesI ? plane(I, index + 1) : undefined);
+  for (const planes of [I, Q, U]) for (let k = 0; k < planes.length; k++) planes[k] *= solidAngle;
+}
+
 /**
  * A sky cube (Jy/sr, with its margin still on) as the beam sees it, Jy/beam. Throws InputError where
  * the cube has been through a beam already, has blank pixels, or the beam is narrower than a pixel.
@@ -139,16 +157,7 @@ export function applyBeam(cube: StokesCube, beam: Beam): StokesCube {
   if (cube.unit !== 'Jy/sr') {
     throw new InputError(`the maps of band ${cube.band} are in ${cube.unit}: a beam acts on Jy/sr only`);
   }
-  const { nx, ny } = cube.grid;
-  const convolve = beamConvolver(pixelBeam(beam, wcsFromGrid(cube.grid).cd), nx, ny);
-  const solidAngle = beamSolidAngleSr(beam);
-  const [I, Q, U] = [cube.I, cube.Q, cube.U].map((planes) => planes.map((value) => value * solidAngle));
-  const plane = (planes: Float64Array, channel: number): Float64Array =>
-    planes.subarray(channel * nx * ny, (channel + 1) * nx * ny);
-  for (let channel = 0; channel < cube.channels.length; channel++) {
-    convolve(plane(Q, channel), plane(U, channel));
-    if (channel % 2 === 1) convolve(plane(I, channel - 1), plane(I, channel));
-    else if (channel === cube.channels.length - 1) convolve(plane(I, channel));
-  }
-  return { ...cube, I, Q, U, unit: 'Jy/beam', beam };
+  const seen = { I: cube.I.slice(), Q: cube.Q.slice(), U: cube.U.slice() };
+  beamPlanes(seen, beam, cube.grid);
+  return { ...cube, ...seen, unit: 'Jy/beam', beam };
 }

@@ -20,15 +20,32 @@ export async function traceFaintToo(backend: RayBackend, job: RayJob, watch: Wat
     const faint = faintOf(result, indices);
     if (faint.length === 0) break;
     const again = await backend({ ...job, bundle: pick(job.bundle, faint) }, { signal: watch.signal });
-    replace(result, again, faint, job.spectrum.length);
+    replace(result, again, faint);
     samples += again.samples;
     indices = faint;
   }
   return { ...result, samples };
 }
 
+/**
+ * For each ray of one plane of I, the brightest of those it was followed among, over the brightest of all: what is
+ * negligible beside that one need not be beside a faint ray.
+ */
+export function faintness({ I }: Pick<RayResult, 'I'>): Float64Array {
+  const shares = new Float64Array(I.length).fill(1);
+  let indices: Int32Array = Int32Array.from(I.keys());
+  const brightestOf = (some: Int32Array): number => some.reduce((most, index) => Math.max(most, I[index]), 0);
+  const brightest = brightestOf(indices);
+  for (let round = 0; round < mostRounds; round++) {
+    indices = faintOf({ I }, indices);
+    const share = brightestOf(indices) / brightest;
+    for (const index of indices) shares[index] = share;
+  }
+  return shares;
+}
+
 /** Those of `indices` whose first frequency is faint beside the brightest among them, but not dark. */
-function faintOf({ I }: RayResult, indices: Int32Array): Int32Array {
+function faintOf({ I }: Pick<RayResult, 'I'>, indices: Int32Array): Int32Array {
   const brightest = indices.reduce((most, index) => Math.max(most, I[index]), 0);
   return indices.filter((index) => I[index] > 0 && I[index] < faintShare * brightest);
 }
@@ -38,12 +55,13 @@ function pick({ northKpc, eastKpc }: RayBundle, indices: Int32Array): RayBundle 
   return { northKpc: at(northKpc), eastKpc: at(eastKpc) };
 }
 
-function replace(whole: RayResult, part: RayResult, indices: Int32Array, frequencies: number): void {
+function replace(whole: RayResult, part: RayResult, indices: Int32Array): void {
   const rays = whole.faradayDepth.length;
   indices.forEach((index, k) => {
     whole.faradayDepth[index] = part.faradayDepth[k];
     for (const name of arrays) {
-      for (let frequency = 0; frequency < frequencies; frequency++) whole[name][frequency * rays + index] = part[name][frequency * indices.length + k];
+      const planes = part[name].length / indices.length;
+      for (let plane = 0; plane < planes; plane++) whole[name][plane * rays + index] = part[name][plane * indices.length + k];
     }
   });
 }

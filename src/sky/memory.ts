@@ -7,9 +7,9 @@ export interface MapSize {
   readonly ny: number;
   /** Pixels added on each side for the beam. */
   readonly margin: number;
-  /** Over all bands. */
+  /** Over all bands: those that are kept as means over their width, not made from a band's nodes when written. */
   readonly channels: number;
-  /** Frequencies followed along the rays: the sum of all channels' nodes. */
+  /** Frequencies followed along the rays: nodes of channels and of bands. */
   readonly frequencies: number;
 }
 
@@ -17,10 +17,9 @@ export interface MapSize {
 export const memoryLimitBytes = 4e9;
 
 const bytesPerNumber = 8;
-/** Per ray and frequency: I, Q, U, the two height moments and the emitted P. */
-const numbersPerRay = 6;
-/** Per pixel and channel: I, Q, U before and after the beam. */
-const numbersPerPixel = 6;
+/** Per ray and frequency, and per pixel and channel: I, Q, U. */
+const numbersPerRay = 3;
+const numbersPerPixel = 3;
 
 /** Bytes that the rays, cubes and Fourier transforms of an observation need, all counted. */
 export function memoryNeededBytes({ nx, ny, margin, channels, frequencies }: MapSize): number {

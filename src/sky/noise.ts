@@ -2,7 +2,7 @@ import { randomStream } from '../math/random.ts';
 import { goodSize, multiplyImage, transformImage } from '../math/fft.ts';
 import type { ComplexImage } from '../math/fft.ts';
 import { beamReach, pixelBeam } from './beam.ts';
-import type { PixelBeam } from './beam.ts';
+import type { PixelBeam, StokesPlanes } from './beam.ts';
 import { wcsFromGrid } from './grid.ts';
 import type { StokesCube } from './types.ts';
 
@@ -14,18 +14,27 @@ const stokesNames = ['I', 'Q', 'U'] as const;
  * white. Stream: (seed, `noise/<band>/<stokes>`, channel). Adds to noise that the cube states already.
  */
 export function addNoise(cube: StokesCube, rms: number, seed: number): StokesCube {
-  const { nx, ny } = cube.grid;
-  const draw = noiseMaker(nx, ny, cube.beam && pixelBeam(cube.beam, wcsFromGrid(cube.grid).cd));
-  const [I, Q, U] = stokesNames.map((stokes) => {
-    const planes = cube[stokes].slice();
-    for (let channel = 0; channel < cube.channels.length; channel++) {
-      const stream = randomStream(seed, `noise/${cube.band}/${stokes}`, channel);
-      const noise = draw(stream.gaussian);
-      for (let k = 0; k < noise.length; k++) planes[channel * nx * ny + k] += rms * noise[k];
+  const noisy = { I: cube.I.slice(), Q: cube.Q.slice(), U: cube.U.slice() };
+  noiseAdder(cube, rms, seed)(noisy, 0);
+  return { ...cube, ...noisy, noise: cube.noise.map((before) => Math.hypot(before, rms)) };
+}
+
+/** Adds the noise of a band's channels, the first of which is `from`, to planes of them, [(channel - from) * pixels + pixel]. */
+export type NoiseAdder = (planes: StokesPlanes, from: number) => void;
+
+/** Makes a function that adds that noise in place to some of a band's channels: the same whichever are asked for together. */
+export function noiseAdder({ band, grid, beam }: Pick<StokesCube, 'band' | 'grid' | 'beam'>, rms: number, seed: number): NoiseAdder {
+  const { nx, ny } = grid;
+  const draw = noiseMaker(nx, ny, beam && pixelBeam(beam, wcsFromGrid(grid).cd));
+  return (stokesPlanes, from) => {
+    for (const stokes of stokesNames) {
+      const planes = stokesPlanes[stokes];
+      for (let start = 0, channel = from; start < planes.length; start += nx * ny, channel++) {
+        const noise = draw(randomStream(seed, `noise/${band}/${stokes}`, channel).gaussian);
+        for (let k = 0; k < noise.length; k++) planes[start + k] += rms * noise[k];
+      }
     }
-    return planes;
-  });
-  return { ...cube, I, Q, U, noise: cube.noise.map((before) => Math.hypot(before, rms)) };
+  };
 }
 
 /**

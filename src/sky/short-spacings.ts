@@ -1,6 +1,6 @@
 import { InputError } from '../units/input-error.ts';
 import type { Beam } from '../scene/types.ts';
-import { beamConvolver, pixelBeam } from './beam.ts';
+import { beamConvolver, pixelBeam, type StokesPlanes } from './beam.ts';
 import { arcsec, wcsFromGrid } from './grid.ts';
 import type { SkyGrid, StokesCube } from './types.ts';
 
@@ -20,21 +20,22 @@ export function missingBeam(missingWavelengths: number): Beam {
  * pixel would be left.
  */
 export function removeShortSpacings(cube: StokesCube, missingWavelengths: number): StokesCube {
-  const { nx, ny } = cube.grid;
-  const smooth = beamConvolver(pixelBeam(checkedBeam(missingWavelengths, cube.grid), wcsFromGrid(cube.grid).cd), nx, ny);
-  const [I, Q, U] = [cube.I, cube.Q, cube.U].map((planes) => planes.slice());
-  const subtract = (planes: Float64Array, broad: Float64Array, start: number): void => {
-    for (let k = 0; k < broad.length; k++) planes[start + k] -= broad[k];
-  };
-  for (let start = 0; start < I.length; start += nx * ny) {
-    const [broadI, broadQ, broadU] = [I, Q, U].map((planes) => planes.slice(start, start + nx * ny));
-    smooth(broadQ, broadU);
-    smooth(broadI);
-    subtract(I, broadI, start);
-    subtract(Q, broadQ, start);
-    subtract(U, broadU, start);
+  const seen = { I: cube.I.slice(), Q: cube.Q.slice(), U: cube.U.slice() };
+  highPassPlanes(seen, missingWavelengths, cube.grid);
+  return { ...cube, ...seen };
+}
+
+/** The same for any planes of a grid, in place. */
+export function highPassPlanes(stokes: StokesPlanes, missingWavelengths: number, grid: SkyGrid): void {
+  const { nx, ny } = grid;
+  const smooth = beamConvolver(pixelBeam(checkedBeam(missingWavelengths, grid), wcsFromGrid(grid).cd), nx, ny);
+  for (const planes of [stokes.I, stokes.Q, stokes.U]) {
+    for (let start = 0; start < planes.length; start += nx * ny) {
+      const broad = planes.slice(start, start + nx * ny);
+      smooth(broad);
+      for (let k = 0; k < broad.length; k++) planes[start + k] -= broad[k];
+    }
   }
-  return { ...cube, I, Q, U };
 }
 
 function checkedBeam(missingWavelengths: number, { pixelArcsec }: SkyGrid): Beam {

@@ -38,14 +38,23 @@ export interface PlanOptions {
 }
 
 /** Plans the frequencies of a scene's bands; wide channels get as many as their depths ask for. */
-export function planSpectrum(
+export function planSpectrum(scene: Scene, bundle: RayBundle, bands: readonly Band[], options: PlanOptions = {}): SpectralPlan {
+  return planBands(scene, bands, plannedDepth(scene, bundle, bands, options), options.origins);
+}
+
+/** The largest |depth| (rad m^-2) that channels must be averaged for; 0 where none is wide. */
+export function plannedDepth(
   scene: Scene,
   bundle: RayBundle,
   bands: readonly Band[],
-  { depthReserve = 1, depthQuantile = 1, foreground = Math.abs(scene.observation.foregroundDepth), origins: withOrigins = true }: PlanOptions = {},
-): SpectralPlan {
+  { depthReserve = 1, depthQuantile = 1, foreground = Math.abs(scene.observation.foregroundDepth) }: PlanOptions = {},
+): number {
   const wide = bands.some((band) => band.channels.some((channel) => channel.widthHz > 0));
-  const largestDepth = wide ? depthReserve * (findLargestDepth(scene, bundle, depthQuantile) + foreground) : 0;
+  return wide ? depthReserve * (findLargestDepth(scene, bundle, depthQuantile) + foreground) : 0;
+}
+
+/** The same plan for a largest depth that is known. */
+export function planBands(scene: Scene, bands: readonly Band[], largestDepth: number, withOrigins = true): SpectralPlan {
   const spectrum: SpectralPoint[] = [];
   const known = new Map<string, number>();
   const point = (frequencyHz: number, centreHz: number): number => {
@@ -63,9 +72,13 @@ export function planSpectrum(
       const points = Array.from(nodes.frequenciesHz, (frequency) => point(frequency, channel.frequencyHz));
       return { channel, points, weights: nodes.weights };
     });
-    const centres = band.centreHz !== undefined ? [band.centreHz] : band.channels.map((channel) => channel.frequencyHz);
-    const origins = withOrigins ? centres.map((frequencyHz) => ({ frequencyHz, point: point(frequencyHz, frequencyHz) })) : [];
+    const origins = withOrigins ? originFrequencies(band).map((frequencyHz) => ({ frequencyHz, point: point(frequencyHz, frequencyHz) })) : [];
     return { band, channels, origins };
   });
   return { spectrum, bands: plans };
+}
+
+/** Frequencies at which a band's heights of origin are taken: its centre, or each of its channels'. */
+export function originFrequencies(band: Band): readonly number[] {
+  return band.centreHz !== undefined ? [band.centreHz] : band.channels.map((channel) => channel.frequencyHz);
 }

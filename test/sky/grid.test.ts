@@ -61,9 +61,9 @@ test('growing and cropping undo each other', () => {
 
 test('memory counts the rays of the grown grid, and too much is refused with its size', () => {
   const size = { nx: 100, ny: 100, margin: 14, channels: 10, frequencies: 20 };
-  // 128^2 rays x (3 + 6 x 20 + 6 x 10) numbers and three transforms of 256^2, 8 bytes each.
-  expect(memoryNeededBytes(size)).toBe(8 * (128 * 128 * 183 + 3 * 256 * 256));
+  // 128^2 rays x (3 + 3 x 20 + 3 x 10) numbers and three transforms of 256^2, 8 bytes each.
+  expect(memoryNeededBytes(size)).toBe(8 * (128 * 128 * 93 + 3 * 256 * 256));
   expect(() => refuseTooLarge(size)).not.toThrow();
   expect(() => refuseTooLarge({ ...size, nx: 20_000, ny: 20_000 })).toThrow(/20000 x 20000 .* GB of memory/);
-  expect(() => refuseTooLarge(size, 1e6)).toThrow(/0.0256 GB.*0.001 GB/);
+  expect(() => refuseTooLarge(size, 1e6)).toThrow(/0.0138 GB.*0.001 GB/);
 });

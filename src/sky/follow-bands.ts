@@ -1,0 +1,189 @@
+import type { SpectralPoint } from '../ray/integrand.ts';
+import type { RayBackend, Watch } from '../ray/job.ts';
+import type { RayBundle, RayResult } from '../ray/types.ts';
+import type { Band, Scene } from '../scene/types.ts';
+import { InputError } from '../units/input-error.ts';
+import { toCoefficients } from './band-coefficients.ts';
+import { interpolateBand, type BandRays } from './band-follow.ts';
+import { channelMatrix } from './band-nodes.ts';
+import { leastDegrees } from './band-tails.ts';
+import { pickPilot, pilotBand, type Interpolation, type Pilot } from './band-pilot.ts';
+import { bandCube } from './channel-means.ts';
+import { channelPlanes, type ChannelBasis } from './channel-basis.ts';
+import { traceFaintToo } from './faint-rays.ts';
+import { largestForeground, turnByForeground } from './foreground.ts';
+import { originHeights, type OriginHeights, type OriginMoments } from './origin-heights.ts';
+import { originFrequencies, plannedDepth, planBands, type BandPlan, type SpectralPlan } from './spectral-plan.ts';
+
+/** How one band's channels are had. */
+export type BandWay =
+  /** Every frequency of every channel is followed. */
+  | { readonly kind: 'direct'; readonly plan: SpectralPlan }
+  /** Rays are followed at nodes in wavelength squared, and channels interpolated. */
+  | { readonly kind: 'nodes'; readonly interpolation: Interpolation };
+
+/** What the rays of an image bring, band by band, the foreground's turn included. */
+export interface FollowedBands {
+  readonly bases: readonly ChannelBasis[];
+  /** Uncropped. */
+  readonly origins: readonly OriginHeights[];
+  /** Per ray, rad m^-2, without foreground. */
+  readonly faradayDepth: Float64Array;
+  /** Largest estimated error on the scale that `tolerance` bounds, of rays and interpolation. */
+  readonly error: number;
+  readonly samples: number;
+}
+
+/** Cost of one term of one channel's sum (Q and U of a pixel) over that of following a ray at one more frequency: measured, see `test/sky/many-channels.test.ts`. */
+const mixCost = 0.005;
+/** Cost of a pilot's ray, in frequencies of a ray: what its frequencies share, and the first nodes. */
+const pilotCost = 30;
+/** Above this many frequencies of its own a band's heights of origin are interpolated too. */
+const mostOwnOrigins = 2;
+
+/** Chooses how each band is followed, by what either way costs; the pilot's rays find how many nodes would do. */
+export async function chooseWays(scene: Scene, bundle: RayBundle, bands: readonly Band[], foreground: number | Float64Array, backend: RayBackend, watch: Watch = {}): Promise<readonly BandWay[]> {
+  const depth = plannedDepth(scene, bundle, bands, { foreground: largestForeground(foreground) });
+  const ways: BandWay[] = [];
+  let pilot: Pilot | undefined;
+  for (const band of bands) {
+    const direct = directPlan(scene, band, depth);
+    const count = direct instanceof InputError ? Infinity : direct.spectrum.length;
+    pilot ??= pickPilot(bundle, foreground);
+    const mostDegrees = Math.floor((count - pilotCost * (pilot.bundle.northKpc.length / bundle.northKpc.length)) / (1 + mixCost * band.channels.length));
+    const interpolation = mostDegrees > leastDegrees ? await pilotBand(scene, band, pilot, Math.min(mostDegrees, mostNodes), backend, watch.signal) : undefined;
+    if (interpolation) ways.push({ kind: 'nodes', interpolation });
+    else if (direct instanceof InputError) throw direct;
+    else ways.push({ kind: 'direct', plan: direct });
+  }
+  return ways;
+}
+
+/** No band is worth more nodes: memory. */
+const mostNodes = 400;
+
+function directPlan(scene: Scene, band: Band, largestDepth: number): SpectralPlan | InputError {
+  try {
+    return planBands(scene, [band], largestDepth);
+  } catch (error) {
+    if (error instanceof InputError) return error;
+    throw error;
+  }
+}
+
+/** Where a band's points stand in the spectrum of all bands together. */
+interface BandPlace {
+  readonly band: Band;
+  readonly way: BandWay;
+  /** Index of each of its own points in the spectrum of all. */
+  readonly points: readonly number[];
+  /** Frequencies of its heights of origin that are followed themselves. */
+  readonly ownOrigins: readonly { readonly frequencyHz: number; readonly point: number }[];
+  /** Whether heights of origin are interpolated from its nodes. */
+  readonly interpolatesOrigins: boolean;
+}
+
+/** Follows all rays of an image for all its bands in one pass, and makes each band's basis of it. */
+export async function followBands(scene: Scene, bundle: RayBundle, bands: readonly Band[], foreground: number | Float64Array, ways: readonly BandWay[], backend: RayBackend, watch: Watch = {}): Promise<FollowedBands> {
+  const { spectrum, places, origins } = placeBands(bands, ways);
+  const pixels = bundle.northKpc.length;
+  const rays = await traceFaintToo(backend, { scene, spectrum, bundle, origins }, watch);
+  const frequenciesHz = spectrum.map((point) => point.frequencyHz);
+  turnByForeground(rays.Q, rays.U, frequenciesHz, foreground);
+  const originsHz = origins.map((point) => frequenciesHz[point]);
+  if (originsHz.length > 0) turnByForeground(rays.heightQ, rays.heightU, originsHz, foreground);
+  const about: BandRays = { scene, bundle, foreground, backend, watch };
+  const done = { bases: [] as ChannelBasis[], origins: [] as OriginHeights[], error: rays.error.reduce((a, b) => Math.max(a, b), 0), samples: rays.samples };
+  for (const place of places) {
+    const { band, way, points } = place;
+    done.origins.push(bandOrigins(place, rays, origins, pixels, scene));
+    if (way.kind === 'direct') {
+      done.bases.push(directBasis(way.plan.bands[0], points, rays, pixels));
+      continue;
+    }
+    const planes = { I: planesAt(rays.I, points, pixels), Q: planesAt(rays.Q, points, pixels), U: planesAt(rays.U, points, pixels) };
+    const interpolated = await interpolateBand(band, planes, way.interpolation, about);
+    if (interpolated) {
+      done.bases.push(interpolated.basis);
+      done.error = Math.max(done.error, rays.error.reduce((a, b) => Math.max(a, b), 0) + interpolated.error);
+      done.samples += interpolated.samples;
+      continue;
+    }
+    // A ray that the pilot could not foresee: the band is followed directly after all.
+    const depth = plannedDepth(scene, bundle, [band], { foreground: largestForeground(foreground) });
+    const again = await followBands(scene, bundle, [band], foreground, [{ kind: 'direct', plan: planBands(scene, [band], depth) }], backend, watch);
+    done.bases.push(again.bases[0]);
+    done.error = Math.max(done.error, again.error);
+    done.samples += again.samples;
+  }
+  return { ...done, faradayDepth: rays.faradayDepth };
+}
+
+function placeBands(bands: readonly Band[], ways: readonly BandWay[]): { spectrum: readonly SpectralPoint[]; places: readonly BandPlace[]; origins: readonly number[] } {
+  const spectrum: SpectralPoint[] = [];
+  const known = new Map<string, number>();
+  const place = (point: SpectralPoint): number => {
+    const key = `${point.frequencyHz}/${point.centreHz}`;
+    const index = known.get(key) ?? spectrum.push(point) - 1;
+    known.set(key, index);
+    return index;
+  };
+  const places = bands.map((band, k): BandPlace => {
+    const way = ways[k];
+    const points = (way.kind === 'direct' ? way.plan.spectrum : way.interpolation.nodes.spectrum).map((point) =>
+      // Nodes of a band lie side by side, so that their planes do.
+      way.kind === 'nodes' ? spectrum.push(point) - 1 : place(point),
+    );
+    const wanted = originFrequencies(band);
+    const interpolatesOrigins = way.kind === 'nodes' && wanted.length > mostOwnOrigins;
+    const ownOrigins = interpolatesOrigins ? [] : wanted.map((frequencyHz) => ({ frequencyHz, point: place({ frequencyHz, centreHz: frequencyHz }) }));
+    return { band, way, points, ownOrigins, interpolatesOrigins };
+  });
+  const origins = [...new Set(places.flatMap(({ ownOrigins, interpolatesOrigins, points }) => [...ownOrigins.map(({ point }) => point), ...(interpolatesOrigins ? points : [])]))];
+  return { spectrum, places, origins };
+}
+
+/** Planes of points that lie side by side: a view, not a copy. */
+function planesAt(planes: Float64Array, points: readonly number[], pixels: number): Float64Array {
+  return planes.subarray(points[0] * pixels, (points[0] + points.length) * pixels);
+}
+
+/** Channels as means over a plan's frequencies, which stand at `points` in the spectrum followed. */
+function directBasis({ channels }: BandPlan, points: readonly number[], rays: RayResult, pixels: number): ChannelBasis {
+  const placed = channels.map((channel) => ({ ...channel, points: channel.points.map((own) => points[own]) }));
+  const { I, Q, U } = bandCube({ channels: placed }, rays, pixels);
+  return { I: { planes: I }, Q: { planes: Q }, U: { planes: U } };
+}
+
+/** A band's heights of origin, at frequencies of its own or interpolated from its nodes. */
+function bandOrigins({ band, way, points, ownOrigins, interpolatesOrigins }: BandPlace, rays: RayResult, origins: readonly number[], pixels: number, scene: Scene): OriginHeights {
+  const gather = (planes: Float64Array, from: readonly number[]): Float64Array => {
+    const some = new Float64Array(from.length * pixels);
+    from.forEach((plane, k) => some.set(planes.subarray(plane * pixels, (plane + 1) * pixels), k * pixels));
+    return some;
+  };
+  const momentsAt = (wanted: readonly number[]): OriginMoments => {
+    const heights = wanted.map((point) => origins.indexOf(point));
+    return {
+      Q: gather(rays.Q, wanted),
+      U: gather(rays.U, wanted),
+      heightQ: gather(rays.heightQ, heights),
+      heightU: gather(rays.heightU, heights),
+      emittedP: gather(rays.emittedP, heights),
+    };
+  };
+  if (way.kind === 'direct' || !interpolatesOrigins) {
+    return { band: band.name, frequenciesHz: ownOrigins.map(({ frequencyHz }) => frequencyHz), heightKpc: originHeights(momentsAt(ownOrigins.map(({ point }) => point))) };
+  }
+  const { nodes } = way.interpolation;
+  const { index } = scene.cosmicRays;
+  const frequenciesHz = originFrequencies(band);
+  const matrix = channelMatrix(nodes, frequenciesHz.map((frequencyHz) => ({ frequencyHz, widthHz: 0 })), index);
+  const moments = momentsAt(points);
+  const at = (planes: Float64Array): Float64Array => {
+    toCoefficients(planes, nodes, index);
+    return channelPlanes({ planes, matrix }, pixels, 0, frequenciesHz.length);
+  };
+  const { Q, U, heightQ, heightU, emittedP } = moments;
+  return { band: band.name, frequenciesHz, heightKpc: originHeights({ Q: at(Q), U: at(U), heightQ: at(heightQ), heightU: at(heightU), emittedP: at(emittedP) }) };
+}
