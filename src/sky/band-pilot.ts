@@ -5,11 +5,14 @@ import type { Band, Scene } from '../scene/types.ts';
 import { toCoefficients, coefficientReader } from './band-coefficients.ts';
 import { makeBandNodes, spectrumAt, type BandNodes } from './band-nodes.ts';
 import { degreesNeeded, interpolationError, isNegligible, type BandScale } from './band-tails.ts';
+import { faintness } from './faint-rays.ts';
 import { turnByForeground } from './foreground.ts';
 
 /** How a band's channels are had from nodes: found on a few rays, good for most. */
 export interface Interpolation {
   readonly nodes: BandNodes;
+  /** Degrees that would do for every ray of the pilot's. */
+  readonly mostDegrees: number;
   readonly scale: BandScale;
   /** Whether Stokes I follows the spectrum and nothing else, so that one node tells it. */
   readonly isPlainI: boolean;
@@ -23,8 +26,10 @@ export interface Pilot {
 }
 
 const firstDegrees = 17;
-/** The rest, such as rays through a singular centre, are followed again at more nodes. */
-const servedShare = 0.98;
+/** Rays, such as those through a singular centre, that are followed again at more nodes cost this many frequencies besides. */
+const againCost = 20;
+/** Nor may they be more than this share: their planes are kept for all. */
+const mostAgain = 0.05;
 /** Rounding of the sums of a ray. */
 const plainError = 1e-12;
 
@@ -50,17 +55,38 @@ export async function pilotBand(scene: Scene, band: Band, pilot: Pilot, mostDegr
     const scale = bandScale(seen, spectrumAt(scene.cosmicRays.index, nodes.spectrum), rays);
     if (!scale) return undefined;
     const isPlainI = followsSpectrum(seen.I, spectrumAt(scene.cosmicRays.index, nodes.spectrum), rays);
+    const shares = faintness({ I: seen.I.subarray(0, rays) });
     for (const planes of [seen.I, seen.Q, seen.U]) toCoefficients(planes, nodes, scene.cosmicRays.index);
     const read = coefficientReader(seen, rays);
     const needs = Array.from({ length: rays }, (_, ray) => {
       const coefficients = read(ray);
-      const isKnown = isNegligible(interpolationError(coefficients, degrees, offsets, scale), tolerance);
-      return isKnown ? degreesNeeded(coefficients, degrees, offsets, scale, tolerance) : Infinity;
+      const isKnown = isNegligible(interpolationError(coefficients, degrees, offsets, scale, shares[ray]), tolerance);
+      return isKnown ? degreesNeeded(coefficients, degrees, offsets, scale, tolerance * shares[ray]) : Infinity;
     }).sort((a, b) => a - b);
-    const needed = needs[Math.ceil(servedShare * rays) - 1];
-    if (needed < Infinity) return needed <= mostDegrees ? { nodes: makeBandNodes(band.channels, needed, offsets), scale, isPlainI } : undefined;
+    const largest = needs[rays - 1];
+    if (largest < Infinity) {
+      const chosen = cheapestDegrees(needs);
+      return chosen <= mostDegrees ? { nodes: makeBandNodes(band.channels, chosen, offsets), mostDegrees: largest, scale, isPlainI } : undefined;
+    }
     if (degrees > mostDegrees) return undefined;
   }
+}
+
+/** The number of degrees that costs least, with those rays followed again that need more; `needs` in rising order. */
+function cheapestDegrees(needs: readonly number[]): number {
+  const rays = needs.length;
+  const cost = (chosen: number): number => {
+    let again = 0;
+    for (const need of needs) for (let degrees = chosen; degrees < need; again += degrees + againCost) degrees = moreDegrees(degrees);
+    return chosen + again / rays;
+  };
+  const few = needs.slice(Math.floor((1 - mostAgain) * rays));
+  return few.reduce((best, degrees) => (cost(degrees) < cost(best) ? degrees : best));
+}
+
+/** From one round to the next, degrees for rays that had too few. */
+export function moreDegrees(degrees: number): number {
+  return Math.ceil(1.6 * degrees) + 2;
 }
 
 /**

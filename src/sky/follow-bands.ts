@@ -3,16 +3,14 @@ import type { RayBackend, Watch } from '../ray/job.ts';
 import type { RayBundle, RayResult } from '../ray/types.ts';
 import type { Band, Scene } from '../scene/types.ts';
 import { InputError } from '../units/input-error.ts';
-import { toCoefficients } from './band-coefficients.ts';
-import { interpolateBand, type BandRays } from './band-follow.ts';
-import { channelMatrix } from './band-nodes.ts';
+import { interpolateBand, type BandRays, type BandValues } from './band-follow.ts';
 import { leastDegrees } from './band-tails.ts';
 import { pickPilot, pilotBand, type Interpolation, type Pilot } from './band-pilot.ts';
 import { bandCube } from './channel-means.ts';
-import { channelPlanes, type ChannelBasis } from './channel-basis.ts';
+import type { ChannelBasis } from './channel-basis.ts';
 import { traceFaintToo } from './faint-rays.ts';
 import { largestForeground, turnByForeground } from './foreground.ts';
-import { originHeights, type OriginHeights, type OriginMoments } from './origin-heights.ts';
+import { originHeights, type OriginHeights } from './origin-heights.ts';
 import { originFrequencies, plannedDepth, planBands, type BandPlan, type SpectralPlan } from './spectral-plan.ts';
 
 /** How one band's channels are had. */
@@ -34,7 +32,7 @@ export interface FollowedBands {
   readonly samples: number;
 }
 
-/** Cost of one term of one channel's sum (Q and U of a pixel) over that of following a ray at one more frequency: measured, see `test/sky/many-channels.test.ts`. */
+/** Cost of one term of one channel's sums (Q and U of a pixel) over that of following a ray at one more frequency; measured. */
 const mixCost = 0.005;
 /** Cost of a pilot's ray, in frequencies of a ray: what its frequencies share, and the first nodes. */
 const pilotCost = 30;
@@ -91,19 +89,20 @@ export async function followBands(scene: Scene, bundle: RayBundle, bands: readon
   const frequenciesHz = spectrum.map((point) => point.frequencyHz);
   turnByForeground(rays.Q, rays.U, frequenciesHz, foreground);
   const originsHz = origins.map((point) => frequenciesHz[point]);
-  if (originsHz.length > 0) turnByForeground(rays.heightQ, rays.heightU, originsHz, foreground);
+  turnByForeground(rays.heightQ, rays.heightU, originsHz, foreground);
   const about: BandRays = { scene, bundle, foreground, backend, watch };
   const done = { bases: [] as ChannelBasis[], origins: [] as OriginHeights[], error: rays.error.reduce((a, b) => Math.max(a, b), 0), samples: rays.samples };
   for (const place of places) {
     const { band, way, points } = place;
-    done.origins.push(bandOrigins(place, rays, origins, pixels, scene));
+    if (!place.interpolatesOrigins) done.origins.push(ownHeights(place, rays, origins, pixels));
     if (way.kind === 'direct') {
       done.bases.push(directBasis(way.plan.bands[0], points, rays, pixels));
       continue;
     }
-    const planes = { I: planesAt(rays.I, points, pixels), Q: planesAt(rays.Q, points, pixels), U: planesAt(rays.U, points, pixels) };
+    const planes = { I: planesAt(rays.I, points, pixels), Q: planesAt(rays.Q, points, pixels), U: planesAt(rays.U, points, pixels), ...momentsAt(place, rays, origins, pixels) };
     const interpolated = await interpolateBand(band, planes, way.interpolation, about);
     if (interpolated) {
+      if (interpolated.originKpc) done.origins.push({ band: band.name, frequenciesHz: originFrequencies(band), heightKpc: interpolated.originKpc });
       done.bases.push(interpolated.basis);
       done.error = Math.max(done.error, rays.error.reduce((a, b) => Math.max(a, b), 0) + interpolated.error);
       done.samples += interpolated.samples;
@@ -113,6 +112,7 @@ export async function followBands(scene: Scene, bundle: RayBundle, bands: readon
     const depth = plannedDepth(scene, bundle, [band], { foreground: largestForeground(foreground) });
     const again = await followBands(scene, bundle, [band], foreground, [{ kind: 'direct', plan: planBands(scene, [band], depth) }], backend, watch);
     done.bases.push(again.bases[0]);
+    if (place.interpolatesOrigins) done.origins.push(again.origins[0]);
     done.error = Math.max(done.error, again.error);
     done.samples += again.samples;
   }
@@ -155,35 +155,22 @@ function directBasis({ channels }: BandPlan, points: readonly number[], rays: Ra
   return { I: { planes: I }, Q: { planes: Q }, U: { planes: U } };
 }
 
-/** A band's heights of origin, at frequencies of its own or interpolated from its nodes. */
-function bandOrigins({ band, way, points, ownOrigins, interpolatesOrigins }: BandPlace, rays: RayResult, origins: readonly number[], pixels: number, scene: Scene): OriginHeights {
-  const gather = (planes: Float64Array, from: readonly number[]): Float64Array => {
+/** A band's heights of origin at frequencies of its own. */
+function ownHeights({ band, ownOrigins }: BandPlace, rays: RayResult, origins: readonly number[], pixels: number): OriginHeights {
+  const heights = ownOrigins.map(({ point }) => origins.indexOf(point));
+  const [atPoints, atOrigins] = [ownOrigins.map(({ point }) => point), heights].map((from) => (planes: Float64Array): Float64Array => {
     const some = new Float64Array(from.length * pixels);
     from.forEach((plane, k) => some.set(planes.subarray(plane * pixels, (plane + 1) * pixels), k * pixels));
     return some;
-  };
-  const momentsAt = (wanted: readonly number[]): OriginMoments => {
-    const heights = wanted.map((point) => origins.indexOf(point));
-    return {
-      Q: gather(rays.Q, wanted),
-      U: gather(rays.U, wanted),
-      heightQ: gather(rays.heightQ, heights),
-      heightU: gather(rays.heightU, heights),
-      emittedP: gather(rays.emittedP, heights),
-    };
-  };
-  if (way.kind === 'direct' || !interpolatesOrigins) {
-    return { band: band.name, frequenciesHz: ownOrigins.map(({ frequencyHz }) => frequencyHz), heightKpc: originHeights(momentsAt(ownOrigins.map(({ point }) => point))) };
-  }
-  const { nodes } = way.interpolation;
-  const { index } = scene.cosmicRays;
-  const frequenciesHz = originFrequencies(band);
-  const matrix = channelMatrix(nodes, frequenciesHz.map((frequencyHz) => ({ frequencyHz, widthHz: 0 })), index);
-  const moments = momentsAt(points);
-  const at = (planes: Float64Array): Float64Array => {
-    toCoefficients(planes, nodes, index);
-    return channelPlanes({ planes, matrix }, pixels, 0, frequenciesHz.length);
-  };
-  const { Q, U, heightQ, heightU, emittedP } = moments;
-  return { band: band.name, frequenciesHz, heightKpc: originHeights({ Q: at(Q), U: at(U), heightQ: at(heightQ), heightU: at(heightU), emittedP: at(emittedP) }) };
+  });
+  const moments = { Q: atPoints(rays.Q), U: atPoints(rays.U), heightQ: atOrigins(rays.heightQ), heightU: atOrigins(rays.heightU), emittedP: atOrigins(rays.emittedP) };
+  return { band: band.name, frequenciesHz: ownOrigins.map(({ frequencyHz }) => frequencyHz), heightKpc: originHeights(moments) };
+}
+
+/** Moments at a band's nodes where its heights of origin are interpolated. */
+function momentsAt({ points, interpolatesOrigins }: BandPlace, rays: RayResult, origins: readonly number[], pixels: number): Pick<BandValues, 'moments'> {
+  if (!interpolatesOrigins) return {};
+  const first = origins.indexOf(points[0]);
+  const side = points.map((_, k) => first + k);
+  return { moments: { heightQ: planesAt(rays.heightQ, side, pixels), heightU: planesAt(rays.heightU, side, pixels), emittedP: planesAt(rays.emittedP, side, pixels) } };
 }

@@ -19,6 +19,7 @@ export function turnByForeground(
   frequenciesHz: ArrayLike<number>,
   depth: number | Float64Array,
 ): void {
+  if (depth === 0) return;
   const pixels = Q.length / frequenciesHz.length;
   for (let channel = 0, k = 0; channel < frequenciesHz.length; channel++) {
     const lambda2 = lambda2M2(frequenciesHz[channel]);

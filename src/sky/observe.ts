@@ -1,7 +1,7 @@
 import type { RayBackend, Watch } from '../ray/job.ts';
 import type { Scene } from '../scene/types.ts';
 import { beamMargin, beamPlanes } from './beam.ts';
-import { channelPlanes, type BasisPlanes, type ChannelBasis } from './channel-basis.ts';
+import { channelMaker, type BasisPlanes, type ChannelBasis } from './channel-basis.ts';
 import { foregroundDepths } from './foreground.ts';
 import { chooseWays, followBands, type BandWay } from './follow-bands.ts';
 import { cropPlanes, gridFromScene, gridOffsetsKpc, growGrid, wcsFromGrid } from './grid.ts';
@@ -34,6 +34,9 @@ export interface SeenBand extends Omit<StokesCube, 'I' | 'Q' | 'U'> {
 export interface ObservedSky extends Omit<SeenSky, 'bands'> {
   readonly cubes: readonly StokesCube[];
 }
+
+/** Share of the tolerance that terms left out of a pixel may come to, beside its largest: sharpened for channels far more depolarized than others. */
+const leftOut = 1e-3;
 
 /** Everything of `lookAt` with its cubes in memory. */
 export async function observe(scene: Scene, backend: RayBackend, watch: Watch = {}): Promise<ObservedSky> {
@@ -74,7 +77,7 @@ export async function lookAt(scene: Scene, backend: RayBackend, watch: Watch = {
       if (missingWavelengths !== undefined) highPassPlanes(planes, missingWavelengths, wide);
       const inner = (stokes: BasisPlanes): BasisPlanes => ({ ...stokes, planes: cropped(stokes.planes) });
       const about = { band: name, grid, channels, unit: beam ? ('Jy/beam' as const) : ('Jy/sr' as const), ...(beam && { beam }) };
-      return seenBand(about, { I: inner(I), Q: inner(Q), U: inner(U) }, noise ?? scene.observation.noise ?? 0, scene.numerics.seed);
+      return seenBand(about, { I: inner(I), Q: inner(Q), U: inner(U) }, noise ?? scene.observation.noise ?? 0, scene.numerics);
     }),
     faradayDepth: cropped(depth),
     origins: followed.origins.map((origin) => ({ ...origin, heightKpc: cropped(origin.heightKpc) })),
@@ -93,14 +96,15 @@ function planesOf(ways: readonly BandWay[]): { channels: number; frequencies: nu
   return { channels, frequencies };
 }
 
-function seenBand(about: Omit<SeenBand, 'noise' | 'planes'>, basis: ChannelBasis, rms: number, seed: number): SeenBand {
+function seenBand(about: Omit<SeenBand, 'noise' | 'planes'>, basis: ChannelBasis, rms: number, { tolerance, seed }: Scene['numerics']): SeenBand {
   const pixels = about.grid.nx * about.grid.ny;
+  const makers = [basis.I, basis.Q, basis.U].map((planes) => channelMaker(planes, pixels, leftOut * tolerance));
   const addNoise = rms > 0 ? noiseAdder(about, rms, seed) : undefined;
   return {
     ...about,
     noise: new Float64Array(about.channels.length).fill(rms),
     planes: (from, to) => {
-      const [I, Q, U] = [basis.I, basis.Q, basis.U].map((planes) => channelPlanes(planes, pixels, from, to));
+      const [I, Q, U] = makers.map((make) => make(from, to));
       addNoise?.({ I, Q, U }, from);
       return { I, Q, U };
     },
