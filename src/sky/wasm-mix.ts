@@ -1,6 +1,6 @@
 import { hasWasmSimd } from '../formula/wasm/available.ts';
 import { int, vector as v } from '../formula/wasm/code.ts';
-import { ensureMemory } from '../formula/wasm/kernel.ts';
+import { ensureMemory } from '../formula/wasm/memory.ts';
 import { ModuleWriter } from '../formula/wasm/module.ts';
 
 /** Pixels that are mixed in one call: their planes stay in the processor's cache meanwhile. */

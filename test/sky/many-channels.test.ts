@@ -122,10 +122,10 @@ field: [{model: axisymmetric-spiral, strength: 6 uG, pitch: -20 deg, radius: 8 k
 thermalElectrons: [{model: exponential-disc, density: 0.03 cm^-3, radius: 10 kpc, height: 1 kpc}]
 cosmicRays: {index: 2.8, layers: [{model: exponential-disc, normalisation: 1e-5 cm^-3, radius: 6 kpc, height: 1.2 kpc}]}
 observation:
-  image: {pixels: [31, 30], pixel: 16 arcsec}
+  image: {pixels: [19, 18], pixel: 26 arcsec}
   bands: [{name: L, from: 1.3 GHz, to: 1.7 GHz, channels: 48}, {name: C, at: [4.8 GHz]}, {name: list, at: [${Array.from({ length: 60 }, (_, k) => `${1 + 0.01 * k} GHz`).join(', ')}]}]
-  beam: {major: 40 arcsec, minor: 32 arcsec, angle: 30 deg}
-  shortSpacings: {missingBelow: 8 arcmin}
+  beam: {major: 60 arcsec, minor: 52 arcsec, angle: 30 deg}
+  shortSpacings: {missingBelow: 5 arcmin}
   foreground: {depth: 12 rad/m^2, gradient: {amount: 3 rad/m^2/kpc, angle: 20 deg}}
 numerics: {tolerance: 1e-4, seed: 7, bits: 64}
 `;
@@ -147,7 +147,7 @@ test('through foreground, beam and high-pass a band by nodes is that of single c
     const heights = plane(sky.origins[2].heightKpc);
     const own = one.origins[0].heightKpc;
     const errors = Array.from(own, (height, k) => Math.abs(heights[k] - height)).filter((error) => !Number.isNaN(error)).sort((a, b) => a - b);
-    expect(errors.length).toBeGreaterThan(100);
+    expect(errors.length).toBeGreaterThan(60);
     // Errors of P of 1e-4 of the largest count up to 1/100 times as much where P all but vanishes beside its parts.
     expect(errors[Math.floor(0.9 * errors.length)]).toBeLessThan(0.005);
     expect(errors[errors.length - 1]).toBeLessThan(0.3);

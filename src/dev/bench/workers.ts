@@ -4,7 +4,7 @@ import { cell } from './timing.ts';
 
 /** How much quicker two threads are than one, by the clock. */
 export async function compareWorkers(): Promise<void> {
-  const job = { scene: sceneAt(40), spectrum: channels(3).map((hz) => ({ frequencyHz: hz, centreHz: hz })), bundle: squareBundle(301), origins: false };
+  const job = { scene: sceneAt(40), spectrum: channels(3).map((hz) => ({ frequencyHz: hz, centreHz: hz })), bundle: squareBundle(301), origins: false as const };
   const seconds: number[] = [];
   for (const workers of [1, 2]) {
     const pool = startNodePool(workers);
