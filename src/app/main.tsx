@@ -11,12 +11,15 @@ import { Page } from './views/page.tsx';
 config({ jitless: true });
 
 const workers = Math.max(1, Math.min(6, navigator.hardwareConcurrency || 2));
-const crew = makeCrew(workers, () => new Worker(new URL('./compute/page-worker.ts', import.meta.url), { type: 'module' }));
+const startWorker = (): Worker => new Worker(new URL('./compute/page-worker.ts', import.meta.url), { type: 'module' });
+const crew = makeCrew(workers, startWorker);
+/** Long work has workers of its own, so that drawing never waits for it. */
+const fitCrew = makeCrew(workers, startWorker);
 
 async function start(): Promise<void> {
   const kept = await recallPage();
   const example = exampleStudy();
-  const store = makeStore(kept?.page ?? example.page, crew);
+  const store = makeStore(kept?.page ?? example.page, crew, fitCrew);
   const root = document.getElementById('page');
   if (root) render(<Page store={store} />, root);
   store.addFiles(kept?.files ?? (await fetchFiles(example.files)));

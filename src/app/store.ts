@@ -7,6 +7,7 @@ import type { DataFiles, Trouble } from './compute/messages.ts';
 import type { Edit } from './document/edits.ts';
 import { commit, redo, settle, startHistory, undo, type History } from './document/history.ts';
 import type { PageDocument } from './document/page-document.ts';
+import { makeRanker } from './ranking.ts';
 import { keepFiles, keepPage } from './keep.ts';
 import { filesNeeded, hasObservation, studyText } from './document/page-study.ts';
 
@@ -29,8 +30,8 @@ export type PageFiles = Readonly<Record<string, Uint8Array>>;
 /** The state of the page and all that changes it. */
 export type Store = ReturnType<typeof makeStore>;
 
-/** A store for a document; `crew` draws what the document says, as soon as it says it. */
-export function makeStore(start: PageDocument, crew: Crew) {
+/** A store for a document; `crew` draws what the document says, as soon as it says it, `fitCrew` fits when asked. */
+export function makeStore(start: PageDocument, crew: Crew, fitCrew: Crew) {
   const history = signal<History>(startHistory(start));
   const files = signal<PageFiles>({});
   const columns = signal<Readonly<Record<string, ColumnState>>>({});
@@ -54,6 +55,8 @@ export function makeStore(start: PageDocument, crew: Crew) {
     const key = sha256OfText(JSON.stringify([study.data, found.map(([name, bytes]) => [name, bytes.length])])).slice(0, 16);
     return { key, studyText: text, files: Object.fromEntries(found) };
   });
+
+  const ranker = makeRanker(fitCrew, page, data);
 
   const patch = (id: string, change: ColumnState): void => {
     columns.value = { ...columns.value, [id]: change };
@@ -116,6 +119,7 @@ export function makeStore(start: PageDocument, crew: Crew) {
     closeUp,
     note,
     data,
+    ranker,
     /** One place of a column, offsets in kpc; a newer question takes the place of an older one. */
     lookAt: (name: string, sceneText: string, northKpc: number, eastKpc: number) => crew.ask('place', { kind: 'place', name, sceneText, northKpc, eastKpc }),
     canUndo: computed(() => history.value.past.length > 0),

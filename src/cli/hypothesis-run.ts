@@ -4,12 +4,11 @@ import { sha256OfText } from '../files/sha256.ts';
 import { measureOnData, type Measured } from '../figure/comparison.ts';
 import { correlations, fitModel, type Fit } from '../infer/fit.ts';
 import { chiSquared, logLikelihood, type Likelihood } from '../infer/likelihood.ts';
-import { forwardOf, freeHypothesis, type FreeHypothesis } from '../infer/hypothesis.ts';
+import { bestOverrides, forwardOf, freeHypothesis, type FreeHypothesis } from '../infer/hypothesis.ts';
 import type { Hypothesis, Study } from '../infer/study-types.ts';
 import type { DataSet } from '../infer/types.ts';
 import type { Ring } from '../measure/ring-profile.ts';
 import type { Override } from '../scene/overrides.ts';
-import { scenePath } from '../scene/paths.ts';
 import { sceneText } from '../scene/parse-scene.ts';
 import type { Scene } from '../scene/types.ts';
 import { formatQuantity } from '../units/quantity.ts';
@@ -85,13 +84,7 @@ export async function fitHypothesis(
 export async function finishHypothesis(prepared: PreparedHypothesis, fit: Fit, data: DataSet, ring: Ring, context: RunContext): Promise<FittedRun> {
   const bestScene = prepared.sceneOf(fit.values);
   const planes = await forwardOf(prepared, data, context.pool.backend)(fit.values, context.signal);
-  const ofScene = prepared.parameters.filter(({ calibrationBand }) => calibrationBand === undefined);
-  const changed = [...ofScene.map(({ path }) => path), ...prepared.ties.map(({ name: path }) => path)];
-  const overrides = changed.map((path): Override => {
-    const { unit, shownUnit, get } = scenePath(bestScene, path);
-    return { path, value: formatQuantity(get(), unit, shownUnit), flag: path };
-  });
-  const text = sceneText(prepared.provenance.sceneText, prepared.sceneFile, overrides);
+  const text = sceneText(prepared.provenance.sceneText, prepared.sceneFile, bestOverrides(prepared, fit.values));
   return {
     prepared,
     fit,

@@ -1,6 +1,9 @@
 import type { RayBackend } from '../ray/job.ts';
+import type { Override } from '../scene/overrides.ts';
+import { scenePath } from '../scene/paths.ts';
 import type { Scene } from '../scene/types.ts';
 import { InputError } from '../units/input-error.ts';
+import { formatQuantity } from '../units/quantity.ts';
 import type { ForwardModel } from './forward.ts';
 import { resolveFree } from './free-parameters.ts';
 import { makeJointModel } from './joint-model.ts';
@@ -45,6 +48,16 @@ export function freeHypothesis(hypothesis: Hypothesis, study: Pick<Study, 'foreg
 /** The model of the data that a hypothesis makes. */
 export function forwardOf({ scene, sceneOf, parameters }: FreeHypothesis, data: DataSet, backend: RayBackend): ForwardModel {
   return withCalibration(makeJointModel(data, scene, sceneOf, backend), data, parameters);
+}
+
+/** The changes of a scene's text that make it the scene of the given values, ties followed. */
+export function bestOverrides({ parameters, ties, sceneOf }: FreeHypothesis, values: ArrayLike<number>): readonly Override[] {
+  const best = sceneOf(values);
+  const ofScene = parameters.filter(({ calibrationBand }) => calibrationBand === undefined);
+  return [...ofScene.map(({ path }) => path), ...ties.map(({ name }) => name)].map((path): Override => {
+    const { unit, shownUnit, get } = scenePath(best, path);
+    return { path, value: formatQuantity(get(), unit, shownUnit), flag: path };
+  });
 }
 
 function placed<T>({ place }: Hypothesis, work: () => T): T {

@@ -1,5 +1,6 @@
 import * as Comlink from 'comlink';
 import type { DataFiles, Outcome, PageWorker, Task, TaskResult } from './messages.ts';
+import type { FitProgressTold } from './work-fit.ts';
 
 /** Workers that draw the page's columns. */
 export interface Crew {
@@ -8,7 +9,9 @@ export interface Crew {
    * runs; those answer `cancelled`. Where a worker dies, its task answers in words and another worker
    * takes its place.
    */
-  ask<T extends Task>(key: string, task: T): Promise<Outcome<TaskResult<T>>>;
+  ask<T extends Task>(key: string, task: T, tell?: FitProgressTold): Promise<Outcome<TaskResult<T>>>;
+  /** Takes back what waits or runs under a key; it answers `cancelled`. */
+  cancel(key: string): void;
   /** Data that tasks may refer to by their key. */
   setData(data: DataFiles | undefined): void;
 }
@@ -23,6 +26,7 @@ interface Member {
 interface Waiting {
   readonly key: string;
   readonly task: Task;
+  readonly tell: FitProgressTold;
   readonly answer: (outcome: Outcome<never>) => void;
 }
 
@@ -61,7 +65,7 @@ export function makeCrew(count: number, startWorker: () => Worker): Crew {
     }
   };
 
-  const perform = async (member: Member, { key, task, answer }: Waiting): Promise<void> => {
+  const perform = async (member: Member, { key, task, tell, answer }: Waiting): Promise<void> => {
     member.busyWith = key;
     try {
       if (task.dataKey !== undefined && task.dataKey === data?.key && member.dataKey !== data.key) {
@@ -73,7 +77,7 @@ export function makeCrew(count: number, startWorker: () => Worker): Crew {
           return;
         }
       }
-      answer((await Promise.race([member.remote.run(task), member.dead])) as Outcome<never>);
+      answer((await Promise.race([member.remote.run(task, Comlink.proxy(tell)), member.dead])) as Outcome<never>);
     } catch (error) {
       members.splice(members.indexOf(member), 1);
       answer({ trouble: { reason: error instanceof Error ? error.message : String(error), isInput: false } });
@@ -83,15 +87,20 @@ export function makeCrew(count: number, startWorker: () => Worker): Crew {
     }
   };
 
+  const takeBack = (key: string): void => {
+    for (const old of waiting) if (old.key === key) old.answer({ cancelled: true });
+    waiting = waiting.filter((old) => old.key !== key);
+    for (const member of members) if (member.busyWith === key) void member.remote.cancel();
+  };
+
   return {
-    ask: (key, task) =>
+    ask: (key, task, tell = () => undefined) =>
       new Promise((resolve) => {
-        for (const old of waiting) if (old.key === key) old.answer({ cancelled: true });
-        waiting = waiting.filter((old) => old.key !== key);
-        for (const member of members) if (member.busyWith === key) void member.remote.cancel();
-        waiting.push({ key, task, answer: resolve as Waiting['answer'] });
+        takeBack(key);
+        waiting.push({ key, task, tell, answer: resolve as Waiting['answer'] });
         next();
       }),
+    cancel: takeBack,
     setData: (given) => {
       data = given;
     },

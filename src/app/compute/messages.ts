@@ -1,5 +1,6 @@
 import type { Place } from '../../units/input-error.ts';
 import type { ColumnPicture, ObservedPicture } from './column-picture.ts';
+import type { FitPicture, FitProgressTold } from './work-fit.ts';
 import type { PlacePicture } from './work-place.ts';
 
 /** Files of the page by name; a worker is given them once. */
@@ -41,11 +42,28 @@ export interface PlaceTask {
   readonly dataKey?: undefined;
 }
 
-export type Task = DrawTask | ObservedTask | PlaceTask;
+/** A column to be fitted to the data as a hypothesis of a study. */
+export interface FitTask {
+  readonly kind: 'fit';
+  readonly name: string;
+  readonly sceneText: string;
+  readonly studyText: string;
+  readonly dataKey: string;
+}
 
-export type TaskResult<T extends Task> = T extends DrawTask ? ColumnPicture : T extends PlaceTask ? PlacePicture : ObservedPicture;
+export type Task = DrawTask | ObservedTask | PlaceTask | FitTask;
 
-export type AnyResult = ColumnPicture | ObservedPicture | PlacePicture;
+/** What each kind of task brings. */
+interface Results {
+  readonly draw: ColumnPicture;
+  readonly observed: ObservedPicture;
+  readonly place: PlacePicture;
+  readonly fit: FitPicture;
+}
+
+export type TaskResult<T extends Task> = Results[T['kind']];
+
+export type AnyResult = Results[Task['kind']];
 
 /** What went wrong: the user's input with its place, or a fault of ours. */
 export interface Trouble {
@@ -60,7 +78,7 @@ export type Outcome<Value> = { readonly value: Value } | { readonly trouble: Tro
 /** What a worker of the page answers to. */
 export interface PageWorker {
   setData(data: DataFiles): Promise<Outcome<null>>;
-  run(task: Task): Promise<Outcome<AnyResult>>;
+  run(task: Task, tell: FitProgressTold): Promise<Outcome<AnyResult>>;
   /** Ends the running task; it answers `cancelled`. */
   cancel(): Promise<void>;
 }

@@ -8,6 +8,7 @@ import { parseScene } from '../../scene/parse-scene.ts';
 import { InputError } from '../../units/input-error.ts';
 import { memoryFiles } from './memory-files.ts';
 import type { AnyResult, DataFiles, Outcome, PageWorker, Task } from './messages.ts';
+import { workFit, type FitProgressTold } from './work-fit.ts';
 import { workPlace } from './work-place.ts';
 import { makeWorkData, pictureData, workColumn, type WorkData } from './work-column.ts';
 
@@ -25,23 +26,23 @@ const worker: PageWorker = {
     seen = { key: data.key, data: readData(data) };
     return null;
   }),
-  run: (task) => {
+  run: (task, tell) => {
     running?.abort();
     const controller = new AbortController();
     running = controller;
-    return outcomeOf(() => perform(task, controller.signal));
+    return outcomeOf(() => perform(task, controller.signal, tell));
   },
   cancel: async () => running?.abort(),
 };
 
-async function perform(task: Task, signal: AbortSignal): Promise<AnyResult> {
+async function perform(task: Task, signal: AbortSignal, tell: FitProgressTold): Promise<AnyResult> {
   const scene = parseScene(task.sceneText, task.name);
   if (task.kind === 'place') return workPlace(scene, task.northKpc, task.eastKpc, backend, signal);
   const data = task.dataKey !== undefined && seen?.key === task.dataKey ? seen.data : undefined;
-  if (task.kind === 'observed') {
-    if (!data) throw new Error('the worker has no data');
-    return pictureData(data, scene, task.ringKpc);
-  }
+  if (task.kind !== 'draw' && !data) throw new Error('the worker has no data');
+  if (task.kind === 'observed' && data) return pictureData(data, scene, task.ringKpc);
+  if (task.kind === 'fit' && data) return workFit(parseStudy(task.studyText, 'study.yaml'), task.name, scene, task.sceneText, data, backend, signal, tell);
+  if (task.kind !== 'draw') throw new Error(`unknown task ${task.kind}`);
   return workColumn({ scene, exact: task.exact, ringKpc: task.ringKpc, ...(data && { seen: data }) }, backend, signal, () => performance.now());
 }
 

@@ -5,6 +5,23 @@ import { pagesToStartFrom } from '../document/starts.ts';
 import type { Store } from '../store.ts';
 import { TakeAway } from './take-away.tsx';
 
+/** Fits every column to the observation and ranks them; while it runs, the same button stops it. */
+function RankButton({ store }: { readonly store: Store }): JSX.Element {
+  const { data, ranker } = store;
+  const isRunning = ranker.running.value;
+  return (
+    <button
+      type="button"
+      class="rank"
+      disabled={data.value === undefined}
+      title={data.value === undefined ? 'Drop maps to rank geometries by' : 'Fit every column within its free parameters and rank them'}
+      onClick={() => (isRunning ? ranker.stop() : void ranker.rank())}
+    >
+      {isRunning ? 'stop ranking' : 'rank'}
+    </button>
+  );
+}
+
 /** The bar at the top: what is studied, undo and redo, opening and taking away, light and dark. */
 export function Header({ store }: { readonly store: Store }): JSX.Element {
   const { title, theme } = store.page.value;
@@ -59,6 +76,7 @@ export function Header({ store }: { readonly store: Store }): JSX.Element {
         />
         <TakeAway store={store} />
       </span>
+      <RankButton store={store} />
       <button
         type="button"
         class="theme"

@@ -57,7 +57,8 @@ export function Page({ store }: { readonly store: Store }): JSX.Element {
 
 /** One line that says what happened last, or what is wrong; read aloud as it changes. */
 function Notice({ store }: { readonly store: Store }): JSX.Element {
-  const text = store.note.value;
+  const verdict = store.ranker.ranking.value?.verdict;
+  const text = [store.note.value, verdict].filter(Boolean).join(' ');
   return (
     <div class="notice" role="status" aria-live="polite">
       {text && (
