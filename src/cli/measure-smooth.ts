@@ -8,7 +8,8 @@ import type { Plane } from './measure-input.ts';
 /** A cube that has to be smoothed, plane by plane, before it can be used. */
 export interface Smoothing {
   readonly planes: number;
-  run(channel: number): void;
+  /** Smooths one channel, and the next with it where there is one. */
+  runPair(channel: number): void;
   close(): void;
 }
 
@@ -29,7 +30,10 @@ export function smoothed(plane: Plane, target: Beam | undefined, unit: Brightnes
   const cube = (): NonNullable<typeof made> => (made ??= isLarge ? makeScratchCube(nx, ny, channels) : cubeToFill(nx, ny, channels));
   smoothings.push({
     planes: channels,
-    run: (channel) => cube().write(channel, change.plane(plane.cube.plane(channel))),
+    runPair: (channel) => {
+      const second = channel + 1 < channels ? plane.cube.plane(channel + 1) : undefined;
+      change.planes(plane.cube.plane(channel), second).forEach((values, k) => cube().write(channel + k, values));
+    },
     close: () => made?.close(),
   });
   return { ...plane, cube: { rows: (from, to) => cube().rows(from, to), plane: (channel) => cube().plane(channel) }, noise: plane.noise.map((rms) => rms * noiseFactor), beam: target };
@@ -40,12 +44,13 @@ export async function runSmoothings(smoothings: readonly Smoothing[], watch: { r
   const total = smoothings.reduce((sum, { planes }) => sum + planes, 0);
   let done = 0;
   for (const smoothing of smoothings) {
-    for (let channel = 0; channel < smoothing.planes; channel++) {
+    for (let channel = 0; channel < smoothing.planes; channel += 2) {
       watch.signal.throwIfAborted();
-      smoothing.run(channel);
-      watch.onProgress(++done, total);
+      smoothing.runPair(channel);
+      watch.onProgress(Math.min(done + channel + 2, done + smoothing.planes), total);
       await watch.pause();
     }
+    done += smoothing.planes;
   }
 }
 

@@ -76,8 +76,8 @@ export interface PlaneFrame {
 export interface BeamChange {
   /** What the rms of noise correlated like the first beam becomes, in the new unit over the old. */
   readonly noiseFactor: number;
-  /** One plane as seen with the other beam. Blank pixels count as dark and stay blank; so does what lies beyond the map. */
-  plane(values: Float64Array): Float64Array;
+  /** A plane, or two at the cost of one, as seen with the other beam. Blank pixels count as dark and stay blank; so does what lies beyond the map. */
+  planes(first: Float64Array, second?: Float64Array): readonly Float64Array[];
 }
 
 /**
@@ -92,13 +92,16 @@ export function beamChange({ wcs, nx, ny }: PlaneFrame, from: Beam, to: Beam, un
   const convolve = beamConvolver(narrowBeam(between, wcs), nx, ny);
   return {
     noiseFactor: scale * noiseShare(from, between),
-    plane: (values) => {
-      const result = values.map((value) => (Number.isFinite(value) ? scale * value : 0));
-      convolve(result);
-      values.forEach((value, k) => {
-        if (!Number.isFinite(value)) result[k] = NaN;
-      });
-      return result;
+    planes: (...planes) => {
+      const given = planes.filter((plane) => plane !== undefined);
+      const results = given.map((values) => values.map((value) => (Number.isFinite(value) ? scale * value : 0)));
+      convolve(results[0], results[1]);
+      given.forEach((values, which) =>
+        values.forEach((value, k) => {
+          if (!Number.isFinite(value)) results[which][k] = NaN;
+        }),
+      );
+      return results;
     },
   };
 }

@@ -28,7 +28,7 @@ function point(beam: Beam, peak: number): Float64Array {
 /** One plane brought to another beam, or itself. */
 function convolveTo(map: PlaneFrame & { values: Float64Array }, from: Beam, to: Beam, unit: BrightnessUnit): { values: Float64Array; noiseFactor: number } {
   const change = beamChange(map, from, to, unit);
-  return change ? { values: change.plane(map.values), noiseFactor: change.noiseFactor } : { values: map.values, noiseFactor: 1 };
+  return change ? { values: change.planes(map.values)[0], noiseFactor: change.noiseFactor } : { values: map.values, noiseFactor: 1 };
 }
 
 test('a point seen with one beam becomes the point seen with the other, in either unit', () => {
@@ -74,4 +74,14 @@ test('noise falls as stated, and blanks stay blank', () => {
   const seen = convolveTo({ wcs, nx: n, ny: n, values: holed }, from, to, 'Jy/beam').values;
   expect(seen[5]).toBeNaN();
   expect(seen.filter(Number.isNaN).length).toBe(1);
+});
+
+test('two planes at once are each as alone, blanks and all', () => {
+  const change = beamChange({ wcs, nx: n, ny: n }, from, to, 'Jy/beam');
+  const [a, b] = [point(from, 1), Float64Array.from({ length: n * n }, (_, k) => (k === 7 ? NaN : Math.cos(k)))];
+  const pair = change?.planes(a, b) ?? [];
+  [a, b].forEach((plane, k) => {
+    const [alone] = change?.planes(plane) ?? [];
+    alone.forEach((value, pixel) => expect(Number.isNaN(value) ? Number.isNaN(pair[k][pixel]) : Math.abs(pair[k][pixel] - value) < 1e-12).toBe(true));
+  });
 });
