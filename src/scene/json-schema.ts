@@ -20,5 +20,5 @@ export function sceneJsonSchema(): Record<string, unknown> {
 function anyComponent(section: Section): z.ZodType {
   const models = [...modelLibrary().values()].filter((model) => model.kind === section.kind);
   const ofLibrary = models.map((model) => componentSchema(model, section).meta({ title: model.title, description: model.meaning }));
-  return z.union([...ofLibrary, inlineSchema(section), cubeSchema(section)]);
+  return z.union([...ofLibrary, cubeSchema(section), inlineSchema(section)]);
 }
