@@ -260,7 +260,7 @@ function htmlReport(report: RankReport): Parameters<typeof reportHtml>[0] {
     ],
     methods: methodsText({
       tolerance: scene.numerics.tolerance,
-      turbulence: scene.turbulence.unresolved !== undefined,
+      turbulence: scene.turbulence.unresolved !== undefined || scene.turbulence.resolved !== undefined,
       beam: data.bands.some((band) => band.beam !== undefined),
       noise: true,
       debiased: true,

@@ -99,7 +99,7 @@ export function integrandNodes(graph: Graph, fields: SceneGraph, scene: Scene, s
 
   const rms = fields.unresolvedRms();
   const ordered = fields.orderedField();
-  const dispersion = fields.dispersion(rms, ordered && towardsObserver(ordered));
+  const dispersion = fields.dispersion(ordered && towardsObserver(ordered));
   const emissionMeasure = scene.freeFree ? fields.emissionMeasure() : graph.constant(0);
   const moments = fieldMoments(graph, {
     major: bx,

@@ -58,21 +58,25 @@ export interface Divergence {
 
 const divergencePoints = 2000;
 
-/** Measures D of every field component at seeded random points of the scene's volume. */
+/** Measures D of every field component, resolved turbulence last, at seeded random points of the scene's volume. */
 export function measureDivergence(scene: Scene): readonly Divergence[] {
   const points = randomPoints(scene, divergencePoints);
-  return placedComponents(scene).field.map((placed) => {
+  const largestOf = (name: string, byConstruction: boolean, build: (parts: SceneGraph, graph: Graph) => Vector): Divergence => {
     const graph = new Graph();
-    const field = buildField(graph, new SceneGraph(graph, scene).use(placed));
+    const field = build(new SceneGraph(graph, scene), graph);
     const [bx, by, bz, divB, norm] = evaluateNodes(graph, [...field, ...divergenceNodes(graph, field)], scene, points);
     let [largest, where] = [0, 0];
     for (let k = 0; k < divergencePoints; k++) {
       const d = relative(divB[k], norm[k], Math.hypot(bx[k], by[k], bz[k]));
       if (d > largest || Number.isNaN(d)) [largest, where] = [d, k];
     }
-    const { name, model } = placed.component;
-    return { name, byConstruction: isSolenoidalByConstruction(model), largest, at: [points.x[where], points.y[where], points.z[where]] };
-  });
+    return { name, byConstruction, largest, at: [points.x[where], points.y[where], points.z[where]] };
+  };
+  const components = placedComponents(scene).field.map((placed) =>
+    largestOf(placed.component.name, isSolenoidalByConstruction(placed.component.model), (parts, graph) => buildField(graph, parts.use(placed))),
+  );
+  if (!scene.turbulence.resolved) return components;
+  return [...components, largestOf('resolved turbulence', true, (parts, graph) => parts.turbulentField() ?? [graph.constant(0), graph.constant(0), graph.constant(0)])];
 }
 
 /** Random points spread evenly over a scene's volume, from the scene's seed. */

@@ -1,12 +1,13 @@
 import type { Graph, NodeId } from '../formula/graph.ts';
 import { cartesianFromCylindrical, coordinatesOf, type Vector } from '../formula/vector-calculus.ts';
 import { buildDensity, buildEdges, buildField, type ModelUse } from '../model/build-model.ts';
-import type { Component, CosmicRayLayer, Scene } from '../scene/types.ts';
+import type { Component, CosmicRayLayer, ResolvedTurbulence, Scene } from '../scene/types.ts';
 import { InputError } from '../units/input-error.ts';
 import { equipartitionElectrons } from './equipartition.ts';
 import { smallestFieldSquared } from './field-size.ts';
 import { emissionMeasurePerKpc } from './free-free.ts';
 import { orderedSteps } from './ordered-moments.ts';
+import { electronFactor, formulaProfile, resolvedField, turbulenceValues } from './turbulence-graph.ts';
 import { faradayDepthPerKpc } from './synchrotron.ts';
 
 /** One use of a model in a scene: the path its run-time parameters are known by. */
@@ -52,12 +53,33 @@ export class SceneGraph {
       this.fieldsByName.set(placed.component.name, field);
       return field;
     });
+    const turbulent = this.turbulentField();
+    if (turbulent) parts.push(turbulent);
     const sum = (axis: 0 | 1 | 2): NodeId => this.graph.add(...parts.map((part) => part[axis]));
     return [sum(0), sum(1), sum(2)];
   }
 
+  /** Resolved turbulence, uG; undefined where there is none. */
+  turbulentField(): Vector | undefined {
+    const { resolved } = this.scene.turbulence;
+    return resolved && resolvedField(this.graph, resolved.cells, this.turbulenceProfile(resolved));
+  }
+
+  /** What the resolved field's potential, and the rms of what is not resolved of it, are multiplied by. */
+  private turbulenceProfile({ follows, profile }: ResolvedTurbulence): NodeId {
+    if (follows !== undefined) return this.profileOf(follows, 'resolved');
+    return profile === undefined ? this.graph.constant(1) : formulaProfile(this.graph, profile);
+  }
+
   electronDensity(): NodeId {
-    return this.graph.add(...placedComponents(this.scene).thermalElectrons.map((placed) => buildDensity(this.graph, this.use(placed))));
+    const mean = this.graph.add(...placedComponents(this.scene).thermalElectrons.map((placed) => buildDensity(this.graph, this.use(placed))));
+    return this.graph.multiply(mean, this.electronFluctuation());
+  }
+
+  /** What resolved turbulence makes of n_e: a factor of mean 1. */
+  private electronFluctuation(): NodeId {
+    const { resolved } = this.scene.turbulence;
+    return resolved?.electrons ? electronFactor(this.graph, resolved.cells) : this.graph.constant(1);
   }
 
   /**
@@ -69,7 +91,7 @@ export class SceneGraph {
     const clumps = placedComponents(this.scene).thermalElectrons.filter(({ component }) => component.filling !== undefined);
     const excess = clumps.map((placed) => {
       const rise = graph.subtract(graph.power(graph.parameter(`${placed.path}/filling`), -1), graph.constant(1));
-      return graph.multiply(graph.power(buildDensity(graph, this.use(placed)), 2), rise);
+      return graph.multiply(graph.power(buildDensity(graph, this.use(placed)), 2), rise, graph.power(this.electronFluctuation(), 2));
     });
     return graph.add(graph.power(this.electronDensity(), 2), ...excess);
   }
@@ -116,10 +138,22 @@ export class SceneGraph {
 
   /** rms of one component of the unresolved field, uG, or undefined where there is none. */
   unresolvedRms(): NodeId | undefined {
-    const { unresolved } = this.scene.turbulence;
-    if (!unresolved) return undefined;
-    const rms = this.graph.parameter('turbulence/rms');
-    return unresolved.follows === undefined ? rms : this.graph.multiply(rms, this.profileOf(unresolved.follows, 'unresolved'));
+    const parts = this.unresolvedParts();
+    if (parts.length < 2) return parts[0]?.rms;
+    return this.graph.power(this.graph.add(...parts.map(({ rms }) => this.graph.power(rms, 2))), 0.5);
+  }
+
+  /** Random fields that are not resolved, independent of one another: rms of a component, uG, and cells, kpc. */
+  private unresolvedParts(): readonly { readonly rms: NodeId; readonly cell: NodeId }[] {
+    const { graph } = this;
+    const { unresolved, resolved } = this.scene.turbulence;
+    const parts: { rms: NodeId; cell: NodeId }[] = [];
+    if (unresolved) {
+      const rms = graph.parameter('turbulence/rms');
+      parts.push({ rms: unresolved.follows === undefined ? rms : graph.multiply(rms, this.profileOf(unresolved.follows, 'unresolved')), cell: graph.parameter('turbulence/cell') });
+    }
+    if (resolved) parts.push({ rms: graph.multiply(graph.parameter('resolved/rest'), this.turbulenceProfile(resolved)), cell: graph.parameter('resolved/restCell') });
+    return parts;
   }
 
   /** The ordered random field: its rms times the unit vector along which it changes sign, uG; undefined where there is none. */
@@ -135,7 +169,7 @@ export class SceneGraph {
   }
 
   /** A named component's value over its strength, or a density's over its amplitude. */
-  private profileOf(name: string, key: 'unresolved' | 'ordered'): NodeId {
+  private profileOf(name: string, key: 'unresolved' | 'ordered' | 'resolved'): NodeId {
     const { field, thermalElectrons, cosmicRays } = placedComponents(this.scene);
     const fieldPart = field.find((placed) => placed.component.name === name);
     if (fieldPart) {
@@ -148,7 +182,7 @@ export class SceneGraph {
     return this.graph.divide(buildDensity(this.graph, this.use(density)), this.amplitude(density, 'density', key));
   }
 
-  private amplitude(placed: PlacedComponent, name: string, key: 'unresolved' | 'ordered'): NodeId {
+  private amplitude(placed: PlacedComponent, name: string, key: 'unresolved' | 'ordered' | 'resolved'): NodeId {
     if (!(name in placed.component.parameters)) {
       throw new InputError(`turbulence.${key}.follows: "${placed.component.name}" has no parameter ${name} to be measured by; name a component that has one`);
     }
@@ -156,13 +190,12 @@ export class SceneGraph {
   }
 
   /**
-   * dΣ/ds of fields that are not resolved, per kpc: K² ⟨n_e²⟩ Σ σ_∥² d over isotropic turbulence of
-   * that rms and the ordered field's part along the line of sight (Burn 1966; Sokoloff et al. 1998).
+   * dΣ/ds of fields that are not resolved, per kpc: K² ⟨n_e²⟩ Σ σ_∥² d over isotropic turbulence and the
+   * ordered field's part along the line of sight (Burn 1966; Sokoloff et al. 1998).
    */
-  dispersion(rms: NodeId | undefined, orderedAlong: NodeId | undefined): NodeId {
+  dispersion(orderedAlong: NodeId | undefined): NodeId {
     const { graph } = this;
-    const walks: NodeId[] = [];
-    if (rms !== undefined) walks.push(graph.multiply(graph.power(rms, 2), graph.parameter('turbulence/cell')));
+    const walks = this.unresolvedParts().map(({ rms, cell }) => graph.multiply(graph.power(rms, 2), cell));
     if (orderedAlong !== undefined) walks.push(graph.multiply(graph.power(orderedAlong, 2), graph.parameter('ordered/cell')));
     if (walks.length === 0) return graph.constant(0);
     return graph.multiply(graph.constant(faradayDepthPerKpc ** 2), this.electronDensitySquared(), graph.add(...walks));
@@ -219,6 +252,7 @@ export function parameterValues(scene: Scene, groupFrequenciesHz: readonly numbe
     values.set('ordered/rms', ordered.rmsUG).set('ordered/cell', ordered.cellKpc).set('ordered/pitch', ordered.pitch);
     values.set('ordered/start', start).set('ordered/step', step).set('ordered/weight', weight);
   }
+  for (const [name, value] of turbulenceValues(scene)) values.set(name, value);
   return values;
 }
 

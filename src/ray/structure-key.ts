@@ -22,6 +22,7 @@ export function structureKey(scene: Scene, spectrum: readonly SpectralPoint[]): 
     [cosmicRays.equipartition !== undefined, cosmicRays.scaleTo !== undefined],
     turbulence.unresolved ? (turbulence.unresolved.follows ?? true) : false,
     turbulence.ordered ? [turbulence.ordered.along, turbulence.ordered.follows ?? true, orderedSteps(cosmicRays.index, numerics.tolerance).count] : false,
+    turbulence.resolved ? [turbulence.resolved.cells, turbulence.resolved.follows, turbulence.resolved.profile, turbulence.resolved.electrons !== undefined] : false,
     spectrum,
   ]);
 }

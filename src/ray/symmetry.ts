@@ -48,7 +48,7 @@ export function measureSymmetry(scene: Scene): SceneSymmetry {
     axisymmetric: fieldTurns && columns.every((column) => same(column(here), column(turned))),
     parity: isEven ? 'even' : isOdd ? 'odd' : 'mixed',
     evenDensities: columns.every((column) => same(column(here), column(below))),
-    damped: (scene.turbulence.unresolved?.rmsUG ?? 0) > 0 || (scene.turbulence.ordered?.rmsUG ?? 0) > 0,
+    damped: [scene.turbulence.unresolved, scene.turbulence.ordered, scene.turbulence.resolved].some((part) => (part?.rmsUG ?? 0) > 0),
     absorbed: scene.freeFree !== undefined && scene.thermalElectrons.length > 0,
   };
 }

@@ -1,3 +1,4 @@
+import { withDrawnField } from '../ray/grids.ts';
 import { originPoints, tilesOf, type RayBackend, type RayJob, type Watch } from '../ray/job.ts';
 import type { MapScale } from '../ray/trace.ts';
 import type { RayBundle, RayResult } from '../ray/types.ts';
@@ -58,7 +59,8 @@ async function runJob(
   signal?.throwIfAborted();
   const rays = job.bundle.northKpc.length;
   const arrays = makeArrays(job, canShare);
-  const { scene, spectrum, origins } = job;
+  const { spectrum, origins } = job;
+  const scene = withDrawnField(job.scene);
   await Promise.all(workers.map((worker) => worker.begin({ scene, spectrum, origins, bundle, shared: canShare ? arrays : undefined })));
   const scale = await workers[0].scale().catch((problem: unknown) => Promise.reject(sameKind(problem)));
   const tiles = tilesOf(rays);

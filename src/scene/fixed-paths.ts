@@ -3,7 +3,8 @@ import { checkEquipartition } from './equipartition-index.ts';
 import { sceneLimits } from './limits.ts';
 import type { SceneLimit } from './limits.ts';
 import { arcsecOf, gradientPerArcsec } from './observation.ts';
-import type { Beam, CosmicRays, ForegroundGradient, ForegroundScreen, Galaxy, Observation, OrderedTurbulence, Scene, UnresolvedTurbulence } from './types.ts';
+import { splitTurbulence } from './resolved-turbulence.ts';
+import type { Beam, CosmicRays, ForegroundGradient, ForegroundScreen, Galaxy, Observation, OrderedTurbulence, ResolvedTurbulence, Scene, UnresolvedTurbulence } from './types.ts';
 
 /** What a path of a scene reads and writes; `SceneLimit` says in which unit and range. */
 export interface PathEntry extends SceneLimit {
@@ -57,6 +58,12 @@ export const fixedPaths: readonly PathEntry[] = [
     read: ({ freeFree }) => freeFree?.temperatureK,
     write: (scene, temperatureK) => ({ ...scene, freeFree: { temperatureK } }),
   },
+  resolvedPath('rms', sceneLimits.resolvedRms, ({ rmsUG }) => rmsUG, (old, rmsUG) => ({ ...old, rmsUG })),
+  resolvedPath('outerScale', sceneLimits.outerScale, ({ outerScaleKpc }) => outerScaleKpc, withOuterScale),
+  resolvedPath('verticalRatio', sceneLimits.verticalRatio, ({ verticalRatio }) => verticalRatio, (old, verticalRatio) => ({ ...old, verticalRatio })),
+  resolvedPath('electrons.rms', sceneLimits.electronRms, ({ electrons }) => electrons?.rms, (old, rms) => ({ ...old, ...(old.electrons && { electrons: { ...old.electrons, rms } }) })),
+  resolvedPath('electrons.correlation', sceneLimits.electronCorrelation, ({ electrons }) => electrons?.correlation, (old, correlation) => ({ ...old, ...(old.electrons && { electrons: { ...old.electrons, correlation } }) })),
+  resolvedPath('realisation', sceneLimits.realisation, ({ realisation }) => realisation, (old, realisation) => ({ ...old, realisation })),
   observationPath('foreground.depth', sceneLimits.foregroundDepth, ({ foregroundDepth }) => foregroundDepth, (old, foregroundDepth) => ({ ...old, foregroundDepth })),
   ...gradientPaths(),
   screenPath('rms', sceneLimits.screenRms, ({ rmsRadM2 }) => rmsRadM2, (old, rmsRadM2) => ({ ...old, rmsRadM2 })),
@@ -176,6 +183,23 @@ function orderedPath(
   };
 }
 
+function resolvedPath(
+  key: string,
+  limit: SceneLimit,
+  read: (old: ResolvedTurbulence) => number | undefined,
+  write: (old: ResolvedTurbulence, value: number) => ResolvedTurbulence,
+): PathEntry {
+  return {
+    path: `turbulence.resolved.${key}`,
+    ...limit,
+    read: ({ turbulence }) => turbulence.resolved && read(turbulence.resolved),
+    write: (scene, value) => {
+      const old = scene.turbulence.resolved;
+      return old ? { ...scene, turbulence: { ...scene.turbulence, resolved: write(old, value) } } : scene;
+    },
+  };
+}
+
 type ScaleTo = NonNullable<CosmicRays['scaleTo']>;
 
 function scaleToPath(key: string, limit: SceneLimit, read: (old: ScaleTo) => number, write: (old: ScaleTo, value: number) => ScaleTo): PathEntry {
@@ -188,6 +212,15 @@ function scaleToPath(key: string, limit: SceneLimit, read: (old: ScaleTo) => num
       return old ? { ...scene, cosmicRays: { ...scene.cosmicRays, scaleTo: write(old, value) } } : scene;
     },
   };
+}
+
+/** The grid stays as it is: an outer scale that it cannot hold is refused. */
+function withOuterScale(old: ResolvedTurbulence, outerScaleKpc: number): ResolvedTurbulence {
+  const { shortestKpc } = splitTurbulence(old, 0);
+  if (outerScaleKpc <= shortestKpc || outerScaleKpc > old.boxKpc) {
+    throw new InputError(`turbulence.resolved.outerScale: ${outerScaleKpc} kpc is not between the shortest wave that is resolved, ${shortestKpc.toPrecision(3)} kpc, and the box, ${old.boxKpc} kpc`);
+  }
+  return { ...old, outerScaleKpc };
 }
 
 /** The amount is an angular or a linear gradient, as the scene gives it; only one of the two paths exists. */

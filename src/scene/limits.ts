@@ -1,3 +1,4 @@
+import { verticalRatios } from '../field/turbulence-spectrum.ts';
 import type { Limits } from '../units/limits.ts';
 import { quantity } from '../units/schema.ts';
 
@@ -37,6 +38,14 @@ export const sceneLimits = {
   fluxAt: limit('GHz', 0.001, 1000, 'Hz', 'frequency of the flux density'),
   filling: limit('', 0, 1, '', 'filling factor f of clumps, with <n^2> = <n>^2/f', above),
   temperature: limit('K', 100, 1e9, 'K', 'temperature of the thermal gas that absorbs and emits'),
+  resolvedRms: limit('uG', 0, 10000, 'uG', 'rms of one component of the turbulent field over its whole spectrum, in the plane'),
+  outerScale: limit('kpc', 0, 1000, 'kpc', 'longest wave of the turbulent field', above),
+  turbulenceBox: limit('kpc', 0, 10000, 'kpc', 'side of the box that the turbulent field repeats in', above),
+  smallestWave: limit('kpc', 0, 1000, 'kpc', 'shortest wave that is drawn; two pixels where it is left out'),
+  verticalRatio: limit('', verticalRatios[0], verticalRatios[1], '', 'rms of the turbulent field along z over that in the plane'),
+  electronRms: limit('', 0, 100, '', 'rms of the fluctuations of n_e over its mean'),
+  electronCorrelation: limit('', -1, 1, '', 'correlation of the logarithm of n_e with the strength of the turbulent field'),
+  realisation: limit('', 0, 1e9, '', 'which of the many turbulent fields of a seed', whole),
   pixels: limit('', 1, 16384, '', 'pixels along one side', whole),
   pixelArcsec: limit('arcsec', 0, 36000, 'arcsec', 'side of a pixel', above),
   pixelKpc: limit('kpc', 0, 1000, 'kpc', 'side of a pixel at the distance of the galaxy', above),

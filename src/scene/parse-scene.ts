@@ -7,6 +7,7 @@ import { readComponents } from './components.ts';
 import { readObservation } from './observation.ts';
 import { applyOverrides } from './overrides.ts';
 import type { Override } from './overrides.ts';
+import { readResolved } from './resolved-turbulence.ts';
 import { looseComponent, sceneSchema } from './scene-schema.ts';
 import type { SceneFile } from './scene-schema.ts';
 import { sections } from './section.ts';
@@ -37,15 +38,17 @@ export function parseScene(text: string, fileName: string, overrides: readonly O
     thermalElectrons: readComponents(input, sections.thermalElectrons, modelsOf(file.thermalElectrons), sources),
     layers: readComponents(input, sections.cosmicRays, modelsOf(file.cosmicRays.layers ?? []), sources),
   };
+  const observation = readObservation(input, file.observation, galaxy.distanceKpc);
+  const all = Object.values(components).flat();
   return {
     title: file.title,
     galaxy,
     field: components.field,
     thermalElectrons: components.thermalElectrons,
     cosmicRays: readCosmicRays(input, file.cosmicRays, components.layers),
-    turbulence: readTurbulence(input, file.turbulence, Object.values(components).flat()),
+    turbulence: { ...readTurbulence(input, file.turbulence, all), ...readResolved(input, file.turbulence.resolved, all, galaxy, observation) },
     ...(file.freeFree && { freeFree: { temperatureK: file.freeFree.temperature } }),
-    observation: readObservation(input, file.observation, galaxy.distanceKpc),
+    observation,
     numerics: file.numerics,
     ...(inputs.size > 0 && { inputs: [...inputs.values()] }),
   };

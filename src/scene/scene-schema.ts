@@ -2,6 +2,7 @@ import { z } from 'zod';
 import { quoteValue } from '../units/quote.ts';
 import { keys, listOf, nameText, oneOf, quantityOfEither, words } from '../units/schema.ts';
 import { limited, sceneLimits } from './limits.ts';
+import { resolvedSchema } from './resolved-turbulence.ts';
 
 /** Most components in a section, and most bands. */
 const MAX_ITEMS = 100;
@@ -30,8 +31,8 @@ const turbulence = keys(
       cell: limited(sceneLimits.cell),
       follows: nameText().optional(),
     }).optional(),
+    resolved: resolvedSchema.optional(),
   },
-  ['resolved'],
 );
 
 const freeFree = keys({ temperature: limited(sceneLimits.temperature) });

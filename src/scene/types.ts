@@ -1,3 +1,4 @@
+import type { TurbulenceGrids } from '../field/turbulence.ts';
 import type { SplineGrid } from '../math/spline-grid.ts';
 import type { Model } from '../model/types.ts';
 
@@ -48,6 +49,32 @@ export interface UnresolvedTurbulence {
   readonly cellKpc: number;
   /** Name of a component or density whose value, divided by its strength, scales the rms. */
   readonly follows?: string;
+}
+
+/**
+ * A random field that is drawn, periodic in a box whose middle is the galaxy's centre. What neither
+ * the grid nor `smallestKpc` resolves counts as unresolved.
+ */
+export interface ResolvedTurbulence {
+  /** rms of the whole spectrum, of one component in the plane, uG. */
+  readonly rmsUG: number;
+  readonly outerScaleKpc: number;
+  /** Of the three-dimensional power spectrum. */
+  readonly slope: number;
+  readonly boxKpc: number;
+  readonly cells: number;
+  /** Waves shorter than this are not drawn. */
+  readonly smallestKpc: number;
+  /** rms along z over that in the plane. */
+  readonly verticalRatio: number;
+  /** Name of a component or density whose value, divided by its strength, scales the potential. */
+  readonly follows?: string;
+  /** Formula of x, y, z, r, phi (kpc) that scales the potential. */
+  readonly profile?: string;
+  /** Log-normal fluctuations of n_e: rms over mean, and correlation of its logarithm with the field's strength. */
+  readonly electrons?: { readonly rms: number; readonly correlation: number };
+  /** Which of the many fields of a seed. */
+  readonly realisation: number;
 }
 
 /** Thermal gas that absorbs and emits at radio frequencies, at one temperature. */
@@ -154,11 +181,13 @@ export interface Scene {
   readonly field: readonly Component[];
   readonly thermalElectrons: readonly Component[];
   readonly cosmicRays: CosmicRays;
-  readonly turbulence: { readonly unresolved?: UnresolvedTurbulence; readonly ordered?: OrderedTurbulence };
+  readonly turbulence: { readonly unresolved?: UnresolvedTurbulence; readonly ordered?: OrderedTurbulence; readonly resolved?: ResolvedTurbulence };
   /** Free–free absorption and emission of the thermal electrons; undefined: none. */
   readonly freeFree?: FreeFreeGas;
   readonly observation: Observation;
   readonly numerics: Numerics;
   /** Files of gridded numbers; none where absent. */
   readonly inputs?: readonly InputFile[];
+  /** The random field, where it was drawn beforehand; `key` tells for what. */
+  readonly drawn?: { readonly key: string; readonly grids: TurbulenceGrids };
 }

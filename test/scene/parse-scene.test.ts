@@ -136,7 +136,7 @@ describe('what is refused, word for word', () => {
     [19, '    - {model: exponential-disc, density: 1e-5 cm^-3, radius: 6 kpc, height: 1.5 kpc}', '19:33: cosmicRays.layers.exponential-disc: unknown key "density"'],
     [19, '    - {model: exponential-disc, normalisation: 1e-5 cm^-3, radius: 6 kpc, height: 1.5 kpc, heightAt: 1.4 GHz}', '19:92: "heightAt" is given without "heightIndex": both or neither'],
     [19, '    - {model: slab, normalisation: 1e-5 cm^-3, halfThickness: 1 kpc, heightIndex: 0.25, heightAt: 1.4 GHz}', '19:70: "heightIndex" needs a model with the parameter "height"; "slab" has none'],
-    [21, '  resolved: {rms: 4 uG}', '21:3: turbulence: "resolved" is not available in this version'],
+    [21, '  resolved: {rms: 4 uG}', '21:13: turbulence.resolved.outerScale is missing: a length is wanted, such as "2 kpc" (more than 0 and at most 1000 kpc)'],
     [21, '  unresolved: {rms: 4 uG, cell: 50 pc, follows: hot}', '21:49: turbulence.unresolved.follows: nothing is named "hot"'],
     [21, '  unresolved: {rms: 4 uG, cell: 50 pc, follows: mine}', '21:49: turbulence.unresolved.follows: "mine" has neither "strength" nor "density" to divide by'],
     [21, '  unresolved: {rms: -4 uG, cell: 50 pc}', '21:21: turbulence.unresolved.rms: "-4 uG" is outside 0 to 10000 uG'],
