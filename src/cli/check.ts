@@ -6,6 +6,9 @@ import { checkModel } from '../model/check-model.ts';
 import { parseModelFile } from '../model/model-file.ts';
 import { largestReturnField, measureDivergence } from '../ray/probe.ts';
 import { symmetrySentences } from '../ray/symmetry.ts';
+import { bytesText } from '../field/grid-file.ts';
+import { storedPoints } from '../math/spline-grid.ts';
+import { findSplit } from '../scene/resolved-turbulence.ts';
 import type { Component, Scene } from '../scene/types.ts';
 import { InputError } from '../units/input-error.ts';
 import { convertQuantity, formatQuantity } from '../units/quantity.ts';
@@ -56,10 +59,29 @@ function checkScene(file: string, flags: CommonFlags): CheckReport {
   for (const { name, largestUG, radiusKpc } of largestReturnField(scene)) {
     lines.push(`  plane    ${name}: its flux returns in the plane with |B_r| up to ${largestUG.toPrecision(3)} uG, at r = ${radiusKpc.toPrecision(3)} kpc`);
   }
+  lines.push(...turbulenceLines(scene));
+  for (const { file: input, sha256 } of scene.inputs ?? []) lines.push(`  file     ${input}: SHA-256 ${sha256}`);
   for (const sentence of symmetrySentences(scene)) lines.push(`  symmetry ${sentence}`);
   lines.push(...componentLines('field', scene.field), ...componentLines('thermal electrons', scene.thermalElectrons), ...componentLines('cosmic rays', scene.cosmicRays.layers));
   lines.push(...observationLines(scene));
   return { file, kind: 'scene', lines };
+}
+
+/** What of the turbulence is drawn, and what is left to the unresolved terms. */
+function turbulenceLines(scene: Scene): string[] {
+  const split = findSplit(scene);
+  const { resolved } = scene.turbulence;
+  if (!split || !resolved) return [];
+  const percent = (share: number): string => `${(100 * share).toPrecision(3)}%`;
+  return [
+    `  turbulence: waves of ${resolved.outerScaleKpc} to ${split.shortestKpc.toPrecision(3)} kpc are drawn, ${percent(1 - split.share)} of the variance, rms ${split.resolvedUG.toPrecision(3)} uG;` +
+      ` the rest is unresolved, rms ${split.restUG.toPrecision(3)} uG in cells of ${(1000 * split.restCellKpc).toPrecision(3)} pc`,
+    `    realisation ${resolved.realisation} of seed ${scene.numerics.seed}, ${resolved.cells} cells in ${resolved.boxKpc} kpc along each axis, repeated; ${bytesText(gridBytes(resolved.cells, resolved.electrons ? 4 : 3))} in every worker`,
+  ];
+}
+
+function gridBytes(cells: number, grids: number): number {
+  return 4 * grids * storedPoints({ points: cells, periodic: true }) ** 3;
 }
 
 function componentLines(section: string, components: readonly Component[]): string[] {
