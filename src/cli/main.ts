@@ -56,6 +56,11 @@ function report(error: unknown): number {
     say('stopped; nothing half-written was left');
     return exitCode.cancelled;
   }
+  // By name: errors of worker threads are copies.
+  if (error instanceof Error && error.name === 'ResourceError') {
+    say(error.message);
+    return exitCode.failure;
+  }
   if (error instanceof Error && error.name === 'NotANumberError') {
     say(error.message);
     return exitCode.input;

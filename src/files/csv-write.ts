@@ -1,4 +1,5 @@
-interface CsvColumnBase {
+/** What a column is called and what it holds. */
+export interface CsvColumnBase {
   readonly name: string;
   /** Such as `rad/m2`, `Jy/beam`; left out for a pure number. */
   readonly unit?: string;
@@ -29,8 +30,23 @@ export function writeCsv(columns: readonly CsvColumn[], meta: Readonly<Record<st
   return `${lines.join('\n')}\n`;
 }
 
+/** A column without its values, for tables that are written row by row. */
+export interface TableColumn extends CsvColumnBase {
+  readonly type: 'float64' | 'int64' | 'string';
+}
+
+/** The head of a table that is written row by row: ECSV header and names, each line ended. */
+export function csvHead(columns: readonly TableColumn[], meta: Readonly<Record<string, string | number>>): string {
+  return `${[...ecsvHeader(columns, meta), columns.map(({ name }) => quoted(name)).join(',')].join('\n')}\n`;
+}
+
+/** One row of such a table, its line ended; cells in the order of the columns. */
+export function csvRow(columns: readonly TableColumn[], cells: readonly (number | string)[]): string {
+  return `${columns.map((column, k) => (typeof cells[k] === 'string' ? quoted(cells[k]) : numberText(column, cells[k]))).join(',')}\n`;
+}
+
 /** YAML in flow style: every text as JSON, which is YAML. */
-function ecsvHeader(columns: readonly CsvColumn[], meta: Readonly<Record<string, string | number>>): string[] {
+function ecsvHeader(columns: readonly TableColumn[], meta: Readonly<Record<string, string | number>>): string[] {
   const items = columns.map(({ name, unit, type, description }) => {
     const fields = { name, unit, datatype: type, description };
     const parts = Object.entries(fields).flatMap(([key, value]) => (value ? [`${key}: ${JSON.stringify(value)}`] : []));
@@ -48,8 +64,10 @@ function ecsvHeader(columns: readonly CsvColumn[], meta: Readonly<Record<string,
 }
 
 function cellText(column: CsvColumn, row: number): string {
-  if (column.type === 'string') return quoted(column.values[row]);
-  const value = column.values[row];
+  return column.type === 'string' ? quoted(column.values[row]) : numberText(column, column.values[row]);
+}
+
+function numberText(column: TableColumn, value: number): string {
   if (column.type === 'int64' && !Number.isSafeInteger(value)) throw new RangeError(`column ${column.name} holds ${value}, no whole number`);
   if (Number.isFinite(value)) return Object.is(value, -0) ? '-0.0' : String(value);
   return Number.isNaN(value) ? 'nan' : value > 0 ? 'inf' : '-inf';

@@ -3,6 +3,7 @@ import { closeSync, fsyncSync, mkdirSync, openSync, readdirSync, readFileSync, r
 import { basename, dirname, join, resolve } from 'node:path';
 import { InputError, nearestHint } from '../units/input-error.ts';
 import type { FileSource } from './load-data.ts';
+import { resourceError } from './resource-error.ts';
 
 /** The bytes of a file. Throws InputError where it is missing (with the nearest name beside it) or cannot be read. */
 export function readBytes(path: string): Uint8Array {
@@ -32,8 +33,8 @@ export function filesBeside(baseFile: string): FileSource {
 
 /**
  * Write a file whole or not at all: beside its place, then renamed into it; folders are made.
- * Throws InputError where the place cannot be written (missing rights, a folder of that name) and
- * the system's own error where the disk fails.
+ * Throws InputError where the place cannot be written (missing rights, a folder of that name), and
+ * ResourceError where the disk is full or fails.
  */
 export function writeWhole(path: string, content: Uint8Array | string): void {
   const bytes = typeof content === 'string' ? new TextEncoder().encode(content) : content;
@@ -52,10 +53,14 @@ export function writeWhole(path: string, content: Uint8Array | string): void {
     renameSync(beside, path);
   } catch (error) {
     if (isBegun) rmSync(beside, { force: true });
-    const reason = WRITE_REASONS[codeOf(error)];
-    if (reason === undefined) throw error;
-    throw new InputError(`cannot write the file: ${reason}`, { file: path });
+    throw unwritable(error, path);
   }
+}
+
+/** What a failed write becomes: InputError where the place is wrong, ResourceError where the disk is full or fails, else the error itself. */
+export function unwritable(error: unknown, path: string): unknown {
+  const reason = WRITE_REASONS[codeOf(error)];
+  return reason === undefined ? resourceError(error, path) : new InputError(`cannot write the file: ${reason}`, { file: path });
 }
 
 const WRITE_REASONS: Readonly<Record<string, string>> = {

@@ -1,4 +1,4 @@
-import { axisOffsetsKpc, frameFromGrid, pixelsPerBeam, type DiscOrientation, type MapFrame } from '../measure/disc.ts';
+import { frameFromGrid, pixelsPerBeam, type DiscOrientation, type MapFrame } from '../measure/disc.ts';
 import { makeLayout, type Layout } from '../measure/layout.ts';
 import { measureRegions, type RegionValues } from '../measure/region.ts';
 import type { Ring } from '../measure/ring-profile.ts';
@@ -112,9 +112,4 @@ export function layoutMean({ layout }: Pick<SkyView, 'layout'>, values: ArrayLik
 export function layoutBeams({ layout, frame }: Pick<SkyView, 'layout' | 'frame'>): number {
   const pixels = layout.regionOf.reduce((count, region) => count + (region >= 0 ? 1 : 0), 0);
   return Math.max(1, pixels / pixelsPerBeam(frame));
-}
-
-/** Offsets of the pixels along the axes, kpc. */
-export function viewOffsets({ frame, orientation }: Pick<SkyView, 'frame' | 'orientation'>): ReturnType<typeof axisOffsetsKpc> {
-  return axisOffsetsKpc(frame, orientation);
 }
