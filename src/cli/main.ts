@@ -10,6 +10,9 @@ import { addMeasure } from './measure.ts';
 import { addOrient } from './orient.ts';
 import { addProbe } from './probe.ts';
 import { addRank } from './rank.ts';
+import { addSweep } from './sweep.ts';
+import { addTask } from './task.ts';
+import { addTasks } from './tasks.ts';
 import { Cancelled } from './run-context.ts';
 import { version } from './version.ts';
 
@@ -22,7 +25,7 @@ function makeProgram(): Command {
     .version(version)
     .exitOverride()
     .configureOutput({ writeErr: () => undefined });
-  for (const add of [addMap, addCompare, addRank, addFit, addForecast, addMeasure, addCheck, addProbe, addOrient, addApp]) add(program);
+  for (const add of [addMap, addCompare, addRank, addFit, addSweep, addTasks, addTask, addForecast, addMeasure, addCheck, addProbe, addOrient, addApp]) add(program);
   for (const command of program.commands) command.exitOverride().configureOutput({ writeErr: () => undefined });
   return program;
 }
@@ -53,7 +56,7 @@ function report(error: unknown): number {
     return exitCode.input;
   }
   if (error instanceof Cancelled) {
-    say('stopped; nothing half-written was left');
+    say(error.message);
     return exitCode.cancelled;
   }
   // By name: errors of worker threads are copies.

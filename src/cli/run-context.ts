@@ -18,7 +18,11 @@ export interface CommonFlags {
 }
 
 /** Stopped by the user (Ctrl-C). */
-export class Cancelled extends Error {}
+export class Cancelled extends Error {
+  constructor(message = 'stopped; nothing half-written was left') {
+    super(message);
+  }
+}
 
 const mostWorkers = 256;
 
@@ -51,35 +55,49 @@ export function overridesOf({ set = [], seed }: Pick<CommonFlags, 'set' | 'seed'
   return overrides;
 }
 
-/** What a running command works with: threads, a line of progress, and the user's Ctrl-C. */
-export interface RunContext {
-  readonly pool: RayPool;
+/** A line of progress, and the user's Ctrl-C. */
+export interface CancelContext {
   readonly progress: Progress;
   readonly signal: AbortSignal;
 }
 
-/**
- * Runs a computation with a pool of threads, which is closed whatever happens; Ctrl-C aborts it
- * and becomes Cancelled. Refuses engines that this version does not have.
- */
-export async function withRunContext<T>(flags: CommonFlags, work: (context: RunContext) => Promise<T>): Promise<T> {
-  if (flags.engine !== 'local') {
-    throw new InputError('not available in this version for this command; allowed is local', { flag: `--engine ${flags.engine}` });
-  }
+/** What a running command works with: threads, a line of progress, and the user's Ctrl-C. */
+export interface RunContext extends CancelContext {
+  readonly pool: RayPool;
+}
+
+/** Runs a computation that Ctrl-C aborts; it becomes `Cancelled` then, which says `words`. */
+export async function withCancel<T>(flags: Pick<CommonFlags, 'quiet'>, work: (context: CancelContext) => Promise<T>, words?: string): Promise<T> {
   const controller = new AbortController();
-  const stop = (): void => controller.abort(new Cancelled());
+  const stop = (): void => controller.abort(new Cancelled(words));
   process.once('SIGINT', stop);
   process.once('SIGTERM', stop);
   const progress = makeProgress(process.stderr, flags.quiet ?? false);
-  const pool = startNodePool(flags.workers ?? availableParallelism());
   try {
-    return await work({ pool, progress, signal: controller.signal });
+    return await work({ progress, signal: controller.signal });
   } finally {
     progress.close();
-    await pool.close();
     process.off('SIGINT', stop);
     process.off('SIGTERM', stop);
   }
+}
+
+/**
+ * Runs a computation with a pool of threads, which is closed whatever happens; Ctrl-C aborts it
+ * and becomes Cancelled. Refuses engines that do not serve the command.
+ */
+export async function withRunContext<T>(flags: CommonFlags, work: (context: RunContext) => Promise<T>): Promise<T> {
+  if (flags.engine !== 'local') {
+    throw new InputError('this command is no work for a cluster; allowed is local (a cluster serves sweep, and fit and rank where they sample by nested sampling)', { flag: `--engine ${flags.engine}` });
+  }
+  return withCancel(flags, async (context) => {
+    const pool = startNodePool(flags.workers ?? availableParallelism());
+    try {
+      return await work({ ...context, pool });
+    } finally {
+      await pool.close();
+    }
+  });
 }
 
 /** Words for the user, on stderr; silent where --quiet or --json asks for it. */

@@ -18,7 +18,7 @@ export default defineConfig({
     emptyOutDir: false,
     minify: false,
     rollupOptions: {
-      input: { gyrelight: entry('cli/main.ts'), 'ray-worker': entry('run/ray-worker.ts') },
+      input: { gyrelight: entry('cli/main.ts'), 'ray-worker': entry('run/ray-worker.ts'), 'sweep-worker': entry('run/sweep-worker.ts') },
       output: { entryFileNames: '[name].js', chunkFileNames: 'parts/[name]-[hash].js', banner: '#!/usr/bin/env node' },
     },
   },

@@ -15,6 +15,7 @@ export class FileWriter {
   private readonly beside: string;
   private readonly file: number;
   private text = '';
+  private isOpen = true;
 
   constructor(private readonly path: string) {
     this.beside = join(dirname(path), `.${basename(path)}.${randomUUID()}.part`);
@@ -41,16 +42,19 @@ export class FileWriter {
     this.drain();
     try {
       fsyncSync(this.file);
-      closeSync(this.file);
       renameSync(this.beside, this.path);
     } catch (error) {
-      rmSync(this.beside, { force: true });
+      this.abandon();
       throw unwritable(error, this.path);
     }
+    this.isOpen = false;
+    closeSync(this.file);
   }
 
-  /** Leaves nothing behind; for when something else went wrong. */
+  /** Leaves nothing behind, for when something else went wrong; does nothing once the file is in its place. */
   abandon(): void {
+    if (!this.isOpen) return;
+    this.isOpen = false;
     closeSync(this.file);
     rmSync(this.beside, { force: true });
   }

@@ -23,10 +23,10 @@ export class RowStore {
   /**
    * Reads where the rows 0 to `count` - 1 stand. The same row written twice by tasks that ran twice
    * counts once. Throws where it was written twice with different values, or a row is out of range:
-   * such a store is not to be trusted.
+   * such a store is not to be trusted. `files`: only these journals of the folder.
    */
-  constructor(folder: string, readonly count: number) {
-    this.files = journalsIn(folder);
+  constructor(folder: string, readonly count: number, files: readonly string[] = journalsIn(folder)) {
+    this.files = files;
     this.fileOf = new Uint32Array(count);
     this.offsetOf = new Float64Array(count);
     this.lengthOf = new Uint32Array(count);

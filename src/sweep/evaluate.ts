@@ -58,6 +58,7 @@ export function realisationSeed(scene: Scene, realisation: number): number {
 export interface KeptMap {
   readonly name: MapName;
   readonly band?: string;
+  readonly frequencyHz?: number;
   readonly values: Float64Array;
   readonly unit: string;
 }
@@ -110,7 +111,7 @@ function keptMaps(name: MapName, view: SkyView): KeptMap[] {
       'origin-height': [originKpc, 'kpc'],
     };
     const [values, unit] = all[name];
-    return { name, band, values, unit };
+    return { name, band, frequencyHz: centre.frequencyHz, values, unit };
   });
 }
 

@@ -103,8 +103,8 @@ const measures: Readonly<Record<MeasureName, Measure>> = {
   },
   gradient: {
     columns: () => [
-      ...withError(column('rm_gradient_major', 'rad/m2/kpc', 'RM gradient, major axis', 'growth of RM towards the receding end, in the ring, over all bands')),
-      ...withError(column('rm_gradient_minor', 'rad/m2/kpc', 'RM gradient, minor axis', 'growth of RM towards position angle + 90 deg')),
+      ...withError(column('rm_gradient_major', 'rad m-2 kpc-1', 'RM gradient, major axis', 'growth of RM towards the receding end, in the ring, over all bands')),
+      ...withError(column('rm_gradient_minor', 'rad m-2 kpc-1', 'RM gradient, minor axis', 'growth of RM towards position angle + 90 deg')),
     ],
     values: (view) => {
       const { rm, rmError } = view.rotation();

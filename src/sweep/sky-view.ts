@@ -58,6 +58,7 @@ export function viewSky(scene: Scene, sky: ObservedSky, ring: Ring, threshold: n
     return seed === undefined ? { ...cube, noise: cube.noise.map((before) => Math.hypot(before, rms)) } : addNoise(cube, rms, seed);
   });
   const perBeam = pixelsPerBeam(frame);
+  const shared = sharedNoise(layout, perBeam);
   const bands = cubes.map((cube, k): BandView => {
     const centre = centreMaps(cube);
     const drawn = seed === undefined ? 0 : centre.noise;
@@ -71,7 +72,7 @@ export function viewSky(scene: Scene, sky: ObservedSky, ring: Ring, threshold: n
       centre,
       sigma: centre.noise,
       P: seed === undefined ? centre.P : centre.debiasedP,
-      regions: measured.map((region) => withErrors(region, centre.noise)),
+      regions: measured.map((region) => withErrors(region, centre.noise * shared)),
       originKpc: heightKpc.subarray(middle * pixels, (middle + 1) * pixels),
     };
   });
@@ -81,6 +82,15 @@ export function viewSky(scene: Scene, sky: ObservedSky, ring: Ring, threshold: n
     azimuth: azimuths(layout, galaxy.inclination),
     rotation: () => (rotation ??= rotationMeasureMaps(cubes)),
   };
+}
+
+/** By how much errors of small regions grow because a beam covers several: no region counts as less than one beam. */
+function sharedNoise({ regionOf, regions }: Layout, perBeam: number): number {
+  const pixels = new Float64Array(regions.length);
+  for (const region of regionOf) if (region >= 0) pixels[region]++;
+  const counted = pixels.reduce((sum, count) => sum + (count > 0 ? Math.max(1, count / perBeam) : 0), 0);
+  const whole = Math.max(1, pixels.reduce((sum, count) => sum + count, 0) / perBeam);
+  return Math.sqrt(Math.max(1, counted / whole));
 }
 
 /** Errors that noise gives the means of a region. */
