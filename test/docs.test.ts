@@ -2,6 +2,7 @@ import { existsSync, readdirSync, readFileSync, statSync, writeFileSync } from '
 import { dirname, join } from 'node:path';
 import { describe, expect, it } from 'vitest';
 import { parseStudy } from '../src/infer/study.ts';
+import { parseSweep } from '../src/sweep/parse-sweep.ts';
 import { gyrelight, repository } from './cli/run.ts';
 import { inFolder } from './support/tools.ts';
 
@@ -26,7 +27,7 @@ describe('documentation', () => {
     expect(listed).toEqual(folders);
   });
 
-  it('the README’s scene is a good scene, its study a good study', () => {
+  it('the README’s scene, study and sweep are good ones', () => {
     const block = (kind: string): string => new RegExp(`\`\`\`yaml ${kind}\n([\\s\\S]*?)\`\`\``).exec(text('README.md'))?.[1] ?? '';
     inFolder((folder) => {
       writeFileSync(join(folder, 'scene.yaml'), block('scene'));
@@ -36,6 +37,7 @@ describe('documentation', () => {
       expect(stdout).toContain('mine: largest');
     });
     expect(parseStudy(block('study'), 'README.md').hypotheses).toHaveLength(1);
+    expect(parseSweep(block('sweep'), 'README.md').vary).toHaveLength(2);
   });
 
   it('every command the README names is one, and none is left out', () => {

@@ -66,7 +66,9 @@ async function sweep(path: string, flags: SweepFlags): Promise<void> {
   folder.write();
   if (flags.json) process.stdout.write(`${JSON.stringify({ ...summary, computed, seconds, files: ['sweep.csv', 'sweep.parquet', ...folder.names] }, null, 2)}\n`);
   const rate = computed > 0 ? `, ${(computed / seconds).toPrecision(2)} rows a second` : '';
-  sayWords(flags, ...crossings.map(({ sentence }) => sentence), `${total} rows (${computed} computed now in ${durationText(seconds)}${rate}). Tables, figures and report: ${flags.out}/`);
+  const seen = crossings.filter(({ intervals }) => intervals.length > 0).map(({ sentence }) => sentence);
+  const unseen = crossings.length > seen.length ? [`${crossings.length - seen.length} of ${crossings.length} asymmetries stay below ${plan.threshold}σ or cannot be told.`] : [];
+  sayWords(flags, ...seen, ...unseen, `${total} rows (${computed} computed now in ${durationText(seconds)}${rate}). Tables, figures and report: ${flags.out}/`);
 }
 
 async function computeHere(plan: SweepPlan, source: SweepSource, { store, maps }: SweepFolders, rows: RowStore, flags: SweepFlags, { progress, signal }: CancelContext): Promise<void> {

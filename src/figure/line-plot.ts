@@ -195,7 +195,7 @@ function withUnit(label: string, unit: string): string {
 }
 
 /** Samples and names in rows that wrap at `width` px. */
-function drawLegend(series: readonly PlotSeries[], width: number, theme: Theme): Drawing {
+export function drawLegend(series: readonly PlotSeries[], width: number, theme: Theme): Drawing {
   let body = '';
   let [x, row] = [0, 0];
   for (const one of series.filter((each) => each.label)) {

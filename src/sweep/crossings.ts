@@ -50,7 +50,7 @@ function crossingOf(plan: SweepPlan, { axis, levels, moments }: SweepCurves, col
   const y = moments[column].mean.subarray(f * count, (f + 1) * count);
   const about = plan.axes[axis];
   const name = shortName(about.path);
-  const subject = `${family === '' ? 'the' : `${family}: the`} ${label}`;
+  const subject = `${family === '' ? 'the' : `${family}: the`} ${label.replace(', ', ' at ')}`;
   const text = (value: number): string => valueText(about, value);
   const known = middles.filter((_, k) => !Number.isNaN(y[k]));
   const full = { column, axis, family };

@@ -55,6 +55,14 @@ export interface SweepImportance {
   readonly indices: readonly SensitivityIndex[];
 }
 
+/** The columns worth drawing, those of one kind beside each other whatever their band. */
+export function drawnColumns(columns: readonly SweepColumn[]): number[] {
+  const kind = (k: number): string => columns[k].label.split(',')[0];
+  const drawn = columns.flatMap(({ drawn: isDrawn }, k) => (isDrawn ? [k] : []));
+  const kinds = [...new Set(drawn.map(kind))];
+  return kinds.flatMap((one) => drawn.filter((k) => kind(k) === one));
+}
+
 /** Values of a full grid kept for its analysis of variance, all columns together. */
 const mostGridValues = 4e6;
 
@@ -108,7 +116,7 @@ export class SweepReading {
   /** Indices of every drawn column and variant; none for a plain Sobol design or a grid too large to be kept. */
   importance(): SweepImportance[] {
     const steps = this.plan.axes.map((axis) => axis.values.length);
-    const drawn = this.columns.flatMap(({ drawn: isDrawn }, k) => (isDrawn ? [k] : []));
+    const drawn = drawnColumns(this.columns);
     return this.plan.variants.flatMap((_, variant) =>
       drawn.flatMap((column): SweepImportance[] => {
         if (this.tallies.length > 0) return [{ variant, column, indices: this.tallies[variant][column].indices() }];

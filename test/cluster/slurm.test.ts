@@ -3,7 +3,8 @@ import { existsSync, mkdtempSync, readdirSync, readFileSync, rmSync, writeFileSy
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
-import { gyrelight, repository, smallScene, type Outcome } from '../cli/run.ts';
+import { gyrelight, repository, type Outcome } from '../cli/run.ts';
+import { quickScene } from '../cli/sweep-kill.ts';
 import { Cluster, findMissing, needSlurm } from './cluster.ts';
 
 const sweep = `gyrelight-sweep: 1
@@ -13,6 +14,7 @@ vary:
   galaxy.inclination: {from: 10 deg, to: 70 deg, steps: 7}
   field.halo.core: [1 kpc, 3 kpc]
 realisations: 2
+sectors: 12
 measure: [asymmetry, polarization, detectability]
 `;
 
@@ -25,7 +27,7 @@ describe('a cluster', () => {
 
   beforeAll(async () => {
     if (findMissing() !== undefined) return;
-    writeFileSync(join(folder, 'small.scene.yaml'), smallScene);
+    writeFileSync(join(folder, 'small.scene.yaml'), quickScene);
     writeFileSync(join(folder, 'c.sweep.yaml'), sweep);
     expect(gyrelight(['sweep', 'c.sweep.yaml', '--out', 'local', '--quiet'], folder).status).toBe(0);
     local = tables('local');
