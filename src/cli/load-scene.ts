@@ -1,6 +1,6 @@
-import { gridSource } from '../files/grid-source.ts';
-import { filesBeside, readText } from '../files/node-io.ts';
 import type { Provenance } from '../files/fits-scene.ts';
+import { readText } from '../files/node-io.ts';
+import { gridsBeside } from '../files/scene-files.ts';
 import { parseScene, sceneText } from '../scene/parse-scene.ts';
 import type { Override } from '../scene/overrides.ts';
 import type { Scene } from '../scene/types.ts';
@@ -15,7 +15,7 @@ export interface LoadedScene {
 /** Reads and checks a scene file. Throws InputError with file:line:column, or the flag. */
 export function loadScene(path: string, overrides: readonly Override[]): LoadedScene {
   const text = readText(path);
-  const scene = parseScene(text, path, overrides, gridSource(filesBeside(path)));
+  const scene = parseScene(text, path, overrides, gridsBeside(path));
   const provenance = { sceneText: sceneText(text, path, overrides), version, seed: scene.numerics.seed, inputs: scene.inputs };
   return { scene, provenance };
 }

@@ -4,6 +4,7 @@ import { basename, join, resolve } from 'node:path';
 import { FileWriter } from '../files/file-writer.ts';
 import { journalLine, journalsIn } from '../files/journal.ts';
 import { RowStore } from '../files/row-store.ts';
+import { gridsBeside } from '../files/scene-files.ts';
 import type { ClusterTask } from '../run/cluster.ts';
 import { computeUnits, wantedUnits } from '../run/sweep-threads.ts';
 import { rowCount } from '../sweep/design.ts';
@@ -45,7 +46,7 @@ export function sweepTasks(plan: SweepPlan, source: SweepSource, { store, maps }
 export async function doSweepTask({ source, store, maps, from, to }: SweepTaskInput, key: string, workers: number): Promise<void> {
   const part = partPath(store, key);
   if (existsSync(part)) return;
-  const plan = planOf(source);
+  const plan = planOf(source, gridsBeside);
   const count = rowCount(plan);
   const own = (): RowStore => new RowStore(store, count, journalsOf(store, key));
   const before = own();

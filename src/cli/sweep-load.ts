@@ -1,5 +1,6 @@
 import { dirname, resolve } from 'node:path';
 import { readText } from '../files/node-io.ts';
+import { gridsBeside } from '../files/scene-files.ts';
 import { parseSweep } from '../sweep/parse-sweep.ts';
 import { planSweep } from '../sweep/plan.ts';
 import type { SweepSource } from '../sweep/source.ts';
@@ -21,5 +22,5 @@ export function loadSweep(file: string, flags: Pick<CommonFlags, 'set' | 'seed'>
     }
   });
   const overrides = overridesOf(flags);
-  return { source: { file, text, scenes, overrides, version }, plan: planSweep(sweep, scenes, overrides) };
+  return { source: { file, text, scenes, overrides, version }, plan: planSweep(sweep, scenes, overrides, gridsBeside) };
 }

@@ -2,6 +2,7 @@ import { join } from 'node:path';
 import type { Provenance } from '../files/fits-scene.ts';
 import { openJournal, type JournalWriter } from '../files/journal.ts';
 import { writeWhole } from '../files/node-io.ts';
+import { gridsBeside } from '../files/scene-files.ts';
 import { mapFits } from '../files/sky-fits-write.ts';
 import { EngineCache, localBackend } from '../ray/job.ts';
 import { sceneText } from '../scene/parse-scene.ts';
@@ -32,7 +33,7 @@ export class SweepService {
 
   begin(job: SweepJob): void {
     this.job = job;
-    this.plan = planOf(job.source);
+    this.plan = planOf(job.source, gridsBeside);
     this.design = makeDesign(this.plan);
   }
 
@@ -57,7 +58,7 @@ export class SweepService {
   private writeMaps({ source, maps: folder }: SweepJob, plan: SweepPlan, point: number, { variant, values }: SweepPoint, { maps, scene, sky }: UnitResult): void {
     if (maps.length === 0) return;
     const overrides = plan.axes.map(({ path, unit, shownUnit }, k) => ({ path, value: `${shownValue(values[k], unit, shownUnit)} ${shownUnit}`.trim(), flag: path }));
-    const provenance: Provenance = { sceneText: sceneText(plan.variants[variant].sceneText, source.file, overrides), version: source.version, seed: scene.numerics.seed };
+    const provenance: Provenance = { sceneText: sceneText(plan.variants[variant].sceneText, source.file, overrides), version: source.version, seed: scene.numerics.seed, inputs: scene.inputs };
     for (const { name, band, frequencyHz, values: pixels, unit } of maps) {
       const about = { quantity: name, unit, sky: sky.grid, values: pixels, ...(band !== undefined && { band, frequencyHz }), ...(scene.observation.beam && name !== 'origin-height' && { beam: scene.observation.beam }) };
       writeWhole(join(folder, pointFolder(point), mapFile(name, band)), mapFits(about, provenance, scene.numerics.bits));

@@ -1,3 +1,4 @@
+import type { GridSource } from '../field/grid-file.ts';
 import { defaultRing } from '../measure/ring-profile.ts';
 import type { Override } from '../scene/overrides.ts';
 import { parseScene, sceneText } from '../scene/parse-scene.ts';
@@ -17,15 +18,19 @@ export interface SceneSource {
   readonly text: string;
 }
 
+/** Where a scene file's gridded numbers are read from. */
+export type FilesOf = (sceneFile: string) => GridSource;
+
 /**
  * Resolves a sweep against its scenes: `sources` in the order of `sweep.scenes`, `overrides` from
  * flags, for all of them. Varied paths that are no numbers of the scene (such as a parity) take lists
  * of words and make a variant of the scene each. Throws InputError, placed in the sweep, for unknown
  * paths, wrong units, values that are not allowed in any of the scenes, and measures without noise.
  */
-export function planSweep(sweep: SweepFile, sources: readonly SceneSource[], overrides: readonly Override[]): SweepPlan {
+export function planSweep(sweep: SweepFile, sources: readonly SceneSource[], overrides: readonly Override[], filesOf?: FilesOf): SweepPlan {
   const all = [...overrides, ...noiseOverride(sweep)];
-  const bases = sources.map(({ file, text }, k) => placed(sweep.scenes[k].place, () => parseScene(text, file, all)));
+  const files = sources.map(({ file }) => filesOf?.(file));
+  const bases = sources.map(({ file, text }, k) => placed(sweep.scenes[k].place, () => parseScene(text, file, all, files[k])));
   const isNumber = (path: string): boolean => bases.every((scene) => scenePaths(scene).includes(path));
   const words = sweep.vary.filter((one) => one.list !== undefined && !isNumber(one.path));
   const numbers = sweep.vary.filter((one) => !words.includes(one));
@@ -33,7 +38,7 @@ export function planSweep(sweep: SweepFile, sources: readonly SceneSource[], ove
     combinations(words).map((chosen): SweepVariant => {
       const changed = [...all, ...chosen];
       const { file, text } = sources[k];
-      const scene = placedAtChoice(chosen, place, () => parseScene(text, file, changed));
+      const scene = placedAtChoice(chosen, place, () => parseScene(text, file, changed, files[k]));
       const parts = [...(sweep.scenes.length > 1 ? [name] : []), ...chosen.map((one) => `${one.path} ${one.value}`)];
       return { name: parts.join(', ') || name, sceneName: name, choices: chosen.map(({ value }) => value), scene, sceneText: sceneText(text, file, changed) };
     }),
@@ -109,7 +114,7 @@ function isRandom(scene: Scene): boolean {
 
 /** Whether the rays themselves, not the noise alone, change with the seed: a random screen, resolved turbulence. */
 export function raysDependOnSeed(scene: Scene): boolean {
-  return scene.observation.foregroundScreen !== undefined || Object.keys(scene.turbulence).some((kind) => kind !== 'unresolved');
+  return scene.observation.foregroundScreen !== undefined || Object.keys(scene.turbulence).some((kind) => !['unresolved', 'ordered'].includes(kind));
 }
 
 /** The scene of a variant with the values of a point written into it. Throws InputError where one is not allowed. */

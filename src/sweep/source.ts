@@ -1,7 +1,7 @@
 import type { Override } from '../scene/overrides.ts';
 import { columnsOf } from './evaluate.ts';
 import { parseSweep } from './parse-sweep.ts';
-import { planSweep, type SceneSource } from './plan.ts';
+import { planSweep, type FilesOf, type SceneSource } from './plan.ts';
 import type { SweepPlan } from './types.ts';
 
 /** All texts that a sweep is made of: whoever has them makes the same plan. Plain data. */
@@ -16,8 +16,8 @@ export interface SweepSource {
 }
 
 /** The plan of a sweep. Throws InputError as `parseSweep` and `planSweep` do. */
-export function planOf({ file, text, scenes, overrides }: SweepSource): SweepPlan {
-  return planSweep(parseSweep(text, file), scenes, overrides);
+export function planOf({ file, text, scenes, overrides }: SweepSource, filesOf: FilesOf): SweepPlan {
+  return planSweep(parseSweep(text, file), scenes, overrides, filesOf);
 }
 
 /** What rows depend on, by the names that a user knows; `same` of two sweeps means the same rows. */
@@ -38,8 +38,13 @@ export function identityOf(plan: SweepPlan, version: string): SweepIdentity {
     threshold: String(plan.threshold),
     ...Object.fromEntries(plan.axes.map((axis) => [`vary.${axis.path}`, shown(axis)])),
     'order of vary': plan.axes.map(({ path }) => path).join(' '),
-    ...Object.fromEntries(plan.variants.map(({ name, scene }, k) => [`scene ${k + 1}, ${name}`, JSON.stringify({ ...scene, title: '' })])),
+    ...Object.fromEntries(plan.variants.map(({ name, scene }, k) => [`scene ${k + 1}, ${name}`, JSON.stringify({ ...scene, title: '' }, withoutGrids)])),
   };
+}
+
+/** Gridded numbers are known by the checksum of their file, which the scene has. */
+function withoutGrids(_: string, value: unknown): unknown {
+  return ArrayBuffer.isView(value) ? 'numbers' : value;
 }
 
 /** The names of what differs between two sweeps; empty where their rows are the same. */
