@@ -8,6 +8,7 @@ import {
   eulerField,
   type Vector,
 } from '../formula/vector-calculus.ts';
+import type { Modulation } from './modulation.ts';
 import type { Model } from './types.ts';
 
 /** A model with names for its parameters' run-time values and its choices made. */
@@ -19,25 +20,38 @@ export interface ModelUse {
   readonly choices: Readonly<Record<string, string>>;
   /** What the component's grids are known by: `path`/name. */
   readonly path?: string;
+  /** What multiplies the model. */
+  readonly modulation?: Modulation;
 }
 
 /** The field of a model, uG, as Cartesian components in the galaxy frame. */
 export function buildField(graph: Graph, use: ModelUse): Vector {
   const c = coordinatesOf(graph);
   const scope = scopeOf(graph, use);
-  const { potential, euler, field } = use.model.formulas;
+  const { potential, euler, field, armPotential = potential } = use.model.formulas;
+  const { arms, hole } = use.modulation ?? {};
   const zero = graph.constant(0);
-  const part = (formulas: Readonly<Record<string, string>>, key: string): NodeId =>
-    key in formulas ? buildFormula(graph, formulas[key], scope) : zero;
+  const part = (formulas: Readonly<Record<string, string>>, key: string): NodeId => {
+    if (!(key in formulas)) return zero;
+    const value = buildFormula(graph, formulas[key], scope);
+    return hole === undefined ? value : graph.multiply(hole, value);
+  };
+  const curl = (a: Readonly<Record<string, string>>, factor?: NodeId): Vector => {
+    const times = (node: NodeId): NodeId => (factor === undefined ? node : graph.multiply(factor, node));
+    return isCartesian(a)
+      ? curlCartesian(graph, c, [times(part(a, 'x')), times(part(a, 'y')), times(part(a, 'z'))])
+      : curlCylindrical(graph, c, [times(part(a, 'r')), times(part(a, 'phi')), times(part(a, 'z'))]);
+  };
   let total: Vector = [zero, zero, zero];
   const add = (b: Vector): void => {
     total = [graph.add(total[0], b[0]), graph.add(total[1], b[1]), graph.add(total[2], b[2])];
   };
-  if (potential) {
-    if (isCartesian(potential)) add(curlCartesian(graph, c, [part(potential, 'x'), part(potential, 'y'), part(potential, 'z')]));
-    else add(curlCylindrical(graph, c, [part(potential, 'r'), part(potential, 'phi'), part(potential, 'z')]));
+  if (potential) add(curl(potential));
+  if (arms !== undefined && armPotential) add(curl(armPotential, arms));
+  if (euler) {
+    const factor = graph.multiply(hole ?? graph.constant(1), graph.add(graph.constant(1), arms ?? zero));
+    add(eulerField(graph, c, graph.multiply(factor, buildFormula(graph, euler.a, scope)), buildFormula(graph, euler.b, scope)));
   }
-  if (euler) add(eulerField(graph, c, buildFormula(graph, euler.a, scope), buildFormula(graph, euler.b, scope)));
   if (field) {
     if (isCartesian(field)) add([part(field, 'x'), part(field, 'y'), part(field, 'z')]);
     else add(cartesianFromCylindrical(graph, c, [part(field, 'r'), part(field, 'phi'), part(field, 'z')]));
@@ -49,7 +63,9 @@ export function buildField(graph: Graph, use: ModelUse): Vector {
 export function buildDensity(graph: Graph, use: ModelUse): NodeId {
   const { density } = use.model.formulas;
   if (density === undefined) throw new Error(`model ${use.model.name} has no density`);
-  return buildFormula(graph, density, scopeOf(graph, use));
+  const { arms, hole } = use.modulation ?? {};
+  const value = buildFormula(graph, density, scopeOf(graph, use));
+  return graph.multiply(value, hole ?? graph.constant(1), arms === undefined ? graph.constant(1) : graph.add(graph.constant(1), arms));
 }
 
 /** Surfaces where the model jumps or has a kink, as nodes of parameters alone. */

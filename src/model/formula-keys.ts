@@ -16,6 +16,7 @@ const FIELD_KEYS = ['potential', 'euler', 'field'] as const;
 export function findFormulaProblem(kind: ModelKind, formulas: ModelFormulas): FormulaProblem | undefined {
   const given = FIELD_KEYS.filter((key) => formulas[key] !== undefined);
   if (kind === 'density') {
+    if (formulas.armPotential) return { reason: 'a density has no "armPotential"', path: ['armPotential'] };
     if (given.length > 0) return { reason: `a density has no "${given[0]}": give "density"`, path: [given[0]] };
     return formulas.density === undefined ? { reason: 'a density needs the formula "density"', path: [] } : undefined;
   }
@@ -28,7 +29,7 @@ export function findFormulaProblem(kind: ModelKind, formulas: ModelFormulas): Fo
   if (given.length > 1 && !(both && azimuthal)) {
     return { reason: `${given.join(' and ')} are given: one of them, or potential with field: {phi}, is allowed`, path: [given[1]] };
   }
-  return findComponentProblem('potential', formulas.potential) ?? findComponentProblem('field', formulas.field);
+  return findComponentProblem('potential', formulas.potential) ?? findComponentProblem('armPotential', formulas.armPotential) ?? findComponentProblem('field', formulas.field);
 }
 
 function findComponentProblem(key: string, components: Readonly<Record<string, string>> | undefined): FormulaProblem | undefined {

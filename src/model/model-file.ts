@@ -18,12 +18,13 @@ export function parseModelFile(text: string, fileName: string): Model {
   const input = readYaml(text, fileName);
   const whole = plainValue(input);
   const asList = typeof whole === 'object' && whole !== null && 'parameters' in whole && Array.isArray(whole.parameters);
-  const { potential, euler, field, density, choices, ...rest } = checkYaml(input, modelSchema(asList));
+  const { potential, armPotential, euler, field, density, choices, ...rest } = checkYaml(input, modelSchema(asList));
   const model: Model = {
     ...rest,
     choices: Object.entries(choices).map(([name, choice]) => ({ name, ...choice })),
     formulas: {
       ...(potential && { potential }),
+      ...(armPotential && { armPotential }),
       ...(euler && { euler }),
       ...(field && { field }),
       ...(density !== undefined && { density }),

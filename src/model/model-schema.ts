@@ -5,7 +5,7 @@ import { quoteValue } from '../units/quote.ts';
 /** Names that formulas, scenes or this program use themselves, so no parameter may have them. */
 export const reservedNames: readonly string[] = [
   'e', 'i', 'pi', 'r', 'phi', 'model', 'name', 'parameters', 'choices', 'define', 'potential', 'euler', 'field',
-  'edges', 'normalisation', 'heightIndex', 'heightAt', 'filling', 'arms', 'flare', 'hole',
+  'edges', 'armPotential', 'normalisation', 'heightIndex', 'heightAt', 'filling', 'arms', 'flare', 'hole',
 ];
 
 const identifier = /^[A-Za-z][A-Za-z0-9]{0,39}$/;
@@ -86,6 +86,7 @@ export function modelSchema(parametersAsList: boolean) {
     choices: z.record(word, choice, { error: issueAtKey('choices by name are wanted') }).default({}),
     define: formulasByName.default({}),
     potential: formulasByName.optional(),
+    armPotential: formulasByName.optional(),
     euler: eulerFormulas.optional(),
     field: formulasByName.optional(),
     density: formulaText.optional(),

@@ -37,6 +37,8 @@ export interface ModelFormulas {
   readonly euler?: { readonly a: string; readonly b: string };
   /** B directly, uG: {r, phi, z} or {x, y, z}. With `potential`, only an axisymmetric phi part. */
   readonly field?: Readonly<Record<string, string>>;
+  /** Vector potential that spiral arms multiply, where it is not `potential`; that of the same horizontal field. */
+  readonly armPotential?: Readonly<Record<string, string>>;
   /** Density, cm^-3. */
   readonly density?: string;
 }

@@ -1,6 +1,8 @@
 import type { Graph, NodeId } from '../formula/graph.ts';
 import { cartesianFromCylindrical, coordinatesOf, type Vector } from '../formula/vector-calculus.ts';
 import { buildDensity, buildEdges, buildField, type ModelUse } from '../model/build-model.ts';
+import { armExcess, armSharpness, flaredHeight, holeFactor, type Modulation } from '../model/modulation.ts';
+import { shapeEntries } from '../scene/shape.ts';
 import type { Component, CosmicRayLayer, ResolvedTurbulence, Scene } from '../scene/types.ts';
 import { InputError } from '../units/input-error.ts';
 import { equipartitionElectrons } from './equipartition.ts';
@@ -106,11 +108,8 @@ export class SceneGraph {
     if (this.scene.cosmicRays.equipartition) return this.equipartition();
     const layers = placedComponents(this.scene).cosmicRays.map((placed) => {
       const layer = placed.component as CosmicRayLayer;
-      if (layer.heightIndex === undefined) return buildDensity(this.graph, this.use(placed));
-      const use = this.use(placed);
-      const parameters = new Map(use.parameters);
-      parameters.set('height', this.graph.parameter(`${placed.path}/height@${group}`));
-      return buildDensity(this.graph, { ...use, parameters });
+      const height = layer.heightIndex === undefined ? undefined : this.graph.parameter(`${placed.path}/height@${group}`);
+      return buildDensity(this.graph, this.use(placed, height));
     });
     return this.scaled(layers);
   }
@@ -201,7 +200,19 @@ export class SceneGraph {
     return graph.multiply(graph.constant(faradayDepthPerKpc ** 2), this.electronDensitySquared(), graph.add(...walks));
   }
 
-  use({ path, component }: PlacedComponent): ModelUse {
+  /** A component's model with its run-time parameters and what modulates it; `height` takes the place of its own. */
+  use(placed: PlacedComponent, height?: NodeId): ModelUse {
+    const { path, component } = placed;
+    const plain = this.plainUse(placed);
+    if (!component.flare && height === undefined) return { ...plain, modulation: this.modulation(placed) };
+    const parameters = new Map(plain.parameters);
+    const given = height ?? this.graph.parameter(`${path}/height`);
+    const own = (name: string): NodeId => this.graph.parameter(`${path}/${name}`);
+    parameters.set('height', component.flare ? flaredHeight(this.graph, component.flare.law, given, own('flare.radius'), own('flare.reference')) : given);
+    return { ...plain, parameters, modulation: this.modulation(placed) };
+  }
+
+  private plainUse({ path, component }: PlacedComponent): ModelUse {
     const parameters = new Map(
       Object.keys(component.parameters).map((name) => {
         const key = `${path}/${name}`;
@@ -211,10 +222,29 @@ export class SceneGraph {
     return { model: component.model, parameters, choices: component.choices, path };
   }
 
+  private modulation({ path, component }: PlacedComponent): Modulation {
+    const own = (name: string): NodeId => this.graph.parameter(`${path}/${name}`);
+    const arm = (name: string): NodeId => own(`arms.${name}`);
+    return {
+      ...(component.hole && { hole: holeFactor(this.graph, own('hole.radius')) }),
+      ...(component.arms && {
+        arms: armExcess(this.graph, {
+          number: arm('number'),
+          pitch: arm('pitch'),
+          sharpness: arm('sharpness'),
+          phase: arm('phase'),
+          amplitude: arm('amplitude'),
+          reference: arm('reference'),
+          innerRadius: arm('innerRadius'),
+        }),
+      }),
+    };
+  }
+
   /** Edges declared by every component, as nodes of parameters alone. */
   edges(): { readonly z: readonly NodeId[]; readonly r: readonly NodeId[] } {
     const { field, thermalElectrons, cosmicRays } = placedComponents(this.scene);
-    const all = [...field, ...thermalElectrons, ...cosmicRays].map((placed) => buildEdges(this.graph, this.use(placed)));
+    const all = [...field, ...thermalElectrons, ...cosmicRays].map((placed) => buildEdges(this.graph, this.plainUse(placed)));
     return { z: all.flatMap((edges) => edges.z), r: all.flatMap((edges) => edges.r) };
   }
 }
@@ -230,7 +260,11 @@ export function parameterValues(scene: Scene, groupFrequenciesHz: readonly numbe
   const { field, thermalElectrons, cosmicRays } = placedComponents(scene);
   for (const { path, component } of [...field, ...thermalElectrons, ...cosmicRays]) {
     for (const [name, value] of Object.entries(component.parameters)) values.set(`${path}/${name}`, value);
-    if (component.filling !== undefined) values.set(`${path}/filling`, component.filling);
+    for (const { key, read } of shapeEntries) {
+      const value = read(component);
+      if (value !== undefined) values.set(`${path}/${key}`, value);
+    }
+    if (component.arms) values.set(`${path}/arms.sharpness`, armSharpness(component.arms.number, component.arms.width));
   }
   for (const { path, component } of cosmicRays) {
     const layer = component as CosmicRayLayer;

@@ -14,7 +14,7 @@ export function structureKey(scene: Scene, spectrum: readonly SpectralPoint[]): 
       component.choices,
       Object.keys(component.parameters).map((name) => [name, isUnused(component, name)]),
       'heightIndex' in component && component.heightIndex !== undefined,
-      component.filling !== undefined,
+      [component.arms !== undefined, component.flare?.law, component.hole !== undefined, component.filling !== undefined],
     ]),
     scene.field.length,
     scene.thermalElectrons.length,

@@ -3,6 +3,7 @@ import type { Graph, NodeId } from '../formula/graph.ts';
 import { coordinatesOf } from '../formula/vector-calculus.ts';
 import { sections } from '../scene/section.ts';
 import { scenePath } from '../scene/paths.ts';
+import { shapeEntries } from '../scene/shape.ts';
 import type { CosmicRayLayer, Scene } from '../scene/types.ts';
 import { rayMotions, type Arithmetic } from './ray-motion.ts';
 import { placedComponents, type PlacedComponent } from './scene-graph.ts';
@@ -48,7 +49,7 @@ export function findTangentParameter(scene: Scene, path: string): TangentParamet
       if (!path.startsWith(start)) continue;
       const given = path.slice(start.length);
       const rename: Readonly<Record<string, string>> = section.rename;
-      const name = Object.keys(component.component.parameters).find((own) => (rename[own] ?? own) === given) ?? (isFilling(component, given) ? given : undefined);
+      const name = Object.keys(component.component.parameters).find((own) => (rename[own] ?? own) === given) ?? (isShapeLeaf(component, given) ? given : undefined);
       const followsHeight = 'heightIndex' in component.component && component.component.heightIndex !== undefined;
       const law = followsHeight && ['height', 'heightIndex', 'heightAt'].includes(given) ? { layer: component } : {};
       if (name === undefined && !('layer' in law)) continue;
@@ -58,9 +59,9 @@ export function findTangentParameter(scene: Scene, path: string): TangentParamet
   return undefined;
 }
 
-/** Whether a key is the filling factor of a component that has one. */
-function isFilling({ component }: PlacedComponent, key: string): boolean {
-  return key === 'filling' && component.filling !== undefined;
+/** Whether a key is a number of a component's modulation that is a run-time parameter itself: the arms' width is not. */
+function isShapeLeaf({ component }: PlacedComponent, key: string): boolean {
+  return key !== 'arms.width' && shapeEntries.some((entry) => entry.key === key && entry.read(component) !== undefined);
 }
 
 /** Names of the run-time rates of a layer's heights with a number of its height law. */

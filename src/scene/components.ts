@@ -9,8 +9,9 @@ import type { YamlInput, YamlPath } from '../units/yaml-input.ts';
 import type { ComponentSources } from './component-sources.ts';
 import { readCubeComponent } from './cube-model.ts';
 import { readInlineComponent } from './inline-model.ts';
-import { laterKeys, placed, readFilling, readHeightLaw } from './section.ts';
+import { placed, readHeightLaw } from './section.ts';
 import type { Section } from './section.ts';
+import { readShape } from './shape.ts';
 import type { CosmicRayLayer } from './types.ts';
 
 /** Models of the format that this version cannot compute. */
@@ -26,7 +27,6 @@ const specialModels: Readonly<Record<string, (input: YamlInput, section: Section
 export function componentSchema(model: Model, section: Section) {
   return keys(
     { model: z.literal(model.name), name: nameText().optional(), ...valuesShape(model, section.rename), ...section.extra },
-    laterKeys,
   );
 }
 
@@ -59,5 +59,5 @@ function readLibraryComponent(input: YamlInput, section: Section, path: YamlPath
   const given: Readonly<Record<string, unknown>> = checkYaml(input, componentSchema(model, section), path);
   const values = placed(input, path, () => fillValues(model, given, section.rename));
   const name = typeof given.name === 'string' ? given.name : modelName;
-  return { name, model, ...values, ...readHeightLaw(input, path, model, given), ...readFilling(given) };
+  return { name, model, ...values, ...readHeightLaw(input, path, model, given), ...readShape(input, path, model, given) };
 }

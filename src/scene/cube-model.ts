@@ -9,7 +9,8 @@ import { quoteValue } from '../units/quote.ts';
 import { keys, nameText, oneOf, quantity, words } from '../units/schema.ts';
 import { checkYaml, placeAt, type YamlInput, type YamlPath } from '../units/yaml-input.ts';
 import type { ComponentSources } from './component-sources.ts';
-import { laterKeys, placed, readHeightLaw, type Section } from './section.ts';
+import { placed, readHeightLaw, type Section } from './section.ts';
+import { readShape } from './shape.ts';
 import type { CosmicRayLayer, GriddedFunction } from './types.ts';
 
 const axisNames = ['x', 'y', 'z'] as const;
@@ -41,7 +42,6 @@ export function cubeSchema(section: Section) {
       scale: quantity({ unit: '', min: -1e6, max: 1e6 }, '', 'factor to all numbers').default(1),
       ...section.extra,
     },
-    laterKeys,
   );
 }
 
@@ -83,7 +83,7 @@ export function readCubeComponent(input: YamlInput, section: Section, path: Yaml
     grids[name] = { grid: interpolateGrid(identity, values, shape, ends), panelKpc: Math.min(...layout.stepsKpc) };
   });
   const model = cubeModel(given, key, names, layout.coordinates, section);
-  return { name: given.name, model, parameters: { scale: given.scale }, choices: {}, grids, ...readHeightLaw(input, path, model, given) };
+  return { name: given.name, model, parameters: { scale: given.scale }, choices: {}, grids, ...readHeightLaw(input, path, model, given), ...readShape(input, path, model, given) };
 }
 
 function chooseFiles(input: YamlInput, { field, potential, density }: CubeKeys, section: Section, path: YamlPath): { key: 'field' | 'potential' | 'density'; names: string[]; files: VectorFiles } {

@@ -11,8 +11,9 @@ import { quoteValue } from '../units/quote.ts';
 import { keys, listOf, nameText } from '../units/schema.ts';
 import { checkYaml, placeAt } from '../units/yaml-input.ts';
 import type { YamlInput, YamlPath } from '../units/yaml-input.ts';
-import { laterKeys, placed, readFilling, readHeightLaw } from './section.ts';
+import { placed, readHeightLaw } from './section.ts';
 import type { Section } from './section.ts';
+import { readShape } from './shape.ts';
 import type { CosmicRayLayer } from './types.ts';
 
 const parameterName = z.string().regex(/^[A-Za-z][A-Za-z0-9]{0,39}$/, {
@@ -41,7 +42,6 @@ export function inlineSchema(section: Section) {
       edges: keys({ z: edgeList('heights'), r: edgeList('radii') }).default({}),
       ...section.extra,
     },
-    laterKeys,
   );
 }
 
@@ -77,7 +77,7 @@ export function readInlineComponent(input: YamlInput, section: Section, path: Ya
     checks: [],
   };
   tryFormulas(input, model, path);
-  return { name: given.name, model, parameters: values, choices: {}, ...readHeightLaw(input, path, model, given), ...readFilling(given) };
+  return { name: given.name, model, parameters: values, choices: {}, ...readHeightLaw(input, path, model, given), ...readShape(input, path, model, given) };
 }
 
 function readParameters(

@@ -9,6 +9,7 @@ import type { PathEntry } from './fixed-paths.ts';
 import { sceneLimits } from './limits.ts';
 import { sections } from './section.ts';
 import type { Section } from './section.ts';
+import { shapeEntries } from './shape.ts';
 import type { Component, CosmicRayLayer, Scene } from './types.ts';
 
 /** One number of a scene, addressed by a path such as `field.halo.strength`. */
@@ -132,12 +133,13 @@ function entriesOfComponent({ section, read, write }: ComponentList, component: 
     read: (scene) => find(scene)?.parameters[parameter.name],
     write: (scene, value) => change(scene, (old) => withParameter(old, parameter.name, value)),
   }));
-  if (component.filling !== undefined) {
+  for (const { key, read: readShape, write: writeShape, ...limit } of shapeEntries) {
+    if (readShape(component) === undefined) continue;
     parameters.push({
-      path: path('filling'),
-      ...sceneLimits.filling,
-      read: (scene) => find(scene)?.filling,
-      write: (scene, filling) => change(scene, (old) => ({ ...old, filling })),
+      path: path(key),
+      ...limit,
+      read: (scene) => readShape(find(scene) ?? {}),
+      write: (scene, value) => change(scene, (old) => ({ ...old, ...writeShape(old, value) })),
     });
   }
   if (component.heightIndex === undefined) return parameters;

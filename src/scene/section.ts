@@ -4,6 +4,7 @@ import { InputError } from '../units/input-error.ts';
 import { placeAt } from '../units/yaml-input.ts';
 import type { YamlInput, YamlPath } from '../units/yaml-input.ts';
 import { limited, sceneLimits } from './limits.ts';
+import { fillingKey, shapeKeys } from './shape.ts';
 import type { CosmicRayLayer } from './types.ts';
 
 /** A list of components in a scene: where it is, the kind of its models, keys beside the models' own. */
@@ -23,25 +24,22 @@ const layerKeys = {
 
 /** The three lists of components of a scene. */
 export const sections = {
-  field: { title: 'field', path: ['field'], kind: 'field', rename: {}, extra: {} },
+  field: { title: 'field', path: ['field'], kind: 'field', rename: {}, extra: shapeKeys },
   thermalElectrons: {
     title: 'thermalElectrons',
     path: ['thermalElectrons'],
     kind: 'density',
     rename: {},
-    extra: { filling: limited(sceneLimits.filling).optional() },
+    extra: { ...shapeKeys, ...fillingKey },
   },
   cosmicRays: {
     title: 'cosmicRays',
     path: ['cosmicRays', 'layers'],
     kind: 'density',
     rename: { density: 'normalisation' },
-    extra: layerKeys,
+    extra: { ...shapeKeys, ...layerKeys },
   },
 } as const satisfies Readonly<Record<string, Section>>;
-
-/** Keys of components that this version cannot compute. */
-export const laterKeys: readonly string[] = ['arms', 'flare', 'hole'];
 
 /**
  * The frequency dependence of a layer's height: both keys or neither, and only where the model has
@@ -62,11 +60,6 @@ export function readHeightLaw(
     throw new InputError(`"${present}" needs a model with the parameter "height"; "${model.name}" has none`, placeAt(input, path, present));
   }
   return { heightIndex, heightAtHz: heightAt };
-}
-
-/** The filling factor of a component of thermal electrons. */
-export function readFilling({ filling }: Readonly<Record<string, unknown>>): Pick<CosmicRayLayer, 'filling'> {
-  return typeof filling === 'number' ? { filling } : {};
 }
 
 /** Runs `compute`; an InputError without a place gets that of the value at `path`. */

@@ -2,19 +2,44 @@ import type { TurbulenceGrids } from '../field/turbulence.ts';
 import type { SplineGrid } from '../math/spline-grid.ts';
 import type { Model } from '../model/types.ts';
 
+/** Spiral arms along log-spirals that multiply a density, or the potential of a field (`armExcess` of model/modulation.ts). */
+export interface SpiralArms {
+  readonly number: number;
+  /** atan(B_r/B_φ), rad; negative for trailing arms. */
+  readonly pitch: number;
+  /** Full width at half maximum in azimuth, rad. */
+  readonly width: number;
+  /** Azimuth of a ridge at the reference radius, rad. */
+  readonly phase: number;
+  /** Excess on the ridge over the space between the arms. */
+  readonly amplitude: number;
+  readonly referenceKpc: number;
+  /** Radius within which the arms fade. */
+  readonly innerRadiusKpc: number;
+}
+
+/** What modulates a component beside its model. */
+export interface ComponentShape {
+  readonly arms?: SpiralArms;
+  /** Height that grows with r: `height` is that at the reference radius. */
+  readonly flare?: { readonly law: 'exponential' | 'linear'; readonly radiusKpc: number; readonly referenceKpc: number };
+  /** Factor 1 - e^{-(r/radius)²}. */
+  readonly hole?: { readonly radiusKpc: number };
+  /** Filling factor f of clumps: ⟨n²⟩ = ⟨n⟩²/f. Thermal electrons only. */
+  readonly filling?: number;
+}
+
 /**
  * One field or density of a scene. Numbers are in the units that formulas see: the parameter's
  * declared unit, angles in radians; those of inline formulas in kpc, uG, cm^-3 and radians.
  */
-export interface Component {
+export interface Component extends ComponentShape {
   readonly name: string;
   readonly model: Model;
   readonly parameters: Readonly<Record<string, number>>;
   readonly choices: Readonly<Record<string, string>>;
   /** What the model reads on grids, by the names that its `grids` have. */
   readonly grids?: Readonly<Record<string, GriddedFunction>>;
-  /** Filling factor f of clumps: ⟨n²⟩ = ⟨n⟩²/f. Thermal electrons only. */
-  readonly filling?: number;
 }
 
 /** Numbers on a grid, and how fine rays must sample it. */

@@ -69,7 +69,7 @@ describe('what does not load, and the words', () => {
     [1, 'name: Disc', '1:7: name: "Disc" is no model name: small letters, digits and - are wanted, as in the file\'s name'],
     [2, 'kind: potential', '2:7: kind: "potential" is not allowed: kind is one of field, density'],
     [5, '', '1:1: source is missing: the published source, or that it is an own definition, is wanted'],
-    [5, 'sauce: x', '5:1: unknown key "sauce" (did you mean "source"?); allowed are name, kind, title, meaning, source, parameters, choices, define, potential, euler, field, density, edges, checks'],
+    [5, 'sauce: x', '5:1: unknown key "sauce" (did you mean "source"?); allowed are name, kind, title, meaning, source, parameters, choices, define, potential, armPotential, euler, field, density, edges, checks'],
     [8, '  core: {unit: kpc, range: [0, 50], default: 60, meaning: core radius}', '8:46: parameter "core" has default 60 kpc, outside its range 0 to 50 kpc'],
     [8, '  core: {unit: kps, range: [0, 50], meaning: core radius}', '8:16: unknown unit "kps" (did you mean "kpc"?); units are kpc, pc, Mpc, m, cm, km, arcsec, arcmin, deg, rad, sr, s, Myr, Gyr, Hz, kHz, MHz, GHz, uG, nG, mG, Jy, mJy, uJy, MJy, beam, K'],
     [8, '  core: {unit: kpc, range: [50, 0], meaning: core radius}', '8:28: parameter "core" has the range 50 to 0, which is empty'],

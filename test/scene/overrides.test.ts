@@ -59,7 +59,7 @@ describe('values are set', () => {
 describe('errors are placed at the flag', () => {
   test.each([
     ['field.halo.strength=3 kpc', 'field.halo.strength: "3 kpc" is a length: a magnetic field is wanted, such as "2 uG"'],
-    ['field.halo.stength=3 uG', 'field.halo: unknown key "stength" (did you mean "strength"?); allowed are model, name, strength, core, reference'],
+    ['field.halo.stength=3 uG', 'field.halo: unknown key "stength" (did you mean "strength"?); allowed are model, name, strength, core, reference, arms, flare, hole'],
     ['field.hallo.strength=3 uG', 'field has nothing named "hallo" (did you mean "halo"?); it has uniform, halo, toroidal-halo, mine'],
     ['cosmicRays.thin.height=3 kpc', 'cosmicRays has nothing named "thin"; it has thick'.replace('"thin";', '"thin" (did you mean "thick"?);')],
     ['galaxy.inclination.x=3', 'galaxy.inclination is a single value and has no "x"'],
