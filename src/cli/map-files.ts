@@ -111,6 +111,7 @@ export function mapSummary(scene: Scene, sky: ObservedSky, provenance: Provenanc
     beam: beam ? { majorArcsec: beam.majorArcsec, minorArcsec: beam.minorArcsec, angleDeg: (beam.angle * 180) / Math.PI } : null,
     tolerance: { asked: scene.numerics.tolerance, reached: sky.errorReached },
     rays: sky.rays,
+    raysFollowed: sky.raysFollowed,
     samplesPerRay: sky.samplesPerRay,
     seconds,
     files,

@@ -1,10 +1,7 @@
 import type { RayBackend, RayJob, Watch } from '../ray/job.ts';
 import type { RayBundle, RayResult } from '../ray/types.ts';
+import { faintShare, mostRounds } from './brightness-levels.ts';
 
-/** Rays fainter than this share of the brightest are followed again on a scale of their own. */
-const faintShare = 1e-2;
-/** Rounds of that: down to 1e-6 of the brightest. */
-const mostRounds = 3;
 const arrays = ['I', 'Q', 'U', 'heightQ', 'heightU', 'emittedP'] as const;
 
 /**

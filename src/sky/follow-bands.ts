@@ -8,8 +8,8 @@ import { leastDegrees } from './band-tails.ts';
 import { pickPilot, pilotBand, type Interpolation, type Pilot } from './band-pilot.ts';
 import { bandCube } from './channel-means.ts';
 import type { ChannelBasis } from './channel-basis.ts';
-import { traceFaintToo } from './faint-rays.ts';
 import { largestForeground, turnByForeground } from './foreground.ts';
+import { traceImage, type ImageLattice } from './image-rays.ts';
 import { originHeights, type OriginHeights } from './origin-heights.ts';
 import { originFrequencies, plannedDepth, planBands, type BandPlan, type SpectralPlan } from './spectral-plan.ts';
 
@@ -30,6 +30,8 @@ export interface FollowedBands {
   /** Largest estimated error on the scale that `tolerance` bounds, of rays and interpolation. */
   readonly error: number;
   readonly samples: number;
+  /** Rays that were followed; the others lie between them. */
+  readonly followed: number;
 }
 
 /** Cost of one term of one channel's sums (Q and U of a pixel) over that of following a ray at one more frequency; measured. */
@@ -81,11 +83,20 @@ interface BandPlace {
   readonly interpolatesOrigins: boolean;
 }
 
-/** Follows all rays of an image for all its bands in one pass, and makes each band's basis of it. */
-export async function followBands(scene: Scene, bundle: RayBundle, bands: readonly Band[], foreground: number | Float64Array, ways: readonly BandWay[], backend: RayBackend, watch: Watch = {}): Promise<FollowedBands> {
+/** Follows the rays of an image for all its bands in one pass, on a lattice where one is given, and makes each band's basis of it. */
+export async function followBands(
+  scene: Scene,
+  bundle: RayBundle,
+  bands: readonly Band[],
+  foreground: number | Float64Array,
+  ways: readonly BandWay[],
+  backend: RayBackend,
+  watch: Watch = {},
+  lattice: ImageLattice = { nx: bundle.northKpc.length, ny: 1, stride: 1 },
+): Promise<FollowedBands> {
   const { spectrum, places, origins } = placeBands(bands, ways);
   const pixels = bundle.northKpc.length;
-  const rays = await traceFaintToo(backend, { scene, spectrum, bundle, origins }, watch);
+  const { result: rays, followed } = await traceImage(backend, { scene, spectrum, bundle, origins }, lattice, watch);
   const frequenciesHz = spectrum.map((point) => point.frequencyHz);
   turnByForeground(rays.Q, rays.U, frequenciesHz, foreground);
   const originsHz = origins.map((point) => frequenciesHz[point]);
@@ -110,13 +121,13 @@ export async function followBands(scene: Scene, bundle: RayBundle, bands: readon
     }
     // A ray that the pilot could not foresee: the band is followed directly after all.
     const depth = plannedDepth(scene, bundle, [band], { foreground: largestForeground(foreground) });
-    const again = await followBands(scene, bundle, [band], foreground, [{ kind: 'direct', plan: planBands(scene, [band], depth) }], backend, watch);
+    const again = await followBands(scene, bundle, [band], foreground, [{ kind: 'direct', plan: planBands(scene, [band], depth) }], backend, watch, lattice);
     done.bases.push(again.bases[0]);
     if (place.interpolatesOrigins) done.origins.push(again.origins[0]);
     done.error = Math.max(done.error, again.error);
     done.samples += again.samples;
   }
-  return { ...done, faradayDepth: rays.faradayDepth };
+  return { ...done, faradayDepth: rays.faradayDepth, followed };
 }
 
 function placeBands(bands: readonly Band[], ways: readonly BandWay[]): { spectrum: readonly SpectralPoint[]; places: readonly BandPlace[]; origins: readonly number[] } {

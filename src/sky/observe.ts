@@ -5,6 +5,7 @@ import { channelMaker, type BasisPlanes, type ChannelBasis } from './channel-bas
 import { foregroundDepths } from './foreground.ts';
 import { chooseWays, followBands, type BandWay } from './follow-bands.ts';
 import { cropPlanes, gridFromScene, gridOffsetsKpc, growGrid, wcsFromGrid } from './grid.ts';
+import { imageStride } from './image-stride.ts';
 import { refuseTooLarge } from './memory.ts';
 import { noiseAdder } from './noise.ts';
 import type { OriginHeights } from './origin-heights.ts';
@@ -20,7 +21,11 @@ export interface SeenSky {
   readonly origins: readonly OriginHeights[];
   /** Largest estimated error on the scale that `tolerance` bounds. */
   readonly errorReached: number;
+  /** Pixels looked at, those of the beam's margin included. */
   readonly rays: number;
+  /** Of those, rays that were followed; the others are interpolated to the tolerance. */
+  readonly raysFollowed: number;
+  /** Samples over rays followed; rays that were followed again on a finer scale have both. */
   readonly samplesPerRay: number;
 }
 
@@ -65,7 +70,8 @@ export async function lookAt(scene: Scene, backend: RayBackend, watch: Watch = {
   const foreground = foregroundDepths(scene, wcsFromGrid(wide), wide.nx, wide.ny);
   const ways = await chooseWays(scene, bundle, bands, foreground, backend, watch);
   refuseTooLarge({ ...size, ...planesOf(ways) });
-  const followed = await followBands(scene, bundle, bands, foreground, ways, backend, watch);
+  const lattice = { nx: wide.nx, ny: wide.ny, stride: imageStride(scene, wide) };
+  const followed = await followBands(scene, bundle, bands, foreground, ways, backend, watch, lattice);
   const cropped = (planes: Float64Array): Float64Array => cropPlanes(planes, wide.nx, wide.ny, margin);
   const depth = followed.faradayDepth.map((value, k) => value + (typeof foreground === 'number' ? foreground : foreground[k]));
   return {
@@ -83,7 +89,8 @@ export async function lookAt(scene: Scene, backend: RayBackend, watch: Watch = {
     origins: followed.origins.map((origin) => ({ ...origin, heightKpc: cropped(origin.heightKpc) })),
     errorReached: followed.error,
     rays: bundle.northKpc.length,
-    samplesPerRay: followed.samples / bundle.northKpc.length,
+    raysFollowed: followed.followed,
+    samplesPerRay: followed.samples / followed.followed,
   };
 }
 
