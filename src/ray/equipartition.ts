@@ -1,3 +1,4 @@
+import { steadyPower } from '../math/steady.ts';
 import { electronMass, protonMass, speedOfLight } from '../units/constants.ts';
 
 /** Rest energy of the proton, below which its spectrum is flat in the estimate (Beck & Krause 2005), erg. */
@@ -14,6 +15,6 @@ const gaussPerMicroGauss = 1e-6;
  */
 export function equipartitionElectrons(index: number, protonRatio: number): number {
   const energy = gaussPerMicroGauss ** 2 / (8 * Math.PI);
-  const perEnergy = (energy * 2 * (index - 2) * Math.pow(protonEnergyErg, index - 2)) / ((protonRatio + 1) * index);
-  return perEnergy * Math.pow(electronEnergyErg, 1 - index);
+  const perEnergy = (energy * 2 * (index - 2) * steadyPower(protonEnergyErg, index - 2)) / ((protonRatio + 1) * index);
+  return perEnergy * steadyPower(electronEnergyErg, 1 - index);
 }

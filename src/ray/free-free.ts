@@ -1,3 +1,4 @@
+import { steadyPower } from '../math/steady.ts';
 import { boltzmannConstant, jansky, speedOfLight } from '../units/constants.ts';
 
 /** Optical depth of free-free absorption per emission measure, exponents of temperature and frequency (Mezger & Henderson 1967). */
@@ -10,7 +11,7 @@ export const emissionMeasurePerKpc = 1e3;
 
 /** Free-free optical depth of an emission measure of 1 pc cm^-6 (Mezger & Henderson 1967). */
 export function freeFreeOpacity(temperatureK: number, frequencyHz: number): number {
-  return opacityAtOne * Math.pow(temperatureK, temperatureExponent) * Math.pow(frequencyHz / 1e9, frequencyExponent);
+  return opacityAtOne * steadyPower(temperatureK, temperatureExponent) * steadyPower(frequencyHz / 1e9, frequencyExponent);
 }
 
 /** Brightness of an opaque gas, 2kTν²/c² (Rayleigh–Jeans), Jy/sr. */

@@ -1,3 +1,4 @@
+import { steadySineCosine } from '../math/steady.ts';
 import type { Graph, NodeId } from '../formula/graph.ts';
 import { cartesianFromCylindrical, coordinatesOf, type Vector } from '../formula/vector-calculus.ts';
 import { buildDensity, buildEdges, buildField, type ModelUse } from '../model/build-model.ts';
@@ -298,5 +299,5 @@ export function exactSineCosine(angle: number): readonly [number, number] {
     const [sine, cosine] = [[0, 1], [1, 0], [0, -1], [-1, 0]][((nearest % 4) + 4) % 4];
     return [sine, cosine];
   }
-  return [Math.sin(angle), Math.cos(angle)];
+  return steadySineCosine(angle);
 }

@@ -1,3 +1,4 @@
+import { steadyPower } from '../math/steady.ts';
 import { gamma } from '../math/special.ts';
 import { electronMass, elementaryChargeGaussian, faradayConstant, jansky, parsec, speedOfLight } from '../units/constants.ts';
 
@@ -15,9 +16,9 @@ const gaussPerMicroGauss = 1e-6;
  */
 export function synchrotronEmissivity(index: number, frequencyHz: number): number {
   const p = index;
-  const size = (Math.sqrt(3) * chargeCgs ** 3) / (4 * Math.PI * massCgs * lightCgs ** 2 * (p + 1));
+  const size = (Math.sqrt(3) * chargeCgs * chargeCgs * chargeCgs) / (4 * Math.PI * massCgs * lightCgs * lightCgs * (p + 1));
   const gammas = gamma(p / 4 + 19 / 12) * gamma(p / 4 - 1 / 12);
-  const spectrum = Math.pow((2 * Math.PI * massCgs * lightCgs * frequencyHz) / (3 * chargeCgs * gaussPerMicroGauss), -(p - 1) / 2);
+  const spectrum = steadyPower((2 * Math.PI * massCgs * lightCgs * frequencyHz) / (3 * chargeCgs * gaussPerMicroGauss), -(p - 1) / 2);
   return size * gammas * spectrum * gaussPerMicroGauss;
 }
 
@@ -36,5 +37,6 @@ export const faradayDepthPerKpc = faradayConstant.value * 1e3;
 
 /** λ², m². */
 export function wavelengthSquared(frequencyHz: number): number {
-  return (speedOfLight.value / frequencyHz) ** 2;
+  const wavelength = speedOfLight.value / frequencyHz;
+  return wavelength * wavelength;
 }

@@ -1,4 +1,5 @@
 import { compileJavaScript, type Kernel } from '../formula/javascript.ts';
+import { steadySineCosine } from '../math/steady.ts';
 import { hasWasmSimd } from '../formula/wasm/available.ts';
 import { compileWasm } from '../formula/wasm/kernel.ts';
 import type { Scene } from '../scene/types.ts';
@@ -144,7 +145,7 @@ export function traceRays(engine: RayEngine, scene: Scene, bundle: RayBundle, sc
   const toJansky = spectralFactors(engine, scene);
   const intrinsic = intrinsicPolarization(scene.cosmicRays.index);
   const turn = 2 * scene.galaxy.positionAngle;
-  const [sine, cosine] = [Math.sin(turn), Math.cos(turn)];
+  const [sine, cosine] = steadySineCosine(turn);
   const accuracy = { tolerance: scene.numerics.tolerance, ...scale };
   const indices = Array.from({ length: rays }, (_, k) => from + k);
   const { tangents } = engine;

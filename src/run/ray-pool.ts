@@ -7,6 +7,7 @@ import { rayArrays, writeTile, type RayArray, type ServiceJob, type SharedRays, 
 
 /** One worker as the pool sees it; every call is answered or rejected, also when the worker dies. */
 export interface PooledWorker {
+  isDead(): boolean;
   begin(job: ServiceJob): Promise<void>;
   scale(): Promise<MapScale>;
   tile(scale: MapScale, from: number, to: number): Promise<RayResult | TileNote>;
@@ -17,20 +18,28 @@ export interface PooledWorker {
 export interface RayPool {
   readonly backend: RayBackend;
   readonly workers: number;
-  /** Ends every worker; running jobs are rejected. */
+  /** Ends every worker; running jobs are rejected, and so are later ones. */
   close(): Promise<void>;
 }
 
 /**
- * A pool over workers. Jobs queue; tiles of a job go to whoever is free, and every tile has its
- * place in the result, so it is the same for any number of workers. The error of one worker ends
- * the job with that error. `canShare`: whether memory may be shared with the workers.
+ * A pool of `count` workers. Jobs queue; tiles of a job go to whoever is free, and every tile has its
+ * place in the result, so it is the same for any number of workers. The error of one worker ends the
+ * job with that error; a worker that has died is replaced before the next job. `canShare`: whether
+ * memory may be shared with the workers.
  */
-export function makeRayPool(workers: readonly PooledWorker[], canShare: boolean): RayPool {
+export function makeRayPool(count: number, startWorker: () => PooledWorker, canShare: boolean): RayPool {
+  const workers = Array.from({ length: count }, startWorker);
   let queue: Promise<unknown> = Promise.resolve();
   let sent: RayBundle | undefined;
+  let stop: (reason: Error) => void = () => undefined;
+  const closed = new Promise<never>((_, reject) => (stop = reject));
+  closed.catch(() => undefined);
   const backend: RayBackend = (job, watch) => {
     const result = queue.then(async () => {
+      workers.forEach((worker, k) => {
+        if (worker.isDead()) workers[k] = startWorker();
+      });
       const bundle = job.bundle === sent ? undefined : job.bundle;
       sent = undefined;
       const done = await runJob(workers, job, bundle, canShare, watch ?? {});
@@ -38,12 +47,13 @@ export function makeRayPool(workers: readonly PooledWorker[], canShare: boolean)
       return done;
     });
     queue = result.catch(() => undefined);
-    return result;
+    return Promise.race([result, closed]);
   };
   return {
     backend,
-    workers: workers.length,
+    workers: count,
     close: async () => {
+      stop(new Error('the workers were ended while a job ran, or before it began'));
       await Promise.all(workers.map((worker) => worker.close()));
     },
   };

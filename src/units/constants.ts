@@ -38,10 +38,12 @@ export const elementaryChargeGaussian = constant(
   'elementaryCharge in Gaussian units: 10 c e',
 );
 
+// Products, not powers: the last bits of those depend on the engine.
+const chargeOverMomentum = elementaryCharge.value / electronMass.value / speedOfLight.value;
+
 /** K in SI: depth in rad = K * integral of n_e B_parallel ds, with m^-3, T and m. */
 export const faradayConstantSI = constant(
-  elementaryCharge.value ** 3 /
-    (8 * Math.PI ** 2 * vacuumPermittivity.value * electronMass.value ** 2 * speedOfLight.value ** 3),
+  (chargeOverMomentum * chargeOverMomentum * (elementaryCharge.value / speedOfLight.value)) / (8 * Math.PI * Math.PI * vacuumPermittivity.value),
   'T^-1',
   'e^3/(8 pi^2 eps0 m_e^2 c^3) (Burn 1966; Rybicki & Lightman 1979, section 8.2)',
 );
