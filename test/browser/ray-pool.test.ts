@@ -22,7 +22,7 @@ function jobOf(side: number, stepKpc: number) {
 }
 
 const short = jobOf(25, 1.1);
-const long = jobOf(500, 0.05);
+const long = jobOf(260, 0.1);
 
 declare const pools: Pools;
 
