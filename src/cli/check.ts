@@ -15,6 +15,7 @@ import { convertQuantity, formatQuantity } from '../units/quantity.ts';
 import { readYaml } from '../units/yaml-input.ts';
 import { internalUnit } from '../model/parameters.ts';
 import { gatherAssumptions } from './assumptions.ts';
+import { physicsLines, shapeLines } from './check-physics.ts';
 import { prepareHypothesis } from './hypothesis-run.ts';
 import { loadScene } from './load-scene.ts';
 import { addSceneFlags, overridesOf, type CommonFlags } from './run-context.ts';
@@ -59,7 +60,7 @@ function checkScene(file: string, flags: CommonFlags): CheckReport {
   for (const { name, largestUG, radiusKpc } of largestReturnField(scene)) {
     lines.push(`  plane    ${name}: its flux returns in the plane with |B_r| up to ${largestUG.toPrecision(3)} uG, at r = ${radiusKpc.toPrecision(3)} kpc`);
   }
-  lines.push(...turbulenceLines(scene));
+  lines.push(...turbulenceLines(scene), ...physicsLines(scene));
   for (const { file: input, sha256 } of scene.inputs ?? []) lines.push(`  file     ${input}: SHA-256 ${sha256}`);
   for (const sentence of symmetrySentences(scene)) lines.push(`  symmetry ${sentence}`);
   lines.push(...componentLines('field', scene.field), ...componentLines('thermal electrons', scene.thermalElectrons), ...componentLines('cosmic rays', scene.cosmicRays.layers));
@@ -85,14 +86,15 @@ function gridBytes(cells: number, grids: number): number {
 }
 
 function componentLines(section: string, components: readonly Component[]): string[] {
-  return components.flatMap(({ name, model, parameters, choices }) => {
+  return components.flatMap((component) => {
+    const { name, model, parameters, choices } = component;
     const head = `  ${section}: ${name} (${model.name}); source: ${model.source}`;
     const values = model.parameters.map((parameter) => {
       const shown = convertQuantity(parameters[parameter.name], internalUnit(parameter), parameter.unit);
       const range = `${parameter.range[0]} to ${parameter.range[1]}`;
       return `    ${parameter.name} = ${formatQuantity(shown, parameter.unit)} (allowed ${range}): ${parameter.meaning}`;
     });
-    return [head, ...values, ...Object.entries(choices).map(([choice, option]) => `    ${choice} = ${option}`)];
+    return [head, ...values, ...Object.entries(choices).map(([choice, option]) => `    ${choice} = ${option}`), ...shapeLines(component)];
   });
 }
 
