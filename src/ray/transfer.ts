@@ -53,15 +53,15 @@ export interface PanelWatcher {
 const n = panelNodes;
 /** Bisections of one interval. */
 export const deepestSplit = 48;
-/** Samples that one ray may take, thousands of times what galaxies need: what wants more has no end worth waiting for. */
-export const mostSamples = 160_000;
+/** Samples that one ray may take, ten thousand times what galaxies need: what wants more has no end worth waiting for. */
+export const mostSamples = 1_000_000;
 /**
  * Largest error that one panel may be estimated to have, over the tolerance. Panels' errors rarely
  * add up and the estimates are far too large where coefficients fall ever faster, as they do in
  * wide panels; at small tolerances, where they fall evenly, less of that is left.
  */
 function looseness(tolerance: number): number {
-  return Math.max(0.013, 3 * Math.min(1, tolerance / 1e-4));
+  return Math.max(0.013, Math.min(1, tolerance / 1e-4));
 }
 
 /** Largest error that one panel may be estimated to have. */
