@@ -82,13 +82,13 @@ export function valleyShare(tolerance: number): number {
 export const valleyDepth = 0.8;
 
 /**
- * The error to be stated for a ray whose panels' estimates add up to `estimate`. Estimates lie above
- * true errors in the proportion of `panelLimit` to the tolerance and more: rays of dozens of panels,
- * each at its limit, were found within a third of the tolerance of dense quadrature
- * (test/ray/promise.test.ts), so that one such panel counts for an eighth.
+ * The error to be stated for a ray whose panels' estimates add up to `estimate`: a bound, not a
+ * guess. Over 250 random scenes of 24 rays each, errors beside runs at 1e-8 were at most 0.85 of
+ * what this states, 0.1 in one scene of ten, and a hundredth and less in most: estimates by the
+ * tail of the coefficients must hold for valleys too, which few panels have.
  */
 export function statedError(tolerance: number, estimate: number): number {
-  return (estimate * tolerance) / panelLimit(tolerance) / 8;
+  return (estimate * tolerance) / panelLimit(tolerance) / 6;
 }
 
 /** Polarization from behind a panel, net of its own rotation, over the scale of P: a bound. */
