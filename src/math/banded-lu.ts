@@ -1,7 +1,7 @@
 import { bandOf, type SparseMatrix } from './sparse.ts';
 
 /**
- * LU factors of a banded matrix with row interchanges (partial pivoting). `lower[j]` holds the
+ * LU factors of a banded matrix with row interchanges where the diagonal is too small to divide by. `lower[j]` holds the
  * multipliers of the rows below row j, `upper[j]` row j from its diagonal on, `pivots[j]` the row that
  * changed places with row j.
  */
@@ -11,6 +11,9 @@ export interface BandedLu {
   readonly upper: readonly Float64Array[];
   readonly pivots: Int32Array;
 }
+
+/** The diagonal stays pivot down to this share of the largest entry below it: interchanges double the band. */
+const pivotShare = 1e-3;
 
 /** Bytes that the factors of a matrix of this size and band need where rows are interchanged at worst. */
 export function factorBytes(size: number, below: number, above: number): number {
@@ -45,7 +48,7 @@ export function factorShifted(matrix: SparseMatrix, diagonal: number, scale: num
   for (let j = 0; j < size; j++) {
     if (j + below < size) enter(j + below);
     const last = Math.min(j + below, size - 1);
-    const pivot = largestInColumn(window, base, j, last);
+    const pivot = pivotOfColumn(window, base, j, last);
     pivots[j] = pivot;
     const [slot, other] = [j % slots, pivot % slots];
     [window[slot], window[other]] = [window[other], window[slot]];
@@ -75,7 +78,7 @@ export function factorShifted(matrix: SparseMatrix, diagonal: number, scale: num
   return { size, lower, upper, pivots };
 }
 
-function largestInColumn(window: readonly Float64Array[], base: Int32Array, column: number, last: number): number {
+function pivotOfColumn(window: readonly Float64Array[], base: Int32Array, column: number, last: number): number {
   let best = column;
   let largest = -1;
   for (let i = column; i <= last; i++) {
@@ -83,7 +86,8 @@ function largestInColumn(window: readonly Float64Array[], base: Int32Array, colu
     const value = Math.abs(window[slot][column - base[slot]]);
     if (value > largest) [best, largest] = [i, value];
   }
-  return best;
+  const diagonal = Math.abs(window[column % window.length][column - base[column % window.length]]);
+  return diagonal >= pivotShare * largest ? column : best;
 }
 
 /** x of matrix·x = y. */

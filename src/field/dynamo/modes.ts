@@ -19,8 +19,10 @@ export class ModesNotFound extends Error {}
 const residualWanted = 1e-8;
 const mostRestarts = 8;
 /** Vectors of a Krylov space, in the search and in the refinement. */
-const searchVectors = 48;
-const refineVectors = 30;
+const searchVectors = 32;
+const refineVectors = 24;
+/** Time steps of one application of the evolution. */
+const searchSteps = 4;
 
 /**
  * The `count` modes of largest growth rate, whatever their frequency. They are searched with the
@@ -67,7 +69,7 @@ function searchShapes(matrix: SparseMatrix, start: Float64Array, count: number, 
   const factors = factorShifted(matrix, 1, -gamma * step);
   const evolve = (x: Float64Array): Float64Array => {
     let state = x;
-    for (let k = 0; k < 6; k++) {
+    for (let k = 0; k < searchSteps; k++) {
       const once = solveBandedLu(factors, state);
       const twice = solveBandedLu(factors, once);
       state = twice.map((value, i) => (1 + Math.SQRT2) * value - Math.SQRT2 * once[i]);
@@ -77,8 +79,8 @@ function searchShapes(matrix: SparseMatrix, start: Float64Array, count: number, 
   let from = start;
   for (let restart = 0; ; restart++) {
     const pairs = arnoldi(evolve, from, Math.min(searchVectors, matrix.size)).slice(0, count + 2);
-    const modes = pairs.map((pair): Mode => ({ ...rateOfGrowth(pair, 6 * step), shape: pair.vector }));
-    const isRough = pairs.slice(0, count).every(({ residual, real, imaginary }) => residual < 1e-3 * Math.hypot(real, imaginary));
+    const modes = pairs.map((pair): Mode => ({ ...rateOfGrowth(pair, searchSteps * step), shape: pair.vector }));
+    const isRough = pairs.slice(0, count).every(({ residual, real, imaginary }) => residual < 0.03 * Math.hypot(real, imaginary));
     if (isRough || restart === 3) return modes;
     from = sumOfShapes(modes);
   }
