@@ -3,6 +3,7 @@ import { InputError } from '../units/input-error.ts';
 import { addApp } from './app.ts';
 import { addCheck } from './check.ts';
 import { addCompare } from './compare.ts';
+import { addDynamo } from './dynamo.ts';
 import { addFit } from './fit.ts';
 import { addForecast } from './forecast.ts';
 import { addMap } from './map.ts';
@@ -25,7 +26,7 @@ function makeProgram(): Command {
     .version(version)
     .exitOverride()
     .configureOutput({ writeErr: () => undefined });
-  for (const add of [addMap, addCompare, addRank, addFit, addSweep, addTasks, addTask, addForecast, addMeasure, addCheck, addProbe, addOrient, addApp]) add(program);
+  for (const add of [addMap, addCompare, addRank, addFit, addSweep, addTasks, addTask, addForecast, addMeasure, addCheck, addProbe, addDynamo, addOrient, addApp]) add(program);
   for (const command of program.commands) command.exitOverride().configureOutput({ writeErr: () => undefined });
   return program;
 }

@@ -28,18 +28,27 @@ const mostWorkers = 256;
 
 /** Adds the common flags to a command that computes and writes files. */
 export function addCommonFlags(command: Command): Command {
-  return addSceneFlags(command)
-    .option('--out <dir>', 'folder for the results, made where missing', 'out')
+  return addOutputFlags(addSceneFlags(command))
     .option('--workers <n>', 'threads (default: one per core)', wholeNumber('--workers', 1, mostWorkers))
-    .addOption(new Option('--engine <engine>', 'where to compute').choices(['local', 'slurm']).default('local'))
+    .addOption(new Option('--engine <engine>', 'where to compute').choices(['local', 'slurm']).default('local'));
+}
+
+/** Adds the flags about where results go and what is said. */
+export function addOutputFlags(command: Command): Command {
+  return command
+    .option('--out <dir>', 'folder for the results, made where missing', 'out')
     .option('--json', 'a machine-readable summary on stdout')
     .option('--quiet', 'no progress and no words, errors only');
 }
 
+/** Adds the flag that changes values of a file before it is checked. */
+export function addSetFlag(command: Command, file: string, example: string): Command {
+  return command.option('--set <path=value>', `change a value of the ${file}, such as ${example} (repeatable)`, collect);
+}
+
 /** Adds the flags that change a scene before it is checked. */
 export function addSceneFlags(command: Command): Command {
-  return command
-    .option('--set <path=value>', 'change a value of the scene, such as field.halo.strength="3 uG" (repeatable)', collect)
+  return addSetFlag(command, 'scene', 'field.halo.strength="3 uG"')
     .option('--seed <n>', 'seed of all random streams, in place of the scene’s', wholeNumber('--seed', 0, Number.MAX_SAFE_INTEGER));
 }
 

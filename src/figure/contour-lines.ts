@@ -21,7 +21,7 @@ export function doublingLevels(first: number, largest: number): readonly number[
  * Contours between pixel centres by linear interpolation (marching squares). Edges of the map and of
  * blank pixels are not contours: the lines stop there.
  */
-export function drawContours(map: PanelMap, layer: ContourLayer, place: MapPlace, ink: OverlayInk): string {
+export function drawContours(map: PanelMap, layer: ContourLayer, place: Pick<MapPlace, 'pixel'>, ink: OverlayInk): string {
   const { nx, ny } = map;
   const shapes = contours().size([nx, ny]).thresholds([...layer.levels])(Array.from(layer.values));
   let path = '';

@@ -86,7 +86,7 @@ export function isSolenoidalByConstruction(model: Model): boolean {
   const constant = Object.values(field).every((text) => scope.has(text.trim()) || Number.isFinite(Number(text)));
   if (isCartesian(field)) return constant;
   const mentionsAzimuth = /\b(phi|x|y)\b/;
-  const texts = [field.phi ?? '', ...Object.values(model.define)];
+  const texts = [field.phi ?? '', ...Object.values(model.define), ...Object.values(model.grids ?? {}).flat()];
   return Object.keys(field).every((key) => key === 'phi') && !texts.some((text) => mentionsAzimuth.test(text));
 }
 

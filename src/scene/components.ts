@@ -9,17 +9,16 @@ import type { YamlInput, YamlPath } from '../units/yaml-input.ts';
 import type { ComponentSources } from './component-sources.ts';
 import { readCubeComponent } from './cube-model.ts';
 import { readInlineComponent } from './inline-model.ts';
+import { readMeanFieldComponent } from './mean-field-model.ts';
 import { placed, readHeightLaw } from './section.ts';
 import type { Section } from './section.ts';
 import { readShape } from './shape.ts';
 import type { CosmicRayLayer } from './types.ts';
 
-/** Models of the format that this version cannot compute. */
-const laterModels = ['mean-field'];
-
 /** Models that are no file of the library: what reads each. */
 const specialModels: Readonly<Record<string, (input: YamlInput, section: Section, path: YamlPath, sources: ComponentSources) => CosmicRayLayer>> = {
   formula: readInlineComponent,
+  'mean-field': readMeanFieldComponent,
   'simulation-cube': readCubeComponent,
 };
 
@@ -52,7 +51,6 @@ export function readComponents(input: YamlInput, section: Section, models: reado
 
 function readLibraryComponent(input: YamlInput, section: Section, path: YamlPath, modelName: string): CosmicRayLayer {
   const model = placed(input, [...path, 'model'], () => {
-    if (laterModels.includes(modelName)) throw new InputError(`the model "${modelName}" is not available in this version`);
     if (modelName === 'turbulence') throw new InputError('turbulence is no component: it is given as turbulence.resolved');
     return getModel(modelName, section.kind);
   });

@@ -3,6 +3,7 @@ import { modelLibrary } from '../model/library.ts';
 import { componentSchema } from './components.ts';
 import { cubeSchema } from './cube-model.ts';
 import { inlineSchema } from './inline-model.ts';
+import { meanFieldSchema } from './mean-field-model.ts';
 import { sceneSchema } from './scene-schema.ts';
 import { sections } from './section.ts';
 import type { Section } from './section.ts';
@@ -20,5 +21,6 @@ export function sceneJsonSchema(): Record<string, unknown> {
 function anyComponent(section: Section): z.ZodType {
   const models = [...modelLibrary().values()].filter((model) => model.kind === section.kind);
   const ofLibrary = models.map((model) => componentSchema(model, section).meta({ title: model.title, description: model.meaning }));
-  return z.union([...ofLibrary, cubeSchema(section), inlineSchema(section)]);
+  const solved = section.kind === 'field' ? [meanFieldSchema(section)] : [];
+  return z.union([...ofLibrary, cubeSchema(section), ...solved, inlineSchema(section)]);
 }

@@ -38,8 +38,14 @@ export function volumeField({ grid, unknowns }: Pick<DynamoOperator, 'grid' | 'u
   };
 }
 
+/** The field so scaled that its largest |B_phi| is as wanted, uG. */
+export function scaleField(field: MeridionalField, strengthUG: number): MeridionalField {
+  const factor = strengthUG / field.azimuthal.reduce((most, value) => Math.max(most, Math.abs(value)), 0);
+  return { ...field, potential: field.potential.map((value) => value * factor), azimuthal: field.azimuthal.map((value) => value * factor) };
+}
+
 /** The poloidal field of a volume at its nodes, uG, by central differences: for figures and figures of merit. */
-export function poloidalOf({ radialStepKpc: dr, verticalStepKpc: dz, radialPoints: nr, verticalPoints: nz, potential: a }: MeridionalField): { readonly radial: Float64Array; readonly vertical: Float64Array } {
+export function poloidalField({ radialStepKpc: dr, verticalStepKpc: dz, radialPoints: nr, verticalPoints: nz, potential: a }: MeridionalField): { readonly radial: Float64Array; readonly vertical: Float64Array } {
   const radial = new Float64Array(nr * nz);
   const vertical = new Float64Array(nr * nz);
   for (let j = 0; j < nz; j++) {

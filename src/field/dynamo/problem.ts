@@ -1,4 +1,5 @@
-import type { DiscGridOptions, Parity } from './grid.ts';
+import { factorBytes } from '../../math/banded-lu.ts';
+import { discGrid, type DiscGridOptions, type Parity } from './grid.ts';
 import type { DynamoProfiles, Surroundings } from './profiles.ts';
 
 /** Everything the solver needs. */
@@ -38,4 +39,11 @@ export function isSymmetric({ angularSpeed, alpha, diffusivity, windRadial, wind
     }
     return difference <= 1e-9 * size;
   });
+}
+
+/** Bytes that the factors of a problem's largest matrix may need. */
+export function factorisationBytes({ grid, parities }: DynamoProblem): number {
+  const { radiiKpc, heightsKpc } = discGrid(finerCells(grid), parities[0]);
+  const band = 2 * Math.min(radiiKpc.length, heightsKpc.length);
+  return factorBytes(2 * radiiKpc.length * heightsKpc.length, band, band);
 }

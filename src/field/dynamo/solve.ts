@@ -44,7 +44,15 @@ export interface DynamoSolution {
 }
 
 /** The field does not grow: there is nothing to saturate. */
-export class DynamoDecays extends Error {}
+export class DynamoDecays extends Error {
+  constructor(
+    readonly parity: Parity,
+    /** Of the mode that decays slowest, per kpc s/km. */
+    readonly growthRate: number,
+  ) {
+    super('every field decays');
+  }
+}
 
 interface ParityRun {
   readonly parity: Parity;
@@ -121,7 +129,7 @@ function modeFields({ fine, coarse, fineModes, coarseModes }: ParityRun): StateF
 async function saturatedFields({ fine, coarse, fineModes, coarseModes, parity }: ParityRun, problem: DynamoProblem, pause: Pause): Promise<StateFields> {
   const { growthRate } = coarseModes[0];
   if (!(growthRate > 0) || !(fineModes[0].growthRate > 0)) {
-    throw new DynamoDecays(`the fastest mode (${parity}) grows at ${fineModes[0].growthRate.toPrecision(3)} per kpc s/km`);
+    throw new DynamoDecays(parity, fineModes[0].growthRate);
   }
   const seed = seedField(coarse, coarseModes[0], parity, problem.surroundings);
   const first = await saturate(coarse, seed, growthRate, rateScale(coarse), pause);
