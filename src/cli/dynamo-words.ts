@@ -50,12 +50,12 @@ function largestCellWind({ problem: { profiles } }: DynamoSpec, { radialStepKpc:
 /** Growth rates of the modes, as lines of a table. */
 export function modeTable({ modes }: DynamoSolution): readonly string[] {
   return [
-    'parity   growth rate   e-folding   oscillates          on half the cells   error',
+    'parity   growth rate            e-folding  oscillates          on half the cells   error',
     ...modes.map(({ parity, growthRate, frequency, relativeError }) =>
       [
         parity.padEnd(6),
         `${rateText(growthRate.fine)} /Gyr`.padStart(13),
-        foldingText(growthRate.fine).padStart(11),
+        foldingText(growthRate.fine).padStart(19),
         ` ${periodText(frequency.fine)}`.padEnd(19),
         `${rateText(growthRate.coarse)} /Gyr`.padStart(18),
         percent(relativeError).padStart(7),
@@ -132,12 +132,20 @@ export function rateText(rate: number): string {
   return (rate * perGyr).toFixed(3);
 }
 
+/** The time in which a mode grows, or decays, by e. */
 function foldingText(rate: number): string {
-  return rate === 0 ? 'none' : `${(unitMyr / rate).toPrecision(3)} Myr`;
+  if (rate === 0) return 'steady';
+  return `${timeText(1 / Math.abs(rate))}${rate < 0 ? ' (decays)' : ''}`;
 }
 
 function periodText(frequency: number): string {
-  return frequency === 0 ? 'no' : `every ${((2 * Math.PI * unitMyr) / frequency).toPrecision(3)} Myr`;
+  return frequency === 0 ? 'no' : `every ${timeText((2 * Math.PI) / frequency)}`;
+}
+
+/** A time in kpc s/km as Myr, three digits or whole. */
+function timeText(time: number): string {
+  const myr = time * unitMyr;
+  return `${myr < 1000 ? myr.toPrecision(3) : Math.round(myr)} Myr`;
 }
 
 function gyrText(time: number): string {

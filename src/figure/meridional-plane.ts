@@ -1,6 +1,6 @@
 import { barLabel, colourBar } from './colour-bar.ts';
 import { sharedColourScale } from './colour-scale.ts';
-import { doublingLevels, drawContours } from './contour-lines.ts';
+import { drawContours } from './contour-lines.ts';
 import { mapImage } from './map-image.ts';
 import type { PanelMap } from './panel-map.ts';
 import { clipped, element, moved, polyline, svgDocument, textElement } from './svg.ts';
@@ -21,13 +21,13 @@ export interface MeridionalPlane {
 
 const LONGEST = 620;
 const TALLEST = 460;
-/** Poloidal lines enclose the largest flux halved so many times. */
-const HALVINGS = 10;
+/** Poloidal lines: line n of so many encloses the share (n/count)^2 of the largest flux, as even steps of radius in an even field do. */
+const LINES = 14;
 const [LEFT, TOP, BOTTOM, BAR_ROOM] = [52, 48, 44, 76];
 
 /**
  * The meridional plane: colours of B_phi and lines of the poloidal field (r A_phi constant), as one SVG
- * file. The lines stand at fluxes that halve from one to the next, so that weak outer parts are seen.
+ * file. Fluxes grow as squares from line to line, so that weak outer parts are seen.
  */
 export function meridionalSvg(plane: MeridionalPlane, title: string, notes: readonly string[], theme: Theme = lightTheme): string {
   const { radialPoints: nr, verticalPoints: nz } = plane;
@@ -41,13 +41,13 @@ export function meridionalSvg(plane: MeridionalPlane, title: string, notes: read
   const image = moved(mapImage(map, scale, width + cellWidth, tall + cellHeight, theme.rule), -cellWidth / 2, -cellHeight / 2);
   const flux = plane.potential.map((value, node) => value * (node % nr) * plane.radialStepKpc);
   const largest = flux.reduce((most, value) => Math.max(most, Math.abs(value)), 0);
-  const ladder = doublingLevels(largest / 2 ** HALVINGS, largest * (1 - 1e-9));
+  const ladder = Array.from({ length: LINES }, (_, k) => largest * ((k + 0.5) / LINES) ** 2);
   const place = { pixel: (column: number, row: number): readonly [number, number] => [column * cellWidth, tall - row * cellHeight] };
   const lines = [1, -1].map((sign) => drawContours(map, { values: flux.map((value) => sign * value), levels: ladder }, place, overlayInk('signed'))).join('');
   const bar = colourBar(scale, barLabel(scale), Math.max(90, tall - 26), true, theme);
   const body =
     textElement(LEFT, 19, title, { 'font-size': 13, 'font-weight': 600 }) +
-    textElement(LEFT, 36, 'azimuthal field (colours) and poloidal field lines; the flux between lines halves outward', { fill: theme.soft }) +
+    textElement(LEFT, 36, 'azimuthal field (colours) and poloidal field lines', { fill: theme.soft }) +
     moved(clipped(image + lines, width, tall) + axes(radius, height, width, tall, theme), LEFT, TOP) +
     moved(bar.body, LEFT + width + 14, TOP) +
     notes.map((note, k) => textElement(LEFT, TOP + tall + BOTTOM + 10 + 14 * k, note, { fill: theme.soft })).join('');
