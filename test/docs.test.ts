@@ -1,4 +1,4 @@
-import { existsSync, readdirSync, readFileSync, statSync, writeFileSync } from 'node:fs';
+import { copyFileSync, existsSync, readdirSync, readFileSync, statSync, writeFileSync } from 'node:fs';
 import { dirname, join } from 'node:path';
 import { describe, expect, it } from 'vitest';
 import { parseStudy } from '../src/infer/study.ts';
@@ -27,7 +27,7 @@ describe('documentation', () => {
     expect(listed).toEqual(folders);
   });
 
-  it('the README’s scene, study and sweep are good ones', () => {
+  it('the README’s scene, study, sweep and dynamo are good ones', () => {
     const block = (kind: string): string => new RegExp(`\`\`\`yaml ${kind}\n([\\s\\S]*?)\`\`\``).exec(text('README.md'))?.[1] ?? '';
     inFolder((folder) => {
       writeFileSync(join(folder, 'scene.yaml'), block('scene'));
@@ -35,6 +35,14 @@ describe('documentation', () => {
       expect(stderr).toBe('');
       expect(status).toBe(0);
       expect(stdout).toContain('mine: largest');
+    });
+    inFolder((folder) => {
+      writeFileSync(join(folder, 'dynamo.yaml'), block('dynamo'));
+      copyFileSync(repository('scenes/lantern-wheel/rotation.csv'), join(folder, 'rotation.csv'));
+      const { status, stderr, stdout } = gyrelight(['check', 'dynamo.yaml'], folder);
+      expect(stderr).toBe('');
+      expect(status).toBe(0);
+      expect(stdout).toContain('even and odd parity');
     });
     expect(parseStudy(block('study'), 'README.md').hypotheses).toHaveLength(1);
     expect(parseSweep(block('sweep'), 'README.md').vary).toHaveLength(2);

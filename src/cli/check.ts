@@ -17,15 +17,17 @@ import { internalUnit } from '../model/parameters.ts';
 import { gatherAssumptions } from './assumptions.ts';
 import { physicsLines, shapeLines } from './check-physics.ts';
 import { prepareHypothesis } from './hypothesis-run.ts';
+import { loadDynamo } from './dynamo-run.ts';
+import { profileLines } from './dynamo-words.ts';
 import { loadScene } from './load-scene.ts';
 import { addSceneFlags, overridesOf, type CommonFlags } from './run-context.ts';
 
 /** Divergences above this are worth a warning. */
 const warnDivergence = 1e-3;
 
-/** `gyrelight check FILE…`: validates scenes, models and studies and says what they hold. */
+/** `gyrelight check FILE…`: validates scenes, models, studies and dynamos and says what they hold. */
 export function addCheck(program: Command): void {
-  addSceneFlags(program.command('check <files...>').description('validate scenes, models and studies; show div B, ranges, sources and what symmetry forbids'))
+  addSceneFlags(program.command('check <files...>').description('validate scenes, models, studies and dynamos; show div B, ranges, sources and what symmetry forbids'))
     .option('--json', 'machine-readable')
     .action((files: readonly string[], flags: CommonFlags) => {
       const reports = files.map((file) => checkFile(file, flags));
@@ -36,7 +38,7 @@ export function addCheck(program: Command): void {
 
 interface CheckReport {
   readonly file: string;
-  readonly kind: 'scene' | 'model' | 'study';
+  readonly kind: 'scene' | 'model' | 'study' | 'dynamo';
   readonly lines: readonly string[];
 }
 
@@ -44,9 +46,15 @@ function checkFile(file: string, flags: CommonFlags): CheckReport {
   const text = readText(file);
   const top = readYaml(text, file).document;
   if (top.has('gyrelight-study')) return checkStudy(file, text, flags);
+  if (top.has('gyrelight-dynamo')) return checkDynamo(file, flags);
   if (top.has('kind') && top.has('name')) return checkModelFile(file, text);
   if (top.has('gyrelight')) return checkScene(file, flags);
-  throw new InputError('this is no scene (gyrelight: 1), study (gyrelight-study: 1) or model (name, kind)', { file, line: 1 });
+  throw new InputError('this is no scene (gyrelight: 1), study (gyrelight-study: 1), dynamo (gyrelight-dynamo: 1) or model (name, kind)', { file, line: 1 });
+}
+
+function checkDynamo(file: string, flags: CommonFlags): CheckReport {
+  const { spec } = loadDynamo(file, flags);
+  return { file, kind: 'dynamo', lines: [`${file}: a dynamo, "${spec.title}"`, ...profileLines(spec), ...spec.notes.map((note) => `  note     ${note}`)] };
 }
 
 function checkScene(file: string, flags: CommonFlags): CheckReport {

@@ -1,4 +1,5 @@
 import { poloidalField, type MeridionalField } from '../field/dynamo/meridional-field.ts';
+import type { DynamoProfiles } from '../field/dynamo/profiles.ts';
 import type { DynamoSolution, ModeReport, TwoGrids } from '../field/dynamo/solve.ts';
 import type { DynamoSpec } from '../field/dynamo/spec.ts';
 import type { ThinDiscRate } from '../field/dynamo/thin-disc.ts';
@@ -45,6 +46,27 @@ function largestCellWind({ problem: { profiles } }: DynamoSpec, { radialStepKpc:
     }
   }
   return most;
+}
+
+/** What a dynamo's file makes of its profiles: their ranges within the volume, what is solved and how finely. */
+export function profileLines({ problem }: DynamoSpec): readonly string[] {
+  const { profiles, surroundings, grid, parities, modes, state } = problem;
+  const shown: readonly (readonly [keyof DynamoProfiles, string])[] = [
+    ['angularSpeed', 'km/s/kpc'], ['alpha', 'km/s'], ['diffusivity', 'kpc km/s'], ['windRadial', 'km/s'], ['windVertical', 'km/s'], ['equipartition', 'uG'],
+  ];
+  const steps = 40;
+  const ranges = shown.map(([key, unit]) => {
+    let [least, most] = [Infinity, -Infinity];
+    for (let a = 0; a <= steps; a++) {
+      for (let b = 0; b <= steps; b++) {
+        const value = profiles[key]((a / steps) * surroundings.radiusKpc, (b / steps) ** 2 * surroundings.heightKpc);
+        [least, most] = [Math.min(least, value), Math.max(most, value)];
+      }
+    }
+    return `  ${key}: ${Number(least.toPrecision(3))} to ${Number(most.toPrecision(3))} ${unit} above the plane`;
+  });
+  const cells = `${2 * grid.radialCells} x ${2 * grid.verticalCells}`;
+  return [...ranges, `  solved: ${modes} mode${modes === 1 ? '' : 's'} of ${parities.join(' and ')} parity, then the ${state === 'mode' ? 'fastest mode' : 'saturated field'}, on ${cells} cells and on half as many along each side`];
 }
 
 /** Growth rates of the modes, as lines of a table. */

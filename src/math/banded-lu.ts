@@ -30,12 +30,12 @@ export function factorShifted(matrix: SparseMatrix, diagonal: number, scale: num
   const slots = below + 1;
   const width = 2 * below + above + 1;
   // Row i of the window holds columns base[slot] … base[slot] + width - 1, none beyond reach[slot].
-  const window = Array.from({ length: slots }, () => new Float64Array(width));
+  const active = Array.from({ length: slots }, () => new Float64Array(width));
   const base = new Int32Array(slots);
   const reach = new Int32Array(slots);
   const enter = (i: number): void => {
     const slot = i % slots;
-    const row = window[slot].fill(0);
+    const row = active[slot].fill(0);
     base[slot] = i - below;
     reach[slot] = Math.min(i + above, size - 1);
     row[below] += diagonal;
@@ -48,23 +48,23 @@ export function factorShifted(matrix: SparseMatrix, diagonal: number, scale: num
   for (let j = 0; j < size; j++) {
     if (j + below < size) enter(j + below);
     const last = Math.min(j + below, size - 1);
-    const pivot = pivotOfColumn(window, base, j, last);
+    const pivot = pivotOfColumn(active, base, j, last);
     pivots[j] = pivot;
     const [slot, other] = [j % slots, pivot % slots];
-    [window[slot], window[other]] = [window[other], window[slot]];
+    [active[slot], active[other]] = [active[other], active[slot]];
     [base[slot], base[other]] = [base[other], base[slot]];
     [reach[slot], reach[other]] = [reach[other], reach[slot]];
     if (pivot > j) {
       // The row put off has room again for what later rows bring.
-      window[other].copyWithin(0, j - base[other]).fill(0, width - (j - base[other]));
+      active[other].copyWithin(0, j - base[other]).fill(0, width - (j - base[other]));
       base[other] = j;
     }
-    const top = window[slot].slice(j - base[slot], reach[slot] - base[slot] + 1);
+    const top = active[slot].slice(j - base[slot], reach[slot] - base[slot] + 1);
     if (!(Math.abs(top[0]) > 0)) throw new RangeError(`the matrix is singular at row ${j}`);
     const multipliers = new Float64Array(last - j);
     for (let i = j + 1; i <= last; i++) {
       const at = i % slots;
-      const row = window[at];
+      const row = active[at];
       const start = j - base[at];
       const multiplier = row[start] / top[0];
       multipliers[i - j - 1] = multiplier;
@@ -78,15 +78,15 @@ export function factorShifted(matrix: SparseMatrix, diagonal: number, scale: num
   return { size, lower, upper, pivots };
 }
 
-function pivotOfColumn(window: readonly Float64Array[], base: Int32Array, column: number, last: number): number {
+function pivotOfColumn(active: readonly Float64Array[], base: Int32Array, column: number, last: number): number {
   let best = column;
   let largest = -1;
   for (let i = column; i <= last; i++) {
-    const slot = i % window.length;
-    const value = Math.abs(window[slot][column - base[slot]]);
+    const slot = i % active.length;
+    const value = Math.abs(active[slot][column - base[slot]]);
     if (value > largest) [best, largest] = [i, value];
   }
-  const diagonal = Math.abs(window[column % window.length][column - base[column % window.length]]);
+  const diagonal = Math.abs(active[column % active.length][column - base[column % active.length]]);
   return diagonal >= pivotShare * largest ? column : best;
 }
 
