@@ -1,6 +1,7 @@
 import type { Scene } from '../scene/types.ts';
 import type { SpectralPoint } from './integrand.ts';
 import { structureKey } from './structure-key.ts';
+import { joinTangents } from './tangent-planes.ts';
 import { findMapScale, makeRayEngine, traceRays, type BackEnd, type RayEngine } from './trace.ts';
 import type { RayBundle, RayResult } from './types.ts';
 
@@ -11,6 +12,8 @@ export interface RayJob {
   readonly bundle: RayBundle;
   /** Indices into the spectrum whose heights of origin are wanted, planes of the result in that order; all by default. */
   readonly origins?: false | readonly number[];
+  /** Paths of the numbers by which to differentiate, such as `findTangentParameter` knows; none by default. */
+  readonly tangents?: readonly string[];
 }
 
 /** How a long job is watched and stopped. */
@@ -46,10 +49,10 @@ export const tileRays = 256;
 
 /**
  * Samples after which a call ends before its tile does, some 50 ms of work: what is to be stopped
- * stops soon. A count, not a time, and rays do not know each other: results are the same.
+ * stops soon; derivatives count half. A count, not a time, and rays do not know each other: results are the same.
  */
-export function sampleBudget(frequencies: number): number {
-  return 4e6 / (8 + frequencies);
+export function sampleBudget(frequencies: number, tangents = 0): number {
+  return 4e6 / (8 + frequencies) / (1 + tangents / 2);
 }
 
 /** [from, to) of every tile of a bundle, in order. */
@@ -64,12 +67,12 @@ export class EngineCache {
   /** `backEnd` forces what follows rays; by default the fastest that the host has. */
   constructor(private readonly backEnd?: BackEnd) {}
 
-  /** The engine of a scene, compiled where none of the same structure is kept. */
-  get(scene: Scene, spectrum: readonly SpectralPoint[]): RayEngine {
-    const key = structureKey(scene, spectrum);
+  /** The engine of a scene, compiled where none of the same structure and derivatives is kept. */
+  get(scene: Scene, spectrum: readonly SpectralPoint[], tangents: readonly string[] = []): RayEngine {
+    const key = `${structureKey(scene, spectrum)} ${tangents.join()}`;
     let engine = this.engines.get(key);
     if (!engine) {
-      engine = makeRayEngine(scene, spectrum, this.backEnd);
+      engine = makeRayEngine(scene, spectrum, this.backEnd, tangents);
       if (this.engines.size >= 16) this.engines.delete([...this.engines.keys()][0]);
       this.engines.set(key, engine);
     }
@@ -92,6 +95,7 @@ export function joinTiles(tiles: readonly RayResult[], frequencies: number): Ray
     }
     return whole;
   };
+  const tangents = joinTangents(tiles);
   const error = new Float64Array(frequencies);
   for (const tile of tiles) for (let k = 0; k < frequencies; k++) error[k] = Math.max(error[k], tile.error[k]);
   return {
@@ -104,17 +108,18 @@ export function joinTiles(tiles: readonly RayResult[], frequencies: number): Ray
     faradayDepth: join((tile) => tile.faradayDepth),
     error,
     samples: tiles.reduce((sum, tile) => sum + tile.samples, 0),
+    ...(tangents && { tangents }),
   };
 }
 
 /** A backend that follows all rays in this thread. */
 export function localBackend(cache = new EngineCache()): RayBackend {
-  return async ({ scene, spectrum, bundle, origins }, watch = {}) => {
+  return async ({ scene, spectrum, bundle, origins, tangents }, watch = {}) => {
     const points = originPoints({ spectrum, origins });
-    const engine = cache.get(scene, spectrum);
+    const engine = cache.get(scene, spectrum, tangents);
     const scale = findMapScale(engine, scene, bundle);
     const rays = bundle.northKpc.length;
-    const budget = sampleBudget(spectrum.length);
+    const budget = sampleBudget(spectrum.length, tangents?.length);
     const tiles: RayResult[] = [];
     let [done, left] = [0, budget];
     while (done < rays) {

@@ -9,12 +9,6 @@ import type { RayTangents } from './types.ts';
 /** Steps of the differences that the smooth laws of the index are differentiated by; they leave 1e-12. */
 const indexStep = 0.02;
 
-/** Empty arrays for the derivatives of so many rays. */
-export function makeRayTangents(parameters: number, frequencies: number, rays: number): RayTangents {
-  const array = (planes: number): Float64Array => new Float64Array(planes * rays);
-  return { I: array(parameters * frequencies), Q: array(parameters * frequencies), U: array(parameters * frequencies), faradayDepth: array(parameters) };
-}
-
 /** A function that writes the derivatives of a ray, made of raw sums, to their place among `rays`. */
 export function tangentWriter(
   { parameters }: TangentIntegrand,

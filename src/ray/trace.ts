@@ -10,7 +10,8 @@ import { brightnessPerKpc, intrinsicPolarization, wavelengthSquared } from './sy
 import { InputError } from '../units/input-error.ts';
 import { compileTangents, type TangentIntegrand } from './tangent-integrand.ts';
 import { makeTangentSums } from './tangent-sums.ts';
-import { makeRayTangents, tangentWriter } from './tangent-trace.ts';
+import { firstTangents, makeRayTangents } from './tangent-planes.ts';
+import { tangentWriter } from './tangent-trace.ts';
 import { TangentTracer } from './tangent-transfer.ts';
 import { makeRaySums, mostSamples, RayTracer, statedError, type Accuracy, type RaySums } from './transfer.ts';
 import type { RayBundle, RayResult } from './types.ts';
@@ -189,7 +190,7 @@ function firstRays(result: RayResult, count: number): RayResult {
   return {
     ...result,
     I: cut(I), Q: cut(Q), U: cut(U), heightQ: cut(heightQ), heightU: cut(heightU), emittedP: cut(emittedP), faradayDepth: cut(faradayDepth),
-    ...(tangents && { tangents: { I: cut(tangents.I), Q: cut(tangents.Q), U: cut(tangents.U), faradayDepth: cut(tangents.faradayDepth) } }),
+    ...(tangents && { tangents: firstTangents(tangents, rays, count) }),
   };
 }
 

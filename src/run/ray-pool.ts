@@ -1,5 +1,6 @@
 import { withDrawnField } from '../ray/grids.ts';
 import { originPoints, tilesOf, type RayBackend, type RayJob, type Watch } from '../ray/job.ts';
+import { makeRayTangents, placeTangents } from '../ray/tangent-planes.ts';
 import type { MapScale } from '../ray/trace.ts';
 import type { RayBundle, RayResult } from '../ray/types.ts';
 import { InputError } from '../units/input-error.ts';
@@ -69,9 +70,9 @@ async function runJob(
   signal?.throwIfAborted();
   const rays = job.bundle.northKpc.length;
   const arrays = makeArrays(job, canShare);
-  const { spectrum, origins } = job;
+  const { spectrum, origins, tangents } = job;
   const scene = withDrawnField(job.scene);
-  await Promise.all(workers.map((worker) => worker.begin({ scene, spectrum, origins, bundle, shared: canShare ? arrays : undefined })));
+  await Promise.all(workers.map((worker) => worker.begin({ scene, spectrum, origins, bundle, tangents, shared: canShare ? arrays : undefined })));
   const scale = await workers[0].scale().catch((problem: unknown) => Promise.reject(sameKind(problem)));
   const tiles = tilesOf(rays);
   const error = new Float64Array(spectrum.length);
@@ -87,6 +88,7 @@ async function runJob(
           signal?.throwIfAborted();
           const tile = await worker.tile(scale, from, to);
           if ('I' in tile) for (const name of rayArrays) if (arrays[name]) writeTile(arrays[name], tile[name], rays, from);
+          if ('I' in tile && arrays.tangents && tile.tangents) placeTangents(arrays.tangents, tile.tangents, rays, from, tile.faradayDepth.length);
           for (let k = 0; k < error.length; k++) error[k] = Math.max(error[k], tile.error[k]);
           samples += tile.samples;
           const followed = 'I' in tile ? tile.faradayDepth.length : tile.rays;
@@ -113,6 +115,7 @@ async function runJob(
     faradayDepth: array('faradayDepth'),
     error,
     samples,
+    ...(arrays.tangents && { tangents: arrays.tangents }),
   };
 }
 
@@ -124,13 +127,15 @@ function sameKind(problem: unknown): unknown {
 
 /** Empty arrays for the whole result of a job. */
 function makeArrays(job: RayJob, canShare: boolean): SharedRays {
-  const rays = job.bundle.northKpc.length;
+  const { spectrum, bundle, tangents = [] } = job;
+  const rays = bundle.northKpc.length;
   const origins = originPoints(job).length;
-  const planesOf = (name: RayArray): number => (name === 'faradayDepth' ? 1 : name === 'I' || name === 'Q' || name === 'U' ? job.spectrum.length : origins);
-  return Object.fromEntries(
+  const planesOf = (name: RayArray): number => (name === 'faradayDepth' ? 1 : name === 'I' || name === 'Q' || name === 'U' ? spectrum.length : origins);
+  const values = Object.fromEntries(
     rayArrays.map((name) => {
       const length = rays * planesOf(name);
       return [name, canShare ? new Float64Array(new SharedArrayBuffer(8 * length)) : new Float64Array(length)];
     }),
   );
+  return { ...values, ...(tangents.length > 0 && { tangents: makeRayTangents(tangents.length, spectrum.length, rays, canShare) }) };
 }

@@ -1,6 +1,7 @@
 import { EngineCache, keepOrigins, originPoints, sampleBudget, type RayJob } from '../ray/job.ts';
+import { placeTangents } from '../ray/tangent-planes.ts';
 import { findMapScale, traceRays, type MapScale } from '../ray/trace.ts';
-import type { RayBundle, RayResult } from '../ray/types.ts';
+import type { RayBundle, RayResult, RayTangents } from '../ray/types.ts';
 
 /** A job as a worker is told of it; what it has already (the same rays again) is not sent twice. */
 export interface ServiceJob extends Omit<RayJob, 'bundle'> {
@@ -10,7 +11,7 @@ export interface ServiceJob extends Omit<RayJob, 'bundle'> {
 }
 
 /** The arrays of a result that a job wants, over all its rays. */
-export type SharedRays = Readonly<Partial<Record<RayArray, Float64Array>>>;
+export type SharedRays = Readonly<Partial<Record<RayArray, Float64Array>>> & { readonly tangents?: RayTangents };
 
 /** Names of a result's arrays; all but the depth have one plane per frequency or per origin. */
 export type RayArray = 'I' | 'Q' | 'U' | 'heightQ' | 'heightU' | 'emittedP' | 'faradayDepth';
@@ -33,10 +34,10 @@ export class RayService {
   private shared: SharedRays | undefined;
 
   /** Takes up a job in place of the last. */
-  begin({ scene, spectrum, origins, bundle, shared }: ServiceJob): void {
+  begin({ scene, spectrum, origins, bundle, tangents, shared }: ServiceJob): void {
     const rays = bundle ?? this.job?.bundle;
     if (!rays) throw new Error('a job came without rays');
-    this.job = { scene, spectrum, origins, bundle: rays };
+    this.job = { scene, spectrum, origins, tangents, bundle: rays };
     this.shared = shared;
   }
 
@@ -48,8 +49,8 @@ export class RayService {
 
   /** Follows the rays `from` ≤ index < `to`, or as many of them as the budget allows: into shared memory, or as a result of its own. */
   tile(scale: MapScale, from: number, to: number): RayResult | TileNote {
-    const { scene, spectrum, bundle, origins } = this.current();
-    const all = traceRays(this.cache.get(scene, spectrum), scene, bundle, scale, from, to, sampleBudget(spectrum.length));
+    const { scene, spectrum, bundle, origins, tangents } = this.current();
+    const all = traceRays(this.cache.get(scene, spectrum, tangents), scene, bundle, scale, from, to, sampleBudget(spectrum.length, tangents?.length));
     const result = keepOrigins(all, originPoints({ spectrum, origins }));
     if (!this.shared) return result;
     const rays = bundle.northKpc.length;
@@ -57,6 +58,7 @@ export class RayService {
       const whole = this.shared[name];
       if (whole) writeTile(whole, result[name], rays, from);
     }
+    if (this.shared.tangents && result.tangents) placeTangents(this.shared.tangents, result.tangents, rays, from, result.faradayDepth.length);
     return { error: result.error, samples: result.samples, rays: result.faradayDepth.length };
   }
 
@@ -76,5 +78,7 @@ export function writeTile(whole: Float64Array, tile: Float64Array, rays: number,
 /** The large arrays of a tile's result, to be moved rather than copied between threads. */
 export function buffersOf(result: RayResult | TileNote): ArrayBuffer[] {
   if (!('I' in result)) return [];
-  return rayArrays.map((name) => result[name].buffer as ArrayBuffer);
+  const arrays = rayArrays.map((name) => result[name]);
+  if (result.tangents) arrays.push(...Object.values(result.tangents));
+  return arrays.map(({ buffer }) => buffer as ArrayBuffer);
 }
