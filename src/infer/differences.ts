@@ -14,11 +14,13 @@ export interface DifferenceSteps {
 }
 
 /**
- * Columns d residuals/d parameter by finite differences; steps never leave the bounds. The shifted
- * evaluations are started together, so that a pool of workers can share them.
+ * Columns d residuals/d parameter by finite differences, for all parameters or those of `which`; steps
+ * never leave the bounds. The shifted evaluations are started together, so that a pool of workers can
+ * share them.
  */
 export async function differenceColumns(
   residuals: ResidualFunction, values: Float64Array, at: Float64Array, steps: DifferenceSteps, signal?: AbortSignal,
+  which: readonly number[] = [...values.keys()],
 ): Promise<Float64Array[]> {
   const { lower, upper } = steps;
   const shifted = (j: number, shift: number): Float64Array => {
@@ -27,7 +29,8 @@ export async function differenceColumns(
     return copy;
   };
   return Promise.all(
-    Array.from(values, async (value, j) => {
+    which.map(async (j) => {
+      const value = values[j];
       const wanted = steps.relativeStep * Math.max(Math.abs(value), steps.sizes[j]);
       const up = Math.min(wanted, upper[j] - value);
       const down = Math.min(wanted, value - lower[j]);

@@ -1,3 +1,4 @@
+import { jacobianColumns } from './exact-columns.ts';
 import type { ForwardModel } from './forward.ts';
 import { leastSquares } from './least-squares.ts';
 import type { LeastSquaresResult } from './least-squares.ts';
@@ -15,7 +16,7 @@ export interface FitRequest {
   readonly starts: number;
   /** How many of all starts, best chi2 first, are followed down. */
   readonly descents: number;
-  /** Step of finite differences over a prior's width; default 1e-3, well above the noise of adaptive rays. */
+  /** Step of finite differences, for parameters that the model has no derivatives by, over a prior's width; default 1e-3, well above the noise of adaptive rays. */
   readonly relativeStep?: number;
   /** Default 100. */
   readonly maxIterations?: number;
@@ -56,7 +57,7 @@ export interface Fit {
 /**
  * Fits the free parameters of a model to data by least squares from several starts: the scene's own
  * values, the middle of the priors and a seeded spread over them, ranked by chi2 before the best are followed down.
- * Normal priors enter as residuals. Throws the signal's reason when aborted, and where no start
+ * Derivatives are the model's own where it has them. Normal priors enter as residuals. Throws the signal's reason when aborted, and where no start
  * gives finite residuals.
  */
 export async function fitModel(request: FitRequest): Promise<Fit> {
@@ -95,14 +96,14 @@ export async function fitModel(request: FitRequest): Promise<Fit> {
   ranked.sort((a, b) => a.chi2 - b.chi2);
 
   // Follow the best of them down.
+  const steps = { central: false, relativeStep: request.relativeStep ?? 1e-3, sizes: new Float64Array(parameters.length).fill(1), lower, upper };
   const followed = ranked.slice(0, Math.max(1, request.descents));
   const ends: LeastSquaresResult[] = [];
   for (const [k, { start }] of followed.entries()) {
     ends.push(
       await leastSquares(residuals, start, {
         lower, upper, signal,
-        sizes: new Float64Array(parameters.length).fill(1),
-        relativeStep: request.relativeStep ?? 1e-3,
+        jacobian: (at, stop, there) => jacobianColumns({ parameters, forward: request.forward, likelihood, residuals, steps, onModel: () => evaluations++ }, at, there, stop),
         // A change of chi2 that no error bar sees, and that adaptive rays could not resolve.
         tolerance: 1e-7,
         resolution: 0.01,

@@ -10,7 +10,7 @@ import { makeJointModel } from './joint-model.ts';
 import { calibrationParameters, foregroundNuisance, withCalibration } from './nuisances.ts';
 import { refuseNoOverlap } from './overlap.ts';
 import type { FreeParameter } from './prior.ts';
-import { sceneWith, type SceneOf } from './sky-model.ts';
+import { sceneWith, type SceneOf } from './scene-of.ts';
 import type { Hypothesis, Study } from './study-types.ts';
 import { compileTie, followTies, type Tie } from './ties.ts';
 import type { DataSet } from './types.ts';

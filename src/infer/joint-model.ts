@@ -4,10 +4,13 @@ import type { Scene } from '../scene/types.ts';
 import { depthSearch, fitRotationMeasure } from '../sky/rotation-measure.ts';
 import { channelLambda2M2 } from '../sky/wavelength.ts';
 import { offsetFromPixel, pixelAreaSr, pixelFromSky } from '../sky/wcs.ts';
-import type { ForwardModel } from './forward.ts';
+import type { RayBundle } from '../ray/types.ts';
+import type { ForwardModel, ModelSlopes } from './forward.ts';
+import { sceneSlopes, type SceneSlopes } from './scene-slopes.ts';
+import { combineDepths } from './sky-slopes.ts';
 import type { OtherData } from './other-data.ts';
 import { makeSkyModel } from './sky-model.ts';
-import type { SceneOf } from './sky-model.ts';
+import type { SceneOf } from './scene-of.ts';
 import type { DataPlane, DataSet } from './types.ts';
 
 const arcsecPerRadian = 648_000 / Math.PI;
@@ -33,21 +36,48 @@ export function makeJointModel(data: DataSet, start: Scene, sceneOf: SceneOf, ba
     return first;
   });
   const wanted: DataSet = { ...data, bands, planes };
-  const maps = planes.length > 0 ? makeSkyModel(wanted, start, sceneOf, backend) : async () => [];
-  return async (values, signal) => {
+  const maps: ForwardModel = planes.length > 0 ? makeSkyModel(wanted, start, sceneOf, backend) : async () => [];
+  const reduce = (other: OtherData, k: number, seen: readonly Float64Array[], scene: Scene): Float64Array => {
+    const count = other.channels.length;
+    const [Q, U] = [0, count].map((from) => seen.slice(firstPlane[k] + from, firstPlane[k] + from + count));
+    if (other.kind === 'spectrum') return spectrumOf(data, Q, U);
+    return other.kind === 'map' ? mapOf(other, Q, U) : sectorsOf(data, other, Q, U, scene);
+  };
+  const model = async (values: Float64Array, signal?: AbortSignal): Promise<readonly Float64Array[]> => {
     const seen = await maps(values, signal);
     const scene = sceneOf(values);
     const rest = await Promise.all(
-      others.map((other, k) => {
-        const count = other.channels.length;
-        const [Q, U] = [0, count].map((from) => seen.slice(firstPlane[k] + from, firstPlane[k] + from + count));
-        if (other.kind === 'sources') return sourceDepths(data, other, scene, backend, signal);
-        if (other.kind === 'spectrum') return spectrumOf(data, Q, U);
-        return other.kind === 'map' ? mapOf(other, Q, U) : sectorsOf(data, other, Q, U, scene);
-      }),
+      others.map((other, k) => (other.kind === 'sources' ? sourceDepths(data, other, scene, backend, signal) : reduce(other, k, seen, scene))),
     );
     return [...seen.slice(0, data.planes.length), ...rest];
   };
+  const slopes = async (values: Float64Array, signal?: AbortSignal): Promise<ModelSlopes | undefined> => {
+    const known = await maps.slopes?.(values, signal);
+    // Without maps, the rays of a few sources are as cheap to follow again.
+    if (!known) return undefined;
+    const changes = sceneSlopes(sceneOf, values, values.length);
+    const sources = await Promise.all(others.map((other) => (other.kind === 'sources' ? sourceSlopes(data, other, changes, backend, signal) : undefined)));
+    const reduced = others.map((other, k) => sources[k]?.depths ?? reduce(other, k, known.maps, changes.scene));
+    const columns = known.columns.map((column, j) => {
+      const change = changes.columns[j];
+      if (!column || !change) return undefined;
+      const rest = others.map((other, k) => sources[k]?.columns[j] ?? differenceOf(other, change.width, (share) => {
+        const there = known.maps.map((map, plane) => map.map((value, pixel) => value + share * change.width * column[plane][pixel]));
+        return reduce(other, k, there, share > 0 ? change.ahead : change.behind);
+      }));
+      return [...column.slice(0, data.planes.length), ...rest];
+    });
+    return { maps: [...known.maps.slice(0, data.planes.length), ...reduced], columns };
+  };
+  return Object.assign(model, { slopes });
+}
+
+/** Derivative of what is made of maps, by a difference along theirs: no rays are followed, and little is lost in so small a step. */
+function differenceOf({ quantity }: OtherData, width: number, at: (share: number) => Float64Array): Float64Array {
+  const [ahead, behind] = [at(0.5), at(-0.5)];
+  // Angles are known modulo a half turn.
+  const across = (change: number): number => (quantity === 'chi' ? change - Math.PI * Math.round(change / Math.PI) : change);
+  return ahead.map((value, k) => across(value - behind[k]) / width);
 }
 
 function mapOf(other: OtherData, Q: readonly Float64Array[], U: readonly Float64Array[]): Float64Array {
@@ -86,23 +116,43 @@ function sectorsOf({ axes }: DataSet, other: OtherData, Q: readonly Float64Array
   return Float64Array.from(sectors, ({ P, chi, rm: depth }) => (other.quantity === 'P' ? P.value : other.quantity === 'chi' ? chi : (depth?.value ?? NaN)));
 }
 
-/** Total Faraday depth through the galaxy at each source, with the foreground's constant and gradient. */
-async function sourceDepths({ axes }: DataSet, { places = [] }: OtherData, scene: Scene, backend: RayBackend, signal?: AbortSignal): Promise<Float64Array> {
-  const { distanceKpc, centre } = scene.galaxy;
-  const offset = offsetFromPixel(axes.wcs, centre ?? { raDeg: 0, decDeg: 0 });
+/** Rays to the sources behind a galaxy, with their offsets on the sky, rad. */
+function raysToSources({ axes }: DataSet, { places = [] }: OtherData, { galaxy }: Scene): { readonly bundle: RayBundle; readonly offsets: readonly { readonly north: number; readonly east: number }[] } {
+  const offset = offsetFromPixel(axes.wcs, galaxy.centre ?? { raDeg: 0, decDeg: 0 });
   const offsets = places.map(({ raDeg, decDeg }) => {
     const { pixelX, pixelY } = pixelFromSky(axes.wcs, raDeg, decDeg);
     return offset(pixelX, pixelY);
   });
   const bundle = {
-    northKpc: Float64Array.from(offsets, ({ north }) => north * distanceKpc),
-    eastKpc: Float64Array.from(offsets, ({ east }) => east * distanceKpc),
+    northKpc: Float64Array.from(offsets, ({ north }) => north * galaxy.distanceKpc),
+    eastKpc: Float64Array.from(offsets, ({ east }) => east * galaxy.distanceKpc),
   };
-  const { faradayDepth } = await backend({ scene, spectrum: [{ frequencyHz: 1.4e9, centreHz: 1.4e9 }], bundle, origins: false }, { signal });
-  const { foregroundDepth, foregroundGradient: gradient } = scene.observation;
-  return faradayDepth.map((depth, k) => {
-    const { north, east } = offsets[k];
-    const along = gradient ? (north * Math.cos(gradient.angle) + east * Math.sin(gradient.angle)) * arcsecPerRadian : 0;
-    return depth + foregroundDepth + (gradient ? gradient.radM2PerArcsec * along : 0);
-  });
+  return { bundle, offsets };
+}
+
+const sourceSpectrum = [{ frequencyHz: 1.4e9, centreHz: 1.4e9 }];
+
+/** Total Faraday depth through the galaxy at each source, with the foreground's constant and gradient. */
+async function sourceDepths(data: DataSet, other: OtherData, scene: Scene, backend: RayBackend, signal?: AbortSignal): Promise<Float64Array> {
+  const { bundle, offsets } = raysToSources(data, other, scene);
+  const { faradayDepth } = await backend({ scene, spectrum: sourceSpectrum, bundle, origins: false }, { signal });
+  return faradayDepth.map((depth, k) => depth + foregroundAt(scene, offsets[k]));
+}
+
+/** The same with its derivative by each free parameter that rays have one by. */
+async function sourceSlopes(data: DataSet, other: OtherData, { scene, paths, columns }: SceneSlopes, backend: RayBackend, signal?: AbortSignal): Promise<{ readonly depths: Float64Array; readonly columns: readonly (Float64Array | undefined)[] }> {
+  const { bundle, offsets } = raysToSources(data, other, scene);
+  const { faradayDepth, tangents } = await backend({ scene, spectrum: sourceSpectrum, bundle, origins: false, tangents: paths }, { signal });
+  return {
+    depths: faradayDepth.map((depth, k) => depth + foregroundAt(scene, offsets[k])),
+    columns: columns.map((column) => column && combineDepths(tangents, column.rates, offsets.length).map(
+      (slope, k) => slope + (foregroundAt(column.ahead, offsets[k]) - foregroundAt(column.behind, offsets[k])) / column.width,
+    )),
+  };
+}
+
+function foregroundAt({ observation }: Scene, { north, east }: { readonly north: number; readonly east: number }): number {
+  const { foregroundDepth, foregroundGradient: gradient } = observation;
+  const along = gradient ? (north * Math.cos(gradient.angle) + east * Math.sin(gradient.angle)) * arcsecPerRadian : 0;
+  return foregroundDepth + (gradient ? gradient.radM2PerArcsec * along : 0);
 }

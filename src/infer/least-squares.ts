@@ -8,8 +8,8 @@ export interface LeastSquaresOptions {
   /** Inclusive bounds; infinite where left out. */
   readonly lower?: Float64Array;
   readonly upper?: Float64Array;
-  /** Columns of derivatives at `values`; finite differences where left out. */
-  readonly jacobian?: (values: Float64Array, signal?: AbortSignal) => Promise<Float64Array[]>;
+  /** Columns of derivatives at `values`, where the residuals are `at`; finite differences where left out. */
+  readonly jacobian?: (values: Float64Array, signal: AbortSignal | undefined, at: Float64Array) => Promise<Float64Array[]>;
   /** Finite differences: step over size, default 1e-6 (central: 1e-5). */
   readonly relativeStep?: number;
   readonly central?: boolean;
@@ -76,7 +76,7 @@ export async function leastSquares(
     return residuals(values, stop);
   };
   const derivatives = (at: Float64Array, r: Float64Array): Promise<Float64Array[]> =>
-    options.jacobian ? options.jacobian(at, signal) : differenceColumns(evaluate, at, r, steps, signal);
+    options.jacobian ? options.jacobian(at, signal, r) : differenceColumns(evaluate, at, r, steps, signal);
 
   let values = Float64Array.from(start);
   let r = await evaluate(values, signal);

@@ -2,7 +2,7 @@ import { scenePath } from '../scene/paths.ts';
 import type { Scene } from '../scene/types.ts';
 import { InputError } from '../units/input-error.ts';
 import { formatQuantity, parseQuantity } from '../units/quantity.ts';
-import type { ForwardModel } from './forward.ts';
+import type { ForwardModel, ModelSlopes } from './forward.ts';
 import { makePrior } from './free-parameters.ts';
 import type { FreeParameter } from './prior.ts';
 import type { ForegroundText, FreeText } from './study-types.ts';
@@ -57,13 +57,23 @@ export function calibrationParameters(texts: readonly FreeText[], bands: readonl
 /** A model whose maps are multiplied, band by band, by the calibration factors among the parameters. */
 export function withCalibration(forward: ForwardModel, { planes }: Pick<DataSet, 'planes'>, parameters: readonly FreeParameter[]): ForwardModel {
   if (parameters.every(({ calibrationBand }) => calibrationBand === undefined)) return forward;
-  return async (values, signal) => {
-    const maps = await forward(values, signal);
-    return maps.map((map, k) => {
-      const at = parameters.findIndex(({ calibrationBand }) => calibrationBand !== undefined && calibrationBand === planes[k]?.band);
-      return at < 0 ? map : map.map((value) => value * values[at]);
+  const factorOf = planes.map(({ band }) => parameters.findIndex(({ calibrationBand }) => calibrationBand !== undefined && calibrationBand === band));
+  const scale = (maps: readonly Float64Array[], values: Float64Array): readonly Float64Array[] =>
+    maps.map((map, k) => (factorOf[k] ?? -1) < 0 ? map : map.map((value) => value * values[factorOf[k]]));
+  const model = async (values: Float64Array, signal?: AbortSignal): Promise<readonly Float64Array[]> => scale(await forward(values, signal), values);
+  const { slopes: bare } = forward;
+  if (!bare) return model;
+  const slopes = async (values: Float64Array, signal?: AbortSignal): Promise<ModelSlopes | undefined> => {
+    const known = await bare(values, signal);
+    if (!known) return undefined;
+    const columns = known.columns.map((column, j) => {
+      if (parameters[j].calibrationBand === undefined) return column && scale(column, values);
+      // Maps are proportional to their own factor.
+      return known.maps.map((map, k) => (factorOf[k] === j ? map : new Float64Array(map.length)));
     });
+    return { maps: scale(known.maps, values), columns };
   };
+  return Object.assign(model, { slopes });
 }
 
 function placed<T>({ place }: FreeText, work: () => T): T {

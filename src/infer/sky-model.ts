@@ -1,6 +1,5 @@
 import type { RayBackend } from '../ray/job.ts';
 import type { Band, Scene } from '../scene/types.ts';
-import { scenePath } from '../scene/paths.ts';
 import { beamConvolver, beamReach, beamSolidAngleSr, pixelBeam } from '../sky/beam.ts';
 import { bandCube } from '../sky/channel-means.ts';
 import { foregroundDepths, largestForeground, turnByForeground } from '../sky/foreground.ts';
@@ -9,25 +8,21 @@ import { missingBeam } from '../sky/short-spacings.ts';
 import { planSpectrum } from '../sky/spectral-plan.ts';
 import type { RayBundle } from '../ray/types.ts';
 import type { CelestialWcs } from '../sky/wcs-types.ts';
-import type { ForwardModel } from './forward.ts';
-import type { DataSet, StokesQuantity } from './types.ts';
+import type { ForwardModel, ModelSlopes } from './forward.ts';
+import type { SceneOf } from './scene-of.ts';
+import { sceneSlopes } from './scene-slopes.ts';
+import { addTurning, combineTangents, depthSlope, type StokesPlanes } from './sky-slopes.ts';
+import type { DataSet } from './types.ts';
 
 /** Where parameters lead elsewhere than a hypothesis's start, depths may be larger by this factor. */
 const depthReserve = 3;
 /** The few rays through a nearly singular centre, blended by the beam, do not decide how finely channels are averaged. */
 const depthQuantile = 0.98;
 
-/** The scene of a hypothesis for values of its free parameters. */
-export type SceneOf = (values: ArrayLike<number>) => Scene;
-
-/** A scene with values set at paths; `values` in the units of the paths. */
-export function sceneWith(scene: Scene, paths: readonly string[], values: ArrayLike<number>): Scene {
-  return paths.reduce((changed, path, k) => scenePath(changed, path).set(changed, values[k]), scene);
-}
-
 /**
  * The maps that a scene would give on a data set's grid, beam by beam: the model is brought to the
- * data, never the reverse. Rays are followed beyond the image as far as the widest beam reaches.
+ * data, never the reverse. Rays are followed beyond the image as far as the widest beam reaches. Its
+ * slopes are derivatives of the rays, seen by the same telescope: all on the way is linear in I, Q and U.
  */
 export function makeSkyModel(data: DataSet, start: Scene, sceneOf: SceneOf, backend: RayBackend): ForwardModel {
   const frame = widenedFrame(data, start.observation.missingWavelengths);
@@ -41,20 +36,50 @@ export function makeSkyModel(data: DataSet, start: Scene, sceneOf: SceneOf, back
   const frequenciesHz = plan.spectrum.map((point) => point.frequencyHz);
   const telescopes = data.bands.map((_, band) => makeTelescope(data, frame, band, start.observation.missingWavelengths));
   const aim = makeAim(frame);
-  return async (values, signal) => {
-    const scene = sceneOf(values);
-    const { bundle, pixels } = aim(scene);
-    const seen = await backend({ scene, spectrum: plan.spectrum, bundle, origins: false }, { signal });
-    const rays = spread(seen, pixels, frame.nx * frame.ny, plan.spectrum.length);
-    const depth = foregroundDepths(scene, frame.wcs, frame.nx, frame.ny);
-    if (depth !== 0) turnByForeground(rays.Q, rays.U, frequenciesHz, depth);
-    const maps = plan.bands.map((band, index) => telescopes[index](bandCube(band, rays, frame.nx * frame.ny)));
+  const pixels = frame.nx * frame.ny;
+  const observe = (rays: StokesPlanes): readonly Float64Array[] => {
+    const maps = plan.bands.map((band, index) => telescopes[index](bandCube(band, rays, pixels)));
     return data.planes.map((plane) => {
       const size = data.axes.nx * data.axes.ny;
       return maps[plane.band][plane.quantity].subarray(plane.channel * size, (plane.channel + 1) * size);
     });
   };
+  const foregroundOf = (scene: Scene): number | Float64Array => foregroundDepths(scene, frame.wcs, frame.nx, frame.ny);
+  const turn = ({ Q, U }: StokesPlanes, depth: number | Float64Array): void => {
+    if (depth !== 0) turnByForeground(Q, U, frequenciesHz, depth);
+  };
+  const model = async (values: Float64Array, signal?: AbortSignal): Promise<readonly Float64Array[]> => {
+    const scene = sceneOf(values);
+    const { bundle, pixels: hit } = aim(scene);
+    const seen = await backend({ scene, spectrum: plan.spectrum, bundle, origins: false }, { signal });
+    const rays = spread(seen, hit, pixels, plan.spectrum.length);
+    turn(rays, foregroundOf(scene));
+    return observe(rays);
+  };
+  const slopes = async (values: Float64Array, signal?: AbortSignal): Promise<ModelSlopes | undefined> => {
+    const { scene, paths, columns } = sceneSlopes(sceneOf, values, values.length);
+    if (columns.filter((column) => column).length < fewestExact) return undefined;
+    const { bundle, pixels: hit } = aim(scene);
+    const seen = await backend({ scene, spectrum: plan.spectrum, bundle, origins: false, tangents: paths }, { signal });
+    const planes = plan.spectrum.length;
+    const depth = foregroundOf(scene);
+    const rays = spread(seen, hit, pixels, planes);
+    turn(rays, depth);
+    const slopeMaps = columns.map((column) => {
+      if (!column) return undefined;
+      signal?.throwIfAborted();
+      const slope = spread(combineTangents(seen.tangents, column.rates, planes * hit.length), hit, pixels, planes);
+      turn(slope, depth);
+      if (column.turnsForeground) addTurning(slope, rays, frequenciesHz, depthSlope(foregroundOf(column.ahead), foregroundOf(column.behind), column.width));
+      return observe(slope);
+    });
+    return { maps: observe(rays), columns: slopeMaps };
+  };
+  return Object.assign(model, { slopes });
 }
+
+/** With fewer columns than this of a model's own, differences are as cheap. */
+const fewestExact = 2;
 
 /** A data set's image, grown so that its widest beam sees all that it should. */
 interface Frame {
@@ -111,8 +136,6 @@ function spread(rays: StokesPlanes, pixels: Int32Array, size: number, planes: nu
   };
   return { I: whole(rays.I), Q: whole(rays.Q), U: whole(rays.U) };
 }
-
-type StokesPlanes = Readonly<Record<StokesQuantity, Float64Array>>;
 
 /** A function that brings one band's sky to the data's pixels and unit; I only where there are data of it. */
 function makeTelescope(data: DataSet, frame: Frame, index: number, missingWavelengths: number | undefined): (sky: StokesPlanes) => StokesPlanes {

@@ -43,8 +43,8 @@ export class RayService {
 
   /** The scale that the job's tolerance is relative to. */
   scale(): MapScale {
-    const { scene, spectrum, bundle } = this.current();
-    return findMapScale(this.cache.get(scene, spectrum), scene, bundle);
+    const { scene, spectrum, bundle, tangents } = this.current();
+    return findMapScale(this.cache.get(scene, spectrum, tangents), scene, bundle);
   }
 
   /** Follows the rays `from` ≤ index < `to`, or as many of them as the budget allows: into shared memory, or as a result of its own. */

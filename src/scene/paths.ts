@@ -62,6 +62,14 @@ export function scenePaths(scene: Scene): readonly string[] {
   return entriesOf(scene).map((entry) => entry.path);
 }
 
+/** Every number of a scene by its path, in the paths' `unit`. */
+export function sceneNumbers(scene: Scene): ReadonlyMap<string, number> {
+  return new Map(entriesOf(scene).flatMap(({ path, read }) => {
+    const value = read(scene);
+    return value === undefined ? [] : [[path, value] as const];
+  }));
+}
+
 /**
  * A value written for a path, "3 uG" (or a plain number where there is no unit), in the path's
  * `unit` and checked against its range. Throws InputError without a place.

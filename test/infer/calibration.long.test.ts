@@ -1,7 +1,8 @@
 import { expect, it } from 'vitest';
 import { makeLikelihood } from '../../src/infer/likelihood.ts';
 import { resolveFree } from '../../src/infer/free-parameters.ts';
-import { makeSkyModel, sceneWith } from '../../src/infer/sky-model.ts';
+import { sceneWith } from '../../src/infer/scene-of.ts';
+import { makeSkyModel } from '../../src/infer/sky-model.ts';
 import type { FreeText } from '../../src/infer/study-types.ts';
 import type { DataSet } from '../../src/infer/types.ts';
 import { localBackend } from '../../src/ray/job.ts';

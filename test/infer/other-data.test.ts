@@ -6,7 +6,7 @@ import { jointLikelihood } from '../../src/infer/other-data.ts';
 import type { OtherData } from '../../src/infer/other-data.ts';
 import { readOther } from '../../src/infer/read-other.ts';
 import type { ReadMap } from '../../src/infer/map-facts.ts';
-import { sceneWith } from '../../src/infer/sky-model.ts';
+import { sceneWith } from '../../src/infer/scene-of.ts';
 import type { OtherEntry } from '../../src/infer/study-types.ts';
 import type { DataSet } from '../../src/infer/types.ts';
 import { localBackend } from '../../src/ray/job.ts';

@@ -4,7 +4,7 @@ import { logPriorScaled, valuesFromCube } from '../../src/infer/prior-cube.ts';
 import { scaledFromValue, slopeFromScaled, valueFromScaled } from '../../src/infer/prior.ts';
 import type { FreeParameter, Prior } from '../../src/infer/prior.ts';
 import { parseStudy } from '../../src/infer/study.ts';
-import { sceneWith } from '../../src/infer/sky-model.ts';
+import { sceneWith } from '../../src/infer/scene-of.ts';
 import { compileTie, followTies, shownValue } from '../../src/infer/ties.ts';
 import { normalQuantile, normalShare } from '../../src/math/normal-quantile.ts';
 import { parseScene } from '../../src/scene/parse-scene.ts';
