@@ -1,10 +1,12 @@
 import type { Direction } from '../formula/differentiate.ts';
 import type { Graph, NodeId } from '../formula/graph.ts';
 import { coordinatesOf } from '../formula/vector-calculus.ts';
+import { sixthOrderSlope } from '../math/slope.ts';
 import { sections } from '../scene/section.ts';
 import { scenePath } from '../scene/paths.ts';
 import { shapeEntries } from '../scene/shape.ts';
 import type { CosmicRayLayer, Scene } from '../scene/types.ts';
+import { equipartitionElectrons } from './equipartition.ts';
 import { rayMotions, type Arithmetic } from './ray-motion.ts';
 import { placedComponents, type PlacedComponent } from './scene-graph.ts';
 
@@ -30,6 +32,9 @@ const turbulent: Readonly<Record<string, string>> = {
   'turbulence.ordered.cell': 'ordered/cell',
   'turbulence.ordered.pitch': 'ordered/pitch',
 };
+/** Step of the index p, as a share of p - 2, of the differences that the factor of equipartition is differentiated by: they leave 1e-12. */
+const indexStep = 0.006;
+const equipartitionRate = 'rate/equipartition';
 
 /**
  * The parameter at a path of a scene, or undefined where rays do not depend on it or not smoothly
@@ -38,8 +43,8 @@ const turbulent: Readonly<Record<string, string>> = {
  */
 export function findTangentParameter(scene: Scene, path: string): TangentParameter | undefined {
   if (scenePath(scene, path).whole || scene.freeFree || scene.cosmicRays.scaleTo) return undefined;
-  // The index also sets the electrons of equipartition and the steps of the ordered field's moments.
-  if (path === 'cosmicRays.index' && (scene.cosmicRays.equipartition || scene.turbulence.ordered)) return undefined;
+  // The index also sets the steps of the ordered field's moments.
+  if (path === 'cosmicRays.index' && scene.turbulence.ordered) return undefined;
   if (geometric.includes(path)) return { path, leaves: [] };
   if (path in turbulent) return { path, leaves: [turbulent[path]] };
   const placed = placedComponents(scene);
@@ -78,6 +83,7 @@ export function directionOf(graph: Graph, parameter: TangentParameter, groups: n
   }
   if (path === 'cosmicRays.index') {
     leaves.set(graph.parameter('halfPower'), graph.constant(1 / 4));
+    leaves.set(graph.parameter('cosmicRays/equipartition'), graph.parameter(equipartitionRate));
     const rate = graph.constant(1);
     return { leaves, tables: new Map(['riceTotal', 'riceAligned'].map((table) => [table, { table: `${table}ByIndex`, rate }])) };
   }
@@ -101,6 +107,11 @@ function moveRay(graph: Graph, path: string, leaves: Map<NodeId, NodeId>): void 
 /** Values of the run-time rates of some parameters for a scene. */
 export function rateValues(scene: Scene, parameters: readonly TangentParameter[], groupFrequenciesHz: readonly number[]): ReadonlyMap<string, number> {
   const rates = new Map([[perDistanceName, 1 / scene.galaxy.distanceKpc]]);
+  const { equipartition, index } = scene.cosmicRays;
+  if (equipartition) {
+    const electrons = (p: number): number => equipartitionElectrons(p, equipartition.protonRatio);
+    rates.set(equipartitionRate, electrons(index) * sixthOrderSlope((p) => Math.log(electrons(p)), index, indexStep * (index - 2)));
+  }
   for (const parameter of parameters) {
     const { layer, path } = parameter;
     const current = layer && placedComponents(scene).cosmicRays.find((placed) => placed.path === layer.path);

@@ -1,8 +1,10 @@
+import { expect } from 'vitest';
 import { scenePath } from '../../src/scene/paths.ts';
 import type { Scene } from '../../src/scene/types.ts';
 import type { SpectralPoint } from '../../src/ray/integrand.ts';
 import { findMapScale, makeRayEngine, traceRays, type BackEnd } from '../../src/ray/trace.ts';
 import type { RayBundle, RayResult } from '../../src/ray/types.ts';
+import { frequencies } from './scenes.ts';
 
 export type Maps = Readonly<Record<'I' | 'Q' | 'U' | 'faradayDepth', Float64Array>>;
 
@@ -54,4 +56,23 @@ export function worstDifference(a: Maps, b: Maps, values: Maps, size: number): n
     const off = largest(names.map((name) => a[name].map((value, k) => value - b[name][k])));
     return off / scale;
   }));
+}
+
+// Central differences of tight maps (Richardson 1911) keep about 1e-9 of the largest derivative, near singular
+// centres 1e-7.
+const wanted = 1e-6;
+const checkRays = { northKpc: Float64Array.of(1, 3, -2.2), eastKpc: Float64Array.of(0.7, -1, 3.1) };
+const checkSpectrum = frequencies(0.7e9, 2.3e9);
+
+/** Checks derivatives of a few rays by some paths: one back end against the other, and against central differences. */
+export function checkAgainstDifferences(scene: Scene, paths: readonly string[], relativeStep = 4e-3): void {
+  const javascript = followTangents(scene, checkSpectrum, checkRays, paths, 'javascript');
+  const wasm = followTangents(scene, checkSpectrum, checkRays, paths, 'wasm');
+  paths.forEach((path, p) => {
+    const exact = slopesBy(javascript, p);
+    expect(worstDifference(slopesBy(wasm, p), exact, javascript, 1), `${path} in WebAssembly`).toBeLessThan(1e-12);
+    const size = Math.abs(scenePath(scene, path).get()) || 0.1;
+    const differences = differenceMaps(scene, checkSpectrum, checkRays, path, relativeStep * size);
+    expect(worstDifference(exact, differences, javascript, size), path).toBeLessThan(wanted);
+  });
 }

@@ -4,16 +4,9 @@ import type { Model } from '../../src/model/types.ts';
 import { findTangentParameter } from '../../src/ray/tangent-parameters.ts';
 import { splitPaths } from '../../src/ray/tangent-surfaces.ts';
 import { scenePath, scenePaths } from '../../src/scene/paths.ts';
-import type { Scene } from '../../src/scene/types.ts';
 import { faradayConstant, speedOfLight } from '../../src/units/constants.ts';
 import { frequencies, sceneOf, type SceneParts } from './scenes.ts';
-import { differenceMaps, followTangents, slopesBy, worstDifference } from './tangent-check.ts';
-
-// Checks are central differences of tight maps (Richardson 1911) and closed forms; the differences themselves
-// keep about 1e-9 of the largest derivative, near singular centres 1e-7.
-const wanted = 1e-6;
-const bundle = { northKpc: Float64Array.of(1, 3, -2.2), eastKpc: Float64Array.of(0.7, -1, 3.1) };
-const spectrum = frequencies(0.7e9, 2.3e9);
+import { checkAgainstDifferences, followTangents, slopesBy } from './tangent-check.ts';
 
 /** Values for every parameter of a model, as its own checks have them. */
 function textOf(model: Model, name: string, rename: Record<string, string> = {}): string {
@@ -33,18 +26,6 @@ const base: SceneParts = {
   layers: ['{model: sech2-disc, name: cosmic, normalisation: 1e-5 cm^-3, radius: 6 kpc, height: 1 kpc}'],
   turbulence: '{rms: 2 uG, cell: 0.05 kpc}',
 };
-
-function checkAgainstDifferences(scene: Scene, paths: readonly string[], relativeStep = 4e-3): void {
-  const javascript = followTangents(scene, spectrum, bundle, paths, 'javascript');
-  const wasm = followTangents(scene, spectrum, bundle, paths, 'wasm');
-  paths.forEach((path, p) => {
-    const exact = slopesBy(javascript, p);
-    expect(worstDifference(slopesBy(wasm, p), exact, javascript, 1), `${path} in WebAssembly`).toBeLessThan(1e-12);
-    const size = Math.abs(scenePath(scene, path).get()) || 0.1;
-    const differences = differenceMaps(scene, spectrum, bundle, path, relativeStep * size);
-    expect(worstDifference(exact, differences, javascript, size), path).toBeLessThan(wanted);
-  });
-}
 
 const models = [...modelLibrary().values()].map((model) => [model.name, model] as const);
 
@@ -84,6 +65,23 @@ test.each([
   const others = scenePaths(scene).filter((path) => /turbulence|height(Index|At)?$|halfThickness/.test(path) && !path.startsWith('galaxy'));
   // Seen from the side, a larger step of the inclination would move rays past the rim of a slab.
   checkAgainstDifferences(scene, [...geometry, ...others], step);
+});
+
+test('derivatives of clumped electrons', () => {
+  checkAgainstDifferences(sceneOf({ ...base, electrons: ['{model: exponential-disc, name: warm, density: 0.03 cm^-3, radius: 10 kpc, height: 1 kpc, filling: 0.3}'] }), ['thermalElectrons.warm.filling', 'thermalElectrons.warm.density']);
+});
+
+test('derivatives in equipartition', () => {
+  const scene = sceneOf({ ...base, field: [...base.field, spiral] });
+  checkAgainstDifferences({ ...scene, cosmicRays: { index: 2.8, layers: [], equipartition: { protonRatio: 100 } } }, ['cosmicRays.index', 'field.disc.strength', 'turbulence.unresolved.rms'], 1e-3);
+});
+
+test('rays have no derivative where a number acts by ways that are not followed', () => {
+  const scene = sceneOf(base);
+  const scaled = { ...scene, cosmicRays: { ...scene.cosmicRays, scaleTo: { fluxJy: 1, atHz: 1.4e9 } } };
+  const absorbing = { ...scene, freeFree: { temperatureK: 8000 } };
+  for (const one of [scaled, absorbing]) expect(findTangentParameter(one, 'field.even.x')).toBeUndefined();
+  expect(findTangentParameter(scene, 'numerics.tolerance')).toBeUndefined();
 });
 
 test('a number at its default of 0 has a derivative', () => {
