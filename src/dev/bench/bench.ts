@@ -3,6 +3,7 @@ import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { compareAtEqualAccuracy } from './equal-accuracy.ts';
 import { countSamples } from './samples.ts';
+import { timeSlopes } from './slopes.ts';
 import { compileTimes, firstCompileFlag, measureStartUp } from './start-up.ts';
 import { compareWorkers } from './workers.ts';
 
@@ -12,6 +13,7 @@ import { compareWorkers } from './workers.ts';
 const sections: Readonly<Record<string, (folder: string) => void | Promise<void>>> = {
   accuracy: compareAtEqualAccuracy,
   samples: countSamples,
+  slopes: timeSlopes,
   workers: compareWorkers,
   start: measureStartUp,
 };

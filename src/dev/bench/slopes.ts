@@ -1,13 +1,17 @@
 import { cpuUsage } from 'node:process';
-import { findMapScale, makeRayEngine, traceRays, type RayEngine } from '../ray/trace.ts';
-import { findTangentParameter } from '../ray/tangent-parameters.ts';
-import type { SpectralPoint } from '../ray/integrand.ts';
-import type { RayBundle } from '../ray/types.ts';
-import { scenePaths } from '../scene/paths.ts';
-import type { Scene } from '../scene/types.ts';
+import { findMapScale, makeRayEngine, traceRays, type RayEngine } from '../../ray/trace.ts';
+import { findTangentParameter } from '../../ray/tangent-parameters.ts';
+import type { SpectralPoint } from '../../ray/integrand.ts';
+import type { RayBundle } from '../../ray/types.ts';
+import { scenePaths } from '../../scene/paths.ts';
+import type { Scene } from '../../scene/types.ts';
+import spiralText from '../../../test/reference/a-spiral-quadrupole.yaml?raw';
+import helicalText from '../../../test/reference/d-damped-helical.yaml?raw';
+import { parseScene } from '../../scene/parse-scene.ts';
+import { channels, squareBundle, tolerance } from './prepare.ts';
 
 /** What derivatives of a scene cost, in CPU of forward models followed in the same run. */
-export interface SlopeCost {
+interface SlopeCost {
   readonly scene: string;
   /** Microseconds per ray of the forward model. */
   readonly forwardMicroseconds: number;
@@ -17,13 +21,13 @@ export interface SlopeCost {
   readonly alone: readonly { readonly path: string; readonly cost: number }[];
 }
 
-export type SlopeKind = 'strengths and densities' | 'shapes' | 'all';
+type SlopeKind = 'strengths and densities' | 'shapes' | 'all';
 
 /** Parameters in which the integrand's parts are linear. */
 const linear = /\.(strength|density|normalisation)$/;
 
 /** Measures, in one run, what derivatives of a scene cost: the least of a few rounds, in turn. */
-export function measureSlopes(name: string, scene: Scene, spectrum: readonly SpectralPoint[], bundle: RayBundle, rounds = 5): SlopeCost {
+function measureSlopes(name: string, scene: Scene, spectrum: readonly SpectralPoint[], bundle: RayBundle, rounds = 3): SlopeCost {
   const paths = scenePaths(scene).filter((path) => findTangentParameter(scene, path) !== undefined);
   const kinds: readonly (readonly [SlopeKind, readonly string[]])[] = [
     ['strengths and densities', paths.filter((path) => linear.test(path))],
@@ -57,8 +61,19 @@ function cpuOf(engine: RayEngine, scene: Scene, bundle: RayBundle, scale: Return
   return user + system;
 }
 
+/** What derivatives cost, for a scene without and one with unresolved turbulence. */
+export function timeSlopes(): void {
+  console.log('\nderivatives beside following rays alone, three channels, forward models each (CPU of this run)');
+  const spectrum = channels(3).map((frequencyHz) => ({ frequencyHz, centreHz: frequencyHz }));
+  for (const [name, text] of [['a-spiral-quadrupole', spiralText], ['d-damped-helical', helicalText]] as const) {
+    const scene = parseScene(text, `${name}.yaml`);
+    const cost = measureSlopes(name, { ...scene, numerics: { ...scene.numerics, tolerance } }, spectrum, squareBundle(64));
+    console.log(slopeLines(cost).join('\n'));
+  }
+}
+
 /** One line per scene and kind. */
-export function slopeLines({ scene, forwardMicroseconds, kinds, alone }: SlopeCost): readonly string[] {
+function slopeLines({ scene, forwardMicroseconds, kinds, alone }: SlopeCost): readonly string[] {
   const dearest = [...alone].sort((a, b) => b.cost - a.cost)[0];
   return [
     `${scene}: forward ${forwardMicroseconds.toFixed(2)} µs a ray`,
