@@ -2,6 +2,7 @@ import type { Direction } from '../formula/differentiate.ts';
 import type { Graph, NodeId } from '../formula/graph.ts';
 import { coordinatesOf } from '../formula/vector-calculus.ts';
 import { sixthOrderSlope } from '../math/slope.ts';
+import { findSplit } from '../scene/resolved-turbulence.ts';
 import { sections } from '../scene/section.ts';
 import { scenePath } from '../scene/paths.ts';
 import { shapeEntries } from '../scene/shape.ts';
@@ -38,11 +39,11 @@ const equipartitionRate = 'rate/equipartition';
 
 /**
  * The parameter at a path of a scene, or undefined where rays do not depend on it or not smoothly
- * (whole numbers), where thermal gas absorbs, or where electrons are scaled to a flux density that
+ * (whole numbers), where thermal gas absorbs, where turbulence is drawn, or where electrons are scaled to a flux density that
  * every number changes. Throws InputError for an unknown path.
  */
 export function findTangentParameter(scene: Scene, path: string): TangentParameter | undefined {
-  if (scenePath(scene, path).whole || scene.freeFree || scene.cosmicRays.scaleTo) return undefined;
+  if (scenePath(scene, path).whole || scene.freeFree || scene.cosmicRays.scaleTo || findSplit(scene)) return undefined;
   // The index also sets the steps of the ordered field's moments.
   if (path === 'cosmicRays.index' && scene.turbulence.ordered) return undefined;
   if (geometric.includes(path)) return { path, leaves: [] };
