@@ -5,6 +5,7 @@ import { overviewSvg } from '../figure/overview.ts';
 import { textTable } from '../figure/table.ts';
 import { summarisePosterior } from '../infer/posterior.ts';
 import type { Method } from '../infer/study-types.ts';
+import { structureSentence } from '../infer/whiteness.ts';
 import { convertQuantity } from '../units/quantity.ts';
 import { InputError } from '../units/input-error.ts';
 import { bestTexts, correlationTable, errorTexts } from './hypothesis-run.ts';
@@ -14,6 +15,7 @@ import { durationText } from './progress.ts';
 import { addStudyFlags } from './rank.ts';
 import { addModelMaps } from './rank-files.ts';
 import { sayWords } from './run-context.ts';
+import { whitenessOf, whitenessRecord } from './run-whiteness.ts';
 import { loadStudy, runStudy, type StudyFlags } from './study-run.ts';
 
 interface FitFlags extends StudyFlags {
@@ -39,6 +41,7 @@ async function fit(path: string, flags: FitFlags): Promise<void> {
   const method = flags.method ?? (study.method === 'least-squares' ? 'walkers' : study.method);
   const { runs: [run], seconds, clear } = await runStudy(loaded, method, flags);
   const observed = measureOnData(data, run.bestScene, ring);
+  const white = whitenessOf(run, data, likelihood);
   const folder = new OutputFolder(flags.out);
   const record = {
     hypothesis: run.prepared.name,
@@ -50,6 +53,7 @@ async function fit(path: string, flags: FitFlags): Promise<void> {
     best: bestTexts(run.prepared, run.fit),
     errors: errorTexts(run.prepared, run.fit),
     correlations: correlationTable(run.prepared, run.fit),
+    ...whitenessRecord(white),
     ...posteriorRecord(run),
   };
   folder.add('fit.json', `${JSON.stringify(record, null, 2)}\n`);
@@ -60,7 +64,7 @@ async function fit(path: string, flags: FitFlags): Promise<void> {
   folder.write();
   clear();
   if (flags.json) process.stdout.write(`${JSON.stringify({ ...record, seconds, files: folder.names }, null, 2)}\n`);
-  sayWords(flags, '', parameterTable(run), '', `${posteriorSentence(run)} Tables and figures: ${flags.out}/ (${durationText(seconds)})`);
+  sayWords(flags, '', parameterTable(run), '', `${[posteriorSentence(run), white ? structureSentence(run.prepared.name, white.all) : ''].filter((sentence) => sentence !== '').join(' ')} Tables and figures: ${flags.out}/ (${durationText(seconds)})`);
 }
 
 /** Median with its 68 % of every parameter, as text. */

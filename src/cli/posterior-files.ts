@@ -2,7 +2,8 @@ import { azimuthProfileSvg } from '../figure/azimuth-profile.ts';
 import { measureOnData, type Measured } from '../figure/comparison.ts';
 import { pairwisePlotSvg } from '../figure/pairwise-plot.ts';
 import { frequencyLabel, profileOfP, profileOfRm } from '../figure/sky-views.ts';
-import { writeCsv } from '../files/csv-write.ts';
+import { writeCsv, type CsvColumn } from '../files/csv-write.ts';
+import { writeParquet } from '../files/parquet-write.ts';
 import { drawPosterior, summarisePosterior, type Posterior } from '../infer/posterior.ts';
 import type { DataSet } from '../infer/types.ts';
 import type { Ring } from '../measure/ring-profile.ts';
@@ -39,7 +40,10 @@ export async function predictProfiles(run: FittedRun, posterior: Posterior, data
 export function addPosteriorFiles(folder: OutputFolder, name: string, run: SampledRun, observed: Measured, data: DataSet, seed: number): void {
   const { posterior, prepared, drawn } = run;
   if (!posterior || prepared.parameters.length === 0) return;
-  folder.add(`${name}/posterior.csv`, posteriorCsv(run, posterior, seed));
+  const columns = posteriorColumns(run, posterior);
+  const about = { hypothesis: prepared.name, method: posterior.method, version, seed };
+  folder.add(`${name}/posterior.csv`, writeCsv(columns, about));
+  folder.add(`${name}/posterior.parquet`, writeParquet(columns, about));
   folder.add(`${name}/pairwise.svg`, pairwisePlotSvg(
     prepared.parameters.map(({ path, unit, shownUnit }, j) => ({
       label: path,
@@ -76,19 +80,16 @@ function predictiveBand(profiles: readonly { readonly azimuthDeg: ArrayLike<numb
 }
 
 /** One row per sample: free parameters and derived numbers in shown units, ln likelihood, weight. */
-function posteriorCsv({ prepared }: SampledRun, { samples, weights, logLikelihoods, method }: Posterior, seed: number): string {
+function posteriorColumns({ prepared }: SampledRun, { samples, weights, logLikelihoods }: Posterior): CsvColumn[] {
   const scenes = prepared.derived.length > 0 ? samples.map((sample) => prepared.sceneOf(sample)) : [];
-  return writeCsv(
-    [
-      ...prepared.parameters.map(({ path, unit, shownUnit }, j) => ({
-        name: path, unit: shownUnit, type: 'float64' as const, values: Float64Array.from(samples, (sample) => convertQuantity(sample[j], unit, shownUnit)),
-      })),
-      ...prepared.derived.map(({ name, unit, value }) => ({ name, unit, type: 'float64' as const, values: Float64Array.from(scenes, value) })),
-      { name: 'lnLikelihood', type: 'float64', values: logLikelihoods },
-      { name: 'weight', type: 'float64', values: weights, description: 'share of the posterior; weights sum to 1' },
-    ],
-    { hypothesis: prepared.name, method, version, seed },
-  );
+  return [
+    ...prepared.parameters.map(({ path, unit, shownUnit }, j): CsvColumn => ({
+      name: path, unit: shownUnit, type: 'float64', values: Float64Array.from(samples, (sample) => convertQuantity(sample[j], unit, shownUnit)),
+    })),
+    ...prepared.derived.map(({ name, unit, value }): CsvColumn => ({ name, unit, type: 'float64', values: Float64Array.from(scenes, value) })),
+    { name: 'lnLikelihood', type: 'float64', values: logLikelihoods },
+    { name: 'weight', type: 'float64', values: weights, description: 'share of the posterior; weights sum to 1' },
+  ];
 }
 
 /** Summary of a posterior for JSON, by path, in shown units. */

@@ -11,6 +11,7 @@ import { mapFits } from '../files/sky-fits-write.ts';
 import { decidedBy } from '../infer/decided-by.ts';
 import type { Likelihood, ResidualPlace } from '../infer/likelihood.ts';
 import { compareEvidences, evidenceVerdict, type EvidencePair, type JudgedHypothesis } from '../infer/evidence-verdict.ts';
+import { structureSentence } from '../infer/whiteness.ts';
 import { misfitSentence, rankHypotheses, type RankedHypothesis } from '../infer/rank.ts';
 import type { Study } from '../infer/study-types.ts';
 import type { DataSet } from '../infer/types.ts';
@@ -23,6 +24,7 @@ import { convertQuantity, formatQuantity } from '../units/quantity.ts';
 import { gatherAssumptions } from './assumptions.ts';
 import { bestTexts, correlationTable, errorTexts, type FittedRun } from './hypothesis-run.ts';
 import { addPosteriorFiles, posteriorRecord, type SampledRun } from './posterior-files.ts';
+import { whitenessOf, whitenessRecord, type RunWhiteness } from './run-whiteness.ts';
 import { bandFileName, slug, type OutputFolder } from './output-folder.ts';
 import { version } from './version.ts';
 
@@ -31,6 +33,8 @@ export interface RankOutcome {
   readonly ordered: readonly SampledRun[];
   readonly ranked: readonly RankedHypothesis[];
   readonly rows: readonly RankingRow[];
+  /** Of the residuals of each in order, and band by band; none where there are no maps. */
+  readonly whiteness: readonly RunWhiteness[];
   /** Every pair by evidence; none where there are none. */
   readonly pairs: readonly EvidencePair[];
   readonly verdict: string;
@@ -65,6 +69,7 @@ export function rankRuns(runs: readonly SampledRun[], data: DataSet, likelihood:
   // Residuals of other data come after those of the maps, and have no place in them.
   const ofMaps = ({ fit }: SampledRun): Float64Array => fit.residuals.subarray(0, likelihood.places.length);
   const best = evidence(ranked[0].name);
+  const white = ordered.flatMap((run) => whitenessOf(run, data, likelihood) ?? []);
   const rows = ranked.map((hypothesis, k): RankingRow => {
     const decided = k === 0 || data.planes.length === 0 ? undefined : decidedBy(data, likelihood.places, ofMaps(ordered[0]), ofMaps(ordered[k]), azimuth);
     const own = evidence(hypothesis.name);
@@ -73,6 +78,7 @@ export function rankRuns(runs: readonly SampledRun[], data: DataSet, likelihood:
       chi2PerN: hypothesis.reducedChi2,
       deltaAic: hypothesis.deltaAic,
       ...(own && best && { deltaLnEvidence: own.logEvidence - best.logEvidence, deltaLnEvidenceError: Math.hypot(own.error, best.error) }),
+      ...(white[k] && { neighbours: white[k].all.correlation, neighboursError: white[k].all.error }),
       ...(decided && { decidedBy: decidedText(decided, data) }),
     };
   });
@@ -84,6 +90,7 @@ export function rankRuns(runs: readonly SampledRun[], data: DataSet, likelihood:
     ordered,
     ranked,
     rows,
+    whiteness: white,
     pairs: byEvidence ? compareEvidences(judged) : [],
     verdict: [...verdict, ...unsettled].filter((sentence) => sentence !== '').join(' '),
   };
@@ -124,7 +131,7 @@ export interface RankReport {
 }
 
 /** `ranking.json`: one record per hypothesis, best first. */
-export function rankingRecords({ ordered, ranked }: RankOutcome): readonly Record<string, unknown>[] {
+export function rankingRecords({ ordered, ranked, whiteness: white }: RankOutcome): readonly Record<string, unknown>[] {
   return ranked.map((hypothesis, k) => {
     const { prepared, fit } = ordered[k];
     return {
@@ -141,6 +148,7 @@ export function rankingRecords({ ordered, ranked }: RankOutcome): readonly Recor
       converged: fit.converged,
       atBound: prepared.parameters.filter((_, j) => fit.atBound[j]).map(({ path }) => path),
       evaluations: fit.evaluations,
+      ...whitenessRecord(white[k]),
       ...posteriorRecord(ordered[k]),
     };
   });
@@ -198,7 +206,7 @@ export function addModelMaps(folder: OutputFolder, name: string, run: FittedRun,
 function rankingCsv({ outcome, study, seed }: RankReport): string {
   const rows = outcome.ranked.flatMap((hypothesis, k) => {
     const { prepared, fit } = outcome.ordered[k];
-    const common = { place: k + 1, hypothesis };
+    const common = { place: k + 1, hypothesis, neighbours: outcome.whiteness[k]?.all.correlation ?? NaN };
     if (prepared.parameters.length === 0) return [{ ...common, path: '', value: NaN, error: NaN, unit: '' }];
     return prepared.parameters.map(({ path, unit, shownUnit: shown }, j) => {
       return { ...common, path, value: convertQuantity(fit.values[j], unit, shown), error: convertQuantity(fit.errors[j], unit, shown), unit: shown };
@@ -213,6 +221,7 @@ function rankingCsv({ outcome, study, seed }: RankReport): string {
       { name: 'dof', type: 'int64', values: numbers((row) => row.hypothesis.degreesOfFreedom) },
       { name: 'aic', type: 'float64', values: numbers((row) => row.hypothesis.aic) },
       { name: 'bic', type: 'float64', values: numbers((row) => row.hypothesis.bic) },
+      { name: 'neighbours', type: 'float64', values: numbers((row) => row.neighbours), description: 'correlation of whitened residuals a beam apart' },
       { name: 'parameter', type: 'string', values: rows.map((row) => row.path) },
       { name: 'value', type: 'float64', values: numbers((row) => row.value), description: 'in the unit of the row' },
       { name: 'error', type: 'float64', values: numbers((row) => row.error), description: 'one standard deviation; nan where a bound holds it' },
@@ -243,6 +252,7 @@ function htmlReport(report: RankReport): Parameters<typeof reportHtml>[0] {
         chi2PerN: row.chi2PerN,
         deltaAic: row.deltaAic,
         ...(row.deltaLnEvidence !== undefined && { deltaLnEvidence: row.deltaLnEvidence, deltaLnEvidenceError: row.deltaLnEvidenceError }),
+        ...(row.neighbours !== undefined && { neighbours: row.neighbours, neighboursError: row.neighboursError }),
         ...(row.decidedBy !== undefined && { decidedBy: row.decidedBy }),
         verdict: symmetrySentences(run.bestScene).join(' '),
         parameters: run.prepared.parameters.map((_, j) => reportParameter(run, j)),
@@ -252,6 +262,7 @@ function htmlReport(report: RankReport): Parameters<typeof reportHtml>[0] {
     lineUp: lineUpRows(report, scene),
     legend: comparisonNotes(ring),
     caveats: [
+      ...outcome.whiteness.slice(0, 1).map(({ all }) => structureSentence(outcome.rows[0].name, all)).filter((sentence) => sentence !== ''),
       ...(study.method === 'least-squares' ? ['Errors are those of a Gaussian likelihood near the best fit; they do not see other minima.'] : []),
       ...outcome.ordered.filter(({ fit }) => !fit.converged).map(({ prepared }) => `The fit of "${prepared.name}" did not converge; its χ² is an upper limit.`),
       ...outcome.ordered.flatMap(({ prepared, fit }) =>

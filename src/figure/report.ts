@@ -4,7 +4,7 @@ import type { MethodsText } from './methods-text.ts';
 import { quantityText, withError, withInterval } from './number-text.ts';
 import { htmlList, htmlPage, htmlTable, scrolling } from './report-html.ts';
 import { escapeXml } from './svg.ts';
-import { chi2Text, deltaAicText, deltaLnEvidenceText, ranked } from './table.ts';
+import { chi2Text, deltaAicText, deltaLnEvidenceText, neighboursText, ranked } from './table.ts';
 
 /** One parameter of a fitted hypothesis. Numbers in `unit`. */
 export interface ReportParameter {
@@ -27,6 +27,9 @@ export interface ReportHypothesis {
   /** Natural logarithm of the evidence above the best's, from nested sampling. */
   readonly deltaLnEvidence?: number;
   readonly deltaLnEvidenceError?: number;
+  /** Correlation of neighbouring whitened residuals, with one standard deviation. */
+  readonly neighbours?: number;
+  readonly neighboursError?: number;
   /** Where the data tell it from the best. */
   readonly decidedBy?: string;
   /** A sentence under its column, such as what symmetry forbids it. */
@@ -97,15 +100,18 @@ function section(heading: string, html: string): string {
 
 function rankingHtml(hypotheses: readonly ReportHypothesis[]): string {
   const evidence = hypotheses.some((one) => one.deltaLnEvidence !== undefined);
+  const white = hypotheses.some((one) => one.neighbours !== undefined);
   const rows = ranked(hypotheses).map((one, k) => [
     `${k + 1}. ${one.name}`,
     chi2Text(one.chi2PerN),
+    ...(white ? [neighboursText(one)] : []),
     deltaAicText(one.deltaAic),
     ...(evidence ? [deltaLnEvidenceText(one)] : []),
     one.decidedBy ?? '',
   ]);
-  const headings = ['hypothesis', 'χ²/N', 'Δ AIC', ...(evidence ? ['Δ ln Z'] : []), 'decided by'];
-  return htmlTable('Hypotheses from best to worst; Δ is counted from the best.', headings, rows, evidence ? [1, 2, 3] : [1, 2]);
+  const headings = ['hypothesis', 'χ²/N', ...(white ? ['neighbours'] : []), 'Δ AIC', ...(evidence ? ['Δ ln Z'] : []), 'decided by'];
+  const caption = `Hypotheses from best to worst; Δ is counted from the best.${white ? ' Neighbours: the correlation of whitened residuals a beam apart, 0 where noise alone is left.' : ''}`;
+  return htmlTable(caption, headings, rows, headings.map((_, k) => k).slice(1, -1));
 }
 
 function parametersHtml(one: ReportHypothesis): string {

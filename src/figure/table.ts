@@ -39,6 +39,9 @@ export interface RankingRow {
   /** ln evidence less the best's, with one standard deviation of the difference; from nested sampling only. */
   readonly deltaLnEvidence?: number;
   readonly deltaLnEvidenceError?: number;
+  /** Correlation of neighbouring whitened residuals, with one standard deviation: 0 where noise alone is left. */
+  readonly neighbours?: number;
+  readonly neighboursError?: number;
   /** Where the data tell it from the best, in words; empty for the best. */
   readonly decidedBy?: string;
 }
@@ -70,16 +73,24 @@ export function deltaLnEvidenceText({ deltaLnEvidence, deltaLnEvidenceError }: P
   return deltaLnEvidenceError === undefined ? fixedText(deltaLnEvidence, 1) : `${fixedText(deltaLnEvidence, 1)} ± ${fixedText(deltaLnEvidenceError, 1)}`;
 }
 
-/** The ranking as plain text: place, name, chi-squared per datum, AIC above the best, Δ ln Z where known, what decided. */
+/** Correlation of neighbouring residuals, with its error. */
+export function neighboursText({ neighbours, neighboursError }: Pick<RankingRow, 'neighbours' | 'neighboursError'>): string {
+  if (neighbours === undefined || neighboursError === undefined || !Number.isFinite(neighbours)) return BLANK_TEXT;
+  return `${fixedText(neighbours, 2)} ± ${fixedText(neighboursError, 2)}`;
+}
+
+/** The ranking as plain text: place, name, chi-squared per datum, whiteness where known, AIC above the best, Δ ln Z where known, what decided. */
 export function rankingTable(rows: readonly RankingRow[]): string {
   const evidence = rows.some((row) => row.deltaLnEvidence !== undefined);
+  const white = rows.some((row) => row.neighbours !== undefined);
   const lines = ranked(rows).map((row, k) => [
-    `${k + 1} ${row.name}`, chi2Text(row.chi2PerN), deltaAicText(row.deltaAic), ...(evidence ? [deltaLnEvidenceText(row)] : []), row.decidedBy ?? '',
+    `${k + 1} ${row.name}`, chi2Text(row.chi2PerN), ...(white ? [neighboursText(row)] : []), deltaAicText(row.deltaAic), ...(evidence ? [deltaLnEvidenceText(row)] : []), row.decidedBy ?? '',
   ]);
   return textTable(
     [
       { title: '  hypothesis', align: 'left' },
       { title: 'χ²/N', align: 'decimal' },
+      ...(white ? [{ title: 'neighbours', align: 'right' as const }] : []),
       { title: 'Δ AIC', align: 'decimal' },
       ...(evidence ? [{ title: 'Δ ln Z', align: 'right' as const }] : []),
       { title: 'decided by', align: 'left' },

@@ -1,5 +1,5 @@
 import { ByteWriter, ParquetWriter, schemaFromColumnData } from 'hyparquet-writer';
-import type { TableColumn } from './csv-write.ts';
+import type { CsvColumn, TableColumn } from './csv-write.ts';
 
 /** Rows of a row group: what is held in memory at once. */
 const groupRows = 20_000;
@@ -76,4 +76,20 @@ export class ParquetTable {
   private emptyGroup(): readonly Cells[] {
     return this.columns.map(({ type }) => (type === 'float64' ? new Float64Array(groupRows) : type === 'int64' ? new BigInt64Array(groupRows) : []));
   }
+}
+
+/** A whole table as a Parquet file, its columns as `writeCsv` takes them. */
+export function writeParquet(columns: readonly CsvColumn[], meta: Readonly<Record<string, string | number>> = {}): Uint8Array {
+  const parts: Uint8Array[] = [];
+  const table = new ParquetTable(columns, meta, { add: (bytes) => parts.push(bytes) });
+  const rows = columns[0]?.values.length ?? 0;
+  for (let row = 0; row < rows; row++) table.add(columns.map(({ values }) => values[row]));
+  table.finish();
+  const whole = new Uint8Array(parts.reduce((sum, part) => sum + part.length, 0));
+  let at = 0;
+  for (const part of parts) {
+    whole.set(part, at);
+    at += part.length;
+  }
+  return whole;
 }

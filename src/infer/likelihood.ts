@@ -16,6 +16,9 @@ export interface ResidualPlace {
   /** Where in the map, from 1 as in FITS, not whole. */
   readonly pixelX: number;
   readonly pixelY: number;
+  /** Whole-number place among the plane's points, along the two axes of their lattice (or of the pixels). */
+  readonly slow: number;
+  readonly fast: number;
 }
 
 /** A Gaussian likelihood of a data set: ln L = logNormalisation - chi2/2, chi2 = |residuals|^2. */
@@ -45,8 +48,8 @@ export function makeLikelihood(data: DataSet): Likelihood {
     if (!whiteners.includes(whitener)) whiteners.push(whitener);
     return preparePlane(whitener, plane);
   });
-  const places = planes.flatMap(({ whitener }, plane) =>
-    Array.from(whitener.column, (column, k) => ({ plane, pixelX: column + 1, pixelY: whitener.row[k] + 1 })),
+  const places = planes.flatMap(({ whitener: { column, row, lattice } }, plane) =>
+    Array.from(column, (x, k): ResidualPlace => ({ plane, pixelX: x + 1, pixelY: row[k] + 1, slow: lattice?.slow[k] ?? row[k], fast: lattice?.fast[k] ?? x })),
   );
   const residuals = (model: readonly Float64Array[]): Float64Array => {
     if (model.length !== planes.length) {

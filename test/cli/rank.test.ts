@@ -36,6 +36,7 @@ interface Record_ {
   readonly dof: number;
   readonly best: Readonly<Record<string, string>>;
   readonly errors: Readonly<Record<string, string>>;
+  readonly neighbourCorrelation: { readonly correlation: number; readonly error: number; readonly bands: Readonly<Record<string, unknown>> };
 }
 
 function writeScenes(folder: string): void {
@@ -66,12 +67,18 @@ describe('gyrelight rank', () => {
       for (const [path, truth] of [['field.disc.strength', 6], ['field.halo.strength', 2]] as const) {
         expect(Math.abs(value(records[0].best[path]) - truth) / value(records[0].errors[path])).toBeLessThan(4);
       }
+      // The truth leaves white residuals, a field without the halo does not.
+      const [first, ...rest] = records.map(({ neighbourCorrelation: { correlation, error } }) => correlation / error);
+      expect(Math.abs(first)).toBeLessThan(3);
+      expect(Math.max(...rest)).toBeGreaterThan(3);
+      expect(Object.keys(records[0].neighbourCorrelation.bands)).toEqual(['1.4 GHz', '4.8 GHz']);
+      expect(stdout).toMatch(/neighbours/);
       for (const name of ['ranking.csv', 'report.html']) expect(namesIn(join(folder, 'out'))).toContain(name);
       for (const name of ['overview.svg', 'best.scene.yaml', 'model-Q-1.4GHz.fits', 'residual-U-4.8GHz.fits']) expect(namesIn(join(folder, 'out', 'quadrupole'))).toContain(name);
       expect(existsSync(join(folder, 'out', 'unfinished'))).toBe(false);
       needPython(context, 'astropy');
       const columns = runPython("import sys\nfrom astropy.table import Table\nprint(','.join(Table.read(sys.argv[1], format='ascii.ecsv').colnames))", [join(folder, 'out', 'ranking.csv')]);
-      expect(columns.trim()).toBe('place,hypothesis,chi2,dof,aic,bic,parameter,value,error,unit');
+      expect(columns.trim()).toBe('place,hypothesis,chi2,dof,aic,bic,neighbours,parameter,value,error,unit');
       expect(runPython(readmePython(join(folder, 'out')))).toContain('(1, 18, 19) gyrelight: 1 place');
       const again = gyrelight(['compare', join('out', 'quadrupole', 'best.scene.yaml'), 'study.yaml', '--out', 'cmp', '--json'], folder);
       expect(again.status).toBe(0);

@@ -2,7 +2,9 @@ import { spawn } from 'node:child_process';
 import { existsSync, mkdtempSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
+import { parquetReadObjects } from 'hyparquet';
 import { expect, it } from 'vitest';
+import { csvNumbers, parseCsv } from '../../src/files/csv-parse.ts';
 import { inFolder } from '../support/tools.ts';
 import { gyrelight, namesIn, repository, smallScene } from './run.ts';
 
@@ -31,8 +33,8 @@ function prepare(folder: string): void {
 
 const flags = ['--live', '40', '--starts', '0', '--workers', '1', '--quiet'];
 
-it('rank with nested sampling: Δ ln Z, a sentence per pair, posterior tables and figures', () => {
-  inFolder((folder) => {
+it('rank with nested sampling: Δ ln Z, a sentence per pair, posterior tables and figures', async () => {
+  await inFolderAsync(async (folder) => {
     prepare(folder);
     const { status, stdout, stderr } = gyrelight(['rank', 'a.study.yaml', '--out', 'r', '--json', ...flags], folder);
     expect(stderr).toBe('');
@@ -43,8 +45,15 @@ it('rank with nested sampling: Δ ln Z, a sentence per pair, posterior tables an
     expect(result.pairs).toHaveLength(1);
     expect(result.pairs[0].deltaLogEvidence).toBeGreaterThan(5);
     expect(result.verdict).toMatch(/prefer "halo" over "weaker halo": very strong evidence/);
-    expect(namesIn(join(folder, 'r/halo'))).toEqual(expect.arrayContaining(['pairwise.svg', 'posterior.csv', 'profile-P-1.4GHz.svg']));
+    expect(namesIn(join(folder, 'r/halo'))).toEqual(expect.arrayContaining(['pairwise.svg', 'posterior.csv', 'posterior.parquet', 'profile-P-1.4GHz.svg']));
     expect(readFileSync(join(folder, 'r/report.html'), 'utf8')).toContain('Δ ln Z');
+    // The same table in both forms.
+    const csv = parseCsv(readFileSync(join(folder, 'r/halo/posterior.csv'), 'utf8'), 'posterior.csv');
+    const bytes = readFileSync(join(folder, 'r/halo/posterior.parquet'));
+    const rows = await parquetReadObjects({ file: bytes.buffer.slice(bytes.byteOffset, bytes.byteOffset + bytes.length) as ArrayBuffer });
+    for (const name of ['field.disc.strength', 'field.halo.strength', 'lnLikelihood', 'weight']) {
+      expect(rows.map((row) => row[name] as number)).toEqual([...csvNumbers(csv, name)]);
+    }
   });
 });
 

@@ -5,7 +5,7 @@ import { describe, expect, it } from 'vitest';
 import { csvNumbers, csvTexts, parseCsv } from '../../src/files/csv-parse.ts';
 import { csvHead, csvRow, writeCsv, type TableColumn } from '../../src/files/csv-write.ts';
 import { FileWriter } from '../../src/files/file-writer.ts';
-import { ParquetTable } from '../../src/files/parquet-write.ts';
+import { ParquetTable, writeParquet } from '../../src/files/parquet-write.ts';
 import { namesIn } from '../cli/run.ts';
 import { inFolder } from '../support/tools.ts';
 
@@ -51,6 +51,17 @@ describe('tables written row by row', () => {
         if (read[k].point !== BigInt(point) || read[k].scene !== scene || !Object.is(read[k].depth, depth)) throw new Error(`row ${k} differs`);
       });
     });
+  });
+
+  it('as whole Parquet tables are read back, also without rows', async () => {
+    for (const count of [0, 1, 20_001]) {
+      const values = Float64Array.from({ length: count }, (_, k) => Math.sin(k));
+      const bytes = writeParquet([{ name: 'field.halo.strength', unit: 'uG', type: 'float64', values }], { method: 'nested' });
+      const buffer = bytes.buffer as ArrayBuffer;
+      expect(parquetMetadata(buffer).key_value_metadata).toContainEqual({ key: 'method', value: 'nested' });
+      const read = await parquetReadObjects({ file: buffer });
+      expect(read.map((row) => row['field.halo.strength'] as number)).toEqual([...values]);
+    }
   });
 
   it('leave nothing where they are abandoned, and are not there before they are finished', () => {

@@ -186,7 +186,7 @@ print(multivariate_normal.logpdf(d['y'], cov=d['c']))`;
     // Pixels 3 and 7 are out: the sixth residual is pixel 6.
     expect(residuals[5]).toBe((6 - 1) / 2.6);
     expect(residuals[18]).toBe(2);
-    expect(likelihood.places[5]).toEqual({ plane: 0, pixelX: 2, pixelY: 2 });
+    expect(likelihood.places[5]).toEqual({ plane: 0, pixelX: 2, pixelY: 2, slow: 1, fast: 1 });
     const logs = rms.reduce((sum, value, p) => sum + (p === 3 || p === 7 ? 0 : Math.log(value)), 20 * Math.log(3));
     expect(relative(likelihood.logNormalisation, -logs - 19 * Math.log(2 * Math.PI))).toBeLessThan(1e-14);
   });

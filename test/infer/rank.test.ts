@@ -93,7 +93,7 @@ describe('decidedBy', () => {
   };
   // 36 places in each plane, every 10 deg of azimuth.
   const places: ResidualPlace[] = data.planes.flatMap((_, plane) =>
-    Array.from({ length: 36 }, (__, k) => ({ plane, pixelX: k, pixelY: 0 })),
+    Array.from({ length: 36 }, (__, k) => ({ plane, pixelX: k, pixelY: 0, slow: 0, fast: k })),
   );
   const azimuth = ({ pixelX }: ResidualPlace): number => (pixelX * Math.PI) / 18 - Math.PI;
   const zero = new Float64Array(places.length);
