@@ -163,13 +163,11 @@ function correlate(noise: Float32Array, potential: TurbulenceGrids['potential'],
 function fieldSquares(potential: TurbulenceGrids['potential'], cells: number): Float32Array {
   const strides = gridStrides(potential[0]);
   const squares = new Float32Array(cells ** 3);
+  const across = strides.map((_, axis) => strides.filter((_, k) => k !== axis));
   const slope = ({ coefficients }: SplineGrid, at: number, axis: number): number => {
-    const [p, q] = strides.filter((_, k) => k !== axis);
-    const face = (here: number): number => {
-      const line = (c: number): number => coefficients[c - p] + 4 * coefficients[c] + coefficients[c + p];
-      return line(here - q) + 4 * line(here) + line(here + q);
-    };
-    return ((face(at + strides[axis]) - face(at - strides[axis])) / 72) * cells;
+    const stride = strides[axis];
+    const [p, q] = across[axis];
+    return ((faceSum(coefficients, at + stride, p, q) - faceSum(coefficients, at - stride, p, q)) / 72) * cells;
   };
   const [ax, ay, az] = potential;
   for (let i = 0, to = 0; i < cells; i++) {
@@ -184,4 +182,11 @@ function fieldSquares(potential: TurbulenceGrids['potential'], cells: number): F
     }
   }
   return squares;
+}
+
+/** Nine coefficients of a plane with the weights (1, 4, 1) along both axes. */
+function faceSum(c: SplineGrid['coefficients'], at: number, p: number, q: number): number {
+  const corners = c[at - p - q] + c[at - p + q] + c[at + p - q] + c[at + p + q];
+  const edges = c[at - p] + c[at + p] + c[at - q] + c[at + q];
+  return corners + 4 * edges + 16 * c[at];
 }

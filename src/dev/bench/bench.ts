@@ -5,6 +5,7 @@ import { compareAtEqualAccuracy } from './equal-accuracy.ts';
 import { countSamples } from './samples.ts';
 import { timeSlopes } from './slopes.ts';
 import { compileTimes, firstCompileFlag, measureStartUp } from './start-up.ts';
+import { measureTurbulence } from './turbulence.ts';
 import { compareWorkers } from './workers.ts';
 
 // Compares the speed of following rays with plain references, all in one run: ratios travel
@@ -16,6 +17,7 @@ const sections: Readonly<Record<string, (folder: string) => void | Promise<void>
   slopes: timeSlopes,
   workers: compareWorkers,
   start: measureStartUp,
+  turbulence: measureTurbulence,
 };
 
 const wanted = process.argv.slice(2);
