@@ -98,6 +98,7 @@ export function mapSummary(scene: Scene, sky: ObservedSky, provenance: Provenanc
     version: provenance.version,
     seed: provenance.seed,
     sceneSha256: sha256OfText(provenance.sceneText),
+    ...(provenance.inputs && { inputs: provenance.inputs }),
     image: { nx: sky.grid.nx, ny: sky.grid.ny, pixelArcsec: sky.grid.pixelArcsec, pixelKpc: sky.grid.pixelKpc },
     bands: sky.cubes.map((cube) => ({
       name: cube.band,

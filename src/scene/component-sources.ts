@@ -14,9 +14,18 @@ export interface ComponentSources {
 export function noteSources(source: GridSource | undefined, volume: Galaxy['volume'], inputs: Map<string, InputFile>): ComponentSources {
   const open = (file: string): GridFile => {
     if (!source) throw new InputError(`the file "${file}" cannot be read here: this scene was given without its files`);
-    const read = source(file);
+    const read = inWords(file, () => source(file));
     inputs.set(file, { file, sha256: read.sha256 });
     return read;
   };
   return { open, volume };
+}
+
+/** What is wrong with a file, told where the scene names it. */
+function inWords(file: string, read: () => GridFile): GridFile {
+  try {
+    return read();
+  } catch (error) {
+    throw error instanceof InputError ? new InputError(`${file}: ${error.reason}`) : error;
+  }
 }
