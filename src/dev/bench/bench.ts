@@ -6,6 +6,7 @@ import { countSamples } from './samples.ts';
 import { timeSlopes } from './slopes.ts';
 import { compileTimes, firstCompileFlag, measureStartUp } from './start-up.ts';
 import { measureTurbulence } from './turbulence.ts';
+import { timeWholeMap } from './whole-map.ts';
 import { compareWorkers } from './workers.ts';
 
 // Compares the speed of following rays with plain references, all in one run: ratios travel
@@ -13,6 +14,7 @@ import { compareWorkers } from './workers.ts';
 
 const sections: Readonly<Record<string, (folder: string) => void | Promise<void>>> = {
   accuracy: compareAtEqualAccuracy,
+  map: timeWholeMap,
   samples: countSamples,
   slopes: timeSlopes,
   workers: compareWorkers,
