@@ -71,7 +71,7 @@ describe('what does not load, and the words', () => {
     [5, '', '1:1: source is missing: the published source, or that it is an own definition, is wanted'],
     [5, 'sauce: x', '5:1: unknown key "sauce" (did you mean "source"?); allowed are name, kind, title, meaning, source, parameters, choices, define, potential, armPotential, euler, field, density, edges, checks'],
     [8, '  core: {unit: kpc, range: [0, 50], default: 60, meaning: core radius}', '8:46: parameter "core" has default 60 kpc, outside its range 0 to 50 kpc'],
-    [8, '  core: {unit: kps, range: [0, 50], meaning: core radius}', '8:16: unknown unit "kps" (did you mean "kpc"?); units are kpc, pc, Mpc, m, cm, km, arcsec, arcmin, deg, rad, sr, s, Myr, Gyr, Hz, kHz, MHz, GHz, uG, nG, mG, Jy, mJy, uJy, MJy, beam, K'],
+    [8, '  core: {unit: kps, range: [0, 50], meaning: core radius}', '8:16: unknown unit "kps" (did you mean "kpc"?); units are kpc, pc, Mpc, m, cm, km, arcsec, arcmin, deg, rad, sr, s, Myr, Gyr, Hz, kHz, MHz, GHz, G, T, uG, nG, mG, Jy, mJy, uJy, MJy, beam, K'],
     [8, '  core: {unit: kpc, range: [50, 0], meaning: core radius}', '8:28: parameter "core" has the range 50 to 0, which is empty'],
     [8, '  core: {unit: kpc, range: [0, .inf], meaning: core radius}', '8:32: parameters.core.range, item 2: Infinity is given where a number is wanted'],
     [8, '  core: {unit: kpc, range: [0, 50], whole: true, default: 1.5, meaning: core radius}', '8:59: parameter "core" has default 1.5 kpc, outside its range a whole number, 0 to 50 kpc'],
