@@ -9,14 +9,16 @@ import { structureSentence } from '../infer/whiteness.ts';
 import { convertQuantity } from '../units/quantity.ts';
 import { InputError } from '../units/input-error.ts';
 import { bestTexts, correlationTable, errorTexts } from './hypothesis-run.ts';
+import { dryRunWords } from './nested-cluster.ts';
 import { OutputFolder } from './output-folder.ts';
 import { addPosteriorFiles, posteriorRecord, type SampledRun } from './posterior-files.ts';
 import { durationText } from './progress.ts';
-import { addStudyFlags } from './rank.ts';
+import { addRunFlags, addStudyFlags } from './rank.ts';
 import { addModelMaps } from './rank-files.ts';
 import { sayWords } from './run-context.ts';
 import { whitenessOf, whitenessRecord } from './run-whiteness.ts';
-import { loadStudy, runStudy, type StudyFlags } from './study-run.ts';
+import { loadStudy, type StudyFlags } from './study-load.ts';
+import { runStudy } from './study-run.ts';
 
 interface FitFlags extends StudyFlags {
   readonly hypothesis?: string;
@@ -25,7 +27,7 @@ interface FitFlags extends StudyFlags {
 
 /** `gyrelight fit STUDY`: one hypothesis of a study in depth, with its posterior. */
 export function addFit(program: Command): void {
-  addStudyFlags(program.command('fit <study>').description('fit one hypothesis of a study in depth: posterior, pairwise plot, predictive bands'))
+  addRunFlags(addStudyFlags(program.command('fit <study>').description('fit one hypothesis of a study in depth: posterior, pairwise plot, predictive bands')))
     .option('--hypothesis <name>', 'which one (needed where the study has several)')
     .addOption(new Option('--method <method>', 'how the posterior is sampled (default: as the study says; walkers where it says least-squares)').choices(['walkers', 'nested']))
     .action((path: string, flags: FitFlags) => fit(path, flags));
@@ -39,6 +41,10 @@ async function fit(path: string, flags: FitFlags): Promise<void> {
   }
   if (prepared[0].parameters.length === 0) throw new InputError(`nothing is free in "${prepared[0].name}"; \`compare\` compares a scene with data`, { file: path });
   const method = flags.method ?? (study.method === 'least-squares' ? 'walkers' : study.method);
+  if (flags.dryRun) {
+    sayWords({}, ...dryRunWords(loaded, method, flags));
+    return;
+  }
   const { runs: [run], seconds, clear } = await runStudy(loaded, method, flags);
   const observed = measureOnData(data, run.bestScene, ring);
   const white = whitenessOf(run, data, likelihood);

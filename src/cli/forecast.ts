@@ -16,7 +16,8 @@ import { OutputFolder } from './output-folder.ts';
 import { durationText } from './progress.ts';
 import { addStudyFlags } from './rank.ts';
 import { sayWords, withRunContext, type RunContext } from './run-context.ts';
-import { loadStudy, runStudy, type LoadedStudy, type StudyFlags } from './study-run.ts';
+import { loadStudy, type LoadedStudy, type StudyFlags } from './study-load.ts';
+import { runStudy } from './study-run.ts';
 import { version } from './version.ts';
 
 interface ForecastFlags extends StudyFlags {

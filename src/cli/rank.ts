@@ -1,15 +1,18 @@
 import type { Command } from 'commander';
 import { measureOnData } from '../figure/comparison.ts';
 import { rankingTable } from '../figure/table.ts';
+import { dryRunWords } from './nested-cluster.ts';
 import { OutputFolder } from './output-folder.ts';
 import { addRankFiles, rankRuns, rankingRecords } from './rank-files.ts';
 import { durationText } from './progress.ts';
+import { addClusterFlags } from './cluster-flags.ts';
 import { addCommonFlags, sayWords } from './run-context.ts';
-import { loadStudy, runStudy, type StudyFlags } from './study-run.ts';
+import { loadStudy, type StudyFlags } from './study-load.ts';
+import { runStudy } from './study-run.ts';
 
 /** `gyrelight rank STUDY`: fits every hypothesis of a study to its data and ranks them. */
 export function addRank(program: Command): void {
-  addStudyFlags(program.command('rank <study>').description('fit every hypothesis of a study to its data, and rank them'))
+  addRunFlags(addStudyFlags(program.command('rank <study>').description('fit every hypothesis of a study to its data, and rank them')))
     .action((path: string, flags: StudyFlags) => rank(path, flags));
 }
 
@@ -24,9 +27,18 @@ export function addStudyFlags(command: Command): Command {
     .option('--resume', 'go on where an interrupted run of the same study left off');
 }
 
+/** Adds the flags of commands whose nested sampling may be several runs, on this machine or on a cluster. */
+export function addRunFlags(command: Command): Command {
+  return addClusterFlags(command).option('--runs <n>', 'independent nested-sampling runs that are merged into one posterior (default 1; with --engine slurm as many as --tasks, 4 where not said)');
+}
+
 async function rank(path: string, flags: StudyFlags): Promise<void> {
   const loaded = loadStudy(path, flags);
   const { study, data, likelihood, assumptions, ring, seed } = loaded;
+  if (flags.dryRun) {
+    sayWords({}, ...dryRunWords(loaded, study.method, flags));
+    return;
+  }
   const { runs, seconds, clear } = await runStudy(loaded, study.method, flags);
   const outcome = rankRuns(runs, data, likelihood);
   const observed = measureOnData(data, outcome.ordered[0].bestScene, ring);

@@ -2,11 +2,12 @@ import { existsSync } from 'node:fs';
 import { join } from 'node:path';
 import { readText, writeWhole } from '../files/node-io.ts';
 import type { Likelihood } from '../infer/likelihood.ts';
-import { samplePosterior, type Posterior, type SamplingEffort, type SamplingState } from '../infer/posterior.ts';
+import type { Fit } from '../infer/fit.ts';
+import type { NestedRun } from '../infer/nested.ts';
+import { posteriorOfRuns, runNestedOnce, samplePosterior, type Posterior, type PosteriorRequest, type SamplingEffort, type SamplingState } from '../infer/posterior.ts';
 import type { DataSet } from '../infer/types.ts';
 import { InputError } from '../units/input-error.ts';
-import { forwardOf } from '../infer/hypothesis.ts';
-import type { FittedRun } from './hypothesis-run.ts';
+import { forwardOf, type FreeHypothesis } from '../infer/hypothesis.ts';
 import type { RunContext } from './run-context.ts';
 
 /** Checkpoints of sampling runs that are not finished, one file each, written whole or not at all. */
@@ -32,38 +33,91 @@ export class SamplingStore {
     writeWhole(this.path(key), JSON.stringify(state));
   }
 
+  /** Where a finished nested-sampling run is kept under a key. */
+  runPath(key: string): string {
+    return join(this.folder, `${key}.run.json`);
+  }
+
+  /** The finished run kept under a key, written whole or not at all. */
+  findRun(key: string): NestedRun | undefined {
+    return existsSync(this.runPath(key)) ? (JSON.parse(readText(this.runPath(key))) as NestedRun) : undefined;
+  }
+
+  keepRun(key: string, run: NestedRun): void {
+    writeWhole(this.runPath(key), JSON.stringify(run));
+  }
+
   private path(key: string): string {
     return join(this.folder, `${key}.sampling.json`);
   }
 }
 
+/** The key of one of several nested-sampling runs, and its seed. */
+export function runOf(key: string, seed: number, run: number): { readonly key: string; readonly seed: number } {
+  return { key: `${key}-${run + 1}`, seed: seed + run };
+}
+
 /** Checkpoints are written no more often than this; which are written changes no result. */
 const checkpointEveryMs = 3000;
 
-/** Samples the posterior of a fitted hypothesis, with checkpoints under `key`. */
-export async function sampleHypothesis(
-  run: FittedRun, method: 'walkers' | 'nested', data: DataSet, likelihood: Likelihood, seed: number, effort: SamplingEffort,
-  context: RunContext, label: string, store: SamplingStore, key: string, resume: boolean,
-): Promise<Posterior> {
+/** What a hypothesis is sampled with. */
+export interface SamplingJob {
+  readonly prepared: FreeHypothesis;
+  readonly fit: Pick<Fit, 'values' | 'covariance'>;
+  readonly data: DataSet;
+  readonly likelihood: Likelihood;
+  readonly seed: number;
+  readonly effort: SamplingEffort;
+  readonly label: string;
+  readonly store: SamplingStore;
+  /** Of all that goes into it. */
+  readonly key: string;
+  /** Go on from checkpoints. */
+  readonly resume: boolean;
+}
+
+/** Samples the posterior of a fitted hypothesis, with checkpoints. */
+export function sampleHypothesis(job: SamplingJob, method: 'walkers' | 'nested', context: RunContext): Promise<Posterior> {
+  return samplePosterior({ ...requestOf(job, context), method });
+}
+
+/** The posterior of several nested-sampling runs; `known`: those that are finished need not be done again. */
+export async function sampleByRuns(job: SamplingJob, runs: number, known: boolean, context: RunContext): Promise<Posterior> {
+  const done: NestedRun[] = [];
+  for (let k = 0; k < runs; k++) {
+    const { key, seed } = runOf(job.key, job.seed, k);
+    const before = known ? job.store.findRun(key) : undefined;
+    done.push(before ?? (await sampleOnce({ ...job, key, seed, label: `${job.label}, run ${k + 1} of ${runs}` }, context)));
+  }
+  return posteriorOfRuns({ ...job, parameters: job.prepared.parameters }, done);
+}
+
+/** One nested-sampling run, kept under its key. */
+export async function sampleOnce(job: SamplingJob, context: RunContext): Promise<NestedRun> {
+  const run = await runNestedOnce(requestOf(job, context));
+  job.store.keepRun(job.key, run);
+  return run;
+}
+
+function requestOf({ prepared, fit, data, likelihood, seed, effort, label, store, key, resume }: SamplingJob, { pool, progress, signal }: RunContext): Omit<PosteriorRequest, 'method'> {
   let written = Date.now();
   const state = resume ? store.find(key) : undefined;
-  return samplePosterior({
-    method,
-    parameters: run.prepared.parameters,
-    forward: forwardOf(run.prepared, data, context.pool.backend),
+  return {
+    parameters: prepared.parameters,
+    forward: forwardOf(prepared, data, pool.backend),
     likelihood,
-    fit: run.fit,
+    fit,
     seed,
     effort,
     ...(state && { resume: state }),
-    signal: context.signal,
+    signal,
     onCheckpoint: (now, { evaluations, words }) => {
-      context.progress.show(label, evaluations, Math.max(evaluations + 1, effort.maxEvaluations ?? 0), 'models', words);
+      progress.show(label, evaluations, Math.max(evaluations + 1, effort.maxEvaluations ?? 0), 'models', words);
       if (Date.now() - written < checkpointEveryMs) return;
       written = Date.now();
       store.keep(key, now);
     },
-  });
+  };
 }
 
 /** The flags that say how much a sampler may spend. */

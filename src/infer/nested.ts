@@ -141,8 +141,11 @@ export async function runNested(request: NestedRequest): Promise<NestedResult> {
   }
 }
 
+/** What a finished run is, plain JSON: its evidence follows from its points. */
+export type NestedRun = Pick<NestedResult, 'points' | 'evaluations' | 'converged' | 'slicing'>;
+
 /** Puts runs of one problem, with different seeds, together: the evidence of all their points (Higson et al. 2018). */
-export function mergeNested(runs: readonly NestedResult[], seed = 0): NestedResult {
+export function mergeNested(runs: readonly NestedRun[], seed = 0): NestedResult {
   return {
     ...evidenceOf(runs.flatMap(({ points }) => points), seed),
     evaluations: runs.reduce((sum, run) => sum + run.evaluations, 0),

@@ -7,8 +7,8 @@ import type { ForwardModel } from './forward.ts';
 import { guidedCube, scaledErrors, scaledOf } from './guided-cube.ts';
 import { logLikelihood } from './likelihood.ts';
 import type { Likelihood } from './likelihood.ts';
-import { runNested } from './nested.ts';
-import type { NestedState } from './nested.ts';
+import { mergeNested, runNested } from './nested.ts';
+import type { NestedRun, NestedState } from './nested.ts';
 import { logPriorScaled } from './prior-cube.ts';
 import { scaledBounds, valueFromScaled } from './prior.ts';
 import type { FreeParameter } from './prior.ts';
@@ -99,19 +99,24 @@ export function summarisePosterior({ samples, weights }: Pick<Posterior, 'sample
   }));
 }
 
-function logLikelihoodOf({ forward, likelihood, signal }: PosteriorRequest): (values: Float64Array) => Promise<number> {
+function logLikelihoodOf({ forward, likelihood, signal }: Pick<PosteriorRequest, 'forward' | 'likelihood' | 'signal'>): (values: Float64Array) => Promise<number> {
   return async (values) => logLikelihood(likelihood, likelihood.residuals(await forward(values, signal)));
 }
 
 async function sampleNested(request: PosteriorRequest): Promise<Posterior> {
+  return posteriorOfRuns(request, [await runNestedOnce(request)]);
+}
+
+/** One nested-sampling run of a hypothesis with free parameters, plain JSON: several with different seeds make one posterior. */
+export async function runNestedOnce(request: Omit<PosteriorRequest, 'method'>): Promise<NestedRun> {
   const { parameters, effort } = request;
   const cube = guidedCube(parameters, request.fit);
   const lnL = logLikelihoodOf(request);
-  const result = await runNested({
+  const { points, evaluations, converged, slicing } = await runNested({
     parameters: cube.sides,
-    likelihood: (points) =>
+    likelihood: (asked) =>
       Promise.all(
-        points.map(async (point) => {
+        asked.map(async (point) => {
           const values = cube.values(point);
           const weight = cube.logWeight(values);
           return weight === -Infinity ? -Infinity : weight + (await lnL(values));
@@ -127,6 +132,13 @@ async function sampleNested(request: PosteriorRequest): Promise<Posterior> {
         evaluations: state.evaluations, words: `ln Z ${logEvidence.toFixed(1)}, ${remaining.toFixed(2)} still possible`,
       }),
   });
+  return { points, evaluations, converged, slicing };
+}
+
+/** The posterior of one hypothesis from one or several of its nested-sampling runs, merged. `seed`: that of the first run. */
+export function posteriorOfRuns({ parameters, fit, seed }: Pick<PosteriorRequest, 'parameters' | 'fit' | 'seed'>, runs: readonly NestedRun[]): Posterior {
+  const cube = guidedCube(parameters, fit);
+  const result = mergeNested(runs, seed);
   const samples = result.points.map(({ point }) => cube.values(point));
   return {
     method: 'nested',

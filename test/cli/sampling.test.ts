@@ -6,30 +6,8 @@ import { parquetReadObjects } from 'hyparquet';
 import { expect, it } from 'vitest';
 import { csvNumbers, parseCsv } from '../../src/files/csv-parse.ts';
 import { inFolder } from '../support/tools.ts';
-import { gyrelight, namesIn, repository, smallScene } from './run.ts';
-
-const scene = smallScene
-  .replace('pixels: [22, 21], pixel: 24 arcsec', 'pixels: 9, pixel: 60 arcsec')
-  .replace('{name: low, from: 1.3 GHz, to: 1.5 GHz, channels: 4}', '{name: low, at: [1.4 GHz]}')
-  .replace('{name: high, at: [4.8 GHz, 5.2 GHz, 6.1 GHz]}', '{name: high, at: [4.8 GHz]}')
-  .replace('major: 72 arcsec, minor: 60 arcsec', 'major: 120 arcsec, minor: 120 arcsec');
-
-const study = `gyrelight-study: 1
-title: Small
-data:
-${['low', 'high'].flatMap((band) => ['Q', 'U'].map((quantity) => `  - {quantity: ${quantity}, file: sky/${quantity}-${band}.fits, noise: 20 uJy/beam}`)).join('\n')}
-hypotheses:
-  - {name: halo, scene: a.scene.yaml, free: {field.disc.strength: [2 uG, 12 uG], field.halo.strength: [-5 uG, 5 uG]}}
-  - {name: weaker halo, scene: a.scene.yaml, free: {field.disc.strength: [2 uG, 12 uG]}, tied: {field.halo.strength: {formula: "0*s", where: {s: field.disc.strength}}}}
-method: nested
-foreground: fixed
-`;
-
-function prepare(folder: string): void {
-  writeFileSync(join(folder, 'a.scene.yaml'), scene);
-  writeFileSync(join(folder, 'a.study.yaml'), study);
-  expect(gyrelight(['map', 'a.scene.yaml', '--out', 'sky', '--quiet', '--workers', '1'], folder).status).toBe(0);
-}
+import { gyrelight, namesIn, repository } from './run.ts';
+import { prepareStudy as prepare, study } from './small-study.ts';
 
 const flags = ['--live', '40', '--starts', '0', '--workers', '1', '--quiet'];
 
@@ -74,6 +52,23 @@ it('fit, killed with -9 and resumed, gives the same posterior bit for bit', asyn
     const table = (out: string): string => readFileSync(join(folder, out, 'posterior/posterior.csv'), 'utf8');
     expect(table('f')).toBe(table('g'));
     expect(namesIn(join(folder, 'f/unfinished'))).toEqual([]);
+  });
+});
+
+it('several runs make one posterior: a smaller error, the same ln Z, gone on with run by run', () => {
+  inFolder((folder) => {
+    prepare(folder);
+    const fit = (out: string, ...more: readonly string[]): { logEvidence: number; logEvidenceError: number } => {
+      const { status, stdout, stderr } = gyrelight(['fit', 'a.study.yaml', '--hypothesis', 'halo', '--out', out, '--json', ...flags, ...more], folder);
+      expect(status, stderr).toBe(0);
+      return JSON.parse(stdout) as { logEvidence: number; logEvidenceError: number };
+    };
+    const [one, three] = [fit('one'), fit('three', '--runs', '3')];
+    // Runs are independent: the error falls as their root, 0.58, itself known to some 10 %.
+    expect(three.logEvidenceError / one.logEvidenceError).toBeGreaterThan(0.4);
+    expect(three.logEvidenceError / one.logEvidenceError).toBeLessThan(0.75);
+    expect(Math.abs(three.logEvidence - one.logEvidence)).toBeLessThan(4 * Math.hypot(one.logEvidenceError, three.logEvidenceError));
+    expect(gyrelight(['fit', 'a.study.yaml', '--hypothesis', 'halo', '--method', 'walkers', '--runs', '3', ...flags], folder).stderr).toMatch(/--runs 3: means nothing for walkers/);
   });
 });
 

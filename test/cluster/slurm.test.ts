@@ -5,6 +5,7 @@ import { join } from 'node:path';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import { gyrelight, repository, type Outcome } from '../cli/run.ts';
 import { quickScene } from '../cli/sweep-kill.ts';
+import { prepareStudy, study } from '../cli/small-study.ts';
 import { Cluster, findMissing, needSlurm } from './cluster.ts';
 
 const sweep = `gyrelight-sweep: 1
@@ -119,5 +120,19 @@ describe('a cluster', () => {
     expect(parts('cancelled').length).toBeLessThan(8);
     expect(run(parameters('cancelled', '--tasks', '8', '--resume')).status).toBe(0);
     expectLocal('cancelled');
+  });
+
+  it('samples in independent runs: the posterior is that of the same runs on this machine', (context) => {
+    needSlurm(context);
+    prepareStudy(folder);
+    const given = (out: string): string[] => ['fit', 'a.study.yaml', '--hypothesis', 'weaker halo', '--out', out, '--live', '24', '--starts', '0', '--quiet'];
+    expect(gyrelight([...given('here'), '--runs', '3'], folder).status).toBe(0);
+    const { status, stderr } = run([...given('there'), '--engine', 'slurm', '--tasks', '3', '--poll', '0.3']);
+    expect(status, stderr).toBe(0);
+    for (const name of ['fit.json', 'posterior/posterior.csv']) {
+      expect(readFileSync(join(folder, 'there', name), 'utf8')).toBe(readFileSync(join(folder, 'here', name), 'utf8'));
+    }
+    writeFileSync(join(folder, 'least.study.yaml'), study.replace('method: nested', 'method: least-squares'));
+    expect(run(['rank', 'least.study.yaml', '--engine', 'slurm', '--quiet']).stderr).toMatch(/--engine slurm: a cluster serves nested sampling, as independent runs; here the method is least-squares/);
   });
 });
