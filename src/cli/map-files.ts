@@ -1,27 +1,46 @@
+import { join } from 'node:path';
 import { overviewSvg } from '../figure/overview.ts';
 import { skyOverview } from '../figure/sky-overview.ts';
+import { streamCube, type CubeStream } from '../files/cube-stream.ts';
 import type { Provenance } from '../files/fits-scene.ts';
-import { mapFits, stokesFits } from '../files/sky-fits-write.ts';
+import { mapFits, stokesUnits } from '../files/sky-fits-write.ts';
 import { sha256OfText } from '../files/sha256.ts';
+import type { Watch } from '../ray/job.ts';
 import type { Scene } from '../scene/types.ts';
-import { centreMaps, channelMaps, type CentreMaps } from '../sky/band-centre.ts';
+import { centreMaps, channelMaps, middleChannels, type CentreMaps, type ChannelPlanes } from '../sky/band-centre.ts';
 import { angleError, fractionError, inDegrees, polarizedFraction } from '../sky/derived.ts';
 import { gridOffsetsKpc } from '../sky/grid.ts';
-import type { ObservedSky } from '../sky/observe.ts';
-import { rotationMeasureMaps, type RotationMeasureMaps } from '../sky/rotation-measure-map.ts';
-import type { StokesCube } from '../sky/types.ts';
+import type { SeenBand, SeenSky } from '../sky/observe.ts';
+import { rotationMeasureRows, type FittedChannel, type RotationMeasureMaps } from '../sky/rotation-measure-map.ts';
+import type { SkyGrid, StokesCube } from '../sky/types.ts';
+import { channelLambda2M2 } from '../sky/wavelength.ts';
 import { addOriginFiles, originMaps, type OriginWatch } from './origin-files.ts';
 import type { OutputFolder } from './output-folder.ts';
 
-/** Adds every map of an observed scene to a folder, and an overview of them. */
-export function addMapFiles(folder: OutputFolder, scene: Scene, sky: ObservedSky, provenance: Provenance): void {
+/** Channels that are made and written together. */
+const channelsAtOnce = 8;
+
+/** What was seen while a band was written. */
+export interface WrittenBand {
+  readonly band: SeenBand;
+  /** Maps at its centre. */
+  readonly centre: CentreMaps;
+  readonly fitted: readonly FittedChannel[];
+  readonly largestI: number;
+  /** Its cubes of Q and U, which can be read back by rows. */
+  readonly Q: CubeStream;
+  readonly U: CubeStream;
+}
+
+/** Writes every map of a scene as seen, and an overview of them, cubes a few channels at a time. */
+export async function addMapFiles(folder: OutputFolder, scene: Scene, sky: SeenSky, provenance: Provenance, watch: Watch): Promise<readonly WrittenBand[]> {
   const { bits } = scene.numerics;
-  for (const cube of sky.cubes) {
-    for (const stokes of ['I', 'Q', 'U'] as const) folder.add(`${stokes}-${cube.band}.fits`, stokesFits(cube, stokes, provenance, bits));
-    const band = scene.observation.bands.find(({ name }) => name === cube.band);
-    const single = band?.centreHz !== undefined || cube.channels.length === 1;
-    const maps = single ? [centreMaps(cube)] : cube.channels.map((_, channel) => channelMaps(cube, channel));
-    addDerivedMaps(folder, cube, maps, provenance, bits);
+  const written: WrittenBand[] = [];
+  for (const band of sky.bands) {
+    written.push(await writeCubes(folder, band, provenance, bits, watch));
+    const single = scene.observation.bands.find(({ name }) => name === band.band)?.centreHz !== undefined || band.channels.length === 1;
+    const maps = single ? [written[written.length - 1].centre] : band.channels.map((_, channel) => channelMaps(someChannels(band, [channel]), 0));
+    addDerivedMaps(folder, band, maps, provenance, bits);
   }
   for (const origin of sky.origins) {
     const comments = ['Mean height at which the polarized emission seen arises, weighted by its net share; no beam.'];
@@ -31,18 +50,57 @@ export function addMapFiles(folder: OutputFolder, scene: Scene, sky: ObservedSky
   }
   const depthComments = ['Total Faraday depth along each line of sight, foreground included; no beam.'];
   folder.add('faradayDepth.fits', mapFits({ quantity: 'faradayDepth', unit: 'rad/m2', sky: sky.grid, values: sky.faradayDepth, comments: depthComments }, provenance, bits));
-  const rm = findRotationMeasures(sky);
+  const rm = fitWritten(sky.grid, written);
   if (rm) {
-    const shared = { unit: 'rad/m2', sky: sky.grid, ...(sky.cubes[0].beam && { beam: sky.cubes[0].beam }) };
+    const shared = { unit: 'rad/m2', sky: sky.grid, ...(sky.bands[0].beam && { beam: sky.bands[0].beam }) };
     folder.add('RM.fits', mapFits({ quantity: 'RM', values: rm.rm, ...shared }, provenance, bits));
     folder.add('RM-error.fits', mapFits({ quantity: 'RM error', values: rm.rmError, ...shared }, provenance, bits));
     folder.add('fieldAngle.fits', mapFits({ quantity: 'fieldAngle', values: inDegrees(rm.fieldAngle), ...shared, unit: 'deg', comments: ['Faraday-corrected orientation of the magnetic field, north through east.'] }, provenance, bits));
   }
-  folder.add('overview.svg', overviewSvg(skyOverview(scene, sky, rm)));
+  const bands = written.map(({ band, centre }) => ({ unit: band.unit, maps: centre }));
+  folder.add('overview.svg', overviewSvg(skyOverview(scene, { grid: sky.grid, bands }, rm)));
+  return written;
+}
+
+/** Some channels of a band with all that is known of them. */
+function someChannels(band: SeenBand, channels: readonly number[]): ChannelPlanes {
+  const noise = channels.map((channel) => band.noise[channel]);
+  return { channels: channels.map((channel) => band.channels[channel]), noise, ...band.planes(channels[0], channels[channels.length - 1] + 1) };
+}
+
+/** Writes a band's cubes of I, Q and U beside their places, a few channels at a time. */
+async function writeCubes(folder: OutputFolder, band: SeenBand, provenance: Provenance, bits: 32 | 64, { signal, onProgress }: Watch): Promise<WrittenBand> {
+  const [I, Q, U] = (['I', 'Q', 'U'] as const).map((stokes) => {
+    const name = `${stokes}-${band.band}.fits`;
+    const stream = streamCube(join(folder.path, name), stokesUnits(band, stokes, provenance, bits));
+    folder.addBegun(name, stream);
+    return stream;
+  });
+  const count = band.channels.length;
+  const fitted: FittedChannel[] = [];
+  let largestI = -Infinity;
+  for (let from = 0; from < count; from += channelsAtOnce) {
+    await new Promise((resolve) => setImmediate(resolve));
+    signal?.throwIfAborted();
+    const to = Math.min(count, from + channelsAtOnce);
+    const planes = band.planes(from, to);
+    I.writeLayers(from, planes.I);
+    Q.writeLayers(from, planes.Q);
+    U.writeLayers(from, planes.U);
+    for (const value of planes.I) if (value > largestI) largestI = value;
+    const pixels = planes.Q.length / (to - from);
+    for (let channel = from; channel < to; channel++) {
+      let square = 0;
+      for (let k = (channel - from) * pixels; k < (channel - from + 1) * pixels; k++) square = Math.max(square, planes.Q[k] * planes.Q[k] + planes.U[k] * planes.U[k]);
+      fitted.push({ lambda2M2: channelLambda2M2(band.channels[channel]), sigma: band.noise[channel], largestP: Math.sqrt(square) });
+    }
+    onProgress?.(to, count);
+  }
+  return { band, centre: centreMaps(someChannels(band, middleChannels(count))), fitted, largestI, Q, U };
 }
 
 /** Adds maps of the layers that every band sees at the frequencies of its `originHeight`. */
-export async function addOriginMaps(folder: OutputFolder, scene: Scene, sky: ObservedSky, provenance: Provenance, watch: Omit<OriginWatch, 'pause'>): Promise<void> {
+export async function addOriginMaps(folder: OutputFolder, scene: Scene, sky: SeenSky, provenance: Provenance, watch: Omit<OriginWatch, 'pause'>): Promise<void> {
   const spectrum = sky.origins.flatMap(({ frequenciesHz }) => frequenciesHz.map((frequencyHz) => ({ frequencyHz, centreHz: frequencyHz })));
   const pause = (): Promise<void> => new Promise((resolve) => setImmediate(resolve));
   const maps = await originMaps(scene, gridOffsetsKpc(sky.grid), spectrum, { ...watch, pause });
@@ -53,13 +111,22 @@ export async function addOriginMaps(folder: OutputFolder, scene: Scene, sky: Obs
   }
 }
 
-/** RM over all bands, or undefined where there is only one wavelength. */
-export function findRotationMeasures(sky: Pick<ObservedSky, 'cubes'>): RotationMeasureMaps | undefined {
-  const frequencies = new Set(sky.cubes.flatMap((cube) => cube.channels.map((channel) => channel.frequencyHz)));
-  return frequencies.size > 1 ? rotationMeasureMaps(sky.cubes) : undefined;
+/** RM over all bands from their cubes as they were written, or undefined where there is only one wavelength. */
+function fitWritten(grid: SkyGrid, written: readonly WrittenBand[]): RotationMeasureMaps | undefined {
+  const channels = written.flatMap(({ fitted }) => fitted);
+  if (new Set(written.flatMap(({ band }) => band.channels.map(({ frequencyHz }) => frequencyHz))).size < 2) return undefined;
+  const joined = (parts: readonly Float64Array[], length: number): Float64Array => {
+    const whole = new Float64Array(length);
+    parts.reduce((at, part) => (whole.set(part, at), at + part.length), 0);
+    return whole;
+  };
+  return rotationMeasureRows(grid, channels, (from, to) => {
+    const length = channels.length * (to - from) * grid.nx;
+    return { Q: joined(written.map(({ Q }) => Q.readRows(from, to)), length), U: joined(written.map(({ U }) => U.readRows(from, to)), length) };
+  });
 }
 
-function addDerivedMaps(folder: OutputFolder, cube: StokesCube, maps: readonly CentreMaps[], provenance: Provenance, bits: 32 | 64): void {
+function addDerivedMaps(folder: OutputFolder, cube: SeenBand, maps: readonly CentreMaps[], provenance: Provenance, bits: 32 | 64): void {
   const channels = maps.map(({ frequencyHz }) => ({ frequencyHz, widthHz: 0 }));
   const common = { sky: cube.grid, band: cube.band, ...(cube.beam && { beam: cube.beam }) };
   const add = (name: string, quantity: string, unit: string, plane: (map: CentreMaps) => Float64Array): void => {
@@ -91,7 +158,7 @@ function planesFits(
 }
 
 /** What `summary.json` says of a run of `map`. */
-export function mapSummary(scene: Scene, sky: ObservedSky, provenance: Provenance, seconds: number, files: readonly string[]): Record<string, unknown> {
+export function mapSummary(scene: Scene, sky: SeenSky, written: readonly WrittenBand[], provenance: Provenance, seconds: number, files: readonly string[]): Record<string, unknown> {
   const { beam } = scene.observation;
   return {
     title: scene.title,
@@ -100,14 +167,14 @@ export function mapSummary(scene: Scene, sky: ObservedSky, provenance: Provenanc
     sceneSha256: sha256OfText(provenance.sceneText),
     ...(provenance.inputs && { inputs: provenance.inputs }),
     image: { nx: sky.grid.nx, ny: sky.grid.ny, pixelArcsec: sky.grid.pixelArcsec, pixelKpc: sky.grid.pixelKpc },
-    bands: sky.cubes.map((cube) => ({
+    bands: written.map(({ band: cube, largestI, fitted }) => ({
       name: cube.band,
       unit: cube.unit,
       frequenciesHz: cube.channels.map((channel) => channel.frequencyHz),
       widthsHz: cube.channels.map((channel) => channel.widthHz),
       noise: Array.from(cube.noise),
-      largestI: largest(cube.I),
-      largestP: largest(cube.Q.map((q, k) => Math.hypot(q, cube.U[k]))),
+      largestI,
+      largestP: Math.max(...fitted.map(({ largestP }) => largestP)),
     })),
     beam: beam ? { majorArcsec: beam.majorArcsec, minorArcsec: beam.minorArcsec, angleDeg: (beam.angle * 180) / Math.PI } : null,
     tolerance: { asked: scene.numerics.tolerance, reached: sky.errorReached },
@@ -117,8 +184,4 @@ export function mapSummary(scene: Scene, sky: ObservedSky, provenance: Provenanc
     seconds,
     files,
   };
-}
-
-function largest(values: Float64Array): number {
-  return values.reduce((most, value) => (value > most ? value : most), -Infinity);
 }

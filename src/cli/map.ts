@@ -1,5 +1,5 @@
 import type { Command } from 'commander';
-import { observe } from '../sky/observe.ts';
+import { lookAt } from '../sky/observe.ts';
 import { addCommonFlags, overridesOf, sayWords, withRunContext, type CommonFlags } from './run-context.ts';
 import { loadScene } from './load-scene.ts';
 import { addMapFiles, addOriginMaps, mapSummary } from './map-files.ts';
@@ -14,21 +14,24 @@ export function addMap(program: Command): void {
       const { scene, provenance } = loadScene(path, overridesOf(flags));
       const started = Date.now();
       const folder = new OutputFolder(flags.out);
-      const sky = await withRunContext(flags, async ({ pool, progress, signal }) => {
-        const seen = await observe(scene, pool.backend, { signal, onProgress: (done, total) => progress.show('following rays', done, total, 'rays') });
-        addMapFiles(folder, scene, seen, provenance);
+      const { sky, written } = await withRunContext(flags, async ({ pool, progress, signal }) => {
+        const seen = await lookAt(scene, pool.backend, { signal, onProgress: (done, total) => progress.show('following rays', done, total, 'rays') });
+        const bands = await addMapFiles(folder, scene, seen, provenance, { signal, onProgress: (done, total) => progress.show('writing cubes', done, total, 'channels') });
         if (flags.origin) await addOriginMaps(folder, scene, seen, provenance, { signal, onProgress: (done, total) => progress.show('layers seen', done, total, 'rays') });
-        return seen;
+        return { sky: seen, written: bands };
+      }).catch((error: unknown) => {
+        folder.abandon();
+        throw error;
       });
       const seconds = (Date.now() - started) / 1000;
-      const summary = mapSummary(scene, sky, provenance, seconds, folder.names);
+      const summary = mapSummary(scene, sky, written, provenance, seconds, folder.names);
       const text = `${JSON.stringify(summary, null, 2)}\n`;
       folder.add('summary.json', text);
       folder.write();
       if (flags.json) process.stdout.write(text);
       sayWords(
         flags,
-        `${scene.title}: ${sky.cubes.length} band${sky.cubes.length === 1 ? '' : 's'}, ${sky.grid.nx} x ${sky.grid.ny} pixels, ` +
+        `${scene.title}: ${sky.bands.length} band${sky.bands.length === 1 ? '' : 's'}, ${sky.grid.nx} x ${sky.grid.ny} pixels, ` +
           `${sky.samplesPerRay.toFixed(0)} samples a ray, estimated error ${sky.errorReached.toExponential(1)} (asked: ${scene.numerics.tolerance}), ${durationText(seconds)}`,
         `Maps: ${flags.out}/`,
       );

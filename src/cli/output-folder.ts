@@ -30,7 +30,8 @@ export class OutputFolder {
 
   /** Leaves nothing of the files that were begun; for a run that failed. */
   abandon(): void {
-    for (const file of this.begun.values()) file.abandon();
+    // The first may have made the folder: it goes last.
+    for (const file of [...this.begun.values()].reverse()) file.abandon();
   }
 
   /** Writes every file, each whole or not at all; folders are made as needed. */

@@ -1,33 +1,38 @@
 import { frameFromGrid } from '../measure/disc.ts';
 import { defaultRing, ringProfile, type Ring } from '../measure/ring-profile.ts';
 import type { Scene } from '../scene/types.ts';
-import { centreMaps } from '../sky/band-centre.ts';
-import type { ObservedSky } from '../sky/observe.ts';
+import type { CentreMaps } from '../sky/band-centre.ts';
+import type { BrightnessUnit, SkyGrid } from '../sky/types.ts';
 import type { RotationMeasureMaps } from '../sky/rotation-measure-map.ts';
 import { InputError } from '../units/input-error.ts';
 import type { Overview, OverviewRow } from './overview.ts';
 import { frequencyLabel, polarizationView, profileOfP, profileOfRm, rotationMeasureView, type ViewFrame } from './sky-views.ts';
 
+/** What an overview shows: each band at its centre. */
+export interface OverviewSky {
+  readonly grid: SkyGrid;
+  readonly bands: readonly { readonly unit: BrightnessUnit; readonly maps: CentreMaps }[];
+}
+
 /** The overview of one run of maps: P of every band with field orientation, RM, and both round a ring. */
-export function skyOverview(scene: Scene, sky: ObservedSky, rm: RotationMeasureMaps | undefined): Overview {
+export function skyOverview(scene: Scene, { grid, bands }: OverviewSky, rm: RotationMeasureMaps | undefined): Overview {
   const { inclination, positionAngle, distanceKpc, volume } = scene.galaxy;
   const ring = defaultRing(volume.radiusKpc);
-  const frame = frameFromGrid(sky.grid, scene.observation.beam);
+  const frame = frameFromGrid(grid, scene.observation.beam);
   const orientation = { inclination, positionAngle, distanceKpc };
   const view: ViewFrame = { frame, distanceKpc, rings: [drawnRing(ring, scene)] };
-  const [{ I, Q, U, noise }] = sky.cubes.map(centreMaps);
+  const [{ maps: { I, Q, U, noise } }] = bands;
   const profileOf = (maps: { Q: Float64Array; U: Float64Array; noise: number }): ReturnType<typeof ringProfile> | undefined =>
     refusedAsUndefined(() =>
       ringProfile({ Q: maps.Q, U: maps.U, sigmaQU: maps.noise, ...(rm && { rm: rm.rm, rmError: rm.rmError }) }, frame, orientation, ring),
     );
-  const rows = sky.cubes.map((cube): OverviewRow => {
-    const maps = centreMaps(cube);
+  const rows = bands.map(({ unit, maps }): OverviewRow => {
     const profile = profileOf(maps);
     const label = `P, ${frequencyLabel(maps.frequencyHz)}`;
     return {
       label,
-      maps: [polarizationView(maps, cube.unit, view, label)],
-      ...(profile && { profile: { quantity: 'P', unit: cube.unit, curves: [profileOfP(profile, 'model')] } }),
+      maps: [polarizationView(maps, unit, view, label)],
+      ...(profile && { profile: { quantity: 'P', unit: unit, curves: [profileOfP(profile, 'model')] } }),
     };
   });
   if (rm) {

@@ -52,6 +52,13 @@ export function stokesFits(cube: StokesCube, stokes: 'I' | 'Q' | 'U', provenance
   return skyFits({ ...described, values: cube[stokes], third: axis, cards: [], tables: table ? [table] : [] }, provenance, bits);
 }
 
+/** The units of such a file but for the values of the first, which are written part by part. */
+export function stokesUnits(cube: Omit<StokesCube, 'I' | 'Q' | 'U'>, stokes: 'I' | 'Q' | 'U', provenance: Provenance, bits: 32 | 64): { primary: ImageHdu; tables: TableHdu[] } {
+  const { axis, table } = frequencyAxis(cube.channels, cube.noise);
+  const described = { quantity: stokes, unit: cube.unit, sky: cube.grid, beam: cube.beam, band: cube.band };
+  return skyUnits({ ...described, values: new Float64Array(0), third: axis, cards: [], tables: table ? [table] : [] }, provenance, bits);
+}
+
 /** The FITS file of a map, or of one map per channel, with the scene it was made from. */
 export function mapFits(map: MapQuantity, provenance: Provenance, bits: 32 | 64): Uint8Array {
   if (map.channels !== undefined) {

@@ -39,49 +39,73 @@ export function rotationMeasureMaps(
   options: RotationMeasureOptions = {},
 ): RotationMeasureMaps {
   const channels = gatherChannels(cubes);
-  const { minimumSignalToNoise = 3, minimumShare = 1e-3, largestDepth } = options;
+  const { grid } = cubes[0];
+  const gather = (stokes: 'Q' | 'U', from: number, to: number): Float64Array => {
+    const rows = new Float64Array(channels.length * (to - from) * grid.nx);
+    channels.forEach((channel, k) => rows.set(channel[stokes].subarray(from * grid.nx, to * grid.nx), k * (to - from) * grid.nx));
+    return rows;
+  };
+  return rotationMeasureRows(grid, channels, (from, to) => ({ Q: gather('Q', from, to), U: gather('U', from, to) }), options);
+}
+
+/** What a channel is to the fit, its planes apart. */
+export interface FittedChannel {
+  readonly lambda2M2: number;
+  /** rms, 0 where there is none: of all channels or of none. */
+  readonly sigma: number;
+  readonly largestP: number;
+}
+
+/** Numbers of Q and of U that are held at a time. */
+const heldNumbers = 4e6;
+
+/** The same for cubes of which a few rows are held at a time: `rows` gives Q and U of rows, [channel * pixels + pixel]. */
+export function rotationMeasureRows(
+  grid: SkyGrid,
+  channels: readonly FittedChannel[],
+  rows: (from: number, to: number) => { readonly Q: Float64Array; readonly U: Float64Array },
+  { minimumSignalToNoise = 3, minimumShare = 1e-3, largestDepth }: RotationMeasureOptions = {},
+): RotationMeasureMaps {
+  const noisy = channels.filter((channel) => channel.sigma > 0).length;
+  if (noisy > 0 && noisy < channels.length) {
+    throw new InputError(
+      `${noisy} of ${channels.length} channels state noise and the others none; state it for all or for none`,
+    );
+  }
   const search = depthSearch(channels.map((channel) => channel.lambda2M2), largestDepth);
   const sigma = channels.map((channel) => channel.sigma);
-  const { grid } = cubes[0];
-  const pixels = grid.nx * grid.ny;
-  const blank = (): Float64Array => new Float64Array(pixels).fill(NaN);
-  const maps: RotationMeasureMaps = {
-    grid,
-    rm: blank(),
-    rmError: blank(),
-    chi0: blank(),
-    chi0Error: blank(),
-    fieldAngle: blank(),
-    chi2: blank(),
-    residual: blank(),
-  };
+  const { nx, ny } = grid;
+  const blank = (): Float64Array => new Float64Array(nx * ny).fill(NaN);
+  const maps: RotationMeasureMaps = { grid, rm: blank(), rmError: blank(), chi0: blank(), chi0Error: blank(), fieldAngle: blank(), chi2: blank(), residual: blank() };
   const [Q, U] = [new Float64Array(channels.length), new Float64Array(channels.length)];
-  for (let pixel = 0; pixel < pixels; pixel++) {
-    let [share, signal, seen] = [0, 0, 0];
-    channels.forEach((channel, k) => {
-      Q[k] = channel.Q[pixel];
-      U[k] = channel.U[pixel];
-      const P = Math.hypot(Q[k], U[k]);
-      if (Number.isNaN(P)) return;
-      seen++;
-      share += channel.largestP > 0 ? P / channel.largestP : 0;
-      signal += channel.sigma > 0 ? P / channel.sigma : Infinity;
-    });
-    if (seen === 0 || share < minimumShare * seen || signal < minimumSignalToNoise * seen) continue;
-    const fit = fitRotationMeasure(search, Q, U, sigma);
-    if (!fit) continue;
-    for (const name of ['rm', 'rmError', 'chi0', 'chi0Error', 'chi2', 'residual'] as const) {
-      maps[name][pixel] = fit[name];
+  const step = Math.max(1, Math.floor(heldNumbers / (channels.length * nx)));
+  for (let first = 0; first < ny; first += step) {
+    const last = Math.min(ny, first + step);
+    const pixels = (last - first) * nx;
+    const held = rows(first, last);
+    for (let pixel = 0; pixel < pixels; pixel++) {
+      let [share, signal, seen] = [0, 0, 0];
+      channels.forEach((channel, k) => {
+        Q[k] = held.Q[k * pixels + pixel];
+        U[k] = held.U[k * pixels + pixel];
+        const P = Math.hypot(Q[k], U[k]);
+        if (Number.isNaN(P)) return;
+        seen++;
+        share += channel.largestP > 0 ? P / channel.largestP : 0;
+        signal += channel.sigma > 0 ? P / channel.sigma : Infinity;
+      });
+      if (seen === 0 || share < minimumShare * seen || signal < minimumSignalToNoise * seen) continue;
+      const fit = fitRotationMeasure(search, Q, U, sigma);
+      if (!fit) continue;
+      const at = first * nx + pixel;
+      for (const name of ['rm', 'rmError', 'chi0', 'chi0Error', 'chi2', 'residual'] as const) maps[name][at] = fit[name];
+      maps.fieldAngle[at] = (fit.chi0 + Math.PI / 2) % Math.PI;
     }
-    maps.fieldAngle[pixel] = (fit.chi0 + Math.PI / 2) % Math.PI;
   }
   return maps;
 }
 
-interface ChannelPlanes {
-  readonly lambda2M2: number;
-  readonly sigma: number;
-  readonly largestP: number;
+interface ChannelPlanes extends FittedChannel {
   readonly Q: Float64Array;
   readonly U: Float64Array;
 }
@@ -109,12 +133,6 @@ function gatherChannels(cubes: readonly StokesCube[]): ChannelPlanes[] {
       return { lambda2M2: channelLambda2M2(channel), sigma: cube.noise[k], largestP, Q, U };
     }),
   );
-  const noisy = channels.filter((channel) => channel.sigma > 0).length;
-  if (noisy > 0 && noisy < channels.length) {
-    throw new InputError(
-      `${noisy} of ${channels.length} channels state noise and the others none; state it for all or for none`,
-    );
-  }
   return channels;
 }
 
