@@ -14,20 +14,20 @@ export function addMap(program: Command): void {
       const { scene, provenance } = loadScene(path, overridesOf(flags));
       const started = Date.now();
       const folder = new OutputFolder(flags.out);
-      const { sky, written } = await withRunContext(flags, async ({ pool, progress, signal }) => {
+      // Written before Ctrl-C ends the process again: it waits until every file is whole.
+      const { sky, text, seconds } = await withRunContext(flags, async ({ pool, progress, signal }) => {
         const seen = await lookAt(scene, pool.backend, { signal, onProgress: (done, total) => progress.show('following rays', done, total, 'rays') });
         const bands = await addMapFiles(folder, scene, seen, provenance, { signal, onProgress: (done, total) => progress.show('writing cubes', done, total, 'channels') });
         if (flags.origin) await addOriginMaps(folder, scene, seen, provenance, { signal, onProgress: (done, total) => progress.show('layers seen', done, total, 'rays') });
-        return { sky: seen, written: bands };
+        const took = (Date.now() - started) / 1000;
+        const summary = `${JSON.stringify(mapSummary(scene, seen, bands, provenance, took, folder.names), null, 2)}\n`;
+        folder.add('summary.json', summary);
+        folder.write();
+        return { sky: seen, text: summary, seconds: took };
       }).catch((error: unknown) => {
         folder.abandon();
         throw error;
       });
-      const seconds = (Date.now() - started) / 1000;
-      const summary = mapSummary(scene, sky, written, provenance, seconds, folder.names);
-      const text = `${JSON.stringify(summary, null, 2)}\n`;
-      folder.add('summary.json', text);
-      folder.write();
       if (flags.json) process.stdout.write(text);
       sayWords(
         flags,

@@ -36,8 +36,13 @@ export class OutputFolder {
 
   /** Writes every file, each whole or not at all; folders are made as needed. */
   write(): void {
-    for (const file of this.begun.values()) file.finish();
-    for (const [name, content] of this.files) writeWhole(join(this.path, name), content);
+    try {
+      for (const file of this.begun.values()) file.finish();
+      for (const [name, content] of this.files) writeWhole(join(this.path, name), content);
+    } catch (error) {
+      this.abandon();
+      throw error;
+    }
   }
 }
 

@@ -1,6 +1,6 @@
 import { randomUUID } from 'node:crypto';
-import { closeSync, fsyncSync, mkdirSync, openSync, readdirSync, readSync, renameSync, rmdirSync, rmSync, writeSync } from 'node:fs';
-import { basename, dirname, join } from 'node:path';
+import { closeSync, existsSync, fsyncSync, mkdirSync, openSync, readdirSync, readSync, renameSync, rmdirSync, rmSync, statSync, writeSync } from 'node:fs';
+import { basename, dirname, join, resolve } from 'node:path';
 import { onesComplementSum } from './fits-checksum.ts';
 import { blockedLength, type ImageHdu, type TableHdu } from './fits-types.ts';
 import { extensionBytes, imageHeaderBytes } from './fits-write.ts';
@@ -19,18 +19,23 @@ export interface CubeStream {
   abandon(): void;
 }
 
-/** Begins the file of a cube (values empty, its shape full) and the tables behind it, beside its place. */
+/**
+ * Begins the file of a cube (values empty, its shape full) and the tables behind it, beside its place.
+ * Throws, here and later, as `writeWhole` does: InputError where the place is wrong, ResourceError where the disk is full or fails.
+ */
 export function streamCube(path: string, { primary, tables }: { readonly primary: ImageHdu; readonly tables: readonly TableHdu[] }): CubeStream {
   const [nx, ny, layers = 1] = primary.shape;
   const width = Math.abs(primary.bitpix) / 8;
   const dataStart = imageHeaderBytes(primary, 0).length;
   const length = width * nx * ny * layers;
   const beside = join(dirname(path), `.${basename(path)}.${randomUUID()}.part`);
-  const { file, isNewFolder } = openBeside(beside, path);
+  const { file, madeFolder } = openBeside(beside, path);
   let sum = 0;
   let isOpen = true;
   const put = (bytes: Uint8Array, position: number): void => {
-    for (let done = 0; done < bytes.length; ) done += writeSync(file, bytes, done, bytes.length - done, position + done);
+    orSay(path, () => {
+      for (let done = 0; done < bytes.length; ) done += writeSync(file, bytes, done, bytes.length - done, position + done);
+    });
   };
   const putValues = (values: Float64Array, layer: number, row: number): void => {
     const bytes = new Uint8Array(width * values.length);
@@ -73,24 +78,39 @@ export function streamCube(path: string, { primary, tables }: { readonly primary
         position += bytes.length;
       }
       put(imageHeaderBytes(primary, sum), 0);
-      fsyncSync(file);
-      closeSync(file);
-      isOpen = false;
-      renameSync(beside, path);
+      orSay(path, () => {
+        fsyncSync(file);
+        closeSync(file);
+        isOpen = false;
+        renameSync(beside, path);
+      });
     },
     abandon: () => {
       if (isOpen) closeSync(file);
       isOpen = false;
       rmSync(beside, { force: true });
-      if (isNewFolder && readdirSync(dirname(path)).length === 0) rmdirSync(dirname(path));
+      if (madeFolder !== undefined) removeEmpty(dirname(resolve(path)), madeFolder);
     },
   };
 }
 
-function openBeside(beside: string, path: string): { readonly file: number; readonly isNewFolder: boolean } {
+function openBeside(beside: string, path: string): { readonly file: number; readonly madeFolder: string | undefined } {
+  return orSay(path, () => {
+    const madeFolder = mkdirSync(dirname(resolve(path)), { recursive: true });
+    // Found out now rather than when all is written.
+    if (statSync(path, { throwIfNoEntry: false })?.isDirectory()) throw Object.assign(new Error('a folder'), { code: 'EISDIR' });
+    return { file: openSync(beside, 'wx+'), madeFolder };
+  });
+}
+
+/** Removes a folder and those above it as far as the one that was made first, while they are empty. */
+function removeEmpty(folder: string, madeFirst: string): void {
+  for (let at = folder; at.startsWith(madeFirst) && existsSync(at) && readdirSync(at).length === 0; at = dirname(at)) rmdirSync(at);
+}
+
+function orSay<T>(path: string, work: () => T): T {
   try {
-    const isNewFolder = mkdirSync(dirname(path), { recursive: true }) !== undefined;
-    return { file: openSync(beside, 'wx+'), isNewFolder };
+    return work();
   } catch (error) {
     throw unwritable(error, path);
   }

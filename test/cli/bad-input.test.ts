@@ -41,7 +41,7 @@ describe('bad input', () => {
     [['map', 's.yaml', '--nonsense'], /unknown option/],
     [['mapp', 's.yaml'], /unknown command/],
     [['map', 's.yaml', '--workers', 'two'], /--workers two: expected a whole number/],
-    [['map', 's.yaml', '--engine', 'slurm'], /--engine slurm: not available/],
+    [['map', 's.yaml', '--engine', 'slurm'], /--engine slurm: this command is no work for a cluster/],
     [['map', 's.yaml', '--set', 'field.halo.strenth=3 uG'], /--set field\.halo\.strenth=3 uG: .*did you mean "strength"/],
     [['map', 's.yaml', '--set', 'inclination'], /expected path=value/],
     [['probe', 's.yaml', '--points', 'nowhere.csv'], /no such file/],
