@@ -13,6 +13,7 @@ import { readMeanFieldComponent } from './mean-field-model.ts';
 import { placed, readHeightLaw } from './section.ts';
 import type { Section } from './section.ts';
 import { readShape } from './shape.ts';
+import { readTabulatedFlare } from './tabulated-flare-model.ts';
 import type { CosmicRayLayer } from './types.ts';
 
 /** Models that are no file of the library: what reads each. */
@@ -20,6 +21,7 @@ const specialModels: Readonly<Record<string, (input: YamlInput, section: Section
   formula: readInlineComponent,
   'mean-field': readMeanFieldComponent,
   'simulation-cube': readCubeComponent,
+  'tabulated-flare-halo': readTabulatedFlare,
 };
 
 /** The keys of a component of a library model in a section. */

@@ -7,6 +7,7 @@ import { meanFieldSchema } from './mean-field-model.ts';
 import { sceneSchema } from './scene-schema.ts';
 import { sections } from './section.ts';
 import type { Section } from './section.ts';
+import { tabulatedFlareSchema } from './tabulated-flare-model.ts';
 
 /** JSON Schema (draft 2020-12) of scene files, for editors: keys, models, units and meanings. */
 export function sceneJsonSchema(): Record<string, unknown> {
@@ -21,6 +22,6 @@ export function sceneJsonSchema(): Record<string, unknown> {
 function anyComponent(section: Section): z.ZodType {
   const models = [...modelLibrary().values()].filter((model) => model.kind === section.kind);
   const ofLibrary = models.map((model) => componentSchema(model, section).meta({ title: model.title, description: model.meaning }));
-  const solved = section.kind === 'field' ? [meanFieldSchema(section)] : [];
+  const solved = section.kind === 'field' ? [meanFieldSchema(section), tabulatedFlareSchema(section)] : [];
   return z.union([...ofLibrary, cubeSchema(section), ...solved, inlineSchema(section)]);
 }
