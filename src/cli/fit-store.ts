@@ -4,11 +4,14 @@ import { readText, writeWhole } from '../files/node-io.ts';
 import type { Fit } from '../infer/fit.ts';
 
 /** What is kept of a finished fit so that an interrupted ranking can go on. */
-export type KeptFit = Pick<Fit, 'values' | 'errors' | 'covariance' | 'atBound' | 'converged' | 'evaluations'>;
+export type KeptFit = Pick<Fit, 'values' | 'errors' | 'covariance' | 'atBound' | 'converged' | 'evaluations'> & {
+  /** Values at which the scatter of drawn turbulence was estimated. */
+  readonly scatterAt?: Float64Array;
+};
 
 /** A kept fit as JSON, where NaN is null. */
-type StoredFit = Omit<KeptFit, 'values' | 'errors' | 'covariance'> &
-  Readonly<Record<'values' | 'errors', readonly (number | null)[]>> & { readonly covariance?: readonly (number | null)[] };
+type StoredFit = Omit<KeptFit, 'values' | 'errors' | 'covariance' | 'scatterAt'> &
+  Readonly<Record<'values' | 'errors', readonly (number | null)[]>> & Readonly<Partial<Record<'covariance' | 'scatterAt', readonly (number | null)[]>>>;
 
 /** Finished fits of a run that is not finished, one file each, written whole or not at all. */
 export class FitStore {
@@ -25,14 +28,15 @@ export class FitStore {
     try {
       const kept = JSON.parse(readText(path)) as StoredFit;
       const numbers = (list: readonly (number | null)[]): Float64Array => Float64Array.from(list, (value) => value ?? NaN);
-      return { ...kept, values: numbers(kept.values), errors: numbers(kept.errors), covariance: kept.covariance && numbers(kept.covariance) };
+      const { scatterAt, ...rest } = kept;
+      return { ...rest, values: numbers(kept.values), errors: numbers(kept.errors), covariance: kept.covariance && numbers(kept.covariance), ...(scatterAt && { scatterAt: numbers(scatterAt) }) };
     } catch {
       return undefined;
     }
   }
 
-  keep(key: string, { values, errors, covariance, atBound, converged, evaluations }: Fit): void {
-    const plain = { values: [...values], errors: [...errors], ...(covariance && { covariance: [...covariance] }), atBound, converged, evaluations };
+  keep(key: string, { values, errors, covariance, atBound, converged, evaluations }: Fit, scatterAt?: Float64Array): void {
+    const plain = { values: [...values], errors: [...errors], ...(covariance && { covariance: [...covariance] }), ...(scatterAt && { scatterAt: [...scatterAt] }), atBound, converged, evaluations };
     writeWhole(join(this.folder, `${key}.json`), JSON.stringify(plain));
   }
 

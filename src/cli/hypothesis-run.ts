@@ -36,7 +36,7 @@ export interface FittedRun {
 
 /** Reads a hypothesis's scene and checks its free parameters against it. */
 export function prepareHypothesis(
-  hypothesis: Hypothesis, study: Pick<Study, 'foreground' | 'calibration'>, studyFile: string, data: DataSet, overrides: readonly Override[],
+  hypothesis: Hypothesis, study: Pick<Study, 'foreground' | 'calibration' | 'turbulence'>, studyFile: string, data: DataSet, overrides: readonly Override[],
 ): PreparedHypothesis {
   const sceneFile = resolve(dirname(studyFile), hypothesis.scene);
   const { scene, provenance } = placed(hypothesis, () => loadScene(sceneFile, overrides));

@@ -9,9 +9,10 @@ import { resolveFree } from './free-parameters.ts';
 import { makeJointModel } from './joint-model.ts';
 import { calibrationParameters, foregroundNuisance, withCalibration } from './nuisances.ts';
 import { refuseNoOverlap } from './overlap.ts';
+import { isRandom, meanModel, realisationOf } from './random-scenes.ts';
 import type { FreeParameter } from './prior.ts';
 import { sceneWith, type SceneOf } from './scene-of.ts';
-import type { Hypothesis, Study } from './study-types.ts';
+import type { Hypothesis, Study, TurbulenceJudge } from './study-types.ts';
 import { compileTie, followTies, type Tie } from './ties.ts';
 import type { DataSet } from './types.ts';
 
@@ -24,13 +25,15 @@ export interface FreeHypothesis {
   readonly ties: readonly Tie[];
   readonly derived: readonly Tie[];
   readonly sceneOf: SceneOf;
+  /** How the scatter of its drawn turbulence is judged; undefined where none is drawn, or one realisation is taken as it is. */
+  readonly judge?: TurbulenceJudge;
 }
 
 /**
  * The free parameters of a hypothesis: its own, the foreground's depth and factors of calibration.
  * Throws InputError, placed at the hypothesis, where one does not fit the scene or the data lie elsewhere.
  */
-export function freeHypothesis(hypothesis: Hypothesis, study: Pick<Study, 'foreground' | 'calibration'>, scene: Scene, data: DataSet): FreeHypothesis {
+export function freeHypothesis(hypothesis: Hypothesis, study: Pick<Study, 'foreground' | 'calibration' | 'turbulence'>, scene: Scene, data: DataSet): FreeHypothesis {
   placed(hypothesis, () => refuseNoOverlap(data, scene.galaxy));
   const turned = data.planes.some(({ quantity }) => quantity !== 'I') || (data.others?.length ?? 0) > 0;
   const named = [...hypothesis.free.map(({ path }) => path), ...hypothesis.tied.map((tie) => tie.name)];
@@ -42,12 +45,33 @@ export function freeHypothesis(hypothesis: Hypothesis, study: Pick<Study, 'foreg
   const sceneOf: SceneOf = (values) => followTies(sceneWith(scene, paths, values), ties);
   placed(hypothesis, () => followTies(scene, ties));
   const derived = hypothesis.derived.map((one) => compileTie(one, scene));
-  return { name: hypothesis.name, scene, parameters, ties, derived, sceneOf };
+  const { turbulence } = study;
+  const judged = turbulence !== 'single' && isRandom(scene);
+  if (judged) placed(hypothesis, () => refuseBent(data));
+  return { name: hypothesis.name, scene, parameters, ties, derived, sceneOf, ...(judged && { judge: turbulence }) };
 }
 
-/** The model of the data that a hypothesis makes. */
-export function forwardOf({ scene, sceneOf, parameters }: FreeHypothesis, data: DataSet, backend: RayBackend): ForwardModel {
+/** The model of the data that a hypothesis makes: where its turbulence is drawn and judged, the mean of realisations. */
+export function forwardOf(hypothesis: FreeHypothesis, data: DataSet, backend: RayBackend): ForwardModel {
+  const { judge, sceneOf } = hypothesis;
+  return judge ? meanModel(realisationModels(hypothesis, data, backend, judge.mean)) : modelOf(hypothesis, sceneOf, data, backend);
+}
+
+/** Models that differ by the realisation of their random field alone. */
+export function realisationModels(hypothesis: FreeHypothesis, data: DataSet, backend: RayBackend, count: number): ForwardModel[] {
+  return Array.from({ length: count }, (_, k) => modelOf(hypothesis, realisationOf(hypothesis.sceneOf, k), data, backend));
+}
+
+function modelOf({ scene, parameters }: FreeHypothesis, sceneOf: SceneOf, data: DataSet, backend: RayBackend): ForwardModel {
   return withCalibration(makeJointModel(data, scene, sceneOf, backend), data, parameters);
+}
+
+/** The mean of realisations is that of Stokes parameters and depths, not of angles, nor of pixels by the thousand. */
+function refuseBent({ others = [] }: DataSet): void {
+  const bent = others.find(({ kind, quantity }) => kind === 'map' || quantity === 'chi');
+  if (bent) {
+    throw new InputError(`the scatter of drawn turbulence is judged in maps of I, Q and U, profiles of P and RM, spectra and sources, not in ${bent.label}; leave it out, or state \`turbulence: single\` to take the one realisation as it is`);
+  }
 }
 
 /** The changes of a scene's text that make it the scene of the given values, ties followed. */

@@ -6,15 +6,6 @@ import type { ForwardModel } from './forward.ts';
 import type { Likelihood } from './likelihood.ts';
 import { shrunkScatter } from './scatter-covariance.ts';
 import type { SceneOf } from './scene-of.ts';
-import type { SectorGrid } from './sector-basis.ts';
-
-/** How scenes with drawn turbulence are judged. */
-export interface TurbulenceJudge extends SectorGrid {
-  /** Realisations that the covariance is estimated from. */
-  readonly realisations: number;
-  /** Realisations that every model is the mean of; the first ones of those. */
-  readonly mean: number;
-}
 
 /** Realisations begin here: no user has made data from one of them. */
 const firstRealisation = 500_000_000;

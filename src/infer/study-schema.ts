@@ -86,6 +86,17 @@ const scan = keys({
   time: bandTime,
 });
 
+const count = (least: number, most: number, meaning: string): z.ZodType<number> => plainNumber({ unit: '', min: least, max: most, whole: true }, meaning);
+const turbulence = z.union([
+  z.literal('single'),
+  keys({
+    realisations: count(8, 1000, 'random fields that the covariance is estimated from').default(40),
+    mean: count(1, 100, 'random fields that every model is the mean of').default(4),
+    rings: count(1, 20, 'rings of sectors in which maps are compared').default(3),
+    sectors: count(2, 72, 'sectors of a ring').default(8),
+  }),
+], { error: ({ input }) => `${quoteValue(input)} is given where \`single\` or numbers such as {realisations: 40, mean: 4, rings: 3, sectors: 8} are wanted` });
+
 /** The study file: see architecture.md, "Files". */
 export const studySchema = keys({
   'gyrelight-study': z.literal(1),
@@ -96,5 +107,6 @@ export const studySchema = keys({
   forecast: keys({ bands: listOf(candidate, 'bands', 1, MAX_ENTRIES).optional(), scan: scan.optional() }).optional(),
   foreground: z.union([z.literal('fixed'), prior], { error: ({ input }) => `${quoteValue(input)} is given where \`fixed\` or a prior such as {normal: [0 rad/m^2, 20 rad/m^2]} is wanted` }).optional(),
   calibration: z.record(z.string(), prior, { error: ({ input }) => `${quoteValue(input)} is given where frequencies with priors are wanted, such as {1.4 GHz: {normal: [1, 0.05]}}` }).default({}),
+  turbulence: turbulence.default({ realisations: 40, mean: 4, rings: 3, sectors: 8 }),
   seed: plainNumber({ unit: '', min: 0, max: Number.MAX_SAFE_INTEGER, whole: true }).default(1),
 });

@@ -2,6 +2,7 @@ import type { Beam } from '../scene/types.ts';
 import type { Channel } from '../sky/types.ts';
 import type { Place } from '../units/input-error.ts';
 import type { Prior } from './prior.ts';
+import type { SectorGrid } from './sector-basis.ts';
 import type { StokesQuantity } from './types.ts';
 
 /** A value that a study gives as text with a unit, and where. */
@@ -103,6 +104,14 @@ export interface CandidateBand {
   readonly time: number;
 }
 
+/** How scenes with drawn turbulence are judged. */
+export interface TurbulenceJudge extends SectorGrid {
+  /** Realisations that the covariance is estimated from. */
+  readonly realisations: number;
+  /** Realisations that every model is the mean of; the first ones of those. */
+  readonly mean: number;
+}
+
 /** A checked study file. */
 export interface Study {
   readonly title: string;
@@ -116,5 +125,7 @@ export interface Study {
   readonly foreground?: ForegroundText;
   /** Prior of one factor a band, on the model. */
   readonly calibration: readonly FreeText[];
+  /** How hypotheses whose turbulence is drawn are judged; `single`: by the one realisation of their scene. */
+  readonly turbulence: TurbulenceJudge | 'single';
   readonly seed: number;
 }

@@ -33,6 +33,7 @@ export function parseStudy(text: string, fileName: string): Study {
     method: file.method,
     candidates: readCandidates(input, file.forecast),
     ...readForeground(input, file.foreground),
+    turbulence: readTurbulence(input, file.turbulence),
     calibration: Object.entries(file.calibration).map(([band, prior]) => readPrior(input, ['calibration'], band, prior)),
     seed: file.seed,
   };
@@ -181,6 +182,13 @@ function candidateChannels({ at, from, to, channels, width }: FileCandidate, ref
 function gigahertz(channels: readonly Channel[]): string {
   const frequencies = channels.map(({ frequencyHz }) => frequencyHz);
   return `${Number(((Math.min(...frequencies) + Math.max(...frequencies)) / 2e9).toPrecision(4))} GHz`;
+}
+
+function readTurbulence(input: YamlInput, given: StudyFile['turbulence']): Study['turbulence'] {
+  if (given !== 'single' && given.mean > given.realisations) {
+    throw new InputError(`${given.mean} realisations in a mean are more than the ${given.realisations} that there are`, placeAt(input, ['turbulence', 'mean']));
+  }
+  return given;
 }
 
 function readForeground(input: YamlInput, given: StudyFile['foreground']): Pick<Study, 'foreground'> {

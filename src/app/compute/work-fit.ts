@@ -32,7 +32,8 @@ export async function workFit(
 ): Promise<FitPicture> {
   const hypothesis = study.hypotheses.find((one) => one.name === name);
   if (!hypothesis) throw new InputError(`the study has no hypothesis "${name}"`);
-  const free = freeHypothesis(hypothesis, study, scene, data);
+  // The scatter of drawn turbulence is judged on the command line only.
+  const free = freeHypothesis(hypothesis, { ...study, turbulence: 'single' }, scene, data);
   const { parameters } = free;
   const expected = starts + 2 + descents * (parameters.length + 1) * 14;
   const fit = await fitModel({
