@@ -48,6 +48,10 @@ async function forecast(path: string, flags: ForecastFlags): Promise<void> {
     throw new InputError('the study has no `forecast: {bands: [...]}` or `forecast: {scan: ...}`: the bands to choose between', { file: path });
   }
   if (data.planes.length === 0) throw new InputError('a forecast needs maps of I, Q or U among the data', { file: path });
+  const judged = loaded.prepared.find((one) => one.judge);
+  if (judged) {
+    throw new InputError(`"${judged.name}" has drawn turbulence, whose scatter a forecast does not know; give its scene \`unresolved\` turbulence, or state \`turbulence: single\` in the study`, { file: path });
+  }
   const planned = study.candidates.map((candidate) => plannedData(data, candidate));
   const { runs, clear } = await runStudy(loaded, 'least-squares', flags);
   const [first, second] = pairOf(runs, loaded, flags);

@@ -6,6 +6,7 @@ import type { ClusterTask } from '../run/cluster.ts';
 import { InputError } from '../units/input-error.ts';
 import { clusterScript, isOnCluster, taskKey } from './cluster-flags.ts';
 import { FitStore } from './fit-store.ts';
+import { likelihoodAt } from './judged-fit.ts';
 import { withRunContext } from './run-context.ts';
 import { runOf, sampleOnce, SamplingStore } from './sampling-run.ts';
 import { keyOfFit, loadStudy, runCount, samplingJob, samplingKey, type LoadedStudy, type StudyFlags } from './study-load.ts';
@@ -65,8 +66,10 @@ export async function doNestedTask(input: NestedTaskInput, workers: number): Pro
   const key = keyOfFit(loaded, flags, prepared);
   const fit = key === input.fitKey ? new FitStore(input.out).find(key) : undefined;
   if (!fit) throw new ResourceError(`${input.study}: the study, its data or its scenes have changed since the tasks were submitted, or the fit is gone`);
-  const job = samplingJob(loaded, flags, { prepared, key }, fit, `sampling ${prepared.name}`);
-  const own = runOf(job.key, job.seed, input.run);
-  if (job.store.findRun(own.key)) return;
-  await withRunContext(flags, (context) => sampleOnce({ ...job, ...own }, context));
+  await withRunContext(flags, async (context) => {
+    const likelihood = await likelihoodAt(prepared, loaded.data, loaded.likelihood, fit.scatterAt ?? fit.values, context);
+    const job = samplingJob(loaded, flags, { prepared, key }, { fit, likelihood }, `sampling ${prepared.name}`);
+    const own = runOf(job.key, job.seed, input.run);
+    if (!job.store.findRun(own.key)) await sampleOnce({ ...job, ...own }, context);
+  });
 }

@@ -11,6 +11,7 @@ import { mapFits } from '../files/sky-fits-write.ts';
 import { decidedBy } from '../infer/decided-by.ts';
 import type { Likelihood, ResidualPlace } from '../infer/likelihood.ts';
 import { compareEvidences, evidenceVerdict, type EvidencePair, type JudgedHypothesis } from '../infer/evidence-verdict.ts';
+import { isRandom } from '../infer/random-scenes.ts';
 import { structureSentence } from '../infer/whiteness.ts';
 import { misfitSentence, rankHypotheses, type RankedHypothesis } from '../infer/rank.ts';
 import type { Study } from '../infer/study-types.ts';
@@ -22,6 +23,7 @@ import { scenePath } from '../scene/paths.ts';
 import { offsetFromPixel } from '../sky/wcs.ts';
 import { convertQuantity, formatQuantity } from '../units/quantity.ts';
 import { gatherAssumptions } from './assumptions.ts';
+import { singleWarning } from './judged-fit.ts';
 import { bestTexts, correlationTable, errorTexts, type FittedRun } from './hypothesis-run.ts';
 import { addPosteriorFiles, posteriorRecord, type SampledRun } from './posterior-files.ts';
 import { whitenessOf, whitenessRecord, type RunWhiteness } from './run-whiteness.ts';
@@ -262,6 +264,7 @@ function htmlReport(report: RankReport): Parameters<typeof reportHtml>[0] {
     lineUp: lineUpRows(report, scene),
     legend: comparisonNotes(ring),
     caveats: [
+      ...outcome.ordered.flatMap(({ prepared }) => (isRandom(prepared.scene) && !prepared.judge ? [singleWarning(prepared.name)] : [])),
       ...outcome.whiteness.slice(0, 1).map(({ all }) => structureSentence(outcome.rows[0].name, all)).filter((sentence) => sentence !== ''),
       ...(study.method === 'least-squares' ? ['Errors are those of a Gaussian likelihood near the best fit; they do not see other minima.'] : []),
       ...outcome.ordered.filter(({ fit }) => !fit.converged).map(({ prepared }) => `The fit of "${prepared.name}" did not converge; its χ² is an upper limit.`),

@@ -3,7 +3,6 @@ import { loadData } from '../files/load-data.ts';
 import { sha256OfText } from '../files/sha256.ts';
 import type { Fit } from '../infer/fit.ts';
 import type { Likelihood } from '../infer/likelihood.ts';
-import { jointLikelihood } from '../infer/other-data.ts';
 import { parseStudy } from '../infer/study.ts';
 import type { Method, Study } from '../infer/study-types.ts';
 import type { DataSet } from '../infer/types.ts';
@@ -11,6 +10,7 @@ import type { Ring } from '../measure/ring-profile.ts';
 import { InputError, nearestHint } from '../units/input-error.ts';
 import { gatherAssumptions } from './assumptions.ts';
 import { taskCount, type ClusterFlags } from './cluster-flags.ts';
+import { commonLikelihood } from './judged-fit.ts';
 import { fitKey, prepareHypothesis, type PreparedHypothesis } from './hypothesis-run.ts';
 import { ringOf } from './ring-flag.ts';
 import { overridesOf, sayWords, type CommonFlags } from './run-context.ts';
@@ -31,6 +31,7 @@ export interface LoadedStudy {
   readonly text: string;
   readonly study: Study;
   readonly data: DataSet;
+  /** What the likelihoods of all hypotheses have in common. */
   readonly likelihood: Likelihood;
   readonly assumptions: readonly string[];
   readonly prepared: readonly PreparedHypothesis[];
@@ -49,11 +50,14 @@ export function loadStudy(file: string, flags: StudyFlags, only?: string): Loade
     const names = study.hypotheses.map(({ name }) => name);
     throw new InputError(`the study has no hypothesis "${only}"${nearestHint(only ?? '', names)}; there are: ${names.join(', ')}`, { flag: '--hypothesis' });
   }
-  const prepared = wanted.map((hypothesis) => prepareHypothesis(hypothesis, study, file, data, overrides));
+  // All of them, whichever is wanted: one with drawn turbulence decides in what maps are compared.
+  const all = study.hypotheses.map((hypothesis) => prepareHypothesis(hypothesis, study, file, data, overrides));
+  const prepared = all.filter((_, k) => wanted.includes(study.hypotheses[k]));
   const ring = ringOf(flags.ring, prepared[0].scene);
   const assumptions = [...data.assumptions, ...notes];
+  const likelihood = commonLikelihood(data, all, assumptions);
   sayWords(flags, ...gatherAssumptions(assumptions).map((sentence) => `assumed  ${sentence}`));
-  return { file, text, study, data, likelihood: jointLikelihood(data), assumptions, prepared, ring, seed: flags.seed ?? study.seed };
+  return { file, text, study, data, likelihood, assumptions, prepared, ring, seed: flags.seed ?? study.seed };
 }
 
 /** A hypothesis with what its fit is kept under. */
@@ -75,9 +79,9 @@ export function effortOfFit({ starts }: Pick<StudyFlags, 'starts'>): { readonly 
 /** How a fitted hypothesis is sampled, wherever that is done. */
 export function samplingJob(
   loaded: LoadedStudy, flags: SamplingFlags & Pick<StudyFlags, 'out' | 'resume'>,
-  { prepared, key }: FitJob, fit: Pick<Fit, 'values' | 'covariance'>, label: string,
+  { prepared, key }: FitJob, { fit, likelihood }: { readonly fit: Pick<Fit, 'values' | 'covariance'>; readonly likelihood: Likelihood }, label: string,
 ): SamplingJob {
-  const { data, likelihood, seed } = loaded;
+  const { data, seed } = loaded;
   return { prepared, fit, data, likelihood, seed, effort: effortOf(flags), label, store: new SamplingStore(flags.out), key: samplingKey(loaded, flags, key), resume: flags.resume ?? false };
 }
 

@@ -1,7 +1,8 @@
 import type { Method } from '../infer/study-types.ts';
 import { detachedWords, isOnCluster, runOnCluster } from './cluster-flags.ts';
 import { FitStore } from './fit-store.ts';
-import { finishHypothesis, fitHypothesis, type FittedRun } from './hypothesis-run.ts';
+import { finishHypothesis, type FittedRun } from './hypothesis-run.ts';
+import { judgedFit, type JudgedFit } from './judged-fit.ts';
 import { nestedTasks, refuseOther } from './nested-cluster.ts';
 import { predictProfiles, type SampledRun } from './posterior-files.ts';
 import { withCancel, withRunContext, type RunContext } from './run-context.ts';
@@ -27,12 +28,12 @@ export async function runStudy(loaded: LoadedStudy, method: Method, flags: Study
   const { data, ring, seed } = loaded;
   const runs = await withRunContext({ ...flags, engine: 'local' }, async (context) => {
     const done: SampledRun[] = [];
-    for (const [k, { run, job }] of fits.entries()) {
+    for (const [k, { run, job, judged }] of fits.entries()) {
       if (method === 'least-squares') {
         done.push({ ...run, drawn: [] });
         continue;
       }
-      const own = samplingJob(loaded, flags, job, run.fit, `sampling ${run.prepared.name}${placeOf(k, fits.length)}`);
+      const own = samplingJob(loaded, flags, job, judged, `sampling ${run.prepared.name}${placeOf(k, fits.length)}`);
       const several = method === 'nested' && run.prepared.parameters.length > 0 && (runsEach > 1 || isCluster);
       const posterior = several ? await sampleByRuns(own, runsEach, isCluster || own.resume, context) : await sampleHypothesis(own, method, context);
       done.push({ ...run, posterior, drawn: await predictProfiles(run, posterior, data, ring, seed, context) });
@@ -46,6 +47,7 @@ export async function runStudy(loaded: LoadedStudy, method: Method, flags: Study
 interface FittedJob {
   readonly run: FittedRun;
   readonly job: FitJob;
+  readonly judged: JudgedFit;
 }
 
 async function fitAll(loaded: LoadedStudy, flags: StudyFlags, store: FitStore, context: RunContext): Promise<FittedJob[]> {
@@ -55,9 +57,9 @@ async function fitAll(loaded: LoadedStudy, flags: StudyFlags, store: FitStore, c
   for (const [k, hypothesis] of prepared.entries()) {
     const key = keyOfFit(loaded, flags, hypothesis);
     const known = flags.resume ? store.find(key) : undefined;
-    const fit = await fitHypothesis(hypothesis, data, likelihood, seed, effort, context, `fitting ${hypothesis.name}${placeOf(k, prepared.length)}`, known);
-    store.keep(key, fit);
-    done.push({ run: await finishHypothesis(hypothesis, fit, data, ring, context), job: { prepared: hypothesis, key } });
+    const judged = await judgedFit(hypothesis, data, likelihood, seed, effort, context, `fitting ${hypothesis.name}${placeOf(k, prepared.length)}`, known);
+    store.keep(key, judged.fit, judged.scatterAt);
+    done.push({ run: await finishHypothesis(hypothesis, judged.fit, data, ring, context), job: { prepared: hypothesis, key }, judged });
   }
   return done;
 }
