@@ -23,6 +23,8 @@ export interface OverviewRow {
   /** One entry a column; undefined leaves its place empty. All of one unit and kind. */
   readonly maps: readonly (MapView | undefined)[];
   readonly profile?: AzimuthProfile;
+  /** Drawings of at most `overviewBox` px in place of maps, such as shapes. */
+  readonly pictures?: readonly (Drawing | undefined)[];
 }
 
 export interface Overview {
@@ -35,7 +37,9 @@ export interface Overview {
   readonly notes?: readonly string[];
 }
 
-const BOX = 190;
+/** Side of a map, px. */
+export const overviewBox = 190;
+const BOX = overviewBox;
 /** Least height of a row: a colour bar with ticks. */
 const LOWEST = 92;
 const LEFT = 56;
@@ -55,7 +59,7 @@ export function overviewSvg(overview: Overview, theme: Theme = lightTheme): stri
 
 /** The overview as a drawing. Throws RangeError where a row's maps differ in unit or kind. */
 export function overviewDrawing(overview: Overview, theme: Theme): Drawing {
-  const columns = Math.max(1, ...overview.rows.map((row) => row.maps.length));
+  const columns = Math.max(1, ...overview.rows.map((row) => Math.max(row.maps.length, row.pictures?.length ?? 0)));
   const mapsWidth = LEFT + columns * (BOX + GAP) + BAR_ROOM;
   const hasProfiles = overview.rows.some((row) => row.profile);
   const width = Math.max(mapsWidth + (hasProfiles ? PROFILE_WIDTH : 0), textWidth(overview.title, 16) + LEFT) + 8;
@@ -114,6 +118,11 @@ function drawRow(row: OverviewRow, mapsWidth: number, last: boolean, theme: Them
       'font-size': 10, fill: theme.soft, 'text-anchor': 'middle', transform: `translate(${fixed(first * (BOX + GAP) + 14)},${fixed(top + firstHeight / 2)}) rotate(-90)`,
     });
   }
+  row.pictures?.forEach((picture, k) => {
+    if (!picture) return;
+    tallest = Math.max(tallest, picture.height);
+    body += moved(picture.body, LEFT + k * (BOX + GAP) + (BOX - picture.width) / 2, top);
+  });
   if (row.profile) {
     const plot = azimuthProfile(row.profile, { width: PROFILE_WIDTH, height: BOX + 36, theme });
     body += moved(plot.body, mapsWidth, top - 8);

@@ -38,7 +38,7 @@ export function pngDataUri(png: Uint8Array): string {
 }
 
 /** Length, type, data and CRC-32 of a chunk (PNG specification, section 5.3). */
-function chunk(type: string, data: Uint8Array): Uint8Array {
+export function chunk(type: string, data: Uint8Array): Uint8Array {
   const bytes = new Uint8Array(12 + data.length);
   const view = new DataView(bytes.buffer);
   view.setUint32(0, data.length);

@@ -1,6 +1,7 @@
 import type { AzimuthValues } from '../../figure/azimuth-profile.ts';
 import type { MapView } from '../../figure/overview.ts';
 import type { FieldLine } from '../../ray/field-lines.ts';
+import type { CelestialWcs } from '../../sky/wcs-types.ts';
 
 /** The maps of one band of a column. */
 export interface BandPicture {
@@ -8,6 +9,8 @@ export interface BandPicture {
   readonly label: string;
   readonly frequencyHz: number;
   readonly polarization: MapView;
+  /** P has been freed of the bias of noise. */
+  readonly isDebiased: boolean;
   /** P round the ring; undefined where the disc is seen too nearly edge-on. */
   readonly ring?: AzimuthValues;
 }
@@ -25,9 +28,10 @@ export interface Pose {
 export interface ColumnPicture {
   readonly pose: Pose;
   readonly bands: readonly BandPicture[];
+  /** Of every map. */
+  readonly wcs: CelestialWcs;
   readonly rotationMeasure?: MapView;
   readonly rotationMeasureRing?: AzimuthValues;
-  /** Heights of origin and the like come with the close-up. */
   readonly lines: readonly FieldLine[];
   /** What symmetry forbids, in plain sentences. */
   readonly symmetry: readonly string[];
@@ -41,6 +45,7 @@ export interface ColumnPicture {
 /** The observation's own column: its maps, and its points round the ring of a scene's galaxy. */
 export interface ObservedPicture {
   readonly bands: readonly BandPicture[];
+  readonly wcs: CelestialWcs;
   readonly rotationMeasure?: MapView;
   readonly rotationMeasureRing?: AzimuthValues;
   readonly assumptions: readonly string[];

@@ -71,7 +71,7 @@ export function pictureData({ data, assumptions }: WorkData, scene: Scene, ringK
   return { ...pictureOf(data, scene, ring, measureOnData(data, scene, ring), 'observed'), assumptions };
 }
 
-type Maps = Pick<ColumnPicture, 'bands' | 'rotationMeasure' | 'rotationMeasureRing' | 'fit'>;
+type Maps = Pick<ColumnPicture, 'bands' | 'wcs' | 'rotationMeasure' | 'rotationMeasureRing' | 'fit'>;
 
 async function mapsOnData(scene: Scene, { data, likelihood }: WorkData, ring: Ring, backend: RayBackend, signal: AbortSignal): Promise<Maps> {
   refuseNoOverlap(data, scene.galaxy);
@@ -90,11 +90,13 @@ function pictureOf(data: DataSet, scene: Scene, ring: Ring, measured: Measured, 
       label: name,
       frequencyHz: band.centre.frequencyHz,
       polarization: polarizationView(band.centre, data.unit, viewFrame(data, band, scene, ring), `P, ${name}`),
+      isDebiased: band.centre.noise > 0,
       ...(band.profile && { ring: profileOfP(band.profile, label) }),
     };
   });
   return {
     bands: longestFirst(bands),
+    wcs: data.axes.wcs,
     ...(measured.rm && measured.bands.length > 0 && { rotationMeasure: rotationMeasureView(measured.rm, viewFrame(data, measured.bands[0], scene, ring), 'RM') }),
     ...(measured.rmProfile && { rotationMeasureRing: profileOfRm(measured.rmProfile, label) }),
   };
@@ -119,11 +121,13 @@ async function mapsOfScene(scene: Scene, ring: Ring, backend: RayBackend, signal
       label: name,
       frequencyHz: maps.frequencyHz,
       polarization: polarizationView(maps, cube.unit, view, `P, ${name}`),
+      isDebiased: maps.noise > 0,
       ...(profile && { ring: profileOfP(profile, 'model') }),
     };
   });
   return {
     bands: longestFirst(bands),
+    wcs: frame.wcs,
     ...(rm && { rotationMeasure: rotationMeasureView(rm, view, 'RM') }),
     ...(rm && profiles[0] && { rotationMeasureRing: profileOfRm(profiles[0], 'model') }),
   };

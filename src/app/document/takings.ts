@@ -1,6 +1,10 @@
 import { strToU8, zipSync } from 'fflate';
 import type { Store } from '../store.ts';
 import { writePageFile } from './page-file.ts';
+import { save } from './save.ts';
+import { lineUpSvg } from './line-up-figure.ts';
+import { savePicture } from './panel-files.ts';
+import { version } from '../version.ts';
 import { filesNeeded, sceneFileName, studyText } from './page-study.ts';
 import { findFile } from '../compute/memory-files.ts';
 import { findColumn } from './page-document.ts';
@@ -42,14 +46,16 @@ export const takings: readonly Taking[] = [
       if (column) save(sceneFileName(page.columns, page.columns.indexOf(column)), column.scene, 'text/yaml');
     },
   },
+  ...(['svg', 'png', 'pdf'] as const).map((kind): Taking => ({
+    name: `line-up-${kind}`,
+    title: `the line-up as one figure (${kind.toUpperCase()})`,
+    take: async (store) => {
+      const page = store.page.peek();
+      const pictures = page.columns.map(({ id }) => store.columns.peek()[id]?.picture);
+      const verdict = store.ranker.ranking.peek()?.verdict ?? '';
+      const svg = lineUpSvg(page, store.observed.peek().picture, pictures, verdict);
+      // What the figure is made from is the whole page.
+      await savePicture('line-up', svg, kind, { sceneText: writePageFile(page, {}), version, seed: 1 });
+    },
+  })),
 ];
-
-/** Hands a file to the browser to be saved. */
-export function save(name: string, content: string | Uint8Array, type: string): void {
-  const url = URL.createObjectURL(new Blob([content as BlobPart], { type }));
-  const link = document.createElement('a');
-  link.href = url;
-  link.download = name;
-  link.click();
-  setTimeout(() => URL.revokeObjectURL(url), 10_000);
-}

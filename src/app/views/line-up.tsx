@@ -9,10 +9,13 @@ import { hypothesisStyle, pageTheme } from '../../figure/theme.ts';
 import type { ColumnPicture } from '../compute/column-picture.ts';
 import { addRow, changeRow, dropRow } from '../document/edits.ts';
 import type { PageColumn, PageRow } from '../document/page-document.ts';
+import { parseScene } from '../../scene/parse-scene.ts';
+import { savePanel, type PanelKind } from '../document/panel-files.ts';
 import type { Store } from '../store.ts';
+import { version } from '../version.ts';
 import { AddColumn, ColumnHead, ObservedHead } from './column-head.tsx';
 import { MapCell } from './map-cell.tsx';
-import { differenceOf, mapOf, possibleRows, ringOf, rowLabel } from './row-views.ts';
+import { bandOf, differenceOf, mapOf, possibleRows, ringOf, rowLabel } from './row-views.ts';
 import { ShapeCell } from './shape-cell.tsx';
 import { SvgPicture } from './svg-picture.tsx';
 import { Verdict } from './verdict.tsx';
@@ -174,7 +177,7 @@ function RowCells({ store, row, size, hasObserved }: RowCellsProps): JSX.Element
       {ids.map((id) => (
         <td key={id}>
           {maps ? (
-            <MapOf store={store} id={id} view={maps.views[id]} scale={maps.scale} size={size} />
+            <MapOf store={store} row={row} id={id} view={maps.views[id]} scale={maps.scale} size={size} />
           ) : (
             <OtherCell store={store} row={row} id={id} size={size} column={columns.find((column) => column.id === id)} index={columns.findIndex((column) => column.id === id)} />
           )}
@@ -187,19 +190,42 @@ function RowCells({ store, row, size, hasObserved }: RowCellsProps): JSX.Element
 
 interface MapOfProps {
   readonly store: Store;
+  readonly row: PageRow;
   readonly id: string;
   readonly view?: MapView;
   readonly scale?: ColourScale;
   readonly size: number;
 }
 
-function MapOf({ store, id, view, scale, size }: MapOfProps): JSX.Element | null {
+function MapOf({ store, row, id, view, scale, size }: MapOfProps): JSX.Element | null {
   if (!view || !scale) return <Empty store={store} id={id} size={size} />;
   const isReference = view.map.kind !== scale.kind || view.map.unit !== scale.shownUnit;
   const own = isReference && view.map.kind !== scale.kind ? sharedColourScale([view.map]) : scale;
   const name = id === 'observed' ? 'observation' : (store.page.value.columns.find((column) => column.id === id)?.name ?? '');
   const isPreview = id !== 'observed' && store.columns.value[id]?.picture?.exact === false;
-  return <MapCell store={store} view={view} scale={own} title={`${view.map.title}, ${name}`} sizePx={size} isPreview={isPreview} />;
+  return <MapCell store={store} view={view} scale={own} title={`${view.map.title}, ${name}`} sizePx={size} isPreview={isPreview} onTake={(kind) => takeMap(store, row, id, view, own, kind)} />;
+}
+
+/** Saves a map of the line-up as it is shown, differences too. */
+async function takeMap(store: Store, row: PageRow, id: string, view: MapView, scale: ColourScale, kind: PanelKind): Promise<void> {
+  const { columns, chosen, differenceFrom } = store.page.peek();
+  const picture = id === 'observed' ? store.observed.peek().picture : store.columns.peek()[id]?.picture;
+  const column = columns.find((one) => one.id === (id === 'observed' ? chosen : id)) ?? columns[0];
+  if (!picture) return;
+  const band = row.kind === 'polarization' ? bandOf(picture, row.band) : undefined;
+  const isDifference = differenceFrom !== undefined && differenceFrom !== id;
+  const quantity = `${band ? (band.isDebiased ? 'P debiased' : 'P') : 'RM'}${isDifference ? ' difference' : ''}`;
+  const owner = id === 'observed' ? 'observation' : column.name;
+  const name = [owner, quantity, band?.label].filter(Boolean).join(' ').toLowerCase().replace(/[^a-z0-9.]+/g, '-');
+  await savePanel({ name, view, wcs: picture.wcs, quantity, scale, ...(band && { frequencyHz: band.frequencyHz }), provenance: { sceneText: column.scene, version, seed: seedOf(column.scene) } }, kind);
+}
+
+function seedOf(scene: string): number {
+  try {
+    return parseScene(scene, 'scene').numerics.seed;
+  } catch {
+    return 1;
+  }
 }
 
 /** Holds the place of a picture that is still being drawn, or that cannot be. */

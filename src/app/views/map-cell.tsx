@@ -9,6 +9,8 @@ import { moved } from '../../figure/svg.ts';
 import { joinUnit, numberText } from '../../figure/number-text.ts';
 import { pageTheme } from '../../figure/theme.ts';
 import type { SkyCursor, Store } from '../store.ts';
+import type { PanelKind } from '../document/panel-files.ts';
+import { TakePanel } from './take-panel.tsx';
 import { SvgPicture } from './svg-picture.tsx';
 
 interface MapCellProps {
@@ -18,10 +20,11 @@ interface MapCellProps {
   readonly title: string;
   readonly sizePx: number;
   readonly isPreview: boolean;
+  readonly onTake?: (kind: PanelKind) => Promise<void>;
 }
 
 /** A map of the sky with the cursor that all maps share; its value is read off beside it. */
-export function MapCell({ store, view, scale, title, sizePx, isPreview }: MapCellProps): JSX.Element {
+export function MapCell({ store, view, scale, title, sizePx, isPreview, onTake }: MapCellProps): JSX.Element {
   const drawing = useMemo(() => {
     const frame = mapFrame(view.map, { ...view, scale, boxWidth: sizePx, boxHeight: sizePx, axes: 'none', theme: pageTheme });
     return { width: frame.width + 2, height: frame.height + 2, body: moved(frame.body, 1, 1) };
@@ -44,6 +47,7 @@ export function MapCell({ store, view, scale, title, sizePx, isPreview }: MapCel
       onPointerLeave={() => (store.cursor.value = undefined)}
     >
       <SvgPicture drawing={drawing} title={title} />
+      {onTake && <TakePanel title={title} kinds={['fits', 'csv', 'svg', 'png', 'pdf']} onTake={onTake} />}
       {inside && (
         <>
           <svg class="cursor" width={drawing.width} height={drawing.height} aria-hidden="true">
