@@ -67,10 +67,8 @@ export function drawScaleBar(map: PanelMap, place: MapPlace, ink: OverlayInk): s
   return (
     element('path', { class: 'casing', d: path, stroke: ink.casing, 'stroke-width': 3.6, 'stroke-opacity': 0.85 }) +
     element('path', { class: 'scale-bar', d: path, stroke: ink.line, 'stroke-width': 1.6 }) +
-    textElement(middle, y - 5, label, {
-      'text-anchor': 'middle', 'font-size': 10, fill: ink.line,
-      stroke: ink.casing, 'stroke-width': 2.8, 'stroke-opacity': 0.85, 'stroke-linejoin': 'round', 'paint-order': 'stroke',
-    })
+    element('rect', { class: 'casing', x: middle - textWidth(label, 10) / 2 - 1, y: y - 14, width: textWidth(label, 10) + 2, height: 11.5, rx: 2, fill: ink.casing, 'fill-opacity': 0.4 }) +
+    textElement(middle, y - 5, label, { 'text-anchor': 'middle', 'font-size': 10, fill: ink.line })
   );
 }
 

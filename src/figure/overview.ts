@@ -22,6 +22,8 @@ export interface OverviewRow {
   readonly label: string;
   /** One entry a column; undefined leaves its place empty. All of one unit and kind. */
   readonly maps: readonly (MapView | undefined)[];
+  /** Ends of the colours; chosen by the maps where left out. */
+  readonly limits?: readonly [number, number];
   readonly profile?: AzimuthProfile;
   /** Drawings of at most `overviewBox` px in place of maps, such as shapes. */
   readonly pictures?: readonly (Drawing | undefined)[];
@@ -98,7 +100,7 @@ function drawRow(row: OverviewRow, mapsWidth: number, last: boolean, theme: Them
   let body = textElement(LEFT, 16, row.label, { 'font-size': 12, 'font-weight': 600 });
   let tallest = row.profile ? BOX : 0;
   if (views.length > 0) {
-    const scale = sharedColourScale(views.map((view) => view.map));
+    const scale = sharedColourScale(views.map((view) => view.map), row.limits);
     const first = row.maps.findIndex((view) => view !== undefined);
     const heights = views.map((view) => (BOX * view.map.ny) / Math.max(view.map.nx, view.map.ny));
     const [firstHeight] = heights;

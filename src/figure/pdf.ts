@@ -38,10 +38,11 @@ export async function pdfFromSvg(svg: string, fonts: PdfFonts, title: string, pr
   });
   document.registerFont('regular', fonts.regular as unknown as string);
   document.registerFont('bold', fonts.bold as unknown as string);
+  document.scale(pointsPerPx);
   svgToPdf(document, svg, 0, 0, {
     assumePt: true,
-    width: size[0],
-    height: size[1],
+    width,
+    height,
     fontCallback: (_family, bold) => (bold ? 'bold' : 'regular'),
     warningCallback: () => undefined,
   });

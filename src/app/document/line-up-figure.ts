@@ -3,7 +3,7 @@ import { overviewBox, overviewSvg, type OverviewRow } from '../../figure/overvie
 import { shapeDrawing } from '../../figure/shape-view.ts';
 import { hypothesisStyle, lightTheme } from '../../figure/theme.ts';
 import type { ColumnPicture, ObservedPicture } from '../compute/column-picture.ts';
-import { mapOf, ringOf, rowLabel } from '../views/row-views.ts';
+import { mapOf, ringOf, rowLabel, steadyLimits } from '../views/row-views.ts';
 import type { PageDocument, PageRow } from './page-document.ts';
 
 /** The whole line-up as one figure (SVG), in the order of the page; rows of words are left out. */
@@ -18,7 +18,9 @@ export function lineUpSvg(page: PageDocument, observed: ObservedPicture | undefi
     }
     if (row.kind === 'ring') return [{ label, maps: [], profile: profileOf(row, page, observed, pictures) }];
     if (row.kind === 'verdict') return [];
-    return [{ label, maps: [...withObserved, ...pictures].map((picture) => mapOf(picture, row)) }];
+    const maps = [...withObserved, ...pictures].map((picture) => mapOf(picture, row));
+    const limits = steadyLimits(maps.filter((view) => view !== undefined));
+    return [{ label, maps, ...(limits && { limits }) }];
   });
   return overviewSvg({
     title: page.title,

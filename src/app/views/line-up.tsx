@@ -15,7 +15,7 @@ import type { Store } from '../store.ts';
 import { version } from '../version.ts';
 import { AddColumn, ColumnHead, ObservedHead } from './column-head.tsx';
 import { MapCell } from './map-cell.tsx';
-import { bandOf, differenceOf, mapOf, possibleRows, ringOf, rowLabel } from './row-views.ts';
+import { bandOf, differenceOf, mapOf, possibleRows, ringOf, rowLabel, steadyLimits } from './row-views.ts';
 import { ShapeCell } from './shape-cell.tsx';
 import { SvgPicture } from './svg-picture.tsx';
 import { Verdict } from './verdict.tsx';
@@ -133,25 +133,12 @@ function rowMaps(store: Store, row: PageRow): { readonly views: Readonly<Record<
   return { views, scale: scaleOf(Object.entries(views).filter(([id]) => id !== differenceFrom).map(([, view]) => view)) };
 }
 
-/**
- * The scale of the maps that have the first one's unit and kind. One column with a wild nucleus must not
- * darken all others: intensities run to the observation's largest or to the median of the columns' largest.
- */
+/** The scale of the maps that have the first one's unit and kind. */
 function scaleOf(views: readonly MapView[]): ColourScale | undefined {
   const [first] = views;
   if (!first) return undefined;
-  const maps = views.filter(({ map }) => map.unit === first.map.unit && map.kind === first.map.kind).map(({ map }) => map);
-  if (first.map.kind !== 'intensity') return sharedColourScale(maps);
-  const largest = maps.map(({ values }) => largestOf(values));
-  const middle = [...largest].sort((a, b) => a - b)[largest.length >> 1];
-  const top = Math.max(largest[0], middle);
-  return sharedColourScale(maps, top > 0 ? [0, top] : undefined);
-}
-
-function largestOf(values: ArrayLike<number>): number {
-  let largest = 0;
-  for (let k = 0; k < values.length; k++) if (values[k] > largest) largest = values[k];
-  return largest;
+  const alike = views.filter(({ map }) => map.unit === first.map.unit && map.kind === first.map.kind);
+  return sharedColourScale(alike.map(({ map }) => map), steadyLimits(alike));
 }
 
 function RowScale({ store, row }: { readonly store: Store; readonly row: PageRow }): JSX.Element | null {

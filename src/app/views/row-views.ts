@@ -60,3 +60,22 @@ export function possibleRows(any: Picture | undefined): readonly PageRow[] {
     { kind: 'verdict' },
   ];
 }
+
+/**
+ * Ends of a row's colours that one column with a wild nucleus cannot set and so darken all others:
+ * intensities run to the first map's largest or to the median of the largest, whichever is more.
+ * Undefined for other kinds of map.
+ */
+export function steadyLimits(views: readonly MapView[]): readonly [number, number] | undefined {
+  if (views[0]?.map.kind !== 'intensity') return undefined;
+  const largest = views.map(({ map }) => largestOf(map.values));
+  const middle = [...largest].sort((a, b) => a - b)[largest.length >> 1];
+  const top = Math.max(largest[0], middle);
+  return top > 0 ? [0, top] : undefined;
+}
+
+function largestOf(values: ArrayLike<number>): number {
+  let largest = 0;
+  for (let k = 0; k < values.length; k++) if (values[k] > largest) largest = values[k];
+  return largest;
+}
