@@ -18,13 +18,13 @@ export interface FitState {
 }
 
 /** Fits of the page's columns to the observation, and their ranking once all are in. */
-export function makeRanker(crew: Crew, page: ReadonlySignal<PageDocument>, data: ReadonlySignal<DataFiles | undefined>) {
+export function makeRanker(crew: Crew, page: ReadonlySignal<PageDocument>, data: ReadonlySignal<DataFiles>) {
   const fits = signal<Readonly<Record<string, FitState>>>({});
   const patch = (id: string, state: FitState): void => {
     fits.value = { ...fits.peek(), [id]: state };
   };
   const requestOf = (column: PageDocument['columns'][number]): string =>
-    JSON.stringify([column.name, column.scene, column.hypothesis, data.value?.key]);
+    JSON.stringify([column.name, column.scene, column.hypothesis, data.value.key]);
   /** A fit belongs to its column as it was fitted, and as it is with the best values taken. */
   const belongs = (column: PageDocument['columns'][number], state: FitState | undefined): boolean =>
     state !== undefined && (state.request === requestOf(column) || (state.fit !== undefined && state.request === requestOf({ ...column, scene: state.scene }) && state.fit.sceneText === column.scene));
@@ -59,7 +59,7 @@ export function makeRanker(crew: Crew, page: ReadonlySignal<PageDocument>, data:
     /** Fits every column that has no fit yet, as many at a time as the crew has workers. */
     rank: async (): Promise<void> => {
       const given = data.peek();
-      if (!given) return;
+      if (given.studyText === undefined) return;
       crew.setData(given);
       const text = studyText(page.peek());
       await Promise.all(page.peek().columns.map((column) => fitOne(column, text, given.key)));

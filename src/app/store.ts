@@ -41,20 +41,21 @@ export function makeStore(start: PageDocument, crew: Crew, fitCrew: Crew) {
   const note = signal<string>('');
   const page = computed(() => history.value.present);
 
-  /** The data as workers need them; undefined where there are none, or files are missing. */
-  const data = computed((): DataFiles | undefined => {
+  /** The files that scenes name, and where all of them are there the study's data, as workers need them. */
+  const data = computed((): DataFiles => {
     const { columns: all, study } = page.value;
-    if (!hasObservation({ study })) return undefined;
-    const found: [string, Uint8Array][] = [];
-    for (const file of filesNeeded({ study })) {
-      const bytes = findFile(files.value, file);
-      if (!bytes) return undefined;
-      found.push([file, bytes]);
-    }
-    const text = studyText({ ...page.value, columns: [{ ...all[0], hypothesis: {} }] });
-    const key = sha256OfText(JSON.stringify([study.data, found.map(([name, bytes]) => [name, bytes.length])])).slice(0, 16);
-    return { key, studyText: text, files: Object.fromEntries(found) };
+    const named = Object.keys(files.value).filter((name) => all.some(({ scene }) => scene.includes(name)));
+    const needed = hasObservation({ study }) ? filesNeeded({ study }) : [];
+    const found = [...needed, ...named].flatMap((name): [string, Uint8Array][] => {
+      const bytes = findFile(files.value, name);
+      return bytes ? [[name, bytes]] : [];
+    });
+    const isWhole = needed.length > 0 && needed.every((name) => findFile(files.value, name) !== undefined);
+    const key = sha256OfText(JSON.stringify([isWhole && study.data, found.map(([name, bytes]) => [name, bytes.length, bytes.subarray(0, 4096).reduce((sum, byte, k) => (sum + byte * (k + 1)) % 1e9, 0)])])).slice(0, 16);
+    const text = isWhole ? studyText({ ...page.value, columns: [{ ...all[0], hypothesis: {} }] }) : undefined;
+    return { key, files: Object.fromEntries(found), ...(text !== undefined && { studyText: text }) };
   });
+  const hasData = computed(() => data.value.studyText !== undefined);
 
   const ranker = makeRanker(fitCrew, page, data);
 
@@ -65,12 +66,12 @@ export function makeStore(start: PageDocument, crew: Crew, fitCrew: Crew) {
   /** The request that each column's picture answers, or is being asked with. */
   const asked = new Map<string, string>();
 
-  const draw = async (id: string, name: string, sceneText: string, ringKpc: readonly [number, number] | undefined, dataKey: string | undefined): Promise<void> => {
+  const draw = async (id: string, name: string, sceneText: string, ringKpc: readonly [number, number] | undefined, dataKey: string): Promise<void> => {
     const request = JSON.stringify([sceneText, ringKpc, dataKey]);
     if (asked.get(id) === request) return;
     const isFirst = !asked.has(id);
     asked.set(id, request);
-    const task = { kind: 'draw' as const, name, sceneText, ...(ringKpc && { ringKpc }), ...(dataKey !== undefined && { dataKey }) };
+    const task = { kind: 'draw' as const, name, sceneText, dataKey, ...(ringKpc && { ringKpc }) };
     for (const exact of isFirst ? [true] : [false, true]) {
       patch(id, { ...columns.peek()[id], waitsFor: exact ? 'exact' : 'preview' });
       const outcome = await crew.ask(id, { ...task, exact });
@@ -104,9 +105,9 @@ export function makeStore(start: PageDocument, crew: Crew, fitCrew: Crew) {
     untracked(() => {
       crew.setData(given);
       for (const id of asked.keys()) if (!all.some((column) => column.id === id)) asked.delete(id);
-      for (const { id, name, scene } of all) void draw(id, name, scene, ringKpc, given?.key);
+      for (const { id, name, scene } of all) void draw(id, name, scene, ringKpc, given.key);
       const leading = all.find(({ id }) => id === chosen) ?? all[0];
-      void drawObserved(leading.name, leading.scene, ringKpc, given?.key);
+      void drawObserved(leading.name, leading.scene, ringKpc, given.studyText === undefined ? undefined : given.key);
     });
   });
 
@@ -119,9 +120,10 @@ export function makeStore(start: PageDocument, crew: Crew, fitCrew: Crew) {
     closeUp,
     note,
     data,
+    hasData,
     ranker,
     /** One place of a column, offsets in kpc; a newer question takes the place of an older one. */
-    lookAt: (name: string, sceneText: string, northKpc: number, eastKpc: number) => crew.ask('place', { kind: 'place', name, sceneText, northKpc, eastKpc }),
+    lookAt: (name: string, sceneText: string, northKpc: number, eastKpc: number) => crew.ask('place', { kind: 'place', name, sceneText, northKpc, eastKpc, dataKey: data.peek().key }),
     canUndo: computed(() => history.value.past.length > 0),
     canRedo: computed(() => history.value.future.length > 0),
     /** Changes the document; changes of one `name` in a row are one step to undo. */

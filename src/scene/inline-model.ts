@@ -1,3 +1,4 @@
+import { isScalar } from 'yaml';
 import { z } from 'zod';
 import { Graph } from '../formula/graph.ts';
 import { FormulaError } from '../formula/parse.ts';
@@ -6,6 +7,7 @@ import { findFormulaProblem } from '../model/formula-keys.ts';
 import { eulerFormulas, formulasByName, formulaText, reservedNames } from '../model/model-schema.ts';
 import type { Model, ModelEdges, ModelFormulas, ModelParameter } from '../model/types.ts';
 import { InputError } from '../units/input-error.ts';
+import type { Place } from '../units/input-error.ts';
 import { canonicalQuantity, parseQuantity } from '../units/quantity.ts';
 import { quoteValue } from '../units/quote.ts';
 import { keys, listOf, nameText } from '../units/schema.ts';
@@ -129,8 +131,18 @@ function tryFormulas(input: YamlInput, model: Model, path: YamlPath): void {
     }
   } catch (error) {
     if (!(error instanceof InputError)) throw error;
-    throw error.at(placeAt(input, error instanceof FormulaError ? pathOfFormula(model, path, error.formula) : path));
+    throw error.at(error instanceof FormulaError ? placeInFormula(input, pathOfFormula(model, path, error.formula), error) : placeAt(input, path));
   }
+}
+
+/** The offending character of a formula where it stands in one line of the text; else the formula's beginning. */
+function placeInFormula(input: YamlInput, path: YamlPath, error: FormulaError): Place {
+  const place = placeAt(input, path);
+  const node = input.document.getIn(path, true);
+  const quotes = isScalar(node) ? ({ PLAIN: 0, QUOTE_DOUBLE: 1, QUOTE_SINGLE: 1 } as Readonly<Record<string, number>>)[node.type ?? ''] : undefined;
+  const isPlainlyWritten = isScalar(node) && node.range && node.range[1] - node.range[0] === error.formula.length + 2 * (quotes ?? 0);
+  if (quotes === undefined || !isPlainlyWritten || place.column === undefined) return place;
+  return { ...place, column: place.column + quotes + error.column - 1 };
 }
 
 function pathOfFormula(model: Model, path: YamlPath, formula: string): YamlPath {

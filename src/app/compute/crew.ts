@@ -12,8 +12,8 @@ export interface Crew {
   ask<T extends Task>(key: string, task: T, tell?: FitProgressTold): Promise<Outcome<TaskResult<T>>>;
   /** Takes back what waits or runs under a key; it answers `cancelled`. */
   cancel(key: string): void;
-  /** Data that tasks may refer to by their key. */
-  setData(data: DataFiles | undefined): void;
+  /** Files that tasks refer to by their key. */
+  setData(data: DataFiles): void;
 }
 
 interface Member {
@@ -68,14 +68,19 @@ export function makeCrew(count: number, startWorker: () => Worker): Crew {
   const perform = async (member: Member, { key, task, tell, answer }: Waiting): Promise<void> => {
     member.busyWith = key;
     try {
-      if (task.dataKey !== undefined && task.dataKey === data?.key && member.dataKey !== data.key) {
-        const given = (await Promise.race([member.remote.setData(data), member.dead])) as Outcome<null>;
-        member.dataKey = data.key;
-        if (!('value' in given)) {
-          member.dataKey = undefined;
-          answer(given as Outcome<never>);
+      // What the page holds may change while a worker takes it in.
+      const sent = data;
+      if (sent && task.dataKey === sent.key && member.dataKey !== sent.key) {
+        const taken = (await Promise.race([member.remote.setData(sent), member.dead])) as Outcome<null>;
+        member.dataKey = 'value' in taken ? sent.key : undefined;
+        if (!('value' in taken)) {
+          answer(taken as Outcome<never>);
           return;
         }
+      }
+      if (member.dataKey !== task.dataKey) {
+        answer({ cancelled: true });
+        return;
       }
       answer((await Promise.race([member.remote.run(task, Comlink.proxy(tell)), member.dead])) as Outcome<never>);
     } catch (error) {

@@ -3,12 +3,12 @@ import type { ColumnPicture, ObservedPicture } from './column-picture.ts';
 import type { FitPicture, FitProgressTold } from './work-fit.ts';
 import type { PlacePicture } from './work-place.ts';
 
-/** Files of the page by name; a worker is given them once. */
+/** Files that tasks read, by name; a worker is given them once. */
 export interface DataFiles {
-  /** Changes whenever the study's data or a file does. */
+  /** Changes whenever a file or the study's data do. */
   readonly key: string;
-  /** Text of a study whose data count; its hypotheses do not. */
-  readonly studyText: string;
+  /** Text of a study whose data count; undefined where there are none to hold scenes against. */
+  readonly studyText?: string;
   readonly files: Readonly<Record<string, Uint8Array>>;
 }
 
@@ -19,8 +19,7 @@ export interface DrawTask {
   readonly sceneText: string;
   readonly ringKpc?: readonly [number, number];
   readonly exact: boolean;
-  /** Of the data to hold it against; undefined where there are none. */
-  readonly dataKey?: string;
+  readonly dataKey: string;
 }
 
 /** The observation's own column, its rings laid as this scene's galaxy lies. */
@@ -39,7 +38,7 @@ export interface PlaceTask {
   readonly sceneText: string;
   readonly northKpc: number;
   readonly eastKpc: number;
-  readonly dataKey?: undefined;
+  readonly dataKey: string;
 }
 
 /** A column to be fitted to the data as a hypothesis of a study. */

@@ -1,13 +1,14 @@
 import * as Comlink from 'comlink';
 import { config } from 'zod';
-import { loadData } from '../../files/load-data.ts';
+import { gridSource } from '../../files/grid-source.ts';
+import { loadData, type FileSource } from '../../files/load-data.ts';
 import { parseStudy } from '../../infer/study.ts';
 import { EngineCache } from '../../ray/job.ts';
 import { patientBackend } from '../../run/patient-backend.ts';
 import { parseScene } from '../../scene/parse-scene.ts';
 import { InputError } from '../../units/input-error.ts';
 import { memoryFiles } from './memory-files.ts';
-import type { AnyResult, DataFiles, Outcome, PageWorker, Task } from './messages.ts';
+import type { AnyResult, Outcome, PageWorker, Task } from './messages.ts';
 import { workFit, type FitProgressTold } from './work-fit.ts';
 import { workPlace } from './work-place.ts';
 import { makeWorkData, pictureData, workColumn, type WorkData } from './work-column.ts';
@@ -19,11 +20,13 @@ config({ jitless: true });
 
 const backend = patientBackend(new EngineCache());
 let running: AbortController | undefined;
-let seen: { readonly key: string; readonly data: WorkData } | undefined;
+let held: { readonly key: string; readonly files: FileSource; readonly data?: WorkData } | undefined;
 
 const worker: PageWorker = {
   setData: (data) => outcomeOf(async () => {
-    seen = { key: data.key, data: readData(data) };
+    const files = memoryFiles(data.files);
+    held = { key: data.key, files };
+    if (data.studyText !== undefined) held = { key: data.key, files, data: readData(data.studyText, files) };
     return null;
   }),
   run: (task, tell) => {
@@ -36,9 +39,10 @@ const worker: PageWorker = {
 };
 
 async function perform(task: Task, signal: AbortSignal, tell: FitProgressTold): Promise<AnyResult> {
-  const scene = parseScene(task.sceneText, task.name);
+  if (held?.key !== task.dataKey) throw new Error('the worker has other files than the task needs');
+  const { files, data } = held;
+  const scene = parseScene(task.sceneText, task.name, [], gridSource(files));
   if (task.kind === 'place') return workPlace(scene, task.northKpc, task.eastKpc, backend, signal);
-  const data = task.dataKey !== undefined && seen?.key === task.dataKey ? seen.data : undefined;
   if (task.kind !== 'draw' && !data) throw new Error('the worker has no data');
   if (task.kind === 'observed' && data) return pictureData(data, scene, task.ringKpc);
   if (task.kind === 'fit' && data) return workFit(parseStudy(task.studyText, 'study.yaml'), task.name, scene, task.sceneText, data, backend, signal, tell);
@@ -46,9 +50,9 @@ async function perform(task: Task, signal: AbortSignal, tell: FitProgressTold): 
   return workColumn({ scene, exact: task.exact, ringKpc: task.ringKpc, ...(data && { seen: data }) }, backend, signal, () => performance.now());
 }
 
-function readData({ studyText, files }: DataFiles): WorkData {
+function readData(studyText: string, files: FileSource): WorkData {
   const study = parseStudy(studyText, 'study.yaml');
-  const { data, notes } = loadData(study.data, memoryFiles(files), study.others);
+  const { data, notes } = loadData(study.data, files, study.others);
   return makeWorkData(data, notes);
 }
 

@@ -1,11 +1,11 @@
 import { readFits } from '../../files/fits-read.ts';
 import { skyImageFromFits } from '../../files/sky-fits-read.ts';
 import { findProvenance } from '../../files/fits-scene.ts';
-import { parseScene } from '../../scene/parse-scene.ts';
 import { InputError } from '../../units/input-error.ts';
 import type { PageFiles, Store } from '../store.ts';
 import { addColumn } from './edits.ts';
 import { readPageFile } from './page-file.ts';
+import { readScene } from './read-scene.ts';
 import { pageOfStudy } from './page-study.ts';
 
 /**
@@ -29,7 +29,7 @@ export async function takeIn(store: Store, given: readonly File[]): Promise<void
   const names = Object.keys(files);
   const texts = names.filter((name) => /\.(ya?ml|json)$/i.test(name));
   const maps = names.filter((name) => /\.(fits?|fts)(\.gz)?$/i.test(name));
-  const tables = names.filter((name) => /\.(csv|ecsv|txt)$/i.test(name));
+  const tables = names.filter((name) => /\.(csv|ecsv|txt|npy)$/i.test(name));
   const known: PageFiles = { ...store.files.peek(), ...files };
 
   const page = texts.find((name) => /\.json$/i.test(name));
@@ -49,7 +49,8 @@ export async function takeIn(store: Store, given: readonly File[]): Promise<void
   }
   for (const name of texts.filter((one) => one !== page && one !== study && !page && !study)) {
     attempt(name, () => {
-      const scene = parseScene(text(name), name);
+      const { scene, error } = readScene(text(name), name, known);
+      if (!scene) throw error;
       store.edit(addColumn(scene.title || name.replace(/\.scene\.ya?ml$/i, ''), text(name)));
       return `Added ${name} as a column.`;
     });
@@ -76,6 +77,7 @@ function sceneOf(files: PageFiles, file: string): string {
 function observationOf(store: Store, names: readonly string[], files: PageFiles): string {
   const entries: Record<string, unknown>[] = [];
   const refused: string[] = [];
+  const used = new Set<string>();
   let isWithoutNoise = false;
   for (const name of names) {
     try {
@@ -86,6 +88,7 @@ function observationOf(store: Store, names: readonly string[], files: PageFiles)
         continue;
       }
       const noise = image.noise?.[0];
+      used.add(name);
       isWithoutNoise ||= !(noise !== undefined && noise > 0);
       for (const quantity of stokes) entries.push({ quantity, file: name, ...(noise !== undefined && noise > 0 && { noise: `${noise} ${image.unit}` }) });
     } catch (error) {
@@ -94,11 +97,12 @@ function observationOf(store: Store, names: readonly string[], files: PageFiles)
     }
   }
   if (entries.length === 0) throw new InputError(refused.join(' ') || 'there is no map in it');
-  store.addFiles(Object.fromEntries(names.map((name) => [name, files[name]])));
+  const maps = [...used];
+  store.addFiles(Object.fromEntries(maps.map((name) => [name, files[name]])));
   store.edit((page) => ({ ...page, study: { ...page.study, data: entries } }));
-  const scenes = names.flatMap((name) => sceneInside(files[name], name));
+  const scenes = maps.flatMap((name) => sceneInside(files[name], name));
   return [
-    `${entries.length} map${entries.length === 1 ? '' : 's'} in ${names.length} file${names.length === 1 ? '' : 's'} are the observation now.`,
+    `${entries.length} map${entries.length === 1 ? '' : 's'} in ${maps.length} file${maps.length === 1 ? '' : 's'} are the observation now.`,
     ...(isWithoutNoise ? ['No noise is stated in some: write it in the observation’s text, such as noise: 20 uJy/beam.'] : []),
     ...(scenes.length > 0 ? ['They carry the scene that they were made from.'] : []),
     ...refused,

@@ -7,14 +7,14 @@ import { TakeAway } from './take-away.tsx';
 
 /** Fits every column to the observation and ranks them; while it runs, the same button stops it. */
 function RankButton({ store }: { readonly store: Store }): JSX.Element {
-  const { data, ranker } = store;
+  const { hasData, ranker } = store;
   const isRunning = ranker.running.value;
   return (
     <button
       type="button"
       class="rank"
-      disabled={data.value === undefined}
-      title={data.value === undefined ? 'Drop maps to rank geometries by' : 'Fit every column within its free parameters and rank them'}
+      disabled={!hasData.value}
+      title={!hasData.value ? 'Drop maps to rank geometries by' : 'Fit every column within its free parameters and rank them'}
       onClick={() => (isRunning ? ranker.stop() : void ranker.rank())}
     >
       {isRunning ? 'stop ranking' : 'rank'}
@@ -32,7 +32,7 @@ export function Header({ store }: { readonly store: Store }): JSX.Element {
   };
   return (
     <header class="bar">
-      <strong class="name">Gyrelight</strong>
+      <h1 class="name">Gyrelight</h1>
       <input
         class="title"
         aria-label="Title of the study"

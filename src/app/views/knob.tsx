@@ -2,11 +2,11 @@ import type { JSX } from 'preact';
 import { useState } from 'preact/hooks';
 import { unitText } from '../../figure/number-text.ts';
 import { parsePathValue, type ScenePath } from '../../scene/paths.ts';
-import { parseScene } from '../../scene/parse-scene.ts';
 import { InputError } from '../../units/input-error.ts';
 import { convertQuantity, formatQuantity } from '../../units/quantity.ts';
 import { changeColumn } from '../document/edits.ts';
 import type { PageColumn } from '../document/page-document.ts';
+import { readScene } from '../document/read-scene.ts';
 import { setPath } from '../document/scene-edits.ts';
 import type { Store } from '../store.ts';
 
@@ -39,7 +39,8 @@ export function Knob({ store, column, target, label, source }: KnobProps): JSX.E
   const type = (text: string): void => {
     const given = /[a-zµ°/]/i.test(text) || shownUnit === '' ? text.trim() : `${text.trim()} ${shownUnit}`;
     try {
-      parsePathValue(target, parseScene(column.scene, column.name), shownUnit === '' ? Number(given) : given);
+      const { scene } = readScene(column.scene, column.name, store.files.peek());
+      if (scene) parsePathValue(target, scene, shownUnit === '' ? Number(given) : given);
       setWrong('');
       put(given);
     } catch (error) {

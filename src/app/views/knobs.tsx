@@ -2,16 +2,16 @@ import type { JSX } from 'preact';
 import { useState } from 'preact/hooks';
 import { modelLibrary } from '../../model/library.ts';
 import type { Model } from '../../model/types.ts';
-import { parseScene } from '../../scene/parse-scene.ts';
 import { scenePath, scenePaths } from '../../scene/paths.ts';
 import type { Component, Scene } from '../../scene/types.ts';
-import { InputError } from '../../units/input-error.ts';
 import { addComponent, dropComponent, setPath } from '../document/scene-edits.ts';
 import { changeColumn } from '../document/edits.ts';
 import { findColumn, type PageColumn } from '../document/page-document.ts';
+import { readScene } from '../document/read-scene.ts';
 import type { Store } from '../store.ts';
 import { Knob } from './knob.tsx';
 import { SceneText } from './scene-text.tsx';
+import { StudyText } from './study-text.tsx';
 
 /** A part of a scene whose knobs stand together. */
 interface Part {
@@ -36,20 +36,21 @@ export function Knobs({ store }: { readonly store: Store }): JSX.Element | null 
   const page = store.page.value;
   const column = findColumn(page, page.chosen);
   if (!column) return null;
-  const read = readScene(column);
-  const scene = 'scene' in read ? read.scene : undefined;
+  const { scene } = readScene(column.scene, column.name, store.files.value);
   return (
     <section class="knobs" aria-label={`Knobs of ${column.name}`}>
       <div class="tabs" role="tablist" aria-label="Parts of the scene">
         <span class="of">{column.name}</span>
-        {[...parts.map(({ key, title }) => ({ key, title })), { key: 'text', title: 'as text' }].map(({ key, title }) => (
+        {[...parts.map(({ key, title }) => ({ key, title })), { key: 'text', title: 'as text' }, { key: 'observation', title: 'observation' }].map(({ key, title }) => (
           <button key={key} type="button" role="tab" id={`tab-${key}`} aria-selected={open === key} aria-controls="knob-panel" onClick={() => setOpen(key)}>
             {title}
           </button>
         ))}
       </div>
       <div id="knob-panel" role="tabpanel" aria-labelledby={`tab-${open}`} class="panel">
-        {open === 'text' || !scene ? (
+        {open === 'observation' ? (
+          <StudyText store={store} />
+        ) : open === 'text' || !scene ? (
           <SceneText store={store} column={column} />
         ) : (
           <PartKnobs store={store} column={column} scene={scene} part={parts.find(({ key }) => key === open) ?? parts[0]} />
@@ -57,15 +58,6 @@ export function Knobs({ store }: { readonly store: Store }): JSX.Element | null 
       </div>
     </section>
   );
-}
-
-function readScene(column: PageColumn): { readonly scene: Scene } | { readonly error: InputError } {
-  try {
-    return { scene: parseScene(column.scene, column.name) };
-  } catch (error) {
-    if (error instanceof InputError) return { error };
-    throw error;
-  }
 }
 
 interface PartProps {

@@ -1,4 +1,5 @@
 import type { JSX } from 'preact';
+import { parse } from 'yaml';
 import { useEffect, useRef, useState } from 'preact/hooks';
 import { azimuthProfile } from '../../figure/azimuth-profile.ts';
 import { barLabel, colourBar } from '../../figure/colour-bar.ts';
@@ -9,7 +10,6 @@ import { hypothesisStyle, pageTheme } from '../../figure/theme.ts';
 import type { ColumnPicture } from '../compute/column-picture.ts';
 import { addRow, changeRow, dropRow } from '../document/edits.ts';
 import type { PageColumn, PageRow } from '../document/page-document.ts';
-import { parseScene } from '../../scene/parse-scene.ts';
 import { savePanel, type PanelKind } from '../document/panel-files.ts';
 import type { Store } from '../store.ts';
 import { version } from '../version.ts';
@@ -28,7 +28,7 @@ const gap = 18;
 export function LineUp({ store }: { readonly store: Store }): JSX.Element {
   const { columns, rows } = store.page.value;
   const observed = store.observed.value.picture;
-  const hasObserved = store.data.value !== undefined || observed !== undefined;
+  const hasObserved = store.hasData.value || observed !== undefined;
   const [box, width] = useWidth();
   const count = columns.length + (hasObserved ? 1 : 0);
   const size = Math.max(128, Math.min(236, Math.floor((width - labelWidth - 44) / count) - gap));
@@ -209,7 +209,7 @@ async function takeMap(store: Store, row: PageRow, id: string, view: MapView, sc
 
 function seedOf(scene: string): number {
   try {
-    return parseScene(scene, 'scene').numerics.seed;
+    return (parse(scene) as { numerics?: { seed?: number } }).numerics?.seed ?? 1;
   } catch {
     return 1;
   }

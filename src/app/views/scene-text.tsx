@@ -1,9 +1,9 @@
 import type { JSX } from 'preact';
 import { useEffect, useRef, useState } from 'preact/hooks';
-import { parseScene } from '../../scene/parse-scene.ts';
-import { InputError } from '../../units/input-error.ts';
+import type { InputError } from '../../units/input-error.ts';
 import { changeColumn } from '../document/edits.ts';
 import type { PageColumn } from '../document/page-document.ts';
+import { readScene } from '../document/read-scene.ts';
 import type { Store } from '../store.ts';
 
 /** Time without a key before what is written is taken, ms. */
@@ -16,7 +16,7 @@ export function SceneText({ store, column }: { readonly store: Store; readonly c
   useEffect(() => {
     setDraft(column.scene);
   }, [column.id, column.scene]);
-  const problem = findProblem(draft, column.name);
+  const problem = readScene(draft, column.name, store.files.value).error;
   const write = (text: string): void => {
     setDraft(text);
     clearTimeout(timer.current);
@@ -36,16 +36,6 @@ export function SceneText({ store, column }: { readonly store: Store; readonly c
       {problem && <Problem text={draft} problem={problem} />}
     </div>
   );
-}
-
-function findProblem(text: string, name: string): InputError | undefined {
-  try {
-    parseScene(text, name);
-    return undefined;
-  } catch (error) {
-    if (error instanceof InputError) return error;
-    throw error;
-  }
 }
 
 /** The line that is wrong, a mark under the character, and why. */
