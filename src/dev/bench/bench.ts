@@ -2,6 +2,7 @@ import { mkdtempSync, rmSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { compareAtEqualAccuracy } from './equal-accuracy.ts';
+import { measureModels } from './models-in-fit.ts';
 import { countSamples } from './samples.ts';
 import { timeSlopes } from './slopes.ts';
 import { compileTimes, firstCompileFlag, measureStartUp } from './start-up.ts';
@@ -18,6 +19,7 @@ const sections: Readonly<Record<string, (folder: string) => void | Promise<void>
   samples: countSamples,
   slopes: timeSlopes,
   workers: compareWorkers,
+  models: measureModels,
   start: measureStartUp,
   turbulence: measureTurbulence,
 };
