@@ -1,6 +1,8 @@
 import type { Command } from 'commander';
+import { gasMaps } from '../sky/gas-maps.ts';
 import { lookAt } from '../sky/observe.ts';
 import { addCommonFlags, overridesOf, sayWords, withRunContext, type CommonFlags } from './run-context.ts';
+import { addGasFiles } from './gas-files.ts';
 import { loadScene } from './load-scene.ts';
 import { addMapFiles, addOriginMaps, mapSummary } from './map-files.ts';
 import { OutputFolder } from './output-folder.ts';
@@ -16,8 +18,10 @@ export function addMap(program: Command): void {
       const folder = new OutputFolder(flags.out);
       // Written before Ctrl-C ends the process again: it waits until every file is whole.
       const { sky, text, seconds } = await withRunContext(flags, async ({ pool, progress, signal }) => {
+        const gas = await gasMaps(scene, { signal, onProgress: (done, total) => progress.show('gas', done, total, 'rays') });
         const seen = await lookAt(scene, pool.backend, { signal, onProgress: (done, total) => progress.show('following rays', done, total, 'rays') });
         const bands = await addMapFiles(folder, scene, seen, provenance, { signal, onProgress: (done, total) => progress.show('writing cubes', done, total, 'channels') });
+        addGasFiles(folder, scene, gas, seen.grid, provenance);
         if (flags.origin) await addOriginMaps(folder, scene, seen, provenance, { signal, onProgress: (done, total) => progress.show('layers seen', done, total, 'rays') });
         const took = (Date.now() - started) / 1000;
         const summary = `${JSON.stringify(mapSummary(scene, seen, bands, provenance, took, folder.names), null, 2)}\n`;

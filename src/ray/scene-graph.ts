@@ -79,6 +79,12 @@ export class SceneGraph {
     return this.graph.multiply(mean, this.electronFluctuation());
   }
 
+  /** n_e of one component of the thermal electrons, or of all, cm^-3: what gas follows. */
+  gasDensity(name: string | undefined): NodeId {
+    const placed = placedComponents(this.scene).thermalElectrons.find(({ component }) => component.name === name);
+    return placed ? this.graph.multiply(buildDensity(this.graph, this.use(placed)), this.electronFluctuation()) : this.electronDensity();
+  }
+
   /** What resolved turbulence makes of n_e: a factor of mean 1. */
   private electronFluctuation(): NodeId {
     const { resolved } = this.scene.turbulence;

@@ -48,6 +48,7 @@ export function parseScene(text: string, fileName: string, overrides: readonly O
     cosmicRays: readCosmicRays(input, file.cosmicRays, components.layers),
     turbulence: { ...readTurbulence(input, file.turbulence, all), ...readResolved(input, file.turbulence.resolved, all, galaxy, observation) },
     ...(file.freeFree && { freeFree: { temperatureK: file.freeFree.temperature } }),
+    ...readGas(input, file, components.thermalElectrons),
     observation,
     numerics: file.numerics,
     ...(inputs.size > 0 && { inputs: [...inputs.values()] }),
@@ -103,6 +104,22 @@ function readTurbulence(
         ...readFollows(input, 'ordered', ordered.follows, components),
       },
     }),
+  };
+}
+
+/** Dust and Zeeman maps, their gas one component of the thermal electrons or all of them. */
+function readGas(input: YamlInput, { dust, zeeman, turbulence }: SceneFile, electrons: readonly Component[]): Pick<Scene, 'dust' | 'zeeman'> {
+  const names = electrons.map(({ name }) => name);
+  const gas = (key: 'dust' | 'zeeman', follows: string | undefined): { readonly follows?: string } => {
+    if (names.length === 0) throw new InputError(`${key} needs gas that follows thermal electrons, and thermalElectrons are empty`, placeAt(input, [key]));
+    if (follows === undefined) return {};
+    if (names.includes(follows)) return { follows };
+    throw new InputError(`${key}.follows: no thermal electrons are named "${follows}"${nearestHint(follows, names)}; there are ${names.join(', ')}`, placeAt(input, [key, 'follows']));
+  };
+  if (dust && turbulence.ordered) throw new InputError('dust: directions cannot be averaged over turbulence.ordered; leave one of the two out', placeAt(input, ['dust']));
+  return {
+    ...(dust && { dust: { ...gas('dust', dust.follows), polarization: dust.polarization, hydrogenRatio: dust.hydrogenRatio, temperatureK: dust.temperature, opacityCm2: dust.opacity, frequencyHz: dust.at } }),
+    ...(zeeman && { zeeman: gas('zeeman', zeeman.follows) }),
   };
 }
 

@@ -35,6 +35,17 @@ const turbulence = keys(
   },
 );
 
+const dust = keys({
+  follows: nameText().optional(),
+  polarization: limited(sceneLimits.dustPolarization),
+  hydrogenRatio: limited(sceneLimits.hydrogenRatio).default(1),
+  temperature: limited(sceneLimits.dustTemperature),
+  opacity: limited(sceneLimits.dustOpacity),
+  at: limited(sceneLimits.dustFrequency),
+});
+
+const zeeman = keys({ follows: nameText().optional() });
+
 const freeFree = keys({ temperature: limited(sceneLimits.temperature) });
 
 const pixelCount = limited(sceneLimits.pixels);
@@ -122,10 +133,11 @@ export function sceneSchema<Item extends z.ZodType>(items: { readonly field: Ite
       }),
       turbulence: turbulence.default({}),
       freeFree: freeFree.optional(),
+      dust: dust.optional(),
+      zeeman: zeeman.optional(),
       observation,
       numerics: numerics.default({ tolerance: 1e-4, seed: 1, bits: 32 }),
     },
-    ['dust'],
   );
 }
 

@@ -107,6 +107,20 @@ export interface FreeFreeGas {
   readonly temperatureK: number;
 }
 
+/** Thermal dust, optically thin, of one temperature, in gas that follows the thermal electrons. */
+export interface ThermalDust {
+  /** Component of the thermal electrons that the gas follows; all of them where absent. */
+  readonly follows?: string;
+  /** Polarized share of the emission where the field lies in the sky. */
+  readonly polarization: number;
+  /** Hydrogen nuclei per thermal electron. */
+  readonly hydrogenRatio: number;
+  readonly temperatureK: number;
+  /** Cross-section per hydrogen nucleus, cm². */
+  readonly opacityCm2: number;
+  readonly frequencyHz: number;
+}
+
 /** An ordered random field that changes sign from cell to cell along one local direction. */
 export interface OrderedTurbulence {
   /** rms along that direction, uG. */
@@ -209,6 +223,10 @@ export interface Scene {
   readonly turbulence: { readonly unresolved?: UnresolvedTurbulence; readonly ordered?: OrderedTurbulence; readonly resolved?: ResolvedTurbulence };
   /** Free–free absorption and emission of the thermal electrons; undefined: none. */
   readonly freeFree?: FreeFreeGas;
+  /** Undefined: no maps of dust. */
+  readonly dust?: ThermalDust;
+  /** Undefined: no map of the density-weighted B_∥. */
+  readonly zeeman?: { readonly follows?: string };
   readonly observation: Observation;
   readonly numerics: Numerics;
   /** Files of gridded numbers; none where absent. */
