@@ -1,6 +1,7 @@
 import type { Command } from 'commander';
 import { gasMaps } from '../sky/gas-maps.ts';
 import { lookAt } from '../sky/observe.ts';
+import { addDepthBins, depthBinsFlag } from './depth-bin-files.ts';
 import { addCommonFlags, overridesOf, sayWords, withRunContext, type CommonFlags } from './run-context.ts';
 import { addGasFiles } from './gas-files.ts';
 import { loadScene } from './load-scene.ts';
@@ -12,7 +13,8 @@ import { durationText } from './progress.ts';
 export function addMap(program: Command): void {
   addCommonFlags(program.command('map <scene>').description('maps and cubes of a scene: I, Q, U, P, RM … as FITS, with an overview'))
     .option('--origin', 'maps of the layer that each band sees: heights at 16, 50 and 84 % of the light, near side, cancelled share')
-    .action(async (path: string, flags: CommonFlags & { readonly origin?: boolean }) => {
+    .option('--depth-bins <width>', 'true Faraday spectrum of each pixel: emission by the depth it lies at, in bins of such as "5 rad/m^2"', depthBinsFlag)
+    .action(async (path: string, flags: CommonFlags & { readonly origin?: boolean; readonly depthBins?: number }) => {
       const { scene, provenance } = loadScene(path, overridesOf(flags));
       const started = Date.now();
       const folder = new OutputFolder(flags.out);
@@ -23,6 +25,8 @@ export function addMap(program: Command): void {
         const bands = await addMapFiles(folder, scene, seen, provenance, { signal, onProgress: (done, total) => progress.show('writing cubes', done, total, 'channels') });
         addGasFiles(folder, scene, gas, seen.grid, provenance);
         if (flags.origin) await addOriginMaps(folder, scene, seen, provenance, { signal, onProgress: (done, total) => progress.show('layers seen', done, total, 'rays') });
+        const pause = (): Promise<void> => new Promise((resolve) => setImmediate(resolve));
+        if (flags.depthBins !== undefined) await addDepthBins(folder, scene, seen, flags.depthBins, provenance, { signal, pause, onProgress: (done, total) => progress.show('Faraday spectra', done, total, 'rays') });
         const took = (Date.now() - started) / 1000;
         const summary = `${JSON.stringify(mapSummary(scene, seen, bands, provenance, took, folder.names), null, 2)}\n`;
         folder.add('summary.json', summary);

@@ -75,9 +75,9 @@ export function depthCubeFits(cube: DepthCube, provenance: Provenance, bits: 32 
   return skyFits({ ...cube, ...depthAxis(cube), tables: [] }, provenance, bits);
 }
 
-/** The units of such a file but for the values of the first, which are written bit by bit, 32 bits each. */
-export function depthCubeUnits(cube: Omit<DepthCube, 'values'>, provenance: Provenance): { primary: ImageHdu; tables: TableHdu[] } {
-  return skyUnits({ ...cube, ...depthAxis(cube), values: new Float64Array(0), tables: [] }, provenance, 32);
+/** The units of such a file but for the values of the first, which are written bit by bit. */
+export function depthCubeUnits(cube: Omit<DepthCube, 'values'>, provenance: Provenance, bits: 32 | 64 = 32): { primary: ImageHdu; tables: TableHdu[] } {
+  return skyUnits({ ...cube, ...depthAxis(cube), values: new Float64Array(0), tables: [] }, provenance, bits);
 }
 
 function depthAxis(cube: Omit<DepthCube, 'values'>): Pick<SkyFits, 'third' | 'cards'> {

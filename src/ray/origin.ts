@@ -1,10 +1,9 @@
 import type { Scene } from '../scene/types.ts';
 import { output, type SpectralPoint } from './integrand.ts';
-import { findBreaks, mostBreaks } from './path.ts';
+import { walkPanels, type PanelValues } from './panel-walk.ts';
 import { panelNodes, panelRule } from './panel.ts';
-import { exactSineCosine } from './scene-graph.ts';
 import { wavelengthSquared } from './synchrotron.ts';
-import { makeRayEngine, rayGeometry } from './trace.ts';
+import { makeRayEngine } from './trace.ts';
 import type { RayBundle } from './types.ts';
 
 /** Where along one ray the light comes from: `count` pieces from the observer to the far end. */
@@ -21,10 +20,8 @@ export interface OriginPieces {
   readonly emitted: Float64Array;
 }
 
-/** Panels at least in a stretch of smooth integrand, and turn of the angle 2 chi in a panel at most, rad. */
-const leastPanels = 4;
+/** Turn of the angle 2 chi in a panel at most, rad. */
 const turnOfPanel = 0.7;
-const mostPanels = 400;
 
 /**
  * Walks the rays of a bundle and hands the net share of every piece of each to `take`: with chi the
@@ -34,101 +31,60 @@ const mostPanels = 400;
  */
 export function walkOrigins(scene: Scene, bundle: RayBundle, spectrum: readonly SpectralPoint[], take: (ray: number, pieces: OriginPieces) => void): void {
   const { integrand, kernel } = makeRayEngine(scene, spectrum, 'javascript');
-  const inputs = integrand.inputs(scene);
-  const geometry = rayGeometry(scene, inputs);
-  const { sinI, cosI, heightKpc, longestPanelKpc } = geometry;
-  const [sinPA, cosPA] = exactSineCosine(scene.galaxy.positionAngle);
   const squares = spectrum.map(({ frequencyHz }) => wavelengthSquared(frequencyHz));
-  const longest = Math.max(...squares);
-  const breaks = new Float64Array(mostBreaks);
-  const lanes = [0, 1, 2].map(() => new Float64Array(panelNodes));
-  const out = integrand.program.outputs.map(() => new Float64Array(panelNodes));
-  const most = mostBreaks * mostPanels * panelNodes;
   let z = new Float64Array(4096);
   let depths = new Float64Array(4096);
   let cosine = spectrum.map(() => new Float64Array(4096));
   let sine = spectrum.map(() => new Float64Array(4096));
   const emitted = new Float64Array(spectrum.length);
-  const evaluate = (major: number, minor: number, centre: number, half: number): void => {
-    for (let i = 0; i < panelNodes; i++) {
-      const s = centre + half * panelRule.nodes[i];
-      lanes[0][i] = major;
-      lanes[1][i] = minor * cosI - s * sinI;
-      lanes[2][i] = minor * sinI + s * cosI;
+  let count = 0;
+  let [depth, variance, column] = [0, 0, 0];
+  const inputs = integrand.inputs(scene);
+  const addPanel = ({ half, heightKpc, out }: PanelValues): void => {
+    if (count + panelNodes > z.length) {
+      z = grown(z);
+      depths = grown(depths);
+      cosine = cosine.map(grown);
+      sine = sine.map(grown);
     }
-    kernel().evaluate(panelNodes, inputs.parameters, lanes, out, inputs.tables, inputs.grids);
-  };
-  for (let ray = 0; ray < bundle.northKpc.length; ray++) {
-    const [north, east] = [bundle.northKpc[ray], bundle.eastKpc[ray]];
-    const [major, minor] = [north * cosPA + east * sinPA, east * cosPA - north * sinPA];
-    const intervals = findBreaks(geometry, major, minor, breaks);
-    let count = 0;
-    let [depth, variance, column] = [0, 0, 0];
-    emitted.fill(0);
-    for (let k = intervals - 1; k > 0; k--) {
-      const [far, near] = [breaks[k - 1], breaks[k]];
-      const panels = panelsOf(near - far, Math.min(heightKpc / 16, longestPanelKpc), evaluate, major, minor, (far + near) / 2, out[output.faraday], longest);
-      const half = (near - far) / panels / 2;
-      for (let panel = 0; panel < panels; panel++) {
-        evaluate(major, minor, near - (2 * panel + 1) * half, half);
-        if (count + panelNodes > z.length) {
-          if (count >= most) throw new Error('A ray has more pieces than there can be.');
-          z = grown(z);
-          depths = grown(depths);
-          cosine = cosine.map(grown);
-          sine = sine.map(grown);
-        }
-        let [wholeDepth, wholeVariance, wholeColumn] = [0, 0, 0];
-        for (let i = 0; i < panelNodes; i++) {
-          let [phi, sigma, measure] = [depth, variance, column];
-          for (let j = 0; j < panelNodes; j++) {
-            phi += half * panelRule.toNearEnd[i * panelNodes + j] * out[output.faraday][j];
-            sigma += half * panelRule.toNearEnd[i * panelNodes + j] * out[output.dispersion][j];
-            measure += half * panelRule.toNearEnd[i * panelNodes + j] * out[output.emissionMeasure][j];
-          }
-          wholeDepth += half * panelRule.weights[i] * out[output.faraday][i];
-          wholeVariance += half * panelRule.weights[i] * out[output.dispersion][i];
-          wholeColumn += half * panelRule.weights[i] * out[output.emissionMeasure][i];
-          // Nodes run towards the observer, pieces away.
-          const at = count + panelNodes - 1 - i;
-          z[at] = lanes[2][i];
-          depths[at] = phi;
-          const [q, u] = [out[output.cosine][i], out[output.sine][i]];
-          for (let f = 0; f < squares.length; f++) {
-            const size = half * panelRule.weights[i] * out[output.firstGroup + integrand.groupOf[f]][i];
-            emitted[f] += size * Math.hypot(q, u);
-            const damped = size * Math.exp(-2 * squares[f] * squares[f] * sigma - (inputs.freeFree?.opacity[f] ?? 0) * measure);
-            const angle = 2 * squares[f] * phi;
-            const [c, s] = [damped * Math.cos(angle), damped * Math.sin(angle)];
-            cosine[f][at] = c * q - s * u;
-            sine[f][at] = s * q + c * u;
-          }
-        }
-        count += panelNodes;
-        depth += wholeDepth;
-        variance += wholeVariance;
-        column += wholeColumn;
+    let [wholeDepth, wholeVariance, wholeColumn] = [0, 0, 0];
+    for (let i = 0; i < panelNodes; i++) {
+      let [phi, sigma, measure] = [depth, variance, column];
+      for (let j = 0; j < panelNodes; j++) {
+        phi += half * panelRule.toNearEnd[i * panelNodes + j] * out[output.faraday][j];
+        sigma += half * panelRule.toNearEnd[i * panelNodes + j] * out[output.dispersion][j];
+        measure += half * panelRule.toNearEnd[i * panelNodes + j] * out[output.emissionMeasure][j];
+      }
+      wholeDepth += half * panelRule.weights[i] * out[output.faraday][i];
+      wholeVariance += half * panelRule.weights[i] * out[output.dispersion][i];
+      wholeColumn += half * panelRule.weights[i] * out[output.emissionMeasure][i];
+      // Nodes run towards the observer, pieces away.
+      const at = count + panelNodes - 1 - i;
+      z[at] = heightKpc[i];
+      depths[at] = phi;
+      const [q, u] = [out[output.cosine][i], out[output.sine][i]];
+      for (let f = 0; f < squares.length; f++) {
+        const size = half * panelRule.weights[i] * out[output.firstGroup + integrand.groupOf[f]][i];
+        emitted[f] += size * Math.hypot(q, u);
+        const damped = size * Math.exp(-2 * squares[f] * squares[f] * sigma - (inputs.freeFree?.opacity[f] ?? 0) * measure);
+        const angle = 2 * squares[f] * phi;
+        const [c, s] = [damped * Math.cos(angle), damped * Math.sin(angle)];
+        cosine[f][at] = c * q - s * u;
+        sine[f][at] = s * q + c * u;
       }
     }
+    count += panelNodes;
+    depth += wholeDepth;
+    variance += wholeVariance;
+    column += wholeColumn;
+  };
+  const endRay = (ray: number): void => {
     take(ray, { count, z, depth: depths, wholeDepth: depth, shares: netShares(cosine, sine, count), emitted });
-  }
-}
-
-/** Panels for a stretch: fine in height, and so that the longest wavelength turns little within each. */
-function panelsOf(
-  length: number,
-  longestKpc: number,
-  evaluate: (major: number, minor: number, centre: number, half: number) => void,
-  major: number,
-  minor: number,
-  centre: number,
-  faraday: Float64Array,
-  longest: number,
-): number {
-  evaluate(major, minor, centre, length / 2);
-  let turn = 0;
-  for (let i = 0; i < panelNodes; i++) turn += (length / 2) * panelRule.weights[i] * Math.abs(faraday[i]) * 2 * longest;
-  return Math.min(mostPanels, Math.max(leastPanels, Math.ceil(length / longestKpc), Math.ceil(turn / turnOfPanel)));
+    count = 0;
+    [depth, variance, column] = [0, 0, 0];
+    emitted.fill(0);
+  };
+  walkPanels(scene, { inputs, kernel: kernel(), outputs: integrand.program.outputs.length }, bundle, turnOfPanel / (2 * Math.max(...squares)), addPanel, endRay);
 }
 
 /** The part of every piece along the final angle; written over the cosines. */

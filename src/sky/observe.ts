@@ -18,6 +18,8 @@ export interface SeenSky {
   readonly bands: readonly SeenBand[];
   /** Total Faraday depth of each pixel's ray, foreground included, rad m^-2. */
   readonly faradayDepth: Float64Array;
+  /** What of it is foreground: one number, or one per pixel. */
+  readonly foreground: number | Float64Array;
   readonly origins: readonly OriginHeights[];
   /** Largest estimated error on the scale that `tolerance` bounds. */
   readonly errorReached: number;
@@ -86,6 +88,7 @@ export async function lookAt(scene: Scene, backend: RayBackend, watch: Watch = {
       return seenBand(about, { I: inner(I), Q: inner(Q), U: inner(U) }, noise ?? scene.observation.noise ?? 0, scene.numerics);
     }),
     faradayDepth: cropped(depth),
+    foreground: typeof foreground === 'number' ? foreground : cropped(foreground),
     origins: followed.origins.map((origin) => ({ ...origin, heightKpc: cropped(origin.heightKpc) })),
     errorReached: followed.error,
     rays: bundle.northKpc.length,

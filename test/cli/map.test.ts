@@ -10,11 +10,11 @@ describe('gyrelight map', () => {
     needPython(context, 'astropy', 'numpy');
     inFolder((folder) => {
       writeFileSync(join(folder, 'any name at all.yaml'), smallScene);
-      const { status, stderr } = gyrelight(['map', 'any name at all.yaml', '--out', 'maps', '--workers', '2', '--origin'], folder);
+      const { status, stderr } = gyrelight(['map', 'any name at all.yaml', '--out', 'maps', '--workers', '2', '--origin', '--depth-bins', '4 rad/m^2'], folder);
       expect(stderr).not.toContain('Error');
       expect(status).toBe(0);
       const names = namesIn(join(folder, 'maps'));
-      for (const name of ['I-low.fits', 'Q-low.fits', 'U-low.fits', 'P-low.fits', 'fraction-low.fits', 'chi-low.fits', 'originHeight-low.fits', 'originMedian-low.fits', 'originLow-low.fits', 'originHigh-high.fits', 'nearShare-low.fits', 'cancelledShare-low.fits', 'I-high.fits', 'RM.fits', 'RM-error.fits', 'faradayDepth.fits', 'summary.json', 'overview.svg']) {
+      for (const name of ['I-low.fits', 'Q-low.fits', 'U-low.fits', 'P-low.fits', 'fraction-low.fits', 'chi-low.fits', 'originHeight-low.fits', 'originMedian-low.fits', 'originLow-low.fits', 'originHigh-high.fits', 'nearShare-low.fits', 'cancelledShare-low.fits', 'I-high.fits', 'RM.fits', 'RM-error.fits', 'faradayDepth.fits', 'trueFaradaySpectrum-Q-low.fits', 'trueFaradaySpectrum-U-high.fits', 'summary.json', 'overview.svg']) {
         expect(names).toContain(name);
       }
       for (const name of names.filter((file) => file.endsWith('.fits'))) {
@@ -29,6 +29,12 @@ describe('gyrelight map', () => {
       expect(seen.tabulated).toEqual([4.8e9, 5.2e9, 6.1e9]);
       expect(seen.beam).toEqual([72, 60, 30]);
       expect(seen.unit).toBe('Jy / beam');
+      // Depths are whole multiples of the width; the foreground's 12 rad/m^2 lie before all.
+      const spectrum = seen.spectrum as { readonly depths: number[]; readonly unit: string; readonly meanDepth: number; readonly half: number };
+      expect(spectrum.unit).toBe('Jy m2 / (rad sr)');
+      expect(spectrum.depths.every((depth, k) => depth === spectrum.depths[0] + 4 * k && depth % 4 === 0)).toBe(true);
+      // The light of the centre comes, in the mean, from about half of the galaxy's own depth behind the foreground.
+      expect(Math.abs(spectrum.meanDepth - spectrum.half)).toBeLessThan(0.25 * Math.abs(spectrum.half) + 4);
       const summary = JSON.parse(readFileSync(join(folder, 'maps', 'summary.json'), 'utf8')) as { tolerance: { asked: number; reached: number }; samplesPerRay: number };
       expect(summary.tolerance.reached).toBeLessThanOrEqual(summary.tolerance.asked);
       expect(summary.samplesPerRay).toBeGreaterThan(8);
@@ -70,7 +76,13 @@ x, y, nu = wcs.wcs_pix2world([[(nx + 1) / 2, (ny + 1) / 2, 1]], 1)[0]
 left = wcs.celestial.wcs_pix2world([[1, (ny + 1) / 2]], 1)[0][0]
 tab = fits.open(folder + '/Q-high.fits')
 freqs = [WCS(tab[0].header, tab).wcs_pix2world([[1, 1, k + 1]], 1)[0][2] for k in range(3)]
+F = [fits.open(folder + '/trueFaradaySpectrum-%s-low.fits' % s)[0] for s in 'QU']
+import numpy
+depths = [float(F[0].header['CRVAL3'] + (k + 1 - F[0].header['CRPIX3']) * F[0].header['CDELT3']) for k in range(F[0].data.shape[0])]
+size = numpy.hypot(F[0].data, F[1].data)[:, 10, 14]
+whole = fits.open(folder + '/faradayDepth.fits')[0].data[10, 14]
 print(json.dumps({
+  'spectrum': {'depths': depths, 'unit': str(__import__('astropy.units', fromlist=['Unit']).Unit(F[0].header['BUNIT'])), 'meanDepth': float((size * depths).sum() / size.sum()), 'half': float(12 + (whole - 12) / 2)},
   'centre': [round(float(x), 9), round(float(y), 9)],
   'eastIsLeft': bool(left > x),
   'shape': list(hdus[0].data.shape),
