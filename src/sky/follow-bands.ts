@@ -34,7 +34,7 @@ export interface FollowedBands {
   readonly followed: number;
 }
 
-/** Cost of one term of one channel's sums (Q and U of a pixel) over that of following a ray at one more frequency; measured. */
+/** Cost of one term of one channel's sums (Q and U of a pixel) over that of following a ray at one more frequency: an order of magnitude, no measurement; it only moves the crossover. */
 const mixCost = 0.005;
 /** Cost of a pilot's ray, in frequencies of a ray: what its frequencies share, and the first nodes. */
 const pilotCost = 30;
