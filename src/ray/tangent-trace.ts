@@ -3,7 +3,7 @@ import type { Scene } from '../scene/types.ts';
 import { brightnessPerKpc, intrinsicPolarization } from './synchrotron.ts';
 import type { TangentIntegrand } from './tangent-integrand.ts';
 import type { TangentSums } from './tangent-sums.ts';
-import type { RaySums } from './transfer.ts';
+import type { RaySums } from './ray-sums.ts';
 import type { RayTangents } from './types.ts';
 
 /** Steps of the differences that the smooth laws of the index are differentiated by; they leave 1e-12. */

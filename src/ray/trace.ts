@@ -13,7 +13,9 @@ import { makeTangentSums } from './tangent-sums.ts';
 import { firstTangents, makeRayTangents } from './tangent-planes.ts';
 import { tangentWriter } from './tangent-trace.ts';
 import { TangentTracer } from './tangent-transfer.ts';
-import { makeRaySums, mostSamples, RayTracer, statedError, type Accuracy, type RaySums } from './transfer.ts';
+import { mostSamples, statedError, type Accuracy } from './accuracy.ts';
+import { makeRaySums, type RaySums } from './ray-sums.ts';
+import { RayTracer } from './transfer.ts';
 import type { RayBundle, RayResult } from './types.ts';
 import { WasmTransfer, type Derivatives } from './wasm-tracer.ts';
 

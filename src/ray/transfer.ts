@@ -1,47 +1,11 @@
-import { findBreaks, mostBreaks, type RayGeometry } from './path.ts';
 import type { Kernel } from '../formula/javascript.ts';
+import { beating, deepestSplit, mostBehind, mostDimmed, mostHidden, mostPerPanel, mostSamples, panelLimit, testedFrequencies, valleyShare, type Accuracy } from './accuracy.ts';
 import { thermalEmission } from './free-free.ts';
 import { output, type Integrand, type IntegrandInputs } from './integrand.ts';
 import { panelNodes, panelRule } from './panel.ts';
-
-/** How exact a ray must be: absolute limits per frequency, in units of ∫ C ⟨B^q⟩ ds. */
-export interface Accuracy {
-  readonly tolerance: number;
-  /** Scale of I: the largest of the map, per frequency. */
-  readonly scaleI: Float64Array;
-  /** Scale of Q and U: the larger of the largest |P| and 1e-3 of the largest I, per frequency. */
-  readonly scaleP: Float64Array;
-}
-
-/** What one ray brings, per frequency, in units of C B^q kpc before the spectral factor. */
-export interface RaySums {
-  readonly total: Float64Array;
-  readonly cosine: Float64Array;
-  readonly sine: Float64Array;
-  readonly heightCosine: Float64Array;
-  readonly heightSine: Float64Array;
-  readonly emitted: Float64Array;
-  /** Estimated error over its scale, per frequency tested. */
-  readonly error: Float64Array;
-  faradayDepth: number;
-  samples: number;
-}
-
-/** A new, empty set of sums for `count` frequencies. */
-export function makeRaySums(count: number): RaySums {
-  const array = (): Float64Array => new Float64Array(count);
-  return {
-    total: array(),
-    cosine: array(),
-    sine: array(),
-    heightCosine: array(),
-    heightSine: array(),
-    emitted: array(),
-    error: array(),
-    faradayDepth: 0,
-    samples: 0,
-  };
-}
+import { hasValley, largestOf, meanError, tailOf } from './panel-error.ts';
+import { findBreaks, mostBreaks, type RayGeometry } from './path.ts';
+import { clearSums, type RaySums } from './ray-sums.ts';
 
 /** Something that looks at each ray and at the panels accepted on it, the nearest to the observer first. */
 export interface PanelWatcher {
@@ -51,63 +15,6 @@ export interface PanelWatcher {
 }
 
 const n = panelNodes;
-/** Bisections of one interval. */
-export const deepestSplit = 48;
-/** Samples that one ray may take, ten thousand times what galaxies need: what wants more has no end worth waiting for. */
-export const mostSamples = 1_000_000;
-/**
- * Largest error that one panel may be estimated to have, over the tolerance. Panels' errors rarely
- * add up and the estimates are far too large where coefficients fall ever faster, as they do in
- * wide panels; at small tolerances, where they fall evenly, less of that is left.
- */
-function looseness(tolerance: number): number {
-  return Math.max(0.013, Math.min(1, tolerance / 1e-4));
-}
-
-/** Largest error that one panel may be estimated to have. */
-export function panelLimit(tolerance: number): number {
-  return tolerance * looseness(tolerance);
-}
-
-/**
- * Share of the tail that a panel with a valley is estimated to be wrong by at least. Where the
- * field across the line of sight vanishes, B^q has a kink: coefficients stop falling, and the true
- * error is up to a tenth of the tail; this keeps it below a third of the tolerance.
- */
-export function valleyShare(tolerance: number): number {
-  return looseness(tolerance) / 3;
-}
-
-/** Emission between the nodes of a panel that falls below this share of that on either side is a valley. */
-export const valleyDepth = 0.8;
-
-/**
- * The error to be stated for a ray whose panels' estimates add up to `estimate`: a bound, not a
- * guess. Over 250 random scenes of 24 rays each, errors beside runs at 1e-8 were at most 0.85 of
- * what this states, 0.1 in one scene of ten, and a hundredth and less in most: estimates by the
- * tail of the coefficients must hold for valleys too, which few panels have.
- */
-export function statedError(tolerance: number, estimate: number): number {
-  return (estimate * tolerance) / panelLimit(tolerance) / 6;
-}
-
-/** Polarization from behind a panel, net of its own rotation, over the scale of P: a bound. */
-export const mostBehind = 10;
-/**
- * Coefficients are never trusted to fall faster in two degrees: beneath a large smooth part a small
- * one that falls more slowly may hide.
- */
-export const fastestDecay = 0.03;
-/** Share of the errors of a depth at the nodes that beats with the last coefficients of the emission. */
-export const beating = 0.1;
-/** Keeps ratios of coefficients finite. */
-export const tiniest = 1e-300;
-/** Emission that a panel may hide between its nodes, over the tolerance. */
-export const mostHidden = 0.1;
-/** Light from behind thermal gas, as it would be without the gas, over the scale of I: a bound. */
-export const mostDimmed = 1e6;
-/** Largest turn, damping or absorption exponent across a panel that its nodes are trusted to notice. */
-export const mostPerPanel = 12;
 
 /**
  * Follows single rays through an integrand from the observer's end: panels of Gauss–Legendre
@@ -154,7 +61,7 @@ export class RayTracer {
 
   /** Integrates the ray at offsets (major, minor) from the galaxy's centre, kpc. */
   follow(majorKpc: number, minorKpc: number, sums: RaySums): void {
-    clear(sums);
+    clearSums(sums);
     this.watcher?.begin(majorKpc, minorKpc);
     const count = findBreaks(this.geometry, majorKpc, minorKpc, this.breaks);
     this.nearPhi = 0;
@@ -277,11 +184,11 @@ export class RayTracer {
   private mayHide(k: number, half: number, share: number): boolean {
     const square = this.wavelengthM2[k];
     const { opacity, through } = this.gasAt(k);
-    const turn = 4 * square * half * largest(this.out[output.faraday]);
-    const damping = 4 * square * square * half * largest(this.out[output.dispersion]);
-    const absorption = 2 * half * opacity * largest(this.out[output.emissionMeasure]);
+    const turn = 4 * square * half * largestOf(this.out[output.faraday]);
+    const damping = 4 * square * square * half * largestOf(this.out[output.dispersion]);
+    const absorption = 2 * half * opacity * largestOf(this.out[output.emissionMeasure]);
     if (turn + damping + absorption < mostPerPanel) return false;
-    const reaching = 2 * half * largest(this.made) * through;
+    const reaching = 2 * half * largestOf(this.made) * through;
     const { scaleI, scaleP } = this.accuracy;
     if (absorption >= mostPerPanel && reaching > share * scaleI[k]) return true;
     return reaching * Math.exp(-2 * square * square * this.nearSigma) > share * scaleP[k];
@@ -363,80 +270,3 @@ export class RayTracer {
 }
 
 const noGas = { opacity: 0, through: 1, source: 0 } as const;
-
-interface Tail {
-  readonly tail: number;
-  readonly decay: number;
-}
-
-/**
- * Sizes of the Legendre coefficients 6 and 7 of one or two functions at the nodes, and by which
- * factor coefficients fall in two degrees: the larger of the last two such factors, at most 1.
- */
-function tailOf(values: Float64Array, others?: Float64Array): Tail {
-  const [last, middle, first] = [pairSize(6, values, others), pairSize(4, values, others), pairSize(2, values, others)];
-  const decay = Math.max(last / Math.max(middle, tiniest), middle / Math.max(first, tiniest));
-  return { tail: last, decay: Math.min(Math.max(decay, fastestDecay), 1) };
-}
-
-function pairSize(degree: number, values: Float64Array, others: Float64Array | undefined): number {
-  const own = Math.abs(coefficient(degree, values)) + Math.abs(coefficient(degree + 1, values));
-  return others ? own + pairSize(degree, others, undefined) : own;
-}
-
-function coefficient(degree: number, values: Float64Array): number {
-  let sum = 0;
-  for (let j = 0; j < n; j++) sum += panelRule.legendre[degree * n + j] * values[j];
-  return sum;
-}
-
-/**
- * Error of the mean over a panel: the rule is exact to degree 15, so coefficients that fall by
- * `decay` in two degrees leave tail · decay^4.75 of those at 16 and beyond. A lower power is safe
- * where they fall unevenly (null rules: Berntsen & Espelid 1991). `least` is the least share of
- * the tail that is believed.
- */
-function meanError({ tail, decay }: Tail, least: number): number {
-  return tail * Math.max(decay * decay * decay, least);
-}
-
-/** Whether values fall between the ends of a panel and rise again, to less than `valleyDepth` of both sides. */
-function hasValley(values: Float64Array): boolean {
-  let behind = 0;
-  for (let i = 1; i < n - 1; i++) {
-    behind = Math.max(behind, values[i - 1]);
-    let ahead = 0;
-    for (let j = i + 1; j < n; j++) ahead = Math.max(ahead, values[j]);
-    if (values[i] < valleyDepth * Math.min(behind, ahead)) return true;
-  }
-  return false;
-}
-
-function largest(values: Float64Array): number {
-  let size = 0;
-  for (let i = 0; i < n; i++) size = Math.max(size, Math.abs(values[i]));
-  return size;
-}
-
-/** Where the far side is damped or absorbed, tested frequencies lie at most this factor apart in λ², if there are any between. */
-const testedRatio = 2;
-
-/**
- * Frequencies whose integrands decide on bisection: the longest and the shortest wavelength; where
- * unresolved turbulence or thermal gas may hide from the longest what shorter ones see, some between them too.
- */
-export function testedFrequencies(wavelengthM2: Float64Array, hidesFar: boolean): readonly number[] {
-  const order = Array.from(wavelengthM2.keys()).sort((a, b) => wavelengthM2[b] - wavelengthM2[a]);
-  const tested = [order[0]];
-  for (const k of hidesFar ? order : []) {
-    if (wavelengthM2[tested[tested.length - 1]] >= testedRatio * wavelengthM2[k]) tested.push(k);
-  }
-  const shortest = order[order.length - 1];
-  return tested.includes(shortest) ? tested : [...tested, shortest];
-}
-
-function clear(sums: RaySums): void {
-  for (const array of [sums.total, sums.cosine, sums.sine, sums.heightCosine, sums.heightSine, sums.emitted, sums.error]) array.fill(0);
-  sums.faradayDepth = 0;
-  sums.samples = 0;
-}

@@ -5,7 +5,7 @@ import type { ModuleWriter } from '../formula/wasm/module.ts';
 import { panelNodes, panelRule } from './panel.ts';
 import { nodeBytes, zero } from './wasm-nodes.ts';
 import { mostBreaks } from './path.ts';
-import { deepestSplit } from './transfer.ts';
+import { deepestSplit } from './accuracy.ts';
 
 /** One number at a fixed address. */
 export interface Cell {

@@ -1,7 +1,7 @@
 import { float as f, int, vector as v, type Float, type Int, type Vector } from '../formula/wasm/code.ts';
 import type { FunctionWriter } from '../formula/wasm/function.ts';
 import { panelNodes } from './panel.ts';
-import { fastestDecay, tiniest, valleyDepth } from './transfer.ts';
+import { fastestDecay, tiniest, valleyDepth } from './accuracy.ts';
 import type { TransferLayout } from './wasm-layout.ts';
 
 export const zero = int.constant(0);
@@ -28,7 +28,7 @@ export function sumLanes(w: FunctionWriter, pair: Vector): Float {
   return f.add(v.lane(known, 0), v.lane(known, 1));
 }
 
-/** Size of a function's last Legendre coefficients, and by which factor they fall: `tailOf` of transfer.ts. */
+/** Size of a function's last Legendre coefficients, and by which factor they fall: `tailOf` of panel-error.ts. */
 export interface Tail {
   readonly tail: Float;
   readonly decay: Float;
@@ -59,12 +59,12 @@ function pairSizes(w: FunctionWriter, { legendrePairs }: TransferLayout, address
   });
 }
 
-/** Error of the mean over a panel, at least this share of the tail: `meanError` of transfer.ts. */
+/** Error of the mean over a panel, at least this share of the tail: `meanError` of panel-error.ts. */
 export function meanError(w: FunctionWriter, { tail, decay }: Tail, least = f.constant(0)): Float {
   return w.let(f.multiply(tail, f.max(f.multiply(f.multiply(decay, decay), decay), least)));
 }
 
-/** Whether values at the nodes have a valley: `hasValley` of transfer.ts. */
+/** Whether values at the nodes have a valley: `hasValley` of panel-error.ts. */
 export function hasValley(w: FunctionWriter, values: NodeValues): Int {
   const numbers = values.flatMap((pair) => [w.let(v.lane(pair, 0)), w.let(v.lane(pair, 1))]);
   const largestUpTo = (list: readonly Float[]): Float[] => {

@@ -3,7 +3,7 @@ import { exp } from '../formula/wasm/exponential.ts';
 import type { FunctionWriter } from '../formula/wasm/function.ts';
 import type { Callee } from '../formula/wasm/module.ts';
 import { writeRotate } from './wasm-rotate.ts';
-import { beating, mostBehind, mostDimmed, mostPerPanel } from './transfer.ts';
+import { beating, mostBehind, mostDimmed, mostPerPanel } from './accuracy.ts';
 import { emissionBytes, rotatedBytes, spectrumRecord, type TransferContext, type TransferLayout } from './wasm-layout.ts';
 import { hasValley, largest, loadNodes, measureTail, meanError, nodeBytes, zero } from './wasm-nodes.ts';
 

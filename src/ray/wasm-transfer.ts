@@ -9,7 +9,7 @@ import { writeAccept, type Sums } from './wasm-accept.ts';
 import { writeIsResolved } from './wasm-resolve.ts';
 import { nodeBytes, pairOffsets, zero } from './wasm-nodes.ts';
 import type { TangentIntegrand } from './tangent-integrand.ts';
-import { deepestSplit, mostSamples } from './transfer.ts';
+import { deepestSplit, mostSamples } from './accuracy.ts';
 import { writeTangents, type PanelFollower, type PlacedTangents } from './wasm-tangent.ts';
 import { panelNodes } from './panel.ts';
 

@@ -1,7 +1,7 @@
 import { expect, test } from 'vitest';
 import { joinTiles, sampleBudget } from '../../src/ray/job.ts';
 import { findMapScale, makeRayEngine, traceRays } from '../../src/ray/trace.ts';
-import { mostSamples } from '../../src/ray/transfer.ts';
+import { mostSamples } from '../../src/ray/accuracy.ts';
 import type { RayBundle, RayResult } from '../../src/ray/types.ts';
 import { InputError } from '../../src/units/input-error.ts';
 import { frequencies, sceneOf } from './scenes.ts';
