@@ -138,7 +138,8 @@ function tryFormulas(input: YamlInput, model: Model, path: YamlPath): void {
 /** The offending character of a formula where it stands in one line of the text; else the formula's beginning. */
 function placeInFormula(input: YamlInput, path: YamlPath, error: FormulaError): Place {
   const place = placeAt(input, path);
-  const node = input.document.getIn(path, true);
+  const { document: text } = input;
+  const node = text.getIn(path, true);
   const quotes = isScalar(node) ? ({ PLAIN: 0, QUOTE_DOUBLE: 1, QUOTE_SINGLE: 1 } as Readonly<Record<string, number>>)[node.type ?? ''] : undefined;
   const isPlainlyWritten = isScalar(node) && node.range && node.range[1] - node.range[0] === error.formula.length + 2 * (quotes ?? 0);
   if (quotes === undefined || !isPlainlyWritten || place.column === undefined) return place;
