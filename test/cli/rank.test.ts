@@ -155,7 +155,7 @@ describe('gyrelight rank', () => {
 
 /** The README's Python on this study's results, with what it read printed. */
 function readmePython(out: string): string {
-  const code = /```python\n([\s\S]*?)```/.exec(readFileSync(repository('README.md'), 'utf8'))?.[1] ?? '';
+  const code = /## Reading the results[\s\S]*?```python\n([\s\S]*?)```/.exec(readFileSync(repository('README.md'), 'utf8'))?.[1] ?? '';
   const here = code.replaceAll('out/lantern-wheel/helical-halo', join(out, 'quadrupole')).replaceAll('out/lantern-wheel', out);
   return `${here}\nprint(q.shape, scene.split('\\n')[0], ranking.colnames[0])`;
 }
