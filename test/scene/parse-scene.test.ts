@@ -97,7 +97,7 @@ describe('what is refused, word for word', () => {
   test.each<[number, string, string]>([
     [1, 'gyrelight: 2', '1:12: gyrelight: 2 is a newer file format than this version can read (it reads 1)'],
     [1, '', '2:1: "gyrelight: 1" is missing'],
-    [2, 'titel: Everything', '2:1: unknown key "titel" (did you mean "title"?); allowed are gyrelight, title, galaxy, field, thermalElectrons, cosmicRays, turbulence, freeFree, observation, numerics'],
+    [2, 'titel: Everything', '2:1: unknown key "titel" (did you mean "title"?); allowed are gyrelight, title, galaxy, field, thermalElectrons, cosmicRays, turbulence, freeFree, dust, zeeman, observation, numerics'],
     [2, 'freeFree: {temperature: 10 K}', '2:25: freeFree.temperature: "10 K" is outside 100 to 1000000000 K'],
     [2, 'title: [1', '3:1: not valid YAML: Flow sequence in block collection must be sufficiently indented and end with a ]'],
     [4, '  distance: 10 uG', '4:13: galaxy.distance: "10 uG" is a magnetic field: a length is wanted, such as "2 Mpc"'],
