@@ -69,7 +69,7 @@ describe('errors are placed at the flag', () => {
     ['galaxy.inclination=200 deg', 'galaxy.inclination: "200 deg" is outside 0 to 180 deg'],
     ['gyrelight=2', 'gyrelight: 2 is a newer file format than this version can read (it reads 1)'],
     ['observation.image.pixels=0', 'observation.image.pixels: 0 is not allowed: a whole number, 1 to 16384'],
-    ['__proto__.x=1', 'unknown key "__proto__"; allowed are gyrelight, title, galaxy, field, thermalElectrons, cosmicRays, turbulence, freeFree, observation, numerics'],
+    ['__proto__.x=1', 'unknown key "__proto__"; allowed are gyrelight, title, galaxy, field, thermalElectrons, cosmicRays, turbulence, freeFree, dust, zeeman, observation, numerics'],
   ])('%s', (setting, message) => expect(messageOf(withSet(setting).scene)).toBe(`--set ${setting}: ${message}`));
 
   test('a name that fits two', () => {
