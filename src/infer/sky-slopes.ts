@@ -7,19 +7,21 @@ export type StokesPlanes = Readonly<Record<StokesQuantity, Float64Array>>;
 
 /** Σ rate · derivative over the parameters that rays were differentiated by, each `size` numbers long. */
 export function combineTangents(tangents: RayTangents | undefined, rates: Float64Array, size: number): StokesPlanes {
-  const combine = (name: 'I' | 'Q' | 'U'): Float64Array => (tangents ? weighted(tangents[name], rates, size) : new Float64Array(size));
+  const combine = (name: 'I' | 'Q' | 'U'): Float64Array => weighted(tangents?.[name], rates, size);
   return { I: combine('I'), Q: combine('Q'), U: combine('U') };
 }
 
 /** The same for the total Faraday depths of rays. */
 export function combineDepths(tangents: RayTangents | undefined, rates: Float64Array, rays: number): Float64Array {
-  return tangents ? weighted(tangents.faradayDepth, rates, rays) : new Float64Array(rays);
+  return weighted(tangents?.faradayDepth, rates, rays);
 }
 
-function weighted(all: Float64Array, rates: Float64Array, size: number): Float64Array {
+/** Throws where a rate asks for derivatives that the rays did not bring: zeros in their place would end a fit where it began. */
+function weighted(all: Float64Array | undefined, rates: Float64Array, size: number): Float64Array {
   const sum = new Float64Array(size);
   rates.forEach((rate, p) => {
     if (rate === 0) return;
+    if (!all) throw new Error('the rays came without the derivatives asked for');
     const part = all.subarray(p * size, (p + 1) * size);
     for (let k = 0; k < size; k++) sum[k] += rate * part[k];
   });

@@ -169,6 +169,8 @@ describe.skipIf(!existsSync(executablePath))('the page in Chromium (skipped wher
     await page.getByRole('button', { name: 'rank', exact: true }).click();
     await page.waitForFunction(() => /prefer/.test(document.querySelector('.notice')?.textContent ?? ''), undefined, { timeout: 240_000 });
     expect(await page.locator('.notice').textContent()).toMatch(/prefer "helical halo"/);
+    // The fit is the command line's: the generating geometry comes down to its noise.
+    expect((await page.locator('.verdict').allTextContents()).join(' ')).toMatch(/1\. χ²\/N 0\.9\d/);
     const kept = await take(page, 'Take away', 'page');
     await page.getByLabel('Start from').selectOption('study');
     await page.waitForFunction(() => document.querySelectorAll('.column-head input').length === 6);

@@ -3,8 +3,7 @@ import { config } from 'zod';
 import { gridSource } from '../../files/grid-source.ts';
 import { loadData, type FileSource } from '../../files/load-data.ts';
 import { parseStudy } from '../../infer/study.ts';
-import { EngineCache } from '../../ray/job.ts';
-import { patientBackend } from '../../run/patient-backend.ts';
+import { localBackend } from '../../ray/job.ts';
 import { parseScene } from '../../scene/parse-scene.ts';
 import { InputError } from '../../units/input-error.ts';
 import { memoryFiles } from './memory-files.ts';
@@ -18,7 +17,7 @@ import { makeWorkData, pictureData, workColumn, type WorkData } from './work-col
 // Generated checkers would need `unsafe-eval`.
 config({ jitless: true });
 
-const backend = patientBackend(new EngineCache());
+const backend = localBackend();
 let running: AbortController | undefined;
 let held: { readonly key: string; readonly files: FileSource; readonly data?: WorkData } | undefined;
 
