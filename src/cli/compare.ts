@@ -21,7 +21,7 @@ import { loadScene } from './load-scene.ts';
 import { bandFileName, OutputFolder } from './output-folder.ts';
 import { ringOf } from './ring-flag.ts';
 import { addCommonFlags, overridesOf, sayWords, withRunContext, type CommonFlags } from './run-context.ts';
-import { version } from './version.ts';
+import { version } from '../files/version.ts';
 
 interface CompareFlags extends CommonFlags {
   readonly ring?: string;

@@ -13,7 +13,7 @@ import { InputError } from '../units/input-error.ts';
 import { readYaml } from '../units/yaml-input.ts';
 import { convergenceProblem, rateText } from './dynamo-words.ts';
 import { overridesOf, withCancel, type CommonFlags } from './run-context.ts';
-import { version } from './version.ts';
+import { version } from '../files/version.ts';
 
 /** Most memory that the factors of a matrix may take. */
 const mostFactorBytes = 4 * 2 ** 30;

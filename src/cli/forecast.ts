@@ -18,7 +18,7 @@ import { addStudyFlags } from './rank.ts';
 import { sayWords, withRunContext, type RunContext } from './run-context.ts';
 import { loadStudy, type LoadedStudy, type StudyFlags } from './study-load.ts';
 import { runStudy } from './study-run.ts';
-import { version } from './version.ts';
+import { version } from '../files/version.ts';
 
 interface ForecastFlags extends StudyFlags {
   readonly first?: string;

@@ -4,7 +4,7 @@ import { gridsBeside } from '../files/scene-files.ts';
 import { parseScene, sceneText } from '../scene/parse-scene.ts';
 import type { Override } from '../scene/overrides.ts';
 import type { Scene } from '../scene/types.ts';
-import { version } from './version.ts';
+import { version } from '../files/version.ts';
 
 /** A checked scene with the text and seed that outputs carry. */
 export interface LoadedScene {

@@ -15,7 +15,7 @@ import { addSweep } from './sweep.ts';
 import { addTask } from './task.ts';
 import { addTasks } from './tasks.ts';
 import { Cancelled } from './run-context.ts';
-import { version } from './version.ts';
+import { version } from '../files/version.ts';
 
 /** Exit codes: the input is wrong; a bug or a failed resource; stopped by the user. */
 const exitCode = { input: 2, failure: 1, cancelled: 130 } as const;

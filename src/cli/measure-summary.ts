@@ -4,7 +4,7 @@ import type { RegionPitch } from '../measure/pitch-angle.ts';
 import type { DepthPlan } from '../sky/depth-spectrum.ts';
 import type { MapData } from './measure-input.ts';
 import type { MeasuredBand, RegionLaws, RingHarmonics } from './measure-run.ts';
-import { version } from './version.ts';
+import { version } from '../files/version.ts';
 
 const degrees = 180 / Math.PI;
 

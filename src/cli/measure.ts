@@ -22,7 +22,7 @@ import { planWords, resultWords } from './measure-words.ts';
 import { OutputFolder } from './output-folder.ts';
 import { makeProgress } from './progress.ts';
 import { Cancelled, sayWords } from './run-context.ts';
-import { version } from './version.ts';
+import { version } from '../files/version.ts';
 
 /** `gyrelight measure MAPS…`: rings, harmonics, Faraday spectra and laws of depolarization of any maps. */
 export function addMeasure(program: Command): void {

@@ -12,7 +12,7 @@ import { forwardOf } from '../infer/hypothesis.ts';
 import type { FittedRun } from './hypothesis-run.ts';
 import type { OutputFolder } from './output-folder.ts';
 import type { RunContext } from './run-context.ts';
-import { version } from './version.ts';
+import { version } from '../files/version.ts';
 
 /** A hypothesis with its posterior. */
 export interface SampledRun extends FittedRun {

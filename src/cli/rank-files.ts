@@ -28,7 +28,7 @@ import { bestTexts, correlationTable, errorTexts, type FittedRun } from './hypot
 import { addPosteriorFiles, posteriorRecord, type SampledRun } from './posterior-files.ts';
 import { whitenessOf, whitenessRecord, type RunWhiteness } from './run-whiteness.ts';
 import { bandFileName, slug, type OutputFolder } from './output-folder.ts';
-import { version } from './version.ts';
+import { version } from '../files/version.ts';
 
 /** Fitted hypotheses in order, best first, with what is said of them. */
 export interface RankOutcome {

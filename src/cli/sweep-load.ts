@@ -7,7 +7,7 @@ import type { SweepSource } from '../sweep/source.ts';
 import type { SweepPlan } from '../sweep/types.ts';
 import { InputError } from '../units/input-error.ts';
 import { overridesOf, type CommonFlags } from './run-context.ts';
-import { version } from './version.ts';
+import { version } from '../files/version.ts';
 
 /** Reads and checks a sweep file with the scenes it names. Throws InputError with file:line:column, or the flag. */
 export function loadSweep(file: string, flags: Pick<CommonFlags, 'set' | 'seed'>): { readonly source: SweepSource; readonly plan: SweepPlan } {

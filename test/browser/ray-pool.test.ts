@@ -3,10 +3,11 @@ import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { chromium, type Browser, type Page } from 'playwright-core';
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
+import { servePage, type PageServer } from '../../src/cli/page-server.ts';
 import { localBackend } from '../../src/ray/job.ts';
 import { parseScene } from '../../src/scene/parse-scene.ts';
 import type { Pools } from './pool-page.ts';
-import { buildPage, servePage } from './serve-page.ts';
+import { buildPage } from './build-page.ts';
 
 const executablePath = '/usr/bin/chromium';
 const sceneText = readFileSync('test/reference/a-spiral-quadrupole.yaml', 'utf8');
@@ -29,24 +30,24 @@ declare const pools: Pools;
 describe.skipIf(!existsSync(executablePath))('workers of the browser (skipped where there is no /usr/bin/chromium: apt-get install chromium)', () => {
   const folder = mkdtempSync(join(tmpdir(), 'gyrelight-page-'));
   let browser: Browser;
-  const servers: Awaited<ReturnType<typeof servePage>>[] = [];
+  const servers: PageServer[] = [];
 
   beforeAll(async () => {
     await buildPage('test/browser/pool-page.ts', folder);
-    for (const isIsolated of [false, true]) servers.push(await servePage(folder, isIsolated));
+    for (const isIsolated of [false, true]) servers.push(await servePage(folder, 0, isIsolated));
     browser = await chromium.launch({ executablePath, args: ['--no-sandbox'] });
   }, 120_000);
 
   afterAll(async () => {
     await browser?.close();
-    for (const { server } of servers) server.close();
+    for (const server of servers) await server.close();
     rmSync(folder, { recursive: true, force: true });
   });
 
   async function onPage<T>(isIsolated: boolean, work: (page: Page) => Promise<T>): Promise<T> {
     const page = await browser.newPage();
     try {
-      await page.goto(servers[isIsolated ? 1 : 0].address);
+      await page.goto(servers[isIsolated ? 1 : 0].url);
       await page.waitForFunction(() => 'pools' in globalThis);
       return await work(page);
     } finally {

@@ -4,7 +4,7 @@ import { writePageFile } from './page-file.ts';
 import { save } from './save.ts';
 import { lineUpSvg } from './line-up-figure.ts';
 import { savePicture } from './panel-files.ts';
-import { version } from '../version.ts';
+import { version } from '../../files/version.ts';
 import { filesNeeded, sceneFileName, studyText } from './page-study.ts';
 import { findFile } from '../compute/memory-files.ts';
 import { findColumn } from './page-document.ts';

@@ -12,7 +12,7 @@ import { addRow, changeRow, dropRow } from '../document/edits.ts';
 import type { PageColumn, PageRow } from '../document/page-document.ts';
 import { savePanel, type PanelKind } from '../document/panel-files.ts';
 import type { Store } from '../store.ts';
-import { version } from '../version.ts';
+import { version } from '../../files/version.ts';
 import { AddColumn, ColumnHead, ObservedHead } from './column-head.tsx';
 import { MapCell } from './map-cell.tsx';
 import { bandOf, differenceOf, mapOf, possibleRows, ringOf, rowLabel, steadyLimits } from './row-views.ts';
